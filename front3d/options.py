@@ -1,0 +1,78 @@
+"""What a user may choose about an evaluation; the defaults come from the mesh."""
+
+from dataclasses import dataclass
+from math import isfinite
+
+from front3d.errors import CaseError
+
+Vector = tuple[float, float, float]
+
+
+@dataclass(frozen=True, slots=True)
+class Plane:
+    """The plane normal . x = offset."""
+
+    normal: Vector
+    offset: float
+
+    @classmethod
+    def parse(cls, text: str) -> "Plane":
+        """Read "z=0", "x = 12.5" or "1,0,1=2" (a normal of any length, and its product with x)."""
+        left, equals, right = text.partition("=")
+        axes: dict[str, Vector] = {"x": (1, 0, 0), "y": (0, 1, 0), "z": (0, 0, 1)}
+        try:
+            if not equals:
+                raise ValueError
+            name = left.strip().lower()
+            parts = axes[name] if name in axes else tuple(float(v) for v in left.split(","))
+            offset = float(right)
+            length = sum(v * v for v in parts) ** 0.5
+            if len(parts) != 3 or not (isfinite(length) and length > 0 and isfinite(offset)):
+                raise ValueError
+        except ValueError:
+            raise CaseError(
+                f"plane: found {text!r}, expected an axis and a coordinate such as z=0, or a "
+                "normal and its product with the position such as 1,0,1=2.5"
+            ) from None
+        nx, ny, nz = (v / length for v in parts)
+        return cls((nx, ny, nz), offset / length)
+
+
+@dataclass(frozen=True, slots=True)
+class Options:
+    """Choices of an evaluation.
+
+    Attributes
+    ----------
+    crack_plane : symmetry plane that holds the crack, for a half model
+    face_pressure : pressure on the crack faces, positive when it opens them
+    radii : outer radii of the rings; None takes them from the mesh
+    hat : half-width, in cells along the front, of the weight of one station; None takes it from
+        the mesh
+    up : direction that decides which of the two faces is the upper one; None takes the dominant
+        coordinate axis of the crack normal
+    steps : names of the steps to evaluate; None takes all
+    unopened : evaluate coincident faces that never part in any step, too
+    """
+
+    crack_plane: Plane | None = None
+    face_pressure: float = 0.0
+    radii: tuple[float, ...] | None = None
+    hat: float | None = None
+    up: Vector | None = None
+    steps: tuple[str, ...] | None = None
+    unopened: bool = False
+
+    def __post_init__(self) -> None:
+        if self.radii is not None and (
+            not self.radii or any(not (isfinite(r) and r > 0) for r in self.radii)
+        ):
+            raise CaseError(f"ring radii: found {self.radii}, expected positive lengths")
+        if self.hat is not None and not (isfinite(self.hat) and self.hat >= 1):
+            raise CaseError(f"hat half-width: found {self.hat:g} cells, expected 1 or more")
+        if not isfinite(self.face_pressure):
+            raise CaseError(
+                f"face pressure: found {self.face_pressure}, expected a number in the stress unit"
+            )
+        if self.up is not None and not any(self.up):
+            raise CaseError("up: found a zero vector, expected a direction such as 0,0,1")

@@ -1,0 +1,147 @@
+"""What an evaluation gives: K along each front, per method and ring, with flags and warnings."""
+
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+
+import numpy as np
+
+from front3d.arrays import FloatArray, frozen_floats
+from front3d.errors import MethodError
+from front3d.solid import Material
+from front3d.units import Units
+
+MODES = ("K_I", "K_II", "K_III")
+
+CAUTION = (
+    "An engineering aid. Whether a cracked part is fit for service is decided by qualified "
+    "engineers under the governing code, not by this program."
+)
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Rings:
+    """K and J of each ring (integration domain) of the interaction integral.
+
+    Attributes
+    ----------
+    radii : (n_rings, n) outer radius of each ring at each station
+    K : (n_rings, n, 3) K_I, K_II, K_III
+    J : (n_rings, n) the J-integral over the same domain, an independent check of G
+    """
+
+    radii: FloatArray
+    K: FloatArray
+    J: FloatArray
+
+    def __post_init__(self) -> None:
+        _freeze(self, ("radii", "K", "J"))
+        shape = self.radii.shape
+        if self.K.shape != (*shape, 3) or self.J.shape != shape:
+            raise MethodError(
+                f"rings: found radii {shape}, K {self.K.shape}, J {self.J.shape}; expected "
+                "(rings, stations), (rings, stations, 3), (rings, stations)"
+            )
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class MethodResult:
+    """K at every station by one method.
+
+    Attributes
+    ----------
+    method : its name in the registry, e.g. "interaction"
+    K : (n, 3) K_I, K_II, K_III
+    columns : further numbers per station, (n,) each, by column name
+    rings : for the interaction integral
+    """
+
+    method: str
+    K: FloatArray
+    columns: Mapping[str, FloatArray] = field(default_factory=dict)
+    rings: Rings | None = None
+
+    def __post_init__(self) -> None:
+        _freeze(self, ("K",))
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class FrontResult:
+    """K along one front in one step.
+
+    Attributes
+    ----------
+    step, front : name of the step, number of the front (from 0)
+    closed : whether the front is a closed curve
+    ends : per end of an open front "free surface" or "symmetry plane"; empty when closed
+    length : arc length of the front
+    s : (n,) arc length of the stations from the start of the front, along e3
+    positions : (n, 3) coordinates of the stations
+    frames : (n, 3, 3) rows e1, e2, e3 of the local frame
+    K : (n, 3) K_I, K_II, K_III: the values front3d stands behind
+    G : (n,) energy release rate from K: (K_I^2 + K_II^2) / E' + K_III^2 / (2 mu)
+    flags : (n,) text per station, empty where nothing is to be said
+    methods : the result of each method that was applied
+    warnings : sentences for the reader, about the whole front
+    """
+
+    step: str
+    front: int
+    closed: bool
+    ends: tuple[str, ...]
+    length: float
+    s: FloatArray
+    positions: FloatArray
+    frames: FloatArray
+    K: FloatArray
+    G: FloatArray
+    flags: tuple[str, ...]
+    methods: Mapping[str, MethodResult]
+    warnings: tuple[str, ...] = ()
+
+    def __post_init__(self) -> None:
+        _freeze(self, ("s", "positions", "frames", "K", "G"))
+        n = len(self.s)
+        found = (self.positions.shape, self.frames.shape, self.K.shape, self.G.shape)
+        if found != ((n, 3), (n, 3, 3), (n, 3), (n,)) or len(self.flags) != n:
+            raise MethodError(
+                f"front {self.front}: found arrays of shapes {found} and {len(self.flags)} flags "
+                f"for {n} stations"
+            )
+
+    def __len__(self) -> int:
+        return len(self.s)
+
+    @property
+    def s_rel(self) -> FloatArray:
+        """Arc length over the length of the front, (n,)."""
+        return self.s / self.length
+
+    @property
+    def mode_angles(self) -> FloatArray:
+        """(n, 2) in degrees: psi = atan2(K_II, K_I), and the mode-III angle
+        atan2(K_III, hypot(K_I, K_II))."""
+        k1, k2, k3 = self.K.T
+        return np.degrees(np.stack([np.arctan2(k2, k1), np.arctan2(k3, np.hypot(k1, k2))], axis=1))
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Evaluation:
+    """All fronts in all steps, with what is needed to repeat the run."""
+
+    source: str
+    material: Material
+    units: Units
+    fronts: tuple[FrontResult, ...]
+    options: Mapping[str, object] = field(default_factory=dict)
+    warnings: tuple[str, ...] = ()
+
+
+def energy_release_rate(K: FloatArray, material: Material) -> FloatArray:
+    """G = (K_I^2 + K_II^2) / E' + K_III^2 / (2 mu), (n,), from K, (n, 3); Irwin (1957)."""
+    k1, k2, k3 = np.moveaxis(K, -1, 0)
+    return (k1**2 + k2**2) / material.plane_strain_modulus + k3**2 / (2.0 * material.shear_modulus)
+
+
+def _freeze(record: object, names: tuple[str, ...]) -> None:
+    for name in names:
+        object.__setattr__(record, name, frozen_floats(getattr(record, name)))

@@ -1,0 +1,142 @@
+"""The loaded model: points, cells, steps and material, with their shapes checked in one place."""
+
+from dataclasses import dataclass, field
+from math import isfinite
+
+import numpy as np
+
+from front3d.arrays import FloatArray, IntArray, frozen_floats, frozen_ints
+from front3d.elements import ElementType, element_type
+from front3d.errors import CaseError, MeshError
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class CellBlock:
+    """Cells of one element type.
+
+    Attributes
+    ----------
+    kind : name of the element type, a key of `front3d.elements.ELEMENTS`
+    nodes : (n_cells, n_nodes) rows into `Solid.points`, in VTK order
+    """
+
+    kind: str
+    nodes: IntArray
+
+    def __post_init__(self) -> None:
+        object.__setattr__(self, "nodes", frozen_ints(self.nodes))
+        expected = len(self.element.nodes)
+        if self.nodes.ndim != 2 or self.nodes.shape[1] != expected:
+            raise MeshError(
+                f"cell block {self.kind}: found connectivity of shape {self.nodes.shape}, "
+                f"expected (cells, {expected})"
+            )
+
+    @property
+    def element(self) -> ElementType:
+        return element_type(self.kind)
+
+    def __len__(self) -> int:
+        return len(self.nodes)
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Step:
+    """One load case or time of a result: a name, a time and (n_points, 3) displacements."""
+
+    name: str
+    displacement: FloatArray
+    time: float = 0.0
+
+    def __post_init__(self) -> None:
+        object.__setattr__(self, "displacement", frozen_floats(self.displacement))
+        if self.displacement.ndim != 2 or self.displacement.shape[1] != 3:
+            raise MeshError(
+                f"step {self.name}: found displacements of shape {self.displacement.shape}, "
+                "expected (points, 3)"
+            )
+
+
+@dataclass(frozen=True, slots=True)
+class Material:
+    """Isotropic linear elasticity: Young's modulus (stress) and Poisson's ratio."""
+
+    young: float
+    poisson: float
+
+    def __post_init__(self) -> None:
+        if not (isfinite(self.young) and self.young > 0):
+            raise CaseError(
+                f"Young's modulus: found {self.young:g}, expected a positive number in the "
+                "stress unit of the model"
+            )
+        if not (isfinite(self.poisson) and -1.0 < self.poisson < 0.5):
+            raise CaseError(
+                f"Poisson's ratio: found {self.poisson:g}, expected a number above -1 and below "
+                "0.5 (for a nearly incompressible material give 0.499)"
+            )
+
+    @property
+    def shear_modulus(self) -> float:
+        return self.young / (2.0 * (1.0 + self.poisson))
+
+    @property
+    def lame(self) -> float:
+        """Lame's first constant."""
+        return self.young * self.poisson / ((1.0 + self.poisson) * (1.0 - 2.0 * self.poisson))
+
+    @property
+    def plane_strain_modulus(self) -> float:
+        """E' = E / (1 - nu^2)."""
+        return self.young / (1.0 - self.poisson**2)
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Solid:
+    """A finite-element result: what every later stage works on.
+
+    Attributes
+    ----------
+    points : (n_points, 3) coordinates
+    blocks : cell blocks; surface and line cells of the file are not kept
+    steps : the displacements of each load case or time
+    source : file name or a description, for messages and for the record
+    point_spacing : distance between neighbouring representable coordinates in the file (0 if
+        double precision): coincidence cannot be judged more finely than this
+    """
+
+    points: FloatArray
+    blocks: tuple[CellBlock, ...]
+    steps: tuple[Step, ...] = ()
+    source: str = "model"
+    point_spacing: float = 0.0
+    notes: tuple[str, ...] = field(default=())
+
+    def __post_init__(self) -> None:
+        object.__setattr__(self, "points", frozen_floats(self.points))
+        object.__setattr__(self, "blocks", tuple(self.blocks))
+        object.__setattr__(self, "steps", tuple(self.steps))
+        if self.points.ndim != 2 or self.points.shape[1] != 3:
+            raise MeshError(
+                f"{self.source}: found points of shape {self.points.shape}, expected (points, 3)"
+            )
+        n_points = len(self.points)
+        for block in self.blocks:
+            outside = np.flatnonzero((block.nodes < 0) | (block.nodes >= n_points))
+            if len(outside):
+                cell, place = divmod(int(outside[0]), block.nodes.shape[1])
+                raise MeshError(
+                    f"{self.source}: {block.kind} cell {cell} names node "
+                    f"{block.nodes[cell, place]}, but the file has {n_points} points "
+                    f"(numbered from 0)"
+                )
+        for step in self.steps:
+            if len(step.displacement) != n_points:
+                raise MeshError(
+                    f"{self.source}: step {step.name} has {len(step.displacement)} displacements "
+                    f"for {n_points} points"
+                )
+
+    @property
+    def n_cells(self) -> int:
+        return sum(len(block) for block in self.blocks)
