@@ -1,0 +1,1 @@
+"""What the tests compare with: exact displacement fields and stored solutions."""
