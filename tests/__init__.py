@@ -1,1 +1,1 @@
-"""Tests of front3d.  A package, so that test files can share `tests.reference` and `tests.meshes`."""
+"""Tests of front3d: a package, so that test files can share `reference` and `meshes`."""

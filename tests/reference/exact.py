@@ -116,7 +116,7 @@ def penny_torsion(elastic, tau0, a=1.0) -> Field:
 
 
 def moved(field: Field, frame, origin) -> Field:
-    """The same field with its x, y, z axes turned to the rows of `frame`, its centre at `origin`."""
+    """The same field, its x, y, z axes turned to the rows of `frame`, its centre at `origin`."""
     frame = np.asarray(frame)
 
     def turned(points, side):
