@@ -1,0 +1,207 @@
+"""The case file: an evaluation written down in TOML, so that it can be repeated.
+
+```toml
+result = "bracket.vtu"          # relative to this file
+displacement = "U"              # where it is not found by its name
+
+[material]
+young = 200e3
+poisson = 0.3
+
+[units]
+length = "mm"
+stress = "MPa"
+
+[options]
+crack_plane = "z=0"             # half model
+face_pressure = 0.0
+rings = [0.4, 0.6, 0.8]
+hat = 4
+up = [0, 0, 1]
+steps = ["tension"]
+unopened = false
+```
+"""
+
+import tomllib
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass, field, fields, replace
+from difflib import get_close_matches
+from math import isfinite
+from pathlib import Path
+from typing import Any
+
+from front3d.errors import CaseError
+from front3d.options import Options, Plane, Vector
+from front3d.units import Units
+
+
+@dataclass(frozen=True, slots=True)
+class Case:
+    """What a case file or the flags of a command say; None where they say nothing."""
+
+    result: Path | None = None
+    displacement: str | None = None
+    young: float | None = None
+    poisson: float | None = None
+    length: str | None = None
+    stress: str | None = None
+    crack_plane: Plane | None = None
+    face_pressure: float | None = None
+    rings: tuple[float, ...] | None = None
+    hat: float | None = None
+    up: Vector | None = None
+    steps: tuple[str, ...] | None = None
+    unopened: bool | None = None
+    source: Path | None = field(default=None, compare=False)
+
+    def overridden_by(self, flags: "Case") -> "Case":
+        """A case that says what `flags` says, and otherwise what this one says."""
+        said = {
+            name: value
+            for name in (f.name for f in fields(flags))
+            if (value := getattr(flags, name)) is not None
+        }
+        return replace(self, **said)
+
+    @property
+    def options(self) -> Options:
+        """The options of the evaluation; CaseError where one is out of range."""
+        return Options(
+            crack_plane=self.crack_plane,
+            face_pressure=self.face_pressure or 0.0,
+            radii=self.rings,
+            hat=self.hat,
+            up=self.up,
+            steps=self.steps,
+            unopened=bool(self.unopened),
+        )
+
+    @property
+    def units(self) -> Units:
+        return Units(self.length or "", self.stress or "")
+
+
+def read_case(path: Path) -> Case:
+    """Read a TOML case file; CaseError says which key is wrong and what was expected."""
+    try:
+        with path.open("rb") as stream:
+            content = tomllib.load(stream)
+    except OSError as error:
+        raise CaseError(f"{path}: cannot be read ({error.strerror})") from error
+    except (tomllib.TOMLDecodeError, UnicodeDecodeError) as error:
+        raise CaseError(f"{path}: not a TOML file: {error}") from error
+    values = _values(content, _KEYS, f"{path.name}: ")
+    if "result" not in values:
+        raise CaseError(
+            f'{path.name}: found no result, expected a line such as result = "model.vtu" before '
+            "the first section"
+        )
+    values["result"] = path.parent / values["result"]
+    return Case(**values, source=path)
+
+
+# --- what each key holds --------------------------------------------------------------------
+
+Check = Callable[[Any], Any]
+
+
+class _WrongError(Exception):
+    """What was expected of a value."""
+
+
+def _text(value: Any) -> str:
+    if not isinstance(value, str) or not value:
+        raise _WrongError('a text such as "name"')
+    return value
+
+
+def _number(value: Any) -> float:
+    if isinstance(value, bool) or not isinstance(value, int | float) or not isfinite(value):
+        raise _WrongError("a number")
+    return float(value)
+
+
+def _boolean(value: Any) -> bool:
+    if not isinstance(value, bool):
+        raise _WrongError("true or false")
+    return value
+
+
+def _plane(value: Any) -> Plane:
+    if not isinstance(value, str):
+        raise _WrongError('a plane such as "z=0"')
+    try:
+        return Plane.parse(value)
+    except CaseError as error:
+        raise _WrongError(str(error).partition("expected ")[2]) from None
+
+
+def _list_of(check: Check, what: str) -> Check:
+    def read(value: Any) -> tuple[Any, ...]:
+        if not isinstance(value, list) or not value:
+            raise _WrongError(what)
+        try:
+            return tuple(check(item) for item in value)
+        except _WrongError:
+            raise _WrongError(what) from None
+
+    return read
+
+
+def _vector(value: Any) -> Vector:
+    what = "three numbers such as [0, 0, 1]"
+    numbers = _list_of(_number, what)(value)
+    if len(numbers) != 3:
+        raise _WrongError(what)
+    x, y, z = numbers
+    return (x, y, z)
+
+
+_KEYS: Mapping[str, Any] = {
+    "result": _text,
+    "displacement": _text,
+    "material": {"young": _number, "poisson": _number},
+    "units": {"length": _text, "stress": _text},
+    "options": {
+        "crack_plane": _plane,
+        "face_pressure": _number,
+        "rings": _list_of(_number, "a list of radii such as [0.2, 0.4]"),
+        "hat": _number,
+        "up": _vector,
+        "steps": _list_of(_text, 'a list of step names such as ["step 1"]'),
+        "unopened": _boolean,
+    },
+}
+
+
+def _values(content: Mapping[str, Any], keys: Mapping[str, Any], where: str) -> dict[str, Any]:
+    """Checked values of all keys, sections flattened; their names are unique on purpose."""
+    values: dict[str, Any] = {}
+    for key, value in content.items():
+        if key not in keys:
+            raise CaseError(_unknown(key, keys, where))
+        check = keys[key]
+        if isinstance(check, Mapping):
+            if not isinstance(value, dict):
+                raise CaseError(f"{where}{key}: found {value!r}, expected a section [{key}]")
+            values |= _values(value, check, f"{where}[{key}] ")
+            continue
+        try:
+            values[key] = check(value)
+        except _WrongError as wrong:
+            raise CaseError(f"{where}{key}: found {value!r}, expected {wrong}") from None
+    return values
+
+
+def _unknown(key: str, keys: Mapping[str, Any], where: str) -> str:
+    near = get_close_matches(key, keys, n=1, cutoff=0.5)
+    hint = f"; did you mean {near[0]!r}?" if near else ""
+    elsewhere = [
+        name for name, inner in _KEYS.items() if isinstance(inner, Mapping) and key in inner
+    ]
+    if elsewhere:
+        hint = f"; it belongs into [{elsewhere[0]}]"
+    elif key in _KEYS:
+        hint = "; it belongs before the first section"
+    return f"{where}unknown key {key!r}{hint} (known here: {', '.join(keys)})"

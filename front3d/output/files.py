@@ -1,0 +1,58 @@
+"""Files that are written whole or not at all."""
+
+import os
+from pathlib import Path
+
+from front3d.errors import Front3DError
+
+
+class WriteError(Front3DError):
+    """A folder or file of results cannot be written."""
+
+
+def write_whole(path: Path, content: bytes) -> Path:
+    """Write `content` to `path` so that a reader finds the whole of it or what stood there before.
+
+    The bytes go to a file beside the target, which then takes its name in one step; when that
+    fails (a full disk, no permission) the unfinished file is removed and WriteError is raised.
+    """
+    # Not tempfile: its files are readable by their owner only, and would stay so.
+    part = path.with_name(f".{path.name}.{os.getpid()}.part")
+    try:
+        try:
+            with part.open("xb") as stream:
+                stream.write(content)
+                stream.flush()
+                os.fsync(stream.fileno())
+            part.replace(path)
+        finally:
+            part.unlink(missing_ok=True)
+    except OSError as error:
+        raise WriteError(_explain(path, error)) from error
+    return path
+
+
+def prepare_folder(folder: Path) -> Path:
+    """Make `folder` with its parents and try that it can be written to, before any long work."""
+    try:
+        folder.mkdir(parents=True, exist_ok=True)
+        trial = folder / f".front3d.{os.getpid()}.part"
+        try:
+            trial.touch()
+        finally:
+            trial.unlink(missing_ok=True)
+    except FileExistsError as error:
+        raise WriteError(
+            f"{folder}: found a file, expected a folder for the results; name another one"
+        ) from error
+    except OSError as error:
+        raise WriteError(_explain(folder, error)) from error
+    return folder
+
+
+def _explain(path: Path, error: OSError) -> str:
+    reason = error.strerror or type(error).__name__
+    return (
+        f"{path}: cannot be written ({reason.lower()}); nothing is left half-written. "
+        "Free some space, or name a folder that you may write to"
+    )

@@ -1,0 +1,116 @@
+"""The folder of results: which files it gets, under which names, in which order."""
+
+import json
+import re
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass
+from pathlib import Path
+
+from front3d.output.charts import chart_png
+from front3d.output.files import prepare_folder, write_whole
+from front3d.output.rendering import why_no_pictures
+from front3d.output.scene import scene_png
+from front3d.output.summary import summary_json
+from front3d.output.tables import front_vtp, points_csv
+from front3d.results import Evaluation, FrontResult
+from front3d.solid import Solid
+
+Progress = Callable[[str, float], None]
+
+
+@dataclass(frozen=True, slots=True)
+class Written:
+    """Names of the files written into a folder, and sentences on what could not be."""
+
+    folder: Path
+    files: tuple[str, ...]
+    notes: tuple[str, ...] = ()
+
+
+def write_results(
+    evaluation: Evaluation,
+    solid: Solid,
+    folder: Path,
+    *,
+    inputs: Sequence[Path] = (),
+    pictures: bool = True,
+    progress: Progress | None = None,
+) -> Written:
+    """Write tables, charts and pictures of `evaluation`; `summary.json` last, as it lists them.
+
+    `inputs` are the files that were read, for their hashes. Pictures of an earlier run that this
+    one does not write again are removed, so that no old picture stands beside new numbers.
+    Raises WriteError; a file that is there is whole.
+    """
+    prepare_folder(folder)
+    earlier = _earlier_pictures(folder)
+    makers: dict[str, Callable[[], bytes]] = {
+        "points.csv": lambda: points_csv(evaluation),
+        "front.vtp": lambda: front_vtp(evaluation),
+    }
+    notes: list[str] = []
+    if pictures and evaluation.fronts:
+        makers |= _charts(evaluation)
+        reason = why_no_pictures()
+        if reason is None:
+            makers |= _scenes(evaluation, solid)
+        else:
+            notes.append(reason)
+    for done, (name, make) in enumerate(makers.items()):
+        if progress is not None:
+            progress(f"writing {name}", done / len(makers))
+        write_whole(folder / name, make())
+    files = (*makers, "summary.json")
+    for name in earlier - set(files):
+        (folder / name).unlink(missing_ok=True)
+    write_whole(folder / "summary.json", summary_json(evaluation, inputs, files))
+    if progress is not None:
+        progress("results written", 1.0)
+    return Written(folder, files, tuple(notes))
+
+
+def _charts(evaluation: Evaluation) -> dict[str, Callable[[], bytes]]:
+    """`chart.png`, or one per front and step named after both."""
+    fronts = evaluation.fronts
+    names = _file_names([front.step for front in fronts])
+
+    def maker(front: FrontResult) -> Callable[[], bytes]:
+        return lambda: chart_png(front, evaluation.units)
+
+    if len(fronts) == 1:
+        return {"chart.png": maker(fronts[0])}
+    return {f"chart_front{f.front}_{names[f.step]}.png": maker(f) for f in fronts}
+
+
+def _scenes(evaluation: Evaluation, solid: Solid) -> dict[str, Callable[[], bytes]]:
+    """`scene.png`, or one per step."""
+    steps = list(dict.fromkeys(front.step for front in evaluation.fronts))
+    names = _file_names(steps)
+
+    def maker(step: str) -> Callable[[], bytes]:
+        chosen = tuple(front for front in evaluation.fronts if front.step == step)
+        return lambda: scene_png(solid, chosen, evaluation.units)
+
+    if len(steps) == 1:
+        return {"scene.png": maker(steps[0])}
+    return {f"scene_{names[step]}.png": maker(step) for step in steps}
+
+
+def _file_names(steps: Sequence[str]) -> dict[str, str]:
+    """Step names as parts of file names: letters, digits and .+- only, and none twice."""
+    names: dict[str, str] = {}
+    for number, step in enumerate(dict.fromkeys(steps)):
+        name = re.sub(r"[^\w.+-]+", "_", step)[:60].strip("_.") or f"step{number}"
+        # Compared without case: some file systems take "A.png" and "a.png" for one file.
+        taken = {other.lower() for other in names.values()}
+        names[step] = f"{name}_{number}" if name.lower() in taken else name
+    return names
+
+
+def _earlier_pictures(folder: Path) -> set[str]:
+    """Pictures that an earlier run's summary says it wrote here."""
+    try:
+        files = json.loads((folder / "summary.json").read_text(encoding="utf-8"))["files"]
+        return {name for name in files if re.fullmatch(r"(chart|scene)[\w.+-]*\.png", name)}
+    except (OSError, ValueError, KeyError, TypeError):
+        return set()

@@ -1,0 +1,157 @@
+"""`summary.json`: what was evaluated, with what, the extremes, and how far to trust them."""
+
+import hashlib
+import json
+import platform
+import re
+from collections.abc import Iterable, Mapping, Sequence
+from dataclasses import asdict, is_dataclass
+from importlib.metadata import PackageNotFoundError, version
+from math import isfinite
+from pathlib import Path
+from typing import Any
+
+import numpy as np
+
+from front3d import __version__
+from front3d.errors import ReadError
+from front3d.output.trust import agreement, rings_of
+from front3d.results import CAUTION, MODES, Evaluation, FrontResult
+from front3d.units import Units
+
+LIBRARIES = ("numpy", "scipy", "numba", "meshio", "pyvista", "vtk", "matplotlib", "h5py", "pyamg")
+
+_INDEX_SUFFIXES = {".pvd", ".pvtu", ".xdmf", ".xmf", ".xml"}
+
+
+def summary(evaluation: Evaluation, inputs: Iterable[Path], files: Sequence[str]) -> dict[str, Any]:
+    """The content of `summary.json`: plain data only.
+
+    `inputs` are the files that were read, `files` the names of the files written beside it.
+    """
+    units = evaluation.units
+    return {
+        "caution": CAUTION,
+        "source": evaluation.source,
+        "inputs": [
+            {"file": path.name, "sha256": _sha256(path)}
+            for given in inputs
+            for path in (given, *companions(given))
+        ],
+        "material": {
+            "young": evaluation.material.young,
+            "poisson": evaluation.material.poisson,
+        },
+        "units": {"length": units.length, "stress": units.stress, "K": units.K_label},
+        "options": plain(evaluation.options),
+        "versions": _versions(),
+        "fronts": [front_summary(front, units) for front in evaluation.fronts],
+        "warnings": list(evaluation.warnings),
+        "files": list(files),
+    }
+
+
+def summary_json(evaluation: Evaluation, inputs: Iterable[Path], files: Sequence[str]) -> bytes:
+    text = json.dumps(
+        plain(summary(evaluation, inputs, files)), indent=2, allow_nan=False, ensure_ascii=False
+    )
+    return (text + "\n").encode()
+
+
+def front_summary(front: FrontResult, units: Units) -> dict[str, Any]:
+    """Extremes with their places, rings, agreement and warnings of one front in one step."""
+    trust = agreement(front)
+    rings = rings_of(front)
+    return {
+        "step": front.step,
+        "front": front.front,
+        "stations": len(front),
+        "closed": front.closed,
+        "ends": list(front.ends),
+        "length": front.length,
+        "K": {mode: extremes(front, mode, units) for mode in MODES},
+        "G_max": float(np.nanmax(front.G)) if np.isfinite(front.G).any() else None,
+        "rings": None
+        if rings is None
+        else {
+            "radii": [{"min": float(r.min()), "max": float(r.max())} for r in rings.radii],
+            "spread_over_largest_K": trust.rings,
+            "J_minus_G_over_largest_G": trust.J_and_G,
+        },
+        "methods": list(front.methods),
+        "method_difference_over_largest_K": trust.methods,
+        "flagged_stations": sum(bool(flag) for flag in front.flags),
+        "warnings": list(front.warnings),
+    }
+
+
+def extremes(front: FrontResult, mode: str, units: Units) -> dict[str, dict[str, Any]]:
+    """Largest and smallest value of one K along the front, each with its place."""
+    values = front.K[:, MODES.index(mode)]
+    if not np.isfinite(values).any():
+        return {}
+    found = {"max": int(np.nanargmax(values)), "min": int(np.nanargmin(values))}
+    return {name: _station(front, i, float(values[i]), units) for name, i in found.items()}
+
+
+def _station(front: FrontResult, i: int, value: float, units: Units) -> dict[str, Any]:
+    place: dict[str, Any] = {
+        "value": value,
+        "station": i,
+        "s": float(front.s[i]),
+        "s_rel": float(front.s_rel[i]),
+        "position": front.positions[i].tolist(),
+        "flag": front.flags[i],
+    }
+    if units.K_factor is not None:
+        place["MPa_sqrt_m"] = value * units.K_factor
+    return place
+
+
+def companions(path: Path) -> list[Path]:
+    """The files that an index file (.pvd, .pvtu, .xdmf) names, as far as they exist.
+
+    The numbers stand in them, so a hash of the index alone would not tell two results apart.
+    """
+    if path.suffix.lower() not in _INDEX_SUFFIXES:
+        return []
+    text = path.read_text(encoding="utf-8", errors="replace")
+    names = re.findall(r"""(?:file|Source)\s*=\s*["']([^"']+)["']""", text)
+    names += re.findall(r"([^\s<>:\"']+\.(?:h5|hdf5|hdf|bin)):/", text)
+    return [file for name in dict.fromkeys(names) if (file := path.parent / name).is_file()]
+
+
+def plain(value: Any) -> Any:
+    """`value` as JSON can hold it: no arrays, no records, no nan."""
+    if isinstance(value, Mapping):
+        return {str(key): plain(item) for key, item in value.items()}
+    if is_dataclass(value) and not isinstance(value, type):
+        return plain(asdict(value))
+    if isinstance(value, np.ndarray | np.generic):
+        return plain(value.tolist())
+    if isinstance(value, list | tuple | set | frozenset):
+        return [plain(item) for item in value]
+    if isinstance(value, float) and not isfinite(value):
+        return None
+    return value if isinstance(value, str | int | float | bool | None) else str(value)
+
+
+def _sha256(path: Path) -> str:
+    try:
+        with path.open("rb") as stream:
+            return hashlib.file_digest(stream, "sha256").hexdigest()
+    except OSError as error:
+        raise ReadError(
+            f"{path}: cannot be read again for its hash ({error.strerror}); it has been moved or "
+            "removed since the evaluation began"
+        ) from error
+
+
+def _versions() -> dict[str, str]:
+    found = {"front3d": __version__, "python": platform.python_version()}
+    for library in LIBRARIES:
+        try:
+            found[library] = version(library)
+        except PackageNotFoundError:
+            continue
+    return found

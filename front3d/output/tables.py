@@ -1,0 +1,110 @@
+"""`points.csv` and `front.vtp`: every station with every column."""
+
+import csv
+import io
+from collections.abc import Mapping
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from front3d.output.trust import ring_J, ring_spread, rings_of
+from front3d.results import MODES, Evaluation, FrontResult
+from front3d.units import Units
+
+FIRST_COLUMNS = (
+    *("step", "front", "station", "s", "s_rel", "x", "y", "z"),
+    *("K_I", "K_II", "K_III", "G", "flag"),
+)
+"""The columns that stand first, in this order, in every table."""
+
+Column = NDArray[Any]
+
+
+def front_columns(front: FrontResult, units: Units) -> dict[str, Column]:
+    """Every column of one front by name: FIRST_COLUMNS first, (n,) each, text or numbers."""
+    n = len(front)
+    columns: dict[str, Column] = {
+        "step": np.full(n, front.step),
+        "front": np.full(n, front.front),
+        "station": np.arange(n),
+        "s": front.s,
+        "s_rel": front.s_rel,
+        **dict(zip("xyz", front.positions.T, strict=True)),
+        **dict(zip(MODES, front.K.T, strict=True)),
+        "G": front.G,
+        "flag": np.array(front.flags, dtype=str),
+    }
+    for name, result in front.methods.items():
+        columns |= {f"{mode}_{name}": result.K[:, k] for k, mode in enumerate(MODES)}
+    for name, result in front.methods.items():
+        for column, values in result.columns.items():
+            columns[f"{column}_{name}" if column in columns else column] = np.asarray(values)
+    rings = rings_of(front)
+    if rings is not None:
+        spread = ring_spread(rings)
+        columns |= {f"{mode}_ring_spread": spread[:, k] for k, mode in enumerate(MODES)}
+        columns["J_rings"] = ring_J(rings)
+    columns["psi_deg"], columns["mode_III_deg"] = front.mode_angles.T
+    for i, vector in enumerate(("e1", "e2", "e3")):
+        columns |= {f"{vector}{axis}": front.frames[:, i, j] for j, axis in enumerate("xyz")}
+    if (factor := units.K_factor) is not None:
+        columns |= {f"{mode}_MPa_sqrt_m": factor * front.K[:, k] for k, mode in enumerate(MODES)}
+    return columns
+
+
+def all_columns(evaluation: Evaluation) -> dict[str, Column]:
+    """The columns of all fronts and steps, one below the other.
+
+    A method that was applied to some fronts only has nan for the stations of the others.
+    """
+    tables = [front_columns(front, evaluation.units) for front in evaluation.fronts]
+    names = dict.fromkeys(name for table in tables for name in table)
+    return {
+        name: np.concatenate(
+            [t[name] if name in t else np.full(len(t["s"]), np.nan) for t in tables]
+        )
+        for name in _in_order(names, tables)
+    }
+
+
+def points_csv(evaluation: Evaluation) -> bytes:
+    """`points.csv`: one row per (step, front, station); numbers keep their full precision."""
+    columns = all_columns(evaluation)
+    text = io.StringIO(newline="")
+    writer = csv.writer(text, lineterminator="\n")
+    writer.writerow(columns)
+    # tolist() gives Python numbers, whose text is the shortest that reads back the same.
+    writer.writerows(zip(*(column.tolist() for column in columns.values()), strict=True))
+    return text.getvalue().encode()
+
+
+def front_vtp(evaluation: Evaluation) -> bytes:
+    """`front.vtp`: each front of each step as a polyline, with every column as point data."""
+    import pyvista as pv
+    from vtkmodules.vtkIOXML import vtkXMLPolyDataWriter
+
+    lines: list[int] = []
+    start = 0
+    for front in evaluation.fronts:
+        nodes = list(range(start, start + len(front))) + ([start] if front.closed else [])
+        lines += [len(nodes), *nodes]
+        start += len(front)
+    poly = pv.PolyData()
+    poly.points = np.concatenate([front.positions for front in evaluation.fronts])
+    poly.lines = np.array(lines)
+    for name, column in all_columns(evaluation).items():
+        poly.point_data[name] = column
+    # Into memory first: on a full disk the writer itself leaves a broken file and raises nothing.
+    writer = vtkXMLPolyDataWriter()
+    writer.SetInputData(poly)
+    writer.SetDataModeToBinary()
+    writer.WriteToOutputStringOn()
+    writer.Write()
+    return str(writer.GetOutputString()).encode()
+
+
+def _in_order(names: Mapping[str, None], tables: list[dict[str, Column]]) -> list[str]:
+    """Names in the order of the table that has most of them, then the rest."""
+    fullest = max(tables, key=len, default={})
+    return [*fullest, *(name for name in names if name not in fullest)]

@@ -1,0 +1,74 @@
+"""How far a front's figures agree among themselves: between rings, J and G, and methods."""
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from front3d.arrays import FloatArray
+from front3d.results import MODES, FrontResult, Rings
+
+
+def outer_rings(rings: Rings) -> slice:
+    """The rings that are compared: those beyond the first where there are three or more.
+
+    The first ring touches the crack-tip cells, where a mesh of any kind is at its worst; the
+    published advice is to leave the first contour out (common practice).
+    """
+    return slice(1, None) if len(rings.radii) > 2 else slice(None)
+
+
+def rings_of(front: FrontResult) -> Rings | None:
+    """The rings of the first method that has any."""
+    return next((m.rings for m in front.methods.values() if m.rings is not None), None)
+
+
+def ring_spread(rings: Rings) -> FloatArray:
+    """Largest less smallest K over the compared rings, (n, 3), in units of K."""
+    return np.ptp(rings.K[outer_rings(rings)], axis=0)
+
+
+def ring_J(rings: Rings) -> FloatArray:
+    """Mean of J over the compared rings, (n,)."""
+    return rings.J[outer_rings(rings)].mean(axis=0)
+
+
+@dataclass(frozen=True, slots=True)
+class Agreement:
+    """The trust figures of one front, each relative to its largest |K|, or largest G.
+
+    Attributes
+    ----------
+    rings : per mode the largest ring spread; None without rings
+    J_and_G : largest |J - G|; None without rings
+    methods : per further method, the largest difference of any mode from the reported K, over
+        the stations where that method gives a value
+    """
+
+    rings: dict[str, float] | None
+    J_and_G: float | None
+    methods: dict[str, float]
+
+
+def agreement(front: FrontResult) -> Agreement:
+    """Compare rings, J with G, and methods along `front`."""
+    scale = _largest(front.K)
+    rings = rings_of(front)
+    methods = {
+        name: _largest(result.K - front.K) / scale
+        for name, result in front.methods.items()
+        if not np.array_equal(result.K, front.K, equal_nan=True)
+    }
+    if rings is None:
+        return Agreement(None, None, methods)
+    spread = ring_spread(rings)
+    return Agreement(
+        {mode: _largest(spread[:, k]) / scale for k, mode in enumerate(MODES)},
+        _largest(ring_J(rings) - front.G) / _largest(front.G),
+        methods,
+    )
+
+
+def _largest(values: FloatArray) -> float:
+    """Largest magnitude among the finite values; nan if there is none."""
+    finite = np.abs(values[np.isfinite(values)])
+    return float(finite.max()) if finite.size else float("nan")

@@ -1,0 +1,102 @@
+"""Files are written whole or not at all; old pictures do not stand beside new numbers."""
+
+import errno
+import json
+import os
+from pathlib import Path
+from typing import Any, Never
+
+import pytest
+
+from front3d.output import folder as folder_module
+from front3d.output.files import WriteError, prepare_folder, write_whole
+from front3d.output.folder import write_results
+from tests.output_models import cracked_block, elliptic_front, evaluation_of
+
+FRONT = elliptic_front(1.6, 1.2, closed=False)
+SOLID = cracked_block(1.6, 1.2, n=4)
+
+
+def fail_with(number: int) -> Any:
+    def fail(*_: object) -> Never:
+        raise OSError(number, os.strerror(number))
+
+    return fail
+
+
+def test_a_full_disk_leaves_the_old_file_and_nothing_else(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    target = tmp_path / "points.csv"
+    write_whole(target, b"old")
+    monkeypatch.setattr(os, "fsync", fail_with(errno.ENOSPC))
+    with pytest.raises(WriteError, match="no space left"):
+        write_whole(target, b"new")
+    assert target.read_bytes() == b"old"
+    assert list(tmp_path.iterdir()) == [target]
+
+
+def test_an_interrupt_leaves_nothing_half_written(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    def interrupt(_: int) -> Never:
+        raise KeyboardInterrupt
+
+    monkeypatch.setattr(os, "fsync", interrupt)
+    with pytest.raises(KeyboardInterrupt):
+        write_whole(tmp_path / "points.csv", b"new")
+    assert list(tmp_path.iterdir()) == []
+
+
+def test_permissions_are_those_of_any_new_file(tmp_path: Path) -> None:
+    plain = tmp_path / "plain"
+    plain.write_bytes(b"")
+    written = write_whole(tmp_path / "written", b"")
+    assert written.stat().st_mode == plain.stat().st_mode
+
+
+def test_a_file_in_place_of_the_folder(tmp_path: Path) -> None:
+    (tmp_path / "out").write_text("a file")
+    with pytest.raises(WriteError, match="found a file, expected a folder"):
+        prepare_folder(tmp_path / "out")
+    with pytest.raises(WriteError, match="cannot be written"):
+        prepare_folder(tmp_path / "out" / "below")
+
+
+def test_a_folder_without_permission(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr(Path, "touch", fail_with(errno.EACCES))
+    with pytest.raises(WriteError, match="permission denied"):
+        prepare_folder(tmp_path)
+
+
+def test_tables_alone(tmp_path: Path) -> None:
+    written = write_results(evaluation_of(FRONT), SOLID, tmp_path / "a" / "b", pictures=False)
+    assert written.files == ("points.csv", "front.vtp", "summary.json")
+    assert {path.name for path in written.folder.iterdir()} == set(written.files)
+
+
+@pytest.fixture
+def without_graphics(monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr(folder_module, "why_no_pictures", lambda: "left out: apt-get install egl")
+    monkeypatch.setattr(folder_module, "chart_png", lambda *_: b"chart")
+
+
+@pytest.mark.usefixtures("without_graphics")
+def test_without_graphics_everything_else_is_written_and_it_is_said(tmp_path: Path) -> None:
+    written = write_results(evaluation_of(FRONT), SOLID, tmp_path)
+    assert written.files == ("points.csv", "front.vtp", "chart.png", "summary.json")
+    assert written.notes == ("left out: apt-get install egl",)
+
+
+@pytest.mark.usefixtures("without_graphics")
+def test_charts_of_an_earlier_run_do_not_stay(tmp_path: Path) -> None:
+    other = tmp_path / "chart_of_mine.png"
+    other.write_bytes(b"not ours")
+    steps = ["a/b", "A b", "a:b"]  # three names that one file system may take for one
+    fronts = [elliptic_front(1.6, 1.2, closed=False, step=step) for step in steps]
+    first = write_results(evaluation_of(*fronts), SOLID, tmp_path)
+    charts = [name for name in first.files if name.startswith("chart")]
+    assert charts == ["chart_front0_a_b.png", "chart_front0_A_b_1.png", "chart_front0_a_b_2.png"]
+    second = write_results(evaluation_of(FRONT), SOLID, tmp_path)
+    assert {path.name for path in tmp_path.iterdir()} == {*second.files, other.name}
+    assert json.loads((tmp_path / "summary.json").read_text())["files"] == list(second.files)
