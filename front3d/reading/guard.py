@@ -1,0 +1,90 @@
+"""Keeping libraries quiet: their errors become one ReadError, and nothing spills on the terminal.
+
+meshio prints and may call sys.exit; VTK writes to its own output window and log; the HDF5 and
+Exodus libraries write to file descriptor 2 behind Python's back.
+"""
+
+import os
+import re
+import warnings
+from collections.abc import Iterator
+from contextlib import ExitStack, contextmanager, redirect_stderr, redirect_stdout
+from io import StringIO
+from pathlib import Path
+
+from front3d.errors import Front3DError, ReadError
+
+_ADVICE = "check that the file was written to the end and transferred whole, or export it again"
+
+
+@contextmanager
+def python_library(path: Path, what: str) -> Iterator[None]:
+    """Turn anything that a Python library raises or prints into one ReadError about `path`."""
+    printed = StringIO()
+    try:
+        with warnings.catch_warnings(), redirect_stdout(printed), redirect_stderr(printed):
+            warnings.simplefilter("ignore")
+            yield
+    except Front3DError:
+        raise
+    except (Exception, SystemExit) as error:
+        said = " ".join(str(error).split()) if not isinstance(error, SystemExit) else ""
+        said = said or " ".join(printed.getvalue().split())
+        kind = "" if isinstance(error, SystemExit) else f" ({type(error).__name__})"
+        raise ReadError(
+            f"{path}: cannot be read as {what}: {said[:300] or 'no reason given'}{kind}; {_ADVICE}"
+        ) from error
+
+
+@contextmanager
+def vtk_library(path: Path, what: str, *, native: bool = False) -> Iterator[None]:
+    """Turn errors that VTK reports, instead of raising them, into one ReadError about `path`.
+
+    `native` silences file descriptor 2 too, for the libraries that VTK calls in turn.
+    """
+    from vtkmodules.vtkCommonCore import vtkLogger, vtkOutputWindow, vtkStringOutputWindow
+
+    window = vtkStringOutputWindow()
+    before = vtkOutputWindow.GetInstance()
+    verbosity = vtkLogger.GetCurrentVerbosityCutoff()
+    with python_library(path, what):
+        vtkOutputWindow.SetInstance(window)
+        vtkLogger.SetStderrVerbosity(vtkLogger.VERBOSITY_OFF)
+        try:
+            with ExitStack() as stack:
+                if native:
+                    stack.enter_context(_descriptor_2())
+                yield
+        finally:
+            vtkOutputWindow.SetInstance(before)
+            vtkLogger.SetStderrVerbosity(verbosity)
+        said = _vtk_errors(window.GetOutput())
+        if said:
+            raise ReadError(f"{path}: cannot be read as {what}: {said}; {_ADVICE}")
+
+
+def _vtk_errors(text: str) -> str:
+    """The first error message of a VTK log; warnings do not count."""
+    found = re.search(r"ERROR: In [^\n]*\n(.*?)(?:\n\n|\Z)", text or "", re.DOTALL)
+    if not found:
+        return ""
+    message = re.sub(r"^\w+ \((?:0x)?[0-9a-fA-F]+\): ", "", found[1].strip())
+    return " ".join(message.split())[:300] or "no reason given"
+
+
+@contextmanager
+def _descriptor_2() -> Iterator[None]:
+    """Discard what is written to file descriptor 2; VTK reports the same failures in its words."""
+    try:
+        kept = os.dup(2)
+    except OSError:  # a process without standard error has nothing to spill on
+        yield
+        return
+    nowhere = os.open(os.devnull, os.O_WRONLY)
+    os.dup2(nowhere, 2)
+    os.close(nowhere)
+    try:
+        yield
+    finally:
+        os.dup2(kept, 2)
+        os.close(kept)

@@ -1,0 +1,146 @@
+"""MSH 2.2, 4.0 and 4.1: meshio's parsers of the sections, joined by a loop of our own.
+
+meshio's own loop keeps only the last time of a field, drops the times, and trusts node data to
+stand in the order of the nodes; here every `$NodeData` section is placed by its node numbers.
+"""
+
+import struct
+from pathlib import Path
+from typing import Any, BinaryIO
+
+import numpy as np
+from numpy.typing import NDArray
+
+from front3d.errors import ReadError
+from front3d.reading.fields import DisplacementFinder
+from front3d.reading.guard import python_library
+from front3d.reading.meshio_family import mend_meshio, model
+from front3d.reading.raw import RawModel
+
+
+def read_msh(path: Path, finder: DisplacementFinder) -> RawModel:
+    """Mesh and node data of an MSH file; every (time step, time) becomes one frame."""
+    with python_library(path, "MSH"), path.open("rb") as file:
+        mend_meshio()
+        points, tags, cells, data = _sections(file)
+        if not len(points) or cells is None:
+            raise ReadError(f"{path}: found no $Nodes or no $Elements section; export the mesh")
+        rows = _rows(tags)
+        frames: dict[tuple[int, float], dict[str, NDArray[Any]]] = {}
+        for name, step, time, numbers, values in data:
+            arrays = frames.setdefault((step, time), {})
+            # A node without a value stays NaN and is refused later if a solid cell uses it.
+            array = arrays.setdefault(name, np.full((len(points), values.shape[1]), np.nan))
+            inside = (numbers >= 0) & (numbers < len(rows))
+            if not inside.all() or (rows[numbers] < 0).any():
+                raise ReadError(f"{path}: $NodeData {name!r} names a node that is not in $Nodes")
+            array[rows[numbers]] = values
+        for (_, time), arrays in sorted(frames.items(), key=lambda item: item[0]):
+            finder.offer(arrays, time)
+        return model(points, cells)
+
+
+def _sections(file: BinaryIO) -> tuple[Any, Any, Any, list[Any]]:
+    from meshio.gmsh import _gmsh22, _gmsh40, _gmsh41, common
+
+    version, ascii_, size = _header(file)
+    points: Any = np.empty((0, 3))
+    tags: Any = np.empty(0, dtype=np.int64)
+    cells: Any = None
+    data: list[Any] = []
+    physical: Any = None
+    bounding: Any = None
+    while line := file.readline():
+        section = line.decode("latin-1").strip()
+        if not section:
+            continue
+        if not section.startswith("$"):
+            raise ReadError(f"found the line {section[:40]!r}, expected the start of a section")
+        section = section[1:]
+        if section == "NodeData":
+            data.append(_node_data(file, ascii_))
+        elif section == "Entities" and version == "4.1":
+            physical, bounding = _gmsh41._read_entities(file, ascii_, size)
+        elif section == "Entities" and version == "4.0":
+            physical = _gmsh40._read_entities(file, ascii_)
+        elif section == "Nodes":
+            if version == "4.1":
+                points, tags, _ = _gmsh41._read_nodes(file, ascii_, size)
+            else:
+                reader = _gmsh40 if version == "4.0" else _gmsh22
+                points, tags = reader._read_nodes(file, ascii_)
+            # Only the parser of 4.1 counts from 0.
+            tags = np.asarray(tags).astype(np.int64) - (version != "4.1")
+        elif section == "Elements":
+            cells = _elements(file, version, ascii_, size, tags, physical, bounding)
+        else:
+            common._fast_forward_to_end_block(file, section)
+    return points, tags, cells, data
+
+
+def _elements(
+    file: BinaryIO, version: str, ascii_: bool, size: int, tags: Any, physical: Any, bounding: Any
+) -> list[tuple[str, Any]]:
+    from meshio.gmsh import _gmsh22, _gmsh40, _gmsh41
+
+    if version == "2.2":
+        cells: list[tuple[str, Any]] = []
+        _gmsh22._read_cells(file, cells, tags + 1, ascii_)
+        return cells
+    if version == "4.0":
+        blocks, _ = _gmsh40._read_elements(file, tags + 1, physical, ascii_)
+        return [(block.type, block.data) for block in blocks]
+    blocks, _, _ = _gmsh41._read_elements(file, tags, physical, bounding, ascii_, size, {})
+    return [(block.type, block.data) for block in blocks]
+
+
+def _header(file: BinaryIO) -> tuple[str, bool, int]:
+    from meshio.gmsh import common, main
+
+    line = file.readline().decode("latin-1").strip()
+    while line != "$MeshFormat":
+        if not line.startswith("$"):
+            raise ReadError("found no $MeshFormat section at the start")
+        common._fast_forward_to_end_block(file, line[1:])
+        line = file.readline().decode("latin-1").strip()
+    try:
+        version, size, ascii_ = main._read_header(file)
+    except (struct.error, IndexError, ValueError):
+        raise ReadError("the $MeshFormat section is damaged") from None
+    known = {"2": "2.2", "2.1": "2.2", "2.2": "2.2", "4.0": "4.0", "4": "4.1", "4.1": "4.1"}
+    if version not in known:
+        raise ReadError(f"found version {version}, expected 2.2 or 4.1; export it anew as one")
+    return known[version], ascii_, size
+
+
+def _node_data(file: BinaryIO, ascii_: bool) -> tuple[str, int, float, Any, Any]:
+    """Name, time step, time, node numbers from 0, and values (nodes, components)."""
+    from meshio.gmsh import common
+
+    def tag_lines() -> list[str]:
+        count = int(file.readline())
+        return [file.readline().decode("latin-1").strip() for _ in range(count)]
+
+    names, reals, integers = tag_lines(), tag_lines(), [int(v) for v in tag_lines()]
+    name = names[0].strip('"') if names else "unnamed"
+    if len(integers) < 3:
+        raise ReadError(f"$NodeData {name!r} has {len(integers)} integer tags, expected 3 or more")
+    step, width, count = integers[:3]
+    if ascii_:
+        table = np.fromfile(file, count=count * (1 + width), sep=" ").reshape(count, 1 + width)
+        numbers, values = table[:, 0].astype(np.int64), table[:, 1:]
+    else:
+        record = np.dtype([("node", "<i4"), ("values", "<f8", (width,))])
+        rows: NDArray[Any] = np.fromfile(file, count=count, dtype=record)
+        if len(rows) != count:
+            raise ReadError(f"$NodeData {name!r} holds {len(rows)} nodes, expected {count}")
+        numbers, values = rows["node"].astype(np.int64), rows["values"]
+    common._fast_forward_to_end_block(file, "NodeData")
+    return name, step, float(reals[0]) if reals else 0.0, numbers - 1, values
+
+
+def _rows(tags: NDArray[np.int64]) -> NDArray[np.int64]:
+    """Row of each node number (from 0)."""
+    rows = np.full(int(tags.max()) + 1, -1, dtype=np.int64)
+    rows[tags] = np.arange(len(tags))
+    return rows
