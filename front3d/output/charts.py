@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 
 from front3d.arrays import FloatArray
+from front3d.output.formats import place
 from front3d.output.trust import outer_rings, rings_of
 from front3d.results import CAUTION, FrontResult
 from front3d.units import Units
@@ -75,9 +76,12 @@ def _draw_modes(axes: "Axes", front: FrontResult) -> None:
         )
     flagged = np.array([bool(flag) for flag in front.flags])
     if flagged.any():
+        # On the largest mode only: three circles a station would hide the curves.
+        K = front.K[flagged]
+        largest = np.argmax(np.nan_to_num(np.abs(K)), axis=1)
         axes.plot(
-            np.tile(front.s_rel[flagged], 3),
-            front.K[flagged].T.ravel(),
+            front.s_rel[flagged],
+            K[np.arange(len(K)), largest],
             linestyle="none",
             marker="o",
             markersize=11,
@@ -106,11 +110,10 @@ def _draw_ends(axes: "Axes", front: FrontResult) -> None:
 
 
 def _label(axes: "Axes", front: FrontResult, units: Units) -> None:
-    x, y, z = front.positions[0]
     length_unit = f" {units.length}" if units.length else ""
     axes.set_xlabel(
         f"position along the front, s / L  (L = {front.length:.4g}{length_unit}; "
-        f"s = 0 at {x:.4g}, {y:.4g}, {z:.4g})",
+        f"s = 0 at {place(front.positions[0], front.length)})",
         fontsize=12.5,
     )
     axes.set_ylabel(f"K  [{mathtext(units.K_label)}]", fontsize=14)

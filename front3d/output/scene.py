@@ -172,7 +172,7 @@ def _mark_peak(
     i = peak_station(front, scale.mode)
     x, y = _pixel(front.positions[i], view)
     value = front.K[i, scale.mode]
-    text = f"peak {_NAMES[MODES[scale.mode]]} = {value:.4g}"
+    text = f"peak {_NAMES[MODES[scale.mode]]}\n{value:.4g}"
     if units.named:
         text += f" {mathtext(units.K_label)}"
     if units.K_factor is not None and (units.stress, units.length) != ("MPa", "m"):
@@ -182,7 +182,7 @@ def _mark_peak(
     ahead *= 105 / max(float(np.linalg.norm(ahead)), 1e-9)
     if abs(ahead[0]) < 60:
         ahead[0] = np.copysign(60, ahead[0])
-    words = np.clip((x, y) + ahead * 1.6, (170, 60), (_SHAPE[0] - 170, _SHAPE[1] - 60))
+    words = np.clip((x, y) + ahead * 1.6, (140, 80), (_SHAPE[0] - 140, _SHAPE[1] - 80))
     axes.annotate(
         text,
         (x, y),

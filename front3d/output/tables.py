@@ -8,7 +8,7 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from front3d.output.trust import ring_J, ring_spread, rings_of
+from front3d.output.trust import ring_spread, rings_of
 from front3d.results import MODES, Evaluation, FrontResult
 from front3d.units import Units
 
@@ -44,7 +44,6 @@ def front_columns(front: FrontResult, units: Units) -> dict[str, Column]:
     if rings is not None:
         spread = ring_spread(rings)
         columns |= {f"{mode}_ring_spread": spread[:, k] for k, mode in enumerate(MODES)}
-        columns["J_rings"] = ring_J(rings)
     columns["psi_deg"], columns["mode_III_deg"] = front.mode_angles.T
     for i, vector in enumerate(("e1", "e2", "e3")):
         columns |= {f"{vector}{axis}": front.frames[:, i, j] for j, axis in enumerate("xyz")}

@@ -27,11 +27,6 @@ def ring_spread(rings: Rings) -> FloatArray:
     return np.ptp(rings.K[outer_rings(rings)], axis=0)
 
 
-def ring_J(rings: Rings) -> FloatArray:
-    """Mean of J over the compared rings, (n,)."""
-    return rings.J[outer_rings(rings)].mean(axis=0)
-
-
 @dataclass(frozen=True, slots=True)
 class Agreement:
     """The trust figures of one front, each relative to its largest |K|, or largest G.
@@ -63,7 +58,7 @@ def agreement(front: FrontResult) -> Agreement:
     spread = ring_spread(rings)
     return Agreement(
         {mode: _largest(spread[:, k]) / scale for k, mode in enumerate(MODES)},
-        _largest(ring_J(rings) - front.G) / _largest(front.G),
+        _largest(rings.J[outer_rings(rings)].mean(axis=0) - front.G) / _largest(front.G),
         methods,
     )
 

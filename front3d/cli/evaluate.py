@@ -1,0 +1,81 @@
+"""`front3d evaluate`: K along every front of a result, written into a folder."""
+
+import argparse
+from pathlib import Path
+
+from front3d.case import Case
+from front3d.cli.flags import add_evaluation_flags, case_of
+from front3d.cli.progress import progress_bar
+from front3d.cli.words import describe_evaluation, describe_written
+from front3d.errors import CaseError
+
+NAME = "evaluate"
+HELP = "compute K_I, K_II, K_III along every crack front of a result"
+
+
+def add_flags(parser: argparse.ArgumentParser) -> None:
+    parser.add_argument("result", metavar="RESULT|CASE", help="result file, or TOML case file")
+    add_evaluation_flags(parser)
+    add_output_flags(parser)
+
+
+def add_output_flags(parser: argparse.ArgumentParser) -> None:
+    parser.add_argument(
+        "--out", type=Path, default=Path("out"), metavar="DIR", help="folder (default: %(default)s)"
+    )
+    parser.add_argument("--no-pictures", action="store_true", help="write tables only")
+
+
+def run(arguments: argparse.Namespace) -> int:
+    case = case_of(arguments)
+    if case.source is None:
+        for flag in ("young", "poisson"):
+            if getattr(case, flag) is None:
+                arguments.parser.error(
+                    f"--{flag} is missing; a result file does not hold the elastic constants"
+                )
+    _check_constants(arguments)
+    evaluate_case(case, arguments.out, pictures=not arguments.no_pictures)
+    return 0
+
+
+def _check_constants(arguments: argparse.Namespace) -> None:
+    """A constant out of range is a wrong call when a flag gave it."""
+    from front3d.solid import Material
+
+    try:
+        Material(
+            1.0 if arguments.young is None else arguments.young,
+            0.0 if arguments.poisson is None else arguments.poisson,
+        )
+    except CaseError as error:
+        arguments.parser.error(str(error))
+
+
+def evaluate_case(case: Case, out: Path, *, pictures: bool) -> None:
+    """Read, evaluate, write, and say what was found."""
+    if case.result is None or case.young is None or case.poisson is None:
+        raise CaseError(
+            f"{case.source}: found no elastic constants, expected young and poisson in the section "
+            "[material], or --young and --poisson"
+        )
+    from front3d.pipeline import evaluate_solid
+    from front3d.output.files import prepare_folder
+    from front3d.output.folder import write_results
+    from front3d.reading import load
+    from front3d.solid import Material
+
+    material = Material(case.young, case.poisson)
+    prepare_folder(out)
+    with progress_bar() as progress:
+        if progress is not None:
+            progress(f"reading {case.result.name}", 0.0)
+        solid = load(case.result, displacement=case.displacement)
+        evaluation = evaluate_solid(
+            solid, material, case.options, case.units, progress
+        )
+        inputs = [case.result, *([case.source] if case.source else [])]
+        written = write_results(
+            evaluation, solid, out, inputs=inputs, pictures=pictures, progress=progress
+        )
+    print("\n".join([*describe_evaluation(evaluation), "", *describe_written(written)]))

@@ -1,0 +1,122 @@
+"""Flags shared by commands, what their values mean, and how they join the case file."""
+
+import argparse
+import re
+from collections.abc import Sequence
+from pathlib import Path
+
+from front3d.case import Case, read_case
+from front3d.errors import CaseError
+from front3d.options import Plane, Vector
+
+
+def join_negative_values(words: Sequence[str]) -> list[str]:
+    """`--up -1,0,0` as `--up=-1,0,0`: argparse takes the value for a flag otherwise."""
+    joined: list[str] = []
+    for word in words:
+        if joined and re.match(r"-[\d.]", word) and re.fullmatch(r"--[a-z][\w-]*", joined[-1]):
+            joined[-1] += f"={word}"
+        else:
+            joined.append(word)
+    return joined
+
+
+def plane(text: str) -> Plane:
+    try:
+        return Plane.parse(text)
+    except CaseError as error:
+        raise argparse.ArgumentTypeError(str(error)) from None
+
+
+def numbers(text: str) -> tuple[float, ...]:
+    try:
+        return tuple(float(part) for part in text.split(","))
+    except ValueError:
+        raise argparse.ArgumentTypeError(
+            f"found {text!r}, expected numbers with commas between them"
+        ) from None
+
+
+def vector(text: str) -> Vector:
+    parts = numbers(text)
+    if len(parts) != 3:
+        raise argparse.ArgumentTypeError(f"found {text!r}, expected three numbers such as 0,0,1")
+    x, y, z = parts
+    return (x, y, z)
+
+
+def add_crack_flags(parser: argparse.ArgumentParser) -> None:
+    """What decides which crack is found."""
+    parser.add_argument(
+        "--displacement", metavar="NAME", help="point array of the displacement, if not found"
+    )
+    parser.add_argument(
+        "--crack-plane",
+        type=plane,
+        metavar="PLANE",
+        help="symmetry plane that holds the crack of a half model, e.g. z=0",
+    )
+    parser.add_argument(
+        "--up", type=vector, metavar="X,Y,Z", help="direction from lower to upper crack face"
+    )
+    parser.add_argument(
+        "--unopened",
+        action="store_true",
+        default=None,
+        help="take coincident faces that never part for a crack, too",
+    )
+
+
+def add_evaluation_flags(parser: argparse.ArgumentParser) -> None:
+    """What decides how K is computed."""
+    parser.add_argument("--young", type=float, metavar="E", help="Young's modulus")
+    parser.add_argument("--poisson", type=float, metavar="NU", help="Poisson's ratio")
+    add_crack_flags(parser)
+    parser.add_argument(
+        "--face-pressure", type=float, metavar="P", help="pressure on the crack faces, + opens"
+    )
+    parser.add_argument(
+        "--rings", type=numbers, metavar="R1,R2,..", help="radii of the integration domains"
+    )
+    parser.add_argument(
+        "--hat", type=float, metavar="CELLS", help="half-width of a station's weight, in cells"
+    )
+    parser.add_argument(
+        "--step",
+        action="append",
+        dest="steps",
+        metavar="NAME",
+        help="evaluate this step only (may be repeated)",
+    )
+    parser.add_argument("--length-unit", dest="length", metavar="UNIT", help="e.g. mm")
+    parser.add_argument("--stress-unit", dest="stress", metavar="UNIT", help="e.g. MPa")
+
+
+def case_of(arguments: argparse.Namespace) -> Case:
+    """The case: from the file named on the command line, if it is one, under the flags.
+
+    A value out of range is a wrong call (exit 2) when a flag gave it, and a wrong input
+    (CaseError) when the case file did.
+    """
+    said = {
+        name: value
+        for name in Case.__dataclass_fields__
+        if name not in ("result", "source")
+        and (value := getattr(arguments, name, None)) is not None
+    }
+    if "steps" in said:
+        said["steps"] = tuple(said["steps"])
+    flags = Case(**said)
+    try:
+        _ = flags.options, flags.units
+    except CaseError as error:
+        arguments.parser.error(str(error))
+    path = Path(arguments.result)
+    if path.suffix.lower() == ".toml":
+        case = read_case(path).overridden_by(flags)
+        try:
+            _ = case.options, case.units
+        except CaseError as error:
+            raise CaseError(f"{path}: {error}") from None
+        return case
+    return Case(result=path).overridden_by(flags)

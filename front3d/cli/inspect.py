@@ -1,0 +1,61 @@
+"""`front3d inspect`: what a result holds, and which cracks are found in it."""
+
+import argparse
+from collections import Counter
+from collections.abc import Mapping, Sequence
+from typing import TYPE_CHECKING, Any
+
+from front3d.cli.flags import add_crack_flags, case_of
+from front3d.cli.words import number, table
+
+if TYPE_CHECKING:
+    from front3d.solid import Solid
+
+NAME = "inspect"
+HELP = "say what a result holds, and which crack fronts are found in it"
+
+
+def add_flags(parser: argparse.ArgumentParser) -> None:
+    parser.add_argument("result", metavar="RESULT|CASE", help="result file, or TOML case file")
+    add_crack_flags(parser)
+
+
+def run(arguments: argparse.Namespace) -> int:
+    case = case_of(arguments)
+    assert case.result is not None
+    from front3d.crack import describe
+    from front3d.reading import load
+
+    solid = load(case.result, displacement=case.displacement, need_displacement=False)
+    print("\n".join(describe_solid(solid)), flush=True)
+    print("\n".join(describe_cracks(describe(solid, case.options))))
+    return 0
+
+
+def describe_solid(solid: "Solid") -> list[str]:
+    """Points, cells, extent, steps and notes, one line each."""
+    kinds: Counter[str] = Counter()
+    for block in solid.blocks:
+        kinds[block.kind] += len(block)
+    low, high = solid.points.min(axis=0), solid.points.max(axis=0)
+    extent = ", ".join(
+        f"{axis} {number(a)} to {number(b)}" for axis, a, b in zip("xyz", low, high, strict=True)
+    )
+    lines = [
+        str(solid.source),
+        f"  points  {len(solid.points)}",
+        f"  cells   {solid.n_cells} ({', '.join(f'{n} {kind}' for kind, n in kinds.items())})",
+        f"  extent  {extent}",
+        f"  steps   {', '.join(step.name for step in solid.steps) or 'no displacement found'}",
+    ]
+    return [*lines, *(f"  note    {note}" for note in solid.notes)]
+
+
+def describe_cracks(found: Mapping[str, Sequence[Mapping[str, Any]]]) -> list[str]:
+    """A table per kind of thing found (patches of crack faces, fronts), a row for each."""
+    lines: list[str] = []
+    for what, rows in found.items():
+        lines += ["", f"{what.replace('_', ' ')}: {len(rows) or 'none'}"]
+        if rows:
+            lines += table([{"no.": i, **row} for i, row in enumerate(rows)])
+    return lines

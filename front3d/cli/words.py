@@ -1,0 +1,109 @@
+"""What the commands say about an evaluation, in a few lines."""
+
+from collections.abc import Mapping, Sequence
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+if TYPE_CHECKING:
+    from front3d.output.folder import Written
+    from front3d.results import Evaluation, FrontResult
+
+
+def number(value: float, digits: int = 4) -> str:
+    return f"{value:.{digits}g}"
+
+
+def percent(value: float) -> str:
+    return f"{100 * value:.2g} %"
+
+
+def table(rows: Sequence[Mapping[str, Any]]) -> list[str]:
+    """Rows as aligned text under their column names."""
+    names = list(dict.fromkeys(name for row in rows for name in row))
+    lines = [[name.replace("_", " ") for name in names]]
+    lines += [[_cell(row.get(name, "")) for name in names] for row in rows]
+    widths = [max(len(line[k]) for line in lines) for k in range(len(names))]
+    return [
+        "  " + "  ".join(text.ljust(w) for text, w in zip(line, widths, strict=True)).rstrip()
+        for line in lines
+    ]
+
+
+def _cell(value: Any) -> str:
+    if isinstance(value, bool):
+        return "yes" if value else "no"
+    if isinstance(value, float):
+        return number(value)
+    if isinstance(value, list | tuple):
+        return ", ".join(_cell(item) for item in value)
+    return str(value)
+
+
+def describe_evaluation(evaluation: "Evaluation") -> list[str]:
+    """Largest K of each mode with its place, agreement and warnings of each front; the caution."""
+    from front3d.results import CAUTION
+
+    material, units = evaluation.material, evaluation.units
+    unit = f" {units.stress}" if units.stress else ""
+    lines = [
+        f"{evaluation.source}: E = {material.young:g}{unit}, nu = {material.poisson:g}; "
+        f"K in {units.K_label}"
+    ]
+    for front in evaluation.fronts:
+        lines += ["", *_describe_front(front, evaluation)]
+    if evaluation.warnings:
+        lines += ["", *(f"warning: {warning}" for warning in evaluation.warnings)]
+    return [*lines, "", CAUTION]
+
+
+def _describe_front(front: "FrontResult", evaluation: "Evaluation") -> list[str]:
+    import numpy as np
+
+    from front3d.output.formats import place
+    from front3d.output.trust import agreement
+    from front3d.results import MODES
+
+    units = evaluation.units
+    shape = "closed" if front.closed else f"from {front.ends[0]} to {front.ends[1]}"
+    length = f"{number(front.length)} {units.length}".rstrip()
+    lines = [
+        f"step {front.step}, front {front.front}: {shape}, length {length}, {len(front)} stations"
+    ]
+    for k, mode in enumerate(MODES):
+        values = front.K[:, k]
+        if not np.isfinite(values).any():
+            lines.append(f"  {mode:<6}no value at any station")
+            continue
+        i = int(np.nanargmax(np.abs(values)))
+        other = ""
+        if units.K_factor is not None:
+            other = f" ({number(values[i] * units.K_factor)} MPa sqrt(m))"
+        flag = f" [{front.flags[i]}]" if front.flags[i] else ""
+        lines.append(
+            f"  {mode:<6}largest {number(values[i])}{other} at s/L {front.s_rel[i]:.3f}, "
+            f"({place(front.positions[i], front.length)}){flag}"
+        )
+    trust = agreement(front)
+    said = []
+    if trust.rings is not None and trust.J_and_G is not None:
+        said.append(f"rings agree within {percent(max(trust.rings.values()))} of the largest K")
+        said.append(f"J and G within {percent(trust.J_and_G)} of the largest G")
+    said += [f"{name} within {percent(value)}" for name, value in trust.methods.items()]
+    if said:
+        lines.append(f"  {'; '.join(said)}")
+    flagged = sum(bool(flag) for flag in front.flags)
+    if flagged:
+        lines.append(f"  {flagged} of {len(front)} stations are flagged, see points.csv")
+    return [*lines, *(f"  warning: {warning}" for warning in front.warnings)]
+
+
+def describe_written(written: "Written") -> list[str]:
+    lines = [f"note: {note}" for note in written.notes]
+    return [*lines, f"written to {_short(written.folder)}: {', '.join(written.files)}"]
+
+
+def _short(path: Path) -> str:
+    try:
+        return str(path.resolve().relative_to(Path.cwd()))
+    except (ValueError, OSError):
+        return str(path)
