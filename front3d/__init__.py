@@ -1,3 +1,66 @@
-"""front3d: stress intensity factors along three-dimensional crack fronts."""
+"""front3d: stress intensity factors along three-dimensional crack fronts.
+
+    solid = front3d.load("result.vtu")
+    result = front3d.evaluate(solid, young=200e3, poisson=0.3)
+    result.fronts[0].K
+
+Imports are deferred until a function is called, so that `import front3d` costs nothing.
+"""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING, Any
+
+if TYPE_CHECKING:
+    from pathlib import Path
+
+    from front3d.crack import CrackModel
+    from front3d.pipeline import Progress
+    from front3d.results import Evaluation
+    from front3d.solid import Solid
+    from front3d.units import Units
 
 __version__ = "0.1.0"
+
+
+def load(path: str | Path, *, displacement: str | None = None) -> Solid:
+    """Read a finite-element result; see `front3d.reading.load`."""
+    from front3d.reading import load
+
+    return load(path, displacement=displacement)
+
+
+def find_fronts(solid: Solid, **options: Any) -> CrackModel:
+    """The cracks and fronts of a solid, found without being told where they are.
+
+    Keyword arguments are the fields of `front3d.options.Options`.
+    """
+    from front3d.crack import find_cracks
+    from front3d.options import Options
+
+    return find_cracks(solid, Options(**options))
+
+
+def evaluate(
+    solid: Solid,
+    *,
+    young: float,
+    poisson: float,
+    units: Units | None = None,
+    progress: Progress | None = None,
+    **options: Any,
+) -> Evaluation:
+    """K_I, K_II, K_III at every station of every front of a solid, in every step.
+
+    Parameters
+    ----------
+    young, poisson : elastic constants, Young's modulus in the stress unit of the model
+    units : names of the model's units, for reports
+    progress : called with a stage and the fraction done
+    options : fields of `front3d.options.Options`, such as face_pressure=10.0
+    """
+    from front3d.pipeline import evaluate_solid
+    from front3d.options import Options
+    from front3d.solid import Material
+
+    return evaluate_solid(solid, Material(young, poisson), Options(**options), units, progress)

@@ -1,0 +1,84 @@
+"""What the ends of an open front lie on: a free surface, or a symmetry plane of the model."""
+
+import dataclasses
+
+import numpy as np
+
+from front3d.arrays import BoolArray, FloatArray, IntArray
+from front3d.crack.coincidence import Coincidence
+from front3d.crack.facetable import FaceTable, outer_faces, set_keys
+from front3d.crack.front import FREE_SURFACE, SYMMETRY_PLANE, Front
+from front3d.crack.patches import Patch, marked
+from front3d.solid import Solid
+
+_PLANE_TOLERANCE = 1e-3
+"""Largest distance from a common plane, in sizes of the neighbourhood, of a symmetry plane."""
+
+_STILL = 1e-5
+"""Largest normal displacement, in local spreads of displacement, of a symmetry plane."""
+
+
+def classify_ends(solid: Solid, front: Front, patch: Patch, same: Coincidence) -> Front:
+    """The front with its ends named."""
+    if front.closed:
+        return front
+    ends = tuple(
+        SYMMETRY_PLANE if _on_symmetry_plane(solid, front, node, patch, same) else FREE_SURFACE
+        for node in (front.edges[0, 0], front.edges[-1, 1])
+    )
+    return dataclasses.replace(front, ends=ends)
+
+
+def end_faces(solid: Solid, front: Front, node: int, patch: Patch, same: Coincidence) -> FaceTable:
+    """Outer faces at an end node, without crack faces and the plane of a half model."""
+    here = marked(len(solid.points), np.flatnonzero(same.entity == same.entity[node]))
+    faces = outer_faces(solid, same.entity, here)
+    keep = ~_belongs(faces, patch.upper, same)
+    if patch.lower is not None:
+        keep &= ~_belongs(faces, patch.lower, same)
+    else:  # the ligament's faces lie in the crack plane
+        s = front.corner_s[0] if node == front.edges[0, 0] else front.corner_s[-1]
+        _, frame, _ = front.curve.frames(np.array([s]))
+        area = faces.area_vectors(solid.points)
+        across = np.abs(area @ frame[0, 1]) / np.linalg.norm(area, axis=1)
+        keep &= across < 0.99
+    return faces[keep]
+
+
+def _belongs(faces: FaceTable, others: FaceTable, same: Coincidence) -> BoolArray:
+    keys = set_keys(same.entity[np.concatenate([faces.nodes, others.nodes])])
+    return np.isin(keys[: len(faces)], keys[len(faces) :])
+
+
+def _on_symmetry_plane(
+    solid: Solid, front: Front, node: int, patch: Patch, same: Coincidence
+) -> bool:
+    """Whether the faces around an end node are flat and never move along their normal.
+
+    A rigid translation along the normal is allowed for: what counts is that all the nodes there
+    move by the same amount while the neighbourhood deforms.
+    """
+    faces = end_faces(solid, front, node, patch, same)
+    if not len(faces) or not solid.steps:
+        return False
+    area = faces.area_vectors(solid.points)
+    normal = area.sum(axis=0)
+    normal /= np.linalg.norm(normal)
+    nodes = np.unique(faces.nodes)
+    x = solid.points[nodes]
+    size = float(np.ptp(x, axis=0).max())
+    if float(np.abs((x - x[0]) @ normal).max()) > _PLANE_TOLERANCE * size:
+        return False
+    around = np.unique(
+        np.concatenate(
+            [solid.blocks[b].nodes[c] for b, c in zip(faces.block, faces.cell, strict=True)]
+        )
+    )
+    return all(_still(step.displacement, nodes, around, normal) for step in solid.steps)
+
+
+def _still(displacement: FloatArray, nodes: IntArray, around: IntArray, normal: FloatArray) -> bool:
+    """Whether nodes move alike along a normal, measured by how much their surroundings deform."""
+    across = displacement[nodes] @ normal
+    spread = float(np.ptp(displacement[around], axis=0).max())
+    return bool(np.ptp(across) <= _STILL * spread)

@@ -1,0 +1,74 @@
+"""What a reader must know about single stations, and about a front as a whole."""
+
+from collections.abc import Mapping
+
+import numpy as np
+
+from front3d.crack.front import FREE_SURFACE, Front
+from front3d.results import MethodResult, energy_release_rate
+from front3d.solid import Material
+
+RING_TOLERANCE = 0.02
+"""Spread of K over the rings beyond the first, in parts of the front's largest K, above which a
+station is flagged."""
+
+J_TOLERANCE = 0.03
+"""Difference of J and G, in parts of the front's largest G, above which a station is flagged."""
+
+SURFACE_LAYER = 1
+"""Stations next to a free surface within which the square-root field does not hold strictly
+(Benthem 1977)."""
+
+
+def station_flags(front: Front, methods: Mapping[str, MethodResult]) -> tuple[str, ...]:
+    """One text per station, parts joined by "; ", empty where nothing is to be said."""
+    interaction = methods["interaction"]
+    K = interaction.K
+    n = len(K)
+    parts: list[list[str]] = [[] for _ in range(n)]
+    for where, end in zip((0, n - 1), front.ends, strict=False):
+        if end == FREE_SURFACE:
+            parts[where].append("free surface")
+    largest = float(np.abs(K).max())
+    for i in np.flatnonzero(K[:, 0] < -1e-3 * largest):
+        parts[i].append("faces overlap (K_I < 0)")
+    spread = interaction.columns["ring_spread"]
+    for i in np.flatnonzero(spread > RING_TOLERANCE * largest):
+        parts[i].append("rings disagree")
+    return tuple("; ".join(p) for p in parts)
+
+
+def front_warnings(
+    front: Front, methods: Mapping[str, MethodResult], material: Material
+) -> tuple[str, ...]:
+    """Sentences about the whole front."""
+    interaction = methods["interaction"]
+    K = interaction.K
+    warnings = []
+    largest = float(np.abs(K).max())
+    overlap = int((K[:, 0] < -1e-3 * largest).sum())
+    if overlap:
+        warnings.append(
+            f"K_I is negative at {overlap} of {len(K)} stations: the crack faces overlap there, "
+            "and contact would change all three modes"
+        )
+    inside = np.ones(len(K), bool)
+    if not front.closed:
+        inside[[0, -1]] = False
+    G = energy_release_rate(K, material)
+    J = interaction.columns["J_interaction"]
+    apart = np.abs(J - G)[inside] > J_TOLERANCE * G.max()
+    if apart.any():
+        worst = float(np.abs(J - G)[inside].max() / G.max())
+        warnings.append(
+            f"J and G from K differ by up to {100 * worst:.1f} % of the largest G at "
+            f"{int(apart.sum())} stations: the elastic constants may not be those of the "
+            "analysis, or the mesh is too coarse around the front"
+        )
+    spread = interaction.columns["ring_spread"]
+    if largest > 0 and float(spread[inside].max(initial=0.0)) > RING_TOLERANCE * largest:
+        warnings.append(
+            f"K differs between rings by up to {100 * float(spread[inside].max()) / largest:.1f} "
+            "% of the largest K: refine the mesh around the front or choose other radii"
+        )
+    return tuple(warnings)

@@ -1,0 +1,16 @@
+"""The methods by name: each takes a front and gives K at its stations, one result per step.
+
+A new method is one file with an `evaluate` of this signature, and one line here.
+"""
+
+from collections.abc import Callable
+
+from front3d.methods import interaction
+from front3d.methods.context import FrontContext
+from front3d.results import MethodResult
+
+Method = Callable[[FrontContext], list[MethodResult]]
+
+METHODS: dict[str, Method] = {"interaction": interaction.evaluate}
+
+__all__ = ["METHODS", "FrontContext", "Method"]

@@ -1,0 +1,140 @@
+"""The weight of each station along the front.
+
+A hat is a tent over the front's edges, so it follows the local cell size.  At a symmetry plane the
+mirrored half completes it: K_I and K_II go on evenly beyond the plane, K_III oddly.  At a free
+surface nothing lies beyond: there the cut tent is tilted so that it still gives back a K that
+varies linearly along the front exactly, and not its value further inside.
+"""
+
+from dataclasses import dataclass
+
+import numpy as np
+from scipy.sparse import coo_array, csr_array
+
+from front3d.arrays import FloatArray, IntArray
+from front3d.crack.front import FREE_SURFACE, SYMMETRY_PLANE, Front
+from front3d.solid import Solid
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Hats:
+    """Normalised hats of all stations of a front.
+
+    Attributes
+    ----------
+    front : the front
+    width : half-width in edges
+    level, tilt : (n_stations,) a station's weight at s is (level + tilt (s - s_a)) tent(s): one
+        over the area it sweeps per unit advance, and the tilt at a free end
+    """
+
+    front: Front
+    width: float
+    level: FloatArray
+    tilt: FloatArray
+
+    def weights(self, s: FloatArray, odd: bool = False) -> csr_array:
+        """(len(s), n_stations) weights at arc lengths s; `odd` for K_III."""
+        tents = _tents(self.front, s, self.width, -1.0 if odd else 1.0)
+        inside = np.clip(s, 0.0, self.front.length)
+        gap = inside[tents.row] - self.front.corner_s[tents.col]
+        scaled = tents.data * (self.level[tents.col] + self.tilt[tents.col] * gap)
+        return csr_array((scaled, (tents.row, tents.col)), shape=tents.shape)
+
+
+def build_hats(solid: Solid, front: Front, width: float) -> Hats:
+    """Hats of a half-width in edges, one per corner node."""
+    n = len(front.corners)
+    width = min(width, n / 2 if front.closed else float(n - 1))
+    s, area = swept_areas(solid, front)
+    tents = _tents(front, s, width, 1.0)
+    gap = s[tents.row] - front.corner_s[tents.col]
+    weight = tents.data * area[tents.row]
+    moments = [np.bincount(tents.col, weight * gap**power, minlength=n) for power in range(3)]
+    level, tilt = 1.0 / moments[0], np.zeros(n)
+    cut = _cut_stations(front, width)
+    determinant = moments[0] * moments[2] - moments[1] ** 2
+    level[cut] = (moments[2] / determinant)[cut]
+    tilt[cut] = (-moments[1] / determinant)[cut]
+    return Hats(front, width, level, tilt)
+
+
+def default_width(front: Front, touching_families: frozenset[str]) -> float:
+    """One edge where bricks and wedges surround the front, four where tetrahedra do.
+
+    On a structured ring the integral does not scatter and a wider hat would only blunt K; on
+    tetrahedra the scatter falls as the hat widens.  Never more than a quarter of the front.
+    """
+    structured = touching_families <= {"hexahedron", "wedge"}
+    return 1.0 if structured else float(np.clip(len(front.edges) / 4, 1.0, 4.0))
+
+
+def _cut_stations(front: Front, width: float) -> IntArray:
+    """Stations whose tents reach over a free end."""
+    stations = np.arange(len(front.corners))
+    cut = np.zeros(len(stations), bool)
+    if front.ends and front.ends[0] == FREE_SURFACE:
+        cut |= stations < width
+    if front.ends and front.ends[1] == FREE_SURFACE:
+        cut |= stations > len(stations) - 1 - width
+    return np.flatnonzero(cut)
+
+
+def _tents(front: Front, s: FloatArray, width: float, parity: float) -> coo_array:
+    """(len(s), n_stations) tents at arc lengths s, mirrored at symmetry planes."""
+    n = len(front.corners)
+    at = front.cell_coordinate(s)
+    rows, columns, values = [], [], []
+    images = [(at, 1.0)]
+    if front.ends and front.ends[0] == SYMMETRY_PLANE:
+        images.append((-at, parity))
+    if front.ends and front.ends[1] == SYMMETRY_PLANE:
+        images.append((2.0 * (n - 1) - at, parity))
+    reach = int(np.ceil(width)) + 1
+    for image, sign in images:
+        base = np.floor(image).astype(np.int64)
+        for shift in range(-reach, reach + 1):
+            station = base + shift
+            value = 1.0 - np.abs(image - station) / width
+            if front.closed:
+                station %= n
+            hit = np.flatnonzero((value > 0) & (station >= 0) & (station < n))
+            rows.append(hit)
+            columns.append(station[hit])
+            values.append(sign * value[hit])
+    triplets = (np.concatenate(rows), np.concatenate(columns))
+    return coo_array((np.concatenate(values), triplets), shape=(len(s), n))
+
+
+def swept_areas(solid: Solid, front: Front) -> tuple[FloatArray, FloatArray]:
+    """Arc length and area of every node of every front edge, flat: edge by edge.
+
+    The area is what the node sweeps when it alone advances by one along its e1 and the cells
+    follow: - int phi_n (e1_n x dX) . e2.  Taken over the edges as the mesh has them, straight or
+    curved, because that is the area the integral's q sweeps.
+    """
+    x, w = np.polynomial.legendre.leggauss(4)
+    curve, edges = front.curve, front.edges
+    quadratic = edges[:, 2] >= 0
+    places, areas = [], []
+    for chosen, columns in ((~quadratic, [0, 1]), (quadratic, [0, 1, 2])):
+        group = edges[chosen][:, columns]
+        if not len(group):
+            continue
+        if len(columns) == 2:
+            shape = np.stack([(1 - x) / 2, (1 + x) / 2], axis=1)
+            slope = np.stack([np.full_like(x, -0.5), np.full_like(x, 0.5)], axis=1)
+        else:
+            shape = np.stack([x * (x - 1) / 2, x * (x + 1) / 2, 1 - x * x], axis=1)
+            slope = np.stack([x - 0.5, x + 0.5, -2 * x], axis=1)
+        points = solid.points[group]
+        seed = np.repeat(front.corner_s[: len(edges)][chosen], len(columns))
+        s, _ = curve.project(points.reshape(-1, 3), seed)
+        _, frame, _ = curve.frames(s)
+        frame = frame.reshape(*group.shape, 3, 3)
+        tangent = np.einsum("gn,enk->egk", slope, points - points[:, :1])
+        e2 = np.einsum("gn,enk->egk", shape, frame[:, :, 1])
+        sweep = np.cross(frame[:, None, :, 0], tangent[:, :, None])
+        places.append(s)
+        areas.append(-np.einsum("egnk,egk,gn,g->en", sweep, e2, shape, w).ravel())
+    return np.concatenate(places), np.concatenate(areas)

@@ -1,0 +1,116 @@
+"""The pipeline from a solid to K along its fronts: order of steps, no mathematics."""
+
+from collections.abc import Callable, Mapping
+from dataclasses import asdict
+
+import numpy as np
+
+from front3d.crack import CrackModel, Front, find_cracks
+from front3d.errors import CaseError
+from front3d.flags import front_warnings, station_flags
+from front3d.methods import METHODS, FrontContext
+from front3d.options import Options
+from front3d.results import Evaluation, FrontResult, MethodResult, energy_release_rate
+from front3d.solid import Material, Solid, Step
+from front3d.units import Units
+
+Progress = Callable[[str, float], None]
+
+
+def evaluate_solid(
+    solid: Solid,
+    material: Material,
+    options: Options | None = None,
+    units: Units | None = None,
+    progress: Progress | None = None,
+) -> Evaluation:
+    """K_I, K_II and K_III at every station of every front, in every step.
+
+    Parameters
+    ----------
+    solid : the result, with at least one step
+    material : elastic constants in the units of the model
+    options : choices; the defaults suit most results
+    units : names of the model's units, for reports
+    progress : called with a stage and the fraction done
+
+    Raises
+    ------
+    CaseError if the steps asked for are not there; CrackError, MeshError, MethodError where the
+    solid has no crack that can be evaluated.
+    """
+    options, units = options or Options(), units or Units()
+    report = progress or _silent
+    steps = _chosen_steps(solid, options)
+    report("finding the crack", 0.0)
+    model = find_cracks(solid, options)
+    displacement = np.stack([step.displacement for step in steps])
+    results: list[FrontResult] = []
+    number = 0
+    for patch, fronts in zip(model.patches, model.fronts, strict=True):
+        for front in fronts:
+            report(f"front {number + 1} of {model.n_fronts}", number / model.n_fronts)
+            context = FrontContext(solid, model, patch, front, material, options, displacement)
+            by_method = {name: method(context) for name, method in METHODS.items()}
+            for index, step in enumerate(steps):
+                methods = {name: found[index] for name, found in by_method.items()}
+                results.append(_front_result(step, number, front, methods, material))
+            number += 1
+    report("done", 1.0)
+    return Evaluation(
+        solid.source, material, units, tuple(results), asdict(options), _warnings(solid, model)
+    )
+
+
+def _silent(stage: str, fraction: float) -> None:
+    """Progress nobody asked for."""
+
+
+def _chosen_steps(solid: Solid, options: Options) -> list[Step]:
+    if not solid.steps:
+        raise CaseError(f"{solid.source}: holds no displacements, expected at least one step")
+    if options.steps is None:
+        return list(solid.steps)
+    by_name = {step.name: step for step in solid.steps}
+    missing = [name for name in options.steps if name not in by_name]
+    if missing:
+        raise CaseError(
+            f"{solid.source}: found no step {missing[0]!r}; the file has {', '.join(by_name)}"
+        )
+    return [by_name[name] for name in options.steps]
+
+
+def _front_result(
+    step: Step,
+    number: int,
+    front: Front,
+    methods: Mapping[str, MethodResult],
+    material: Material,
+) -> FrontResult:
+    positions, frames, _ = front.curve.frames(front.corner_s)
+    K = methods["interaction"].K
+    return FrontResult(
+        step=step.name,
+        front=number,
+        closed=front.closed,
+        ends=front.ends,
+        length=front.length,
+        s=front.corner_s,
+        positions=positions,
+        frames=frames,
+        K=K,
+        G=energy_release_rate(K, material),
+        flags=station_flags(front, methods),
+        methods=methods,
+        warnings=front_warnings(front, methods, material),
+    )
+
+
+def _warnings(solid: Solid, model: CrackModel) -> tuple[str, ...]:
+    notes = list(solid.notes)
+    for patch in model.unopened:
+        notes.append(
+            f"{len(patch.upper)} pairs of coincident faces whose sides never part were left alone "
+            "(--unopened evaluates them)"
+        )
+    return tuple(notes)
