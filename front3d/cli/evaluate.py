@@ -2,12 +2,17 @@
 
 import argparse
 from pathlib import Path
+from typing import TYPE_CHECKING
 
 from front3d.case import Case
 from front3d.cli.flags import add_evaluation_flags, case_of
 from front3d.cli.progress import progress_bar
 from front3d.cli.words import describe_evaluation, describe_written
 from front3d.errors import CaseError
+
+if TYPE_CHECKING:
+    from front3d.output.folder import Written
+    from front3d.results import Evaluation
 
 NAME = "evaluate"
 HELP = "compute K_I, K_II, K_III along every crack front of a result"
@@ -35,7 +40,8 @@ def run(arguments: argparse.Namespace) -> int:
                     f"--{flag} is missing; a result file does not hold the elastic constants"
                 )
     _check_constants(arguments)
-    evaluate_case(case, arguments.out, pictures=not arguments.no_pictures)
+    evaluation, written = evaluate_case(case, arguments.out, pictures=not arguments.no_pictures)
+    print("\n".join([*describe_evaluation(evaluation), "", *describe_written(written)]))
     return 0
 
 
@@ -52,16 +58,16 @@ def _check_constants(arguments: argparse.Namespace) -> None:
         arguments.parser.error(str(error))
 
 
-def evaluate_case(case: Case, out: Path, *, pictures: bool) -> None:
-    """Read, evaluate, write, and say what was found."""
+def evaluate_case(case: Case, out: Path, *, pictures: bool) -> "tuple[Evaluation, Written]":
+    """Read, evaluate and write what was found into the folder `out`."""
     if case.result is None or case.young is None or case.poisson is None:
         raise CaseError(
             f"{case.source}: found no elastic constants, expected young and poisson in the section "
             "[material], or --young and --poisson"
         )
-    from front3d.pipeline import evaluate_solid
     from front3d.output.files import prepare_folder
     from front3d.output.folder import write_results
+    from front3d.pipeline import evaluate_solid
     from front3d.reading import load
     from front3d.solid import Material
 
@@ -71,11 +77,9 @@ def evaluate_case(case: Case, out: Path, *, pictures: bool) -> None:
         if progress is not None:
             progress(f"reading {case.result.name}", 0.0)
         solid = load(case.result, displacement=case.displacement)
-        evaluation = evaluate_solid(
-            solid, material, case.options, case.units, progress
-        )
+        evaluation = evaluate_solid(solid, material, case.options, case.units, progress)
         inputs = [case.result, *([case.source] if case.source else [])]
         written = write_results(
             evaluation, solid, out, inputs=inputs, pictures=pictures, progress=progress
         )
-    print("\n".join([*describe_evaluation(evaluation), "", *describe_written(written)]))
+    return evaluation, written
