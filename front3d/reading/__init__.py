@@ -11,7 +11,7 @@ import numpy as np
 from front3d.errors import Front3DError, ReadError
 from front3d.reading.fields import DisplacementFinder
 from front3d.reading.files import FORMATS, identify
-from front3d.reading.normalise import normalise
+from front3d.reading.normalise import normalise_nodes
 from front3d.reading.raw import RawModel
 from front3d.solid import CellBlock, Solid, Step
 
@@ -77,7 +77,7 @@ def _solid(path: Path, raw: RawModel, finder: DisplacementFinder, need: bool) ->
     spacing = raw.point_spacing(used)
     blocks = []
     for block in raw.blocks:
-        nodes, mended = normalise(points, block, spacing)
+        nodes, mended = normalise_nodes(points, block, spacing)
         blocks.append(CellBlock(block.kind, nodes))
         notes += mended
     named = finder.steps(need)

@@ -7,6 +7,7 @@ geometry of every cell confirms it.
 """
 
 from dataclasses import dataclass
+from functools import lru_cache
 
 import numpy as np
 
@@ -70,6 +71,7 @@ class Sites:
         return self.spans.shape[1] == 1
 
 
+@lru_cache
 def sites(element: ElementType) -> list[Sites]:
     """The sites of the mid-side, face-centre and centre nodes of an element type."""
     if not element.quadratic:
@@ -83,6 +85,7 @@ def sites(element: ElementType) -> list[Sites]:
     return found
 
 
+@lru_cache
 def mirrored(element: ElementType) -> Order:
     """The order of the same cell seen in a mirror: it turns the sign of the Jacobian."""
     corners = _MIRRORED_CORNERS[element.family]
@@ -98,6 +101,7 @@ def mirrored(element: ElementType) -> Order:
     return tuple(order)
 
 
+@lru_cache
 def candidates(element: ElementType) -> dict[str, Order]:
     """Orders of other conventions to try, by a description of each."""
     known = dict(_KNOWN.get(element.name, {}))

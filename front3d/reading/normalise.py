@@ -56,7 +56,9 @@ class _Verdict:
         return self.signed & self.placed
 
 
-def normalise(points: FloatArray, block: RawBlock, spacing: float) -> tuple[IntArray, list[str]]:
+def normalise_nodes(
+    points: FloatArray, block: RawBlock, spacing: float
+) -> tuple[IntArray, list[str]]:
     """Nodes of the cells in our order, (cells, nodes), and sentences on what was mended.
 
     Parameters
@@ -197,8 +199,10 @@ def _about_sign(points: FloatArray, nodes: IntArray, block: RawBlock, cell: int,
     xi, _ = element.quadrature(1 if element.name == "tetra" else 2)
     gradients = element.gradients(xi).transpose(2, 0, 1)
     det = _determinants(gradients, _coordinates(points, nodes[cell : cell + 1]))[:, 0]
-    worst = int(det.argmin() if det.sum() > 0 else det.argmax())
-    best = int(det.argmax() if det.sum() > 0 else det.argmin())
+    mostly_positive = 2 * np.count_nonzero(det > 0) >= len(det)
+    worst, best = int(det.argmin()), int(det.argmax())
+    if not mostly_positive:
+        worst, best = best, worst
     return (
         f"{block.kind} cell {block.numbers[cell]}: Jacobian determinant {det[worst]:.3g} at Gauss "
         f"point {worst}, {det[best]:.3g} at point {best}, expected one sign and not zero "
