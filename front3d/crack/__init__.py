@@ -1,84 +1,8 @@
 """Finding cracks and their fronts in a solid without being told where they are."""
 
-from dataclasses import dataclass
+from front3d.crack.description import describe
+from front3d.crack.front import Front
+from front3d.crack.model import CrackModel, find_cracks
+from front3d.crack.patches import Patch
 
-from front3d.crack.coincidence import Coincidence, find_coincidence
-from front3d.crack.edges import Chain, full_model_edges, half_model_edges, order_edges
-from front3d.crack.ends import classify_ends
-from front3d.crack.front import Front, build_front
-from front3d.crack.patches import Patch, find_half_patch, find_patches
-from front3d.errors import CrackError
-from front3d.options import Options
-from front3d.solid import Solid
-
-
-@dataclass(frozen=True, slots=True, eq=False)
-class CrackModel:
-    """The cracks of a solid.
-
-    Attributes
-    ----------
-    same : which nodes stand at the same place
-    patches : crack surfaces that will be evaluated
-    fronts : per patch, its fronts
-    unopened : coincident surfaces whose sides never part: not evaluated unless asked for
-    """
-
-    same: Coincidence
-    patches: tuple[Patch, ...]
-    fronts: tuple[tuple[Front, ...], ...]
-    unopened: tuple[Patch, ...]
-
-    @property
-    def n_fronts(self) -> int:
-        return sum(len(fronts) for fronts in self.fronts)
-
-
-def find_cracks(solid: Solid, options: Options | None = None) -> CrackModel:
-    """Cracks and fronts of a solid; CrackError with the reason if there are none to evaluate."""
-    options = options or Options()
-    same = find_coincidence(solid)
-    if options.crack_plane is not None:
-        patch, ligament = find_half_patch(solid, same, options)
-        edges = half_model_edges(patch, ligament, same)
-        fronts = _fronts(solid, patch, same, order_edges(edges, same, solid.points, solid.source))
-        return CrackModel(same, (patch,), (fronts,), ())
-    found = find_patches(solid, same, options)
-    if not found:
-        raise CrackError(
-            f"{solid.source}: found no crack: no coincident free faces with separate nodes; "
-            "if the crack plane is a symmetry plane of a half model, name it (--crack-plane z=0); "
-            "if the crack is modelled by a gap or by one merged surface, its faces must be split "
-            "into coincident faces first"
-        )
-    chosen = tuple(p for p in found if p.opens or options.unopened)
-    unopened = tuple(p for p in found if not (p.opens or options.unopened))
-    if not chosen:
-        raise CrackError(
-            f"{solid.source}: found {len(found)} pair(s) of coincident faces, but their sides "
-            "neither part nor slide in any step, so they look like unmerged parts or tied "
-            "surfaces; if this is a crack, ask for it (--unopened), or check the displacements"
-        )
-    fronts_of = []
-    for patch in chosen:
-        edges = full_model_edges(patch, same)
-        chains = order_edges(edges, same, solid.points, solid.source)
-        fronts_of.append(_fronts(solid, patch, same, chains))
-    if not any(fronts_of):
-        raise CrackError(
-            f"{solid.source}: the coincident faces have no front: their sides share no edge, so "
-            "they part the solid in two; a crack needs a front where its sides join"
-        )
-    return CrackModel(same, chosen, tuple(fronts_of), unopened)
-
-
-def _fronts(
-    solid: Solid, patch: Patch, same: Coincidence, chains: tuple[Chain, ...]
-) -> tuple[Front, ...]:
-    return tuple(
-        classify_ends(solid, build_front(solid, chain, patch.upper, patch.half), patch, same)
-        for chain in chains
-    )
-
-
-__all__ = ["CrackModel", "Front", "Patch", "find_cracks"]
+__all__ = ["CrackModel", "Front", "Patch", "describe", "find_cracks"]

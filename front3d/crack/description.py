@@ -1,71 +1,64 @@
 """What was found of cracks and fronts, as plain data for a reader."""
 
-from typing import Any
+from collections.abc import Mapping
 
 import numpy as np
 
-from front3d.crack import CrackModel, find_cracks
 from front3d.crack.coincidence import Coincidence
 from front3d.crack.front import Front
+from front3d.crack.model import find_cracks
 from front3d.crack.patches import Patch
 from front3d.options import Options
 from front3d.solid import Solid
 
+Row = Mapping[str, object]
 
-def describe(solid: Solid, options: Options | None = None) -> dict[str, Any]:
-    """Patches and fronts of a solid, as numbers and words.
 
-    Returns
-    -------
-    {"patches": [{"faces", "half", "opens", "opening", "fronts": [...]}], "unopened": [...]}, each
-    front with its length, number of edges, closed, ends, cells around it, and edge lengths.
-    """
+def describe(solid: Solid, options: Options | None = None) -> dict[str, list[Row]]:
+    """Crack surfaces, fronts, and coincident faces left alone, a row of numbers and words each."""
     model = find_cracks(solid, options)
+    fronts = [
+        {"crack": number, **_front(solid, front, model.same)}
+        for number, group in enumerate(model.fronts)
+        for front in group
+    ]
     return {
-        "patches": [
-            _patch(patch) | {"fronts": [_front(solid, front, model) for front in fronts]}
-            for patch, fronts in zip(model.patches, model.fronts, strict=True)
-        ],
-        "unopened": [_patch(patch) for patch in model.unopened],
+        "cracks": [_patch(patch) for patch in model.patches],
+        "fronts": fronts,
+        "coincident_faces_left_alone": [_patch(patch) for patch in model.unopened],
     }
 
 
-def _patch(patch: Patch) -> dict[str, Any]:
+def _patch(patch: Patch) -> Row:
     return {
         "faces": len(patch.upper),
-        "half": patch.half,
-        "opens": patch.opens,
-        "opening": patch.opening,
+        "modelled": "upper side only" if patch.half else "both sides",
+        "largest opening": patch.opening,
     }
 
 
-def _front(solid: Solid, front: Front, model: CrackModel) -> dict[str, Any]:
+def _front(solid: Solid, front: Front, same: Coincidence) -> Row:
     lengths = np.linalg.norm(
         solid.points[front.edges[:, 1]] - solid.points[front.edges[:, 0]], axis=1
     )
-    first, middle = front.curve.frames(np.array([0.0, front.length / 2]))[0]
     return {
-        "closed": front.closed,
-        "ends": list(front.ends),
+        "shape": "closed" if front.closed else "open",
+        "ends": " and ".join(front.ends) or "none",
         "length": front.length,
         "edges": len(front.edges),
-        "edge_length": {
-            "shortest": float(lengths.min()),
-            "median": float(np.median(lengths)),
-            "longest": float(lengths.max()),
-        },
-        "cells_at_front": _cells_at_front(solid, front, model.same),
-        "start": first.tolist(),
-        "middle": middle.tolist(),
+        "shortest edge": float(lengths.min()),
+        "median edge": float(np.median(lengths)),
+        "longest edge": float(lengths.max()),
+        "cells at front": _cells_at_front(solid, front, same),
     }
 
 
-def _cells_at_front(solid: Solid, front: Front, same: Coincidence) -> dict[str, int]:
-    """Number of cells of each type that touch the front."""
+def _cells_at_front(solid: Solid, front: Front, same: Coincidence) -> str:
+    """Number of cells of each type that touch the front, as text."""
     on_front = np.isin(same.entity, same.entity[front.nodes])
     counts: dict[str, int] = {}
     for block in solid.blocks:
         touching = int(on_front[block.nodes].any(axis=1).sum())
         if touching:
             counts[block.kind] = counts.get(block.kind, 0) + touching
-    return counts
+    return ", ".join(f"{count} {kind}" for kind, count in counts.items())

@@ -97,7 +97,7 @@ def set_keys(rows: IntArray) -> IntArray:
 
 def multiplicity(keys: IntArray) -> IntArray:
     """How often each row's key occurs."""
-    counts: IntArray = np.bincount(keys)[keys]
+    counts: IntArray = np.bincount(keys, minlength=1)[keys]
     return counts
 
 

@@ -99,7 +99,7 @@ def _opposite_pairs(free: FaceTable, solid: Solid, same: Coincidence) -> tuple[I
     shared = np.flatnonzero(multiplicity(place_key) > 1)
     order = shared[np.argsort(place_key[shared], kind="stable")]
     keys = place_key[order]
-    crowded = np.flatnonzero(multiplicity(keys) > 2) if len(keys) else []
+    crowded = np.flatnonzero(multiplicity(keys) > 2)
     if len(crowded):
         node = free.corners[order[crowded[0]], 0]
         raise CrackError(
@@ -147,7 +147,7 @@ def _patch(solid: Solid, same: Coincidence, a: FaceTable, b: FaceTable, up: Vect
     upper, lower = (b, a) if chosen_up(outward, up) > 0 else (a, b)
     pairs = _node_pairs(upper, lower, same)
     opening = 0.0
-    opens = False
+    opens = not solid.steps  # without displacements nobody can tell
     for step in solid.steps:
         jump = step.displacement[pairs[:, 0]] - step.displacement[pairs[:, 1]]
         largest = float(np.sqrt((jump**2).sum(axis=1).max()))
@@ -191,6 +191,8 @@ def find_half_patch(solid: Solid, same: Coincidence, options: Options) -> tuple[
             f"{where} holds no outer face; along its normal the model reaches from "
             f"{plane.offset + low:g} to {plane.offset + high:g}"
         )
+    if not solid.steps:
+        raise CrackError(f"{where}: a half model's crack is found by its displacements; found none")
     moves = np.zeros(len(solid.points), bool)
     opening = 0.0
     members = np.unique(free.nodes)

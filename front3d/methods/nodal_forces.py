@@ -26,30 +26,96 @@ FREE, PRESSED = 0, 1
 
 
 @kernel
-def _invert(J: FloatArray, inverse: FloatArray) -> float:
-    """Determinant of J, (3, 3); fills its inverse."""
+def _map(
+    points: FloatArray,
+    cell: IntArray,
+    values: FloatArray,
+    gradients: FloatArray,
+    x: FloatArray,
+    jacobian: FloatArray,
+    inverse: FloatArray,
+) -> float:
+    """Position, Jacobian dx_i/dxi_d and its inverse at one Gauss point; returns its determinant."""
+    x[:] = 0.0
+    jacobian[:] = 0.0
+    for n in range(len(cell)):
+        for i in range(3):
+            value = points[cell[n], i]
+            x[i] += values[n] * value
+            for d in range(3):
+                jacobian[i, d] += value * gradients[n, d]
     for i in range(3):
         a, b = (i + 1) % 3, (i + 2) % 3
         for j in range(3):
             c, d = (j + 1) % 3, (j + 2) % 3
-            inverse[j, i] = J[a, c] * J[b, d] - J[a, d] * J[b, c]
-    det = J[0, 0] * inverse[0, 0] + J[0, 1] * inverse[1, 0] + J[0, 2] * inverse[2, 0]
-    for i in range(3):
-        for j in range(3):
-            inverse[i, j] /= det
+            inverse[j, i] = jacobian[a, c] * jacobian[b, d] - jacobian[a, d] * jacobian[b, c]
+    det = 0.0
+    for d in range(3):
+        det += jacobian[0, d] * inverse[d, 0]
+    inverse /= det
     return det
 
 
 @kernel
-def _rotate_in(frame: FloatArray, a: FloatArray, out: FloatArray) -> None:
-    """Components of the tensor a, (3, 3), in the frame whose rows are its base vectors."""
+def _look(
+    x: FloatArray,
+    seed: float,
+    side: int,
+    knots: FloatArray,
+    position: FloatArray,
+    normal: FloatArray,
+    closed: bool,
+    place: FloatArray,
+    frame: FloatArray,
+    turning: FloatArray,
+) -> tuple[float, float, float]:
+    """Frame of the front nearest to x; returns its arc length, and radius and angle of x in it."""
+    s, _ = nearest(x, seed, knots, position, closed)
+    frame_at(s, knots, position, normal, closed, place, frame, turning)
+    x1, x2 = 0.0, 0.0
+    for i in range(3):
+        x1 += (x[i] - place[i]) * frame[0, i]
+        x2 += (x[i] - place[i]) * frame[1, i]
+    r, angle = polar(x1, x2, side)
+    return s, r, angle
+
+
+@kernel
+def _to_frame(inverse: FloatArray, frame: FloatArray, local: FloatArray) -> None:
+    """local[d, j] = dxi_d/dx_j along the frame's own axes."""
+    for d in range(3):
+        for j in range(3):
+            local[d, j] = (
+                inverse[d, 0] * frame[j, 0]
+                + inverse[d, 1] * frame[j, 1]
+                + inverse[d, 2] * frame[j, 2]
+            )
+
+
+@kernel
+def _displacement_gradient(
+    displacement: FloatArray,
+    cell: IntArray,
+    gradients: FloatArray,
+    frame: FloatArray,
+    local: FloatArray,
+    raw: FloatArray,
+    gradient: FloatArray,
+) -> None:
+    """gradient[i, j] = du_i/dx_j in the frame, from nodal displacements (points, 3)."""
+    raw[:] = 0.0
+    for n in range(len(cell)):
+        for i in range(3):
+            value = displacement[cell[n], i]
+            for d in range(3):
+                raw[i, d] += value * gradients[n, d]
     for i in range(3):
         for j in range(3):
             total = 0.0
             for k in range(3):
-                for m in range(3):
-                    total += frame[i, k] * a[k, m] * frame[j, m]
-            out[i, j] = total
+                part = raw[k, 0] * local[0, j] + raw[k, 1] * local[1, j] + raw[k, 2] * local[2, j]
+                total += frame[i, k] * part
+            gradient[i, j] = total
 
 
 @kernel
@@ -68,25 +134,63 @@ def _hooke(gradient: FloatArray, lame: float, shear: float, stress: FloatArray) 
 
 
 @kernel
+def _mutual_energy(aux_stress: FloatArray, gradient: FloatArray) -> float:
+    """sigma^aux_ij u_i,j."""
+    total = 0.0
+    for i in range(3):
+        for j in range(3):
+            total += aux_stress[i, j] * gradient[i, j]
+    return total
+
+
+@kernel
 def _eshelby(
     stress: FloatArray,
     gradient: FloatArray,
     aux_stress: FloatArray,
     aux_gradient: FloatArray,
+    energy: float,
     P: FloatArray,
 ) -> None:
-    """P_kj of the interaction of the actual and one auxiliary state, (3, 3)."""
-    mutual = 0.0
-    for i in range(3):
-        for j in range(3):
-            mutual += aux_stress[i, j] * gradient[i, j]
+    """P_kj = sigma_ij u^aux_i,k + sigma^aux_ij u_i,k - energy delta_kj."""
     for k in range(3):
         for j in range(3):
             total = 0.0
             for i in range(3):
                 total += stress[i, j] * aux_gradient[i, k] + aux_stress[i, j] * gradient[i, k]
             P[k, j] = total
-        P[k, k] -= mutual
+        P[k, k] -= energy
+
+
+@kernel
+def _spread(
+    P: FloatArray,
+    T: FloatArray,
+    factor: float,
+    frame: FloatArray,
+    local: FloatArray,
+    values: FloatArray,
+    gradients: FloatArray,
+    pull: FloatArray,
+    forces: FloatArray,
+) -> None:
+    """Add factor (P_kj dphi_n/dx_j + T_k phi_n), turned to global axes, to forces, (nodes, 3)."""
+    for k in range(3):
+        for d in range(3):
+            total = 0.0
+            for m in range(3):
+                part = P[m, 0] * local[d, 0] + P[m, 1] * local[d, 1] + P[m, 2] * local[d, 2]
+                total += frame[m, k] * part
+            pull[k, d] = factor * total
+        pull[k, 3] = factor * (frame[0, k] * T[0] + frame[1, k] * T[1] + frame[2, k] * T[2])
+    for n in range(len(values)):
+        for k in range(3):
+            forces[n, k] += (
+                pull[k, 0] * gradients[n, 0]
+                + pull[k, 1] * gradients[n, 1]
+                + pull[k, 2] * gradients[n, 2]
+                + pull[k, 3] * values[n]
+            )
 
 
 @parallel_kernel
@@ -111,113 +215,62 @@ def cell_forces(
     """Volume part of F for every cell.
 
     cells (n, nodes); side (n,) of the crack; seed (n,) arc length near each cell; displacement
-    (steps, points, 3); values (q, nodes), gradients (q, nodes, 3) and weights (q,) of the rule.
-    Fills out, (n, steps, N_MODES, nodes, 3), and status, (n,): 0, or 1 + the Gauss point at which
-    the Jacobian is not positive.
+    (steps, points, 3); values (q, nodes), gradients (q, nodes, 3) and weights (q,) of the rule;
+    the curve's arrays.  Fills out, (n, steps, N_MODES, nodes, 3), and status, (n,): 0, or 1 + the
+    Gauss point at which the Jacobian is not positive.
     """
     shear = young / (2.0 * (1.0 + poisson))
     lame = 2.0 * shear * poisson / (1.0 - 2.0 * poisson)
-    n_nodes = cells.shape[1]
-    n_steps = displacement.shape[0]
     for c in numba.prange(len(cells)):
-        status[c] = 0
-        out[c] = 0.0
-        J, inverse = np.empty((3, 3)), np.empty((3, 3))
-        x, place, turning = np.empty(3), np.empty(3), np.empty(3)
-        frame = np.empty((3, 3))
+        vectors, matrices = np.zeros((4, 3)), np.zeros((8, 3, 3))
+        x, place, turning, T = vectors[0], vectors[1], vectors[2], vectors[3]
+        jacobian, inverse, frame, local = matrices[0], matrices[1], matrices[2], matrices[3]
+        raw, H, stress, P = matrices[4], matrices[5], matrices[6], matrices[7]
         aux_gradient, aux_stress = np.empty((3, 3, 3)), np.empty((3, 3, 3))
         divergence, incompatibility = np.empty((3, 3)), np.empty((3, 3, 2))
-        work = np.empty((3, 3, 9))
-        raw, global_gradient, H = np.empty((3, 3)), np.empty((3, 3)), np.empty((3, 3))
-        stress, P, mixed = np.empty((3, 3)), np.empty((3, 3)), np.empty((3, 3))
-        T = np.empty(3)
-        pull = np.empty((3, 4))
+        work, pull = np.empty((3, 3, 9)), np.empty((3, 4))
+        status[c] = 0
+        out[c] = 0.0
         s = seed[c]
         for g in range(len(weights)):
-            x[:] = 0.0
-            J[:] = 0.0
-            for n in range(n_nodes):
-                node = cells[c, n]
-                for i in range(3):
-                    xi = points[node, i]
-                    x[i] += values[g, n] * xi
-                    for d in range(3):
-                        J[i, d] += xi * gradients[g, n, d]
-            det = _invert(J, inverse)
+            det = _map(points, cells[c], values[g], gradients[g], x, jacobian, inverse)
             if not det > 0.0:
                 status[c] = 1 + g
                 break
-            s, r = nearest(x, s, knots, position, closed)
-            frame_at(s, knots, position, normal, closed, place, frame, turning)
-            x1, x2 = 0.0, 0.0
-            for i in range(3):
-                x1 += (x[i] - place[i]) * frame[0, i]
-                x2 += (x[i] - place[i]) * frame[1, i]
-            r, angle = polar(x1, x2, side[c])
+            s, r, angle = _look(
+                x, s, side[c], knots, position, normal, closed, place, frame, turning
+            )
             auxiliary(
                 r, angle, turning, shear, poisson,
                 aux_gradient, aux_stress, divergence, incompatibility, work,
             )  # fmt: skip
-            factor = weights[g] * det
-            for step in range(n_steps):
-                raw[:] = 0.0
-                for n in range(n_nodes):
-                    node = cells[c, n]
-                    for i in range(3):
-                        for d in range(3):
-                            raw[i, d] += displacement[step, node, i] * gradients[g, n, d]
-                for i in range(3):
-                    for j in range(3):
-                        global_gradient[i, j] = (
-                            raw[i, 0] * inverse[0, j]
-                            + raw[i, 1] * inverse[1, j]
-                            + raw[i, 2] * inverse[2, j]
-                        )
-                _rotate_in(frame, global_gradient, H)
+            _to_frame(inverse, frame, local)
+            for step in range(len(displacement)):
+                _displacement_gradient(
+                    displacement[step], cells[c], gradients[g], frame, local, raw, H
+                )
                 energy = _hooke(H, lame, shear, stress)
-                for mode in range(N_MODES):
-                    T[:] = 0.0
-                    if mode < 3:
-                        _eshelby(stress, H, aux_stress[mode], aux_gradient[mode], P)
-                        for k in range(3):
-                            for i in range(3):
-                                T[k] += divergence[mode, i] * H[i, k]
-                                if k < 2:
-                                    T[k] += stress[i, 2] * incompatibility[mode, i, k]
-                    else:
-                        for k in range(3):
-                            for j in range(3):
-                                P[k, j] = 0.0
-                                for i in range(3):
-                                    P[k, j] += stress[i, j] * H[i, k]
-                            P[k, k] -= energy
-                    # To global rows and reference columns, then to the nodes.
+                for mode in range(3):
+                    mutual = _mutual_energy(aux_stress[mode], H)
+                    _eshelby(stress, H, aux_stress[mode], aux_gradient[mode], mutual, P)
                     for k in range(3):
-                        for d in range(3):
-                            mixed[k, d] = 0.0
-                            for j in range(3):
-                                along = 0.0
-                                for m in range(3):
-                                    along += inverse[d, m] * frame[j, m]
-                                mixed[k, d] += P[k, j] * along
-                    for k in range(3):
-                        for d in range(3):
-                            pull[k, d] = factor * (
-                                frame[0, k] * mixed[0, d]
-                                + frame[1, k] * mixed[1, d]
-                                + frame[2, k] * mixed[2, d]
-                            )
-                        pull[k, 3] = factor * (
-                            frame[0, k] * T[0] + frame[1, k] * T[1] + frame[2, k] * T[2]
-                        )
-                    for n in range(n_nodes):
-                        for k in range(3):
-                            out[c, step, mode, n, k] += (
-                                pull[k, 0] * gradients[g, n, 0]
-                                + pull[k, 1] * gradients[g, n, 1]
-                                + pull[k, 2] * gradients[g, n, 2]
-                                + pull[k, 3] * values[g, n]
-                            )
+                        T[k] = 0.0
+                        for i in range(3):
+                            T[k] += divergence[mode, i] * H[i, k]
+                            if k < 2:
+                                T[k] += stress[i, 2] * incompatibility[mode, i, k]
+                    _spread(
+                        P, T, weights[g] * det, frame, local, values[g], gradients[g],
+                        pull, out[c, step, mode],
+                    )  # fmt: skip
+                # J: the actual state with itself, half of each product.
+                stress *= 0.5
+                _eshelby(stress, H, stress, H, energy, P)
+                T[:] = 0.0
+                _spread(
+                    P, T, weights[g] * det, frame, local, values[g], gradients[g],
+                    pull, out[c, step, 3],
+                )  # fmt: skip
 
 
 @parallel_kernel
@@ -252,97 +305,71 @@ def face_forces(
     """
     shear = young / (2.0 * (1.0 + poisson))
     lame = 2.0 * shear * poisson / (1.0 - 2.0 * poisson)
-    n_nodes = cells.shape[1]
-    n_steps = displacement.shape[0]
     for c in numba.prange(len(cells)):
-        out[c] = 0.0
-        J, inverse = np.empty((3, 3)), np.empty((3, 3))
-        x, place, turning, area = np.empty(3), np.empty(3), np.empty(3), np.empty(3)
-        frame = np.empty((3, 3))
+        vectors, matrices = np.zeros((5, 3)), np.zeros((7, 3, 3))
+        x, place, turning, area = vectors[0], vectors[1], vectors[2], vectors[3]
+        T = vectors[4]
+        jacobian, inverse, frame, local = matrices[0], matrices[1], matrices[2], matrices[3]
+        raw, H, stress = matrices[4], matrices[5], matrices[6]
+        P = np.zeros((3, 3))
         aux_gradient, aux_stress = np.empty((3, 3, 3)), np.empty((3, 3, 3))
         divergence, incompatibility = np.empty((3, 3)), np.empty((3, 3, 2))
-        work = np.empty((3, 3, 9))
-        raw, global_gradient, H = np.empty((3, 3)), np.empty((3, 3)), np.empty((3, 3))
-        stress = np.empty((3, 3))
-        normal_area, traction, pull = np.empty(3), np.empty(3), np.empty(3)
+        work, pull = np.empty((3, 3, 9)), np.empty((3, 4))
+        out[c] = 0.0
         s = seed[c]
         for g in range(len(weights)):
-            x[:] = 0.0
-            J[:] = 0.0
-            for n in range(n_nodes):
-                node = cells[c, n]
-                for i in range(3):
-                    xi = points[node, i]
-                    x[i] += values[g, n] * xi
-                    for d in range(3):
-                        J[i, d] += xi * gradients[g, n, d]
-            _invert(J, inverse)
-            for i in range(3):
-                a, b = (i + 1) % 3, (i + 2) % 3
-                area[i] = 0.0
-                t_a0, t_a1, t_b0, t_b1 = 0.0, 0.0, 0.0, 0.0
-                for d in range(3):
-                    t_a0 += J[a, d] * tangents[g, d, 0]
-                    t_a1 += J[a, d] * tangents[g, d, 1]
-                    t_b0 += J[b, d] * tangents[g, d, 0]
-                    t_b1 += J[b, d] * tangents[g, d, 1]
-                area[i] = weights[g] * (t_a0 * t_b1 - t_b0 * t_a1)
-            s, r = nearest(x, s, knots, position, closed)
-            frame_at(s, knots, position, normal, closed, place, frame, turning)
-            x1, x2 = 0.0, 0.0
-            for i in range(3):
-                x1 += (x[i] - place[i]) * frame[0, i]
-                x2 += (x[i] - place[i]) * frame[1, i]
-                normal_area[i] = (
-                    frame[i, 0] * area[0] + frame[i, 1] * area[1] + frame[i, 2] * area[2]
-                )
-                traction[i] = -pressure * normal_area[i] if kind == PRESSED else 0.0
-            r, angle = polar(x1, x2, side[c])
+            _map(points, cells[c], values[g], gradients[g], x, jacobian, inverse)
+            s, r, angle = _look(
+                x, s, side[c], knots, position, normal, closed, place, frame, turning
+            )
             auxiliary(
                 r, angle, turning, shear, poisson,
                 aux_gradient, aux_stress, divergence, incompatibility, work,
             )  # fmt: skip
-            for step in range(n_steps):
-                raw[:] = 0.0
-                for n in range(n_nodes):
-                    node = cells[c, n]
-                    for i in range(3):
-                        for d in range(3):
-                            raw[i, d] += displacement[step, node, i] * gradients[g, n, d]
-                for i in range(3):
-                    for j in range(3):
-                        global_gradient[i, j] = (
-                            raw[i, 0] * inverse[0, j]
-                            + raw[i, 1] * inverse[1, j]
-                            + raw[i, 2] * inverse[2, j]
-                        )
-                _rotate_in(frame, global_gradient, H)
+            _to_frame(inverse, frame, local)
+            _area_vector(jacobian, tangents[g], frame, weights[g], area)
+            for step in range(len(displacement)):
+                _displacement_gradient(
+                    displacement[step], cells[c], gradients[g], frame, local, raw, H
+                )
                 energy = _hooke(H, lame, shear, stress)
                 for mode in range(N_MODES):
-                    for k in range(3):
-                        pull[k] = 0.0
-                        for i in range(3):
-                            if mode == 3:
-                                pull[k] -= traction[i] * H[i, k]
-                            elif kind == PRESSED:
-                                pull[k] -= traction[i] * aux_gradient[mode, i, k]
-                            else:
-                                aux_traction = 0.0
-                                for j in range(3):
-                                    aux_traction += aux_stress[mode, i, j] * normal_area[j]
-                                pull[k] -= aux_traction * H[i, k]
+                    T[:] = 0.0
                     if kind == FREE:
                         mutual = energy
                         if mode < 3:
-                            mutual = 0.0
-                            for i in range(3):
-                                for j in range(3):
-                                    mutual += aux_stress[mode, i, j] * H[i, j]
+                            mutual = _mutual_energy(aux_stress[mode], H)
+                            for k in range(3):
+                                for i in range(3):
+                                    for j in range(3):
+                                        T[k] -= aux_stress[mode, i, j] * area[j] * H[i, k]
                         for k in range(3):
-                            pull[k] += mutual * normal_area[k]
-                    for k in range(3):
-                        total = (
-                            frame[0, k] * pull[0] + frame[1, k] * pull[1] + frame[2, k] * pull[2]
-                        )
-                        for n in range(n_nodes):
-                            out[c, step, mode, n, k] += total * values[g, n]
+                            T[k] += mutual * area[k]
+                    else:
+                        for k in range(3):
+                            for i in range(3):
+                                moved = H[i, k] if mode == 3 else aux_gradient[mode, i, k]
+                                T[k] += pressure * area[i] * moved
+                    _spread(
+                        P, T, 1.0, frame, local, values[g], gradients[g], pull, out[c, step, mode]
+                    )
+
+
+@kernel
+def _area_vector(
+    jacobian: FloatArray, tangents: FloatArray, frame: FloatArray, weight: float, area: FloatArray
+) -> None:
+    """Outward area vector of a face at a Gauss point, in the frame, times its weight."""
+    for i in range(3):
+        area[i] = 0.0
+    for k in range(3):
+        a, b = (k + 1) % 3, (k + 2) % 3
+        a0, a1, b0, b1 = 0.0, 0.0, 0.0, 0.0
+        for d in range(3):
+            a0 += jacobian[a, d] * tangents[d, 0]
+            a1 += jacobian[a, d] * tangents[d, 1]
+            b0 += jacobian[b, d] * tangents[d, 0]
+            b1 += jacobian[b, d] * tangents[d, 1]
+        component = weight * (a0 * b1 - b0 * a1)
+        for i in range(3):
+            area[i] += frame[i, k] * component
