@@ -1,0 +1,17 @@
+"""Embedded models: parametric cracked solids, meshed, loaded and solved in the package."""
+
+from front3d.samples.building import SAMPLES, build, sample_spec
+from front3d.samples.cells import CELL_KINDS
+from front3d.samples.sample import Parameter, Sample, SampleSpec
+from front3d.samples.writing import write_sample
+
+__all__ = [
+    "CELL_KINDS",
+    "SAMPLES",
+    "Parameter",
+    "Sample",
+    "SampleSpec",
+    "build",
+    "sample_spec",
+    "write_sample",
+]

@@ -1,0 +1,88 @@
+"""From a name and parameters to a solved sample."""
+
+from collections.abc import Mapping
+from types import MappingProxyType
+
+import numpy as np
+
+from front3d.errors import CaseError
+from front3d.samples.cells import check_cells
+from front3d.samples.elasticity import boundary_faces, held_points, traction_load
+from front3d.samples.penny import PENNY
+from front3d.samples.sample import Sample, SampleSpec
+from front3d.samples.solver import Progress, solve
+from front3d.samples.surface_crack import SURFACE_CRACK
+from front3d.solid import Material, Solid, Step
+
+SAMPLES: Mapping[str, SampleSpec] = MappingProxyType(
+    {spec.name: spec for spec in (SURFACE_CRACK, PENNY)}
+)
+
+
+def sample_spec(name: str) -> SampleSpec:
+    """The sample called `name`; CaseError if there is none."""
+    try:
+        return SAMPLES[name]
+    except KeyError:
+        raise CaseError(f"sample: found {name!r}, expected one of {', '.join(SAMPLES)}") from None
+
+
+def build(
+    name: str,
+    *,
+    cells: str = "bricks",
+    progress: Progress | None = None,
+    **parameters: float,
+) -> Sample:
+    """Mesh, load and solve a sample.
+
+    Parameters
+    ----------
+    name : a key of SAMPLES
+    cells : "bricks" (20 nodes, quarter-point wedges at the front), "tetra10" or "brick8"
+    progress : called with (stage, fraction of the stage)
+    parameters : those of SAMPLES[name], in its units
+
+    Raises
+    ------
+    CaseError for a wrong name or parameter; MeshError or MethodError when the mesh cannot be
+    solved.
+    """
+    spec = sample_spec(name)
+    check_cells(cells)
+    values = spec.values(parameters)
+    if progress:
+        progress("meshing", 0.0)
+    solid = spec.mesh(values, cells)
+    material = Material(values["young"], values["poisson"])
+    loads = spec.loads(values)
+    faces = boundary_faces(solid)
+    forces = np.stack(
+        [
+            traction_load(
+                solid.points,
+                [(kind, nodes[load.on(solid.points[nodes])]) for kind, nodes in faces],
+                load.traction,
+            )
+            for load in loads
+        ]
+    )
+    moved = solve(solid, material, forces, held_points(solid.points), progress=progress)
+    steps = tuple(
+        Step(load.name, u, float(k)) for k, (load, u) in enumerate(zip(loads, moved, strict=True))
+    )
+    solid = Solid(solid.points, solid.blocks, steps, source=f"sample {name}")
+    return Sample(name, solid, material, _description(spec, cells, values), _case(material), values)
+
+
+def _description(spec: SampleSpec, cells: str, values: Mapping[str, float]) -> str:
+    numbers = ", ".join(f"{k} {v:g}" for k, v in values.items())
+    return f"{spec.description}; {cells}; {numbers}"
+
+
+def _case(material: Material) -> dict[str, dict[str, object]]:
+    return {
+        "material": {"young": material.young, "poisson": material.poisson},
+        "units": {"length": "mm", "stress": "MPa"},
+        "options": {},
+    }

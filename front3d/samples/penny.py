@@ -1,0 +1,70 @@
+"""A penny crack in the middle of a cylinder, under tension along an inclined axis."""
+
+from collections.abc import Mapping
+from math import cos, radians, sin
+
+import numpy as np
+
+from front3d.arrays import BoolArray, FloatArray
+from front3d.samples.cells import whole_solid
+from front3d.samples.fineness import density
+from front3d.samples.octant import upper_half
+from front3d.samples.sample import (
+    Load,
+    Parameter,
+    SampleSpec,
+    Values,
+    check_ratio,
+    common_parameters,
+    required,
+)
+from front3d.samples.sheet import Quarter
+from front3d.solid import Solid
+
+_PARAMETERS = {
+    "radius": Parameter("radius of the crack", 10.0, 1e-9, 1e9, "length"),
+    "tension": Parameter("stress along the load axis", 100.0, -1e12, 1e12, "stress"),
+    "tilt": Parameter(
+        "angle between the load axis and the crack normal, turned towards x", 0, 0, 90, "degrees"
+    ),
+    "body": Parameter(
+        "radius and half-height of the cylinder (default 10 radii)", None, 1e-9, 1e10, "length"
+    ),
+    **common_parameters(),
+}
+
+
+def _complete(given: Mapping[str, float | None]) -> Values:
+    values = {k: v for k, v in given.items() if v is not None}
+    values.setdefault("body", 10.0 * required(given, "radius"))
+    check_ratio("penny", "body / radius", values["body"] / values["radius"], 2.0, 50.0)
+    return values
+
+
+def _mesh(values: Values, cells: str) -> Solid:
+    a, body = values["radius"], values["body"]
+    shape = Quarter(a, a, radius=0.25 * a, width=body, depth=body, round=True)
+    half = upper_half(shape, density(cells, values["refine"], 4), body, mirrored=(0, 1))
+    return whole_solid(half, cells, "penny")
+
+
+def _loads(values: Values) -> tuple[Load, ...]:
+    tilt = radians(values["tilt"])
+    axis = np.array([sin(tilt), 0.0, cos(tilt)])
+    stress = values["tension"] * np.outer(axis, axis)
+    return (Load("tension", lambda points, normals: normals @ stress, _outer),)
+
+
+def _outer(faces: FloatArray) -> BoolArray:
+    """All faces but those of the crack."""
+    return np.abs(faces[:, :, 2]).max(axis=1) > 0.0
+
+
+PENNY = SampleSpec(
+    "penny",
+    "penny crack in a large cylinder, tension along an axis inclined by `tilt`",
+    _PARAMETERS,
+    _complete,
+    _mesh,
+    _loads,
+)

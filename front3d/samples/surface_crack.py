@@ -1,0 +1,89 @@
+"""A semi-elliptical surface crack in a plate, under tension and bending."""
+
+from collections.abc import Mapping
+
+import numpy as np
+
+from front3d.arrays import BoolArray, FloatArray
+from front3d.samples.cells import whole_solid
+from front3d.samples.ellipse import smallest_radius
+from front3d.samples.fineness import density
+from front3d.samples.octant import upper_half
+from front3d.samples.sample import (
+    Load,
+    Parameter,
+    SampleSpec,
+    Values,
+    check_ratio,
+    common_parameters,
+    required,
+)
+from front3d.samples.sheet import Quarter
+from front3d.solid import Solid
+
+_PARAMETERS = {
+    "depth": Parameter("depth of the crack, a", 6.0, 1e-9, 1e9, "length"),
+    "half_length": Parameter("half of its length on the surface, c", 10.0, 1e-9, 1e9, "length"),
+    "thickness": Parameter("thickness of the plate, t", 15.0, 1e-9, 1e10, "length"),
+    "half_width": Parameter(
+        "half of its width (default 10 times the larger of a and c)", None, 1e-9, 1e10, "length"
+    ),
+    "half_height": Parameter(
+        "half of its height (default the half width)", None, 1e-9, 1e10, "length"
+    ),
+    "tension": Parameter("remote tension, step 1", 100.0, -1e12, 1e12, "stress"),
+    "bending": Parameter(
+        "remote bending stress at the cracked surface, step 2", 100.0, -1e12, 1e12, "stress"
+    ),
+    **common_parameters(),
+}
+
+
+def _complete(given: Mapping[str, float | None]) -> Values:
+    values = {k: v for k, v in given.items() if v is not None}
+    a, c = required(given, "depth"), required(given, "half_length")
+    values.setdefault("half_width", 10.0 * max(a, c))
+    values.setdefault("half_height", values["half_width"])
+    name = "surface-crack"
+    check_ratio(name, "depth / half_length", a / c, 0.2, 2.0)
+    check_ratio(name, "depth / thickness", a / values["thickness"], 0.1, 0.8)
+    check_ratio(name, "half_width / half_length", values["half_width"] / c, 2.0, 50.0)
+    size = max(a, c)
+    check_ratio(name, "half_height / larger of depth and half_length",
+                values["half_height"] / size, 2.0, 50.0)  # fmt: skip
+    return values
+
+
+def _mesh(values: Values, cells: str) -> Solid:
+    a, c, t = values["depth"], values["half_length"], values["thickness"]
+    radius = min(0.25 * a, 0.25 * c, 0.5 * smallest_radius(a, c), 0.4 * (t - a))
+    shape = Quarter(a, c, radius, width=values["half_width"], depth=t)
+    fine = density(cells, values["refine"], 2)
+    half = upper_half(shape, fine, values["half_height"], mirrored=(0,))
+    return whole_solid(half, cells, "surface-crack")
+
+
+def _loads(values: Values) -> tuple[Load, ...]:
+    height, t = values["half_height"], values["thickness"]
+
+    def ends(faces: FloatArray) -> BoolArray:
+        out: BoolArray = (np.abs(np.abs(faces[:, :, 2]) - height) < 1e-9 * height).all(axis=1)
+        return out
+
+    def tension(points: FloatArray, normals: FloatArray) -> FloatArray:
+        return values["tension"] * normals
+
+    def bending(points: FloatArray, normals: FloatArray) -> FloatArray:
+        return values["bending"] * (1.0 - 2.0 * points[:, 1:2] / t) * normals
+
+    return Load("tension", tension, ends), Load("bending", bending, ends)
+
+
+SURFACE_CRACK = SampleSpec(
+    "surface-crack",
+    "semi-elliptical surface crack in a plate, tension and bending",
+    _PARAMETERS,
+    _complete,
+    _mesh,
+    _loads,
+)
