@@ -38,7 +38,9 @@ def call(*words: str) -> None:
 
 def reduced(path: Path) -> bytes:
     image = Image.open(path).convert("RGB")
-    image = image.resize((WIDTH, round(image.height * WIDTH / image.width)), Image.Resampling.LANCZOS)
+    image = image.resize(
+        (WIDTH, round(image.height * WIDTH / image.width)), Image.Resampling.LANCZOS
+    )
     out = io.BytesIO()
     image.quantize(COLOURS).save(out, "PNG", optimize=True)
     return out.getvalue()
@@ -46,7 +48,5 @@ def reduced(path: Path) -> bytes:
 
 if __name__ == "__main__":
     parser = argparse.ArgumentParser(description=__doc__.splitlines()[0])
-    parser.add_argument(
-        "folder", nargs="?", type=Path, default=Path(__file__).parent / "pictures"
-    )
+    parser.add_argument("folder", nargs="?", type=Path, default=Path(__file__).parent / "pictures")
     sys.exit(make(parser.parse_args().folder))

@@ -3,7 +3,7 @@
 import argparse
 from collections import Counter
 from collections.abc import Mapping, Sequence
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING
 
 from front3d.cli.flags import add_crack_flags, case_of
 from front3d.cli.words import number, table
@@ -51,8 +51,8 @@ def describe_solid(solid: "Solid") -> list[str]:
     return [*lines, *(f"  note    {note}" for note in solid.notes)]
 
 
-def describe_cracks(found: Mapping[str, Sequence[Mapping[str, Any]]]) -> list[str]:
-    """A table per kind of thing found (patches of crack faces, fronts), a row for each."""
+def describe_cracks(found: Mapping[str, Sequence[Mapping[str, object]]]) -> list[str]:
+    """A table per kind of thing found (crack surfaces, fronts, ..), a row for each."""
     lines: list[str] = []
     for what, rows in found.items():
         lines += ["", f"{what.replace('_', ' ')}: {len(rows) or 'none'}"]
