@@ -2,7 +2,6 @@
 
 import h5py
 import meshio
-import netCDF4
 import numpy as np
 import pytest
 import pyvista as pv
@@ -10,13 +9,16 @@ import pyvista as pv
 from front3d.elements import ELEMENTS
 from front3d.reading import load
 from tests.reading_models import (
+    EXODUS,
     KINDS,
     assert_same_cells,
     cells,
     displacement,
+    grid,
     mesh,
     mixed,
     volumes,
+    write_exodus,
 )
 
 pytestmark = pytest.mark.filterwarnings("ignore::DeprecationWarning:meshio")
@@ -41,13 +43,6 @@ def check(solid, points, blocks, steps, rtol=1e-14):
         )
         for step, u in zip(solid.steps, steps.values(), strict=True):
             assert_same_cells(points, block.kind, nodes, block.nodes, u, step.displacement)
-
-
-def grid(points, blocks, **point_data):
-    out = pv.UnstructuredGrid({ELEMENTS[k].vtk_type: n for k, n in blocks.items()}, points)
-    for name, values in point_data.items():
-        out.point_data[name] = values
-    return out
 
 
 @pytest.mark.parametrize("kind", KINDS)
@@ -271,65 +266,6 @@ def test_med_cells_of_opposite_orientation_are_turned(tmp_path):
 
 
 # --------------------------------------------------------------------------------- Exodus
-
-# Node order of HEX20 and HEX27 in the Exodus II manual (Sandia, SAND92-2137): the vertical
-# edges come before the top ones; the centre of HEX27 is its 21st node.
-EXODUS = {
-    "hexahedron20": ("HEX20", [*range(12), 16, 17, 18, 19, 12, 13, 14, 15]),
-    "hexahedron27": (
-        "HEX27",
-        [*range(12), 16, 17, 18, 19, 12, 13, 14, 15, 26, 24, 25, 20, 21, 22, 23],
-    ),
-    "tetra10": ("TETRA10", list(range(10))),
-    "hexahedron": ("HEX8", list(range(8))),
-    "tetra": ("TETRA4", list(range(4))),
-    "wedge": ("WEDGE6", list(range(6))),
-    "wedge15": ("WEDGE15", [*range(9), 12, 13, 14, 9, 10, 11]),
-    "pyramid": ("PYRAMID5", list(range(5))),
-}
-
-
-def write_exodus(path, points, blocks, steps, real="f8"):
-    """The Exodus II layout (netCDF names as in its manual)."""
-    with netCDF4.Dataset(path, "w", format="NETCDF3_64BIT_OFFSET") as file:
-        file.api_version = np.float32(5.1)
-        file.version = np.float32(5.1)
-        file.floating_point_word_size = np.int32(int(real[1]))
-        file.file_size = np.int32(1)
-        file.title = "test"
-        file.createDimension("len_string", 33)
-        file.createDimension("len_name", 33)
-        file.createDimension("four", 4)
-        file.createDimension("time_step", None)
-        file.createDimension("num_dim", 3)
-        file.createDimension("num_nodes", len(points))
-        file.createDimension("num_elem", sum(len(nodes) for nodes in blocks.values()))
-        file.createDimension("num_el_blk", len(blocks))
-        file.createDimension("num_nod_var", 3)
-        file.createVariable("time_whole", real, ("time_step",))
-        file.createVariable("eb_prop1", "i4", ("num_el_blk",)).setncattr("name", "ID")
-        file["eb_prop1"][:] = np.arange(1, len(blocks) + 1)
-        file.createVariable("eb_status", "i4", ("num_el_blk",))[:] = 1
-        for axis, name in enumerate(["coordx", "coordy", "coordz"]):
-            file.createVariable(name, real, ("num_nodes",))[:] = points[:, axis]
-        names = np.zeros((3, 33), dtype="S1")
-        for k, name in enumerate(["DISPLX", "DISPLY", "DISPLZ"]):
-            names[k, :6] = list(name)
-        file.createVariable("name_nod_var", "S1", ("num_nod_var", "len_name"))[:] = names
-        for number, (kind, nodes) in enumerate(blocks.items(), 1):
-            name, order = EXODUS[kind]
-            file.createDimension(f"num_el_in_blk{number}", len(nodes))
-            file.createDimension(f"num_nod_per_el{number}", nodes.shape[1])
-            shape = (f"num_el_in_blk{number}", f"num_nod_per_el{number}")
-            connect = file.createVariable(f"connect{number}", "i4", shape)
-            connect.elem_type = name
-            connect[:] = nodes[:, order] + 1
-        for k in range(3):
-            file.createVariable(f"vals_nod_var{k + 1}", real, ("time_step", "num_nodes"))
-        for row, (time, u) in enumerate(steps.items()):
-            file["time_whole"][row] = time
-            for k in range(3):
-                file[f"vals_nod_var{k + 1}"][row] = u[:, k]
 
 
 @pytest.mark.parametrize("kind", list(EXODUS))

@@ -45,11 +45,12 @@ def load(
     path = Path(path)
     form = identify(path)
     finder = DisplacementFinder(displacement)
-    raw = _read(path, form.reader, finder)
     try:
+        raw = _read(path, form.reader, finder)
         return _solid(path, raw, finder, need_displacement)
     except Front3DError as error:
-        raise ReadError(f"{path}: {error}") from None
+        said = str(error)
+        raise ReadError(said if said.startswith(str(path)) else f"{path}: {said}") from error
 
 
 def _read(path: Path, reader: str, finder: DisplacementFinder) -> RawModel:

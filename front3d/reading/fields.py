@@ -25,9 +25,12 @@ _BASES = (
 )  # fmt: skip
 # Alone they mean something else, but their components are displacements.
 _SCALAR_BASES = (*_BASES, "d")
-_NOT_A_CASE = re.compile(
-    r"magnitude|mag|norm|error|velocity|rate|acceleration|increment|gradient|grad|previous|old"
-)
+_NOT_A_CASE = frozenset(
+    {
+        "magnitude", "mag", "norm", "error", "velocity", "rate", "acceleration", "increment",
+        "gradient", "grad", "previous",
+    }
+)  # fmt: skip
 _COMPONENTS = (("x", "y", "z"), ("1", "2", "3"), ("0", "1", "2"))
 _HOW = "choose it by name (displacement=NAME), three scalars by NAME_X,NAME_Y,NAME_Z"
 
@@ -148,12 +151,14 @@ def _cases(arrays: Arrays, bases: tuple[str, ...]) -> dict[str, NDArray[Any]]:
         if len(base) > 3:
             patterns.append(rf"(.+)_{base}")
         for name, array in arrays.items():
-            match = next((m for p in patterns if (m := re.fullmatch(p, _plain(name)))), None)
-            if match and _width(array) > 1 and not _NOT_A_CASE.search(match[1]):
-                start = _plain(name).find(match[1])
-                same_length = len(_plain(name)) == len(name)
-                case = name[start : start + len(match[1])] if same_length else match[1]
-                found[case] = array
+            plain = _plain(name)
+            match = next((m for p in patterns if (m := re.fullmatch(p, plain))), None)
+            if match is None or _width(array) == 1 or plain in _BASES:
+                continue
+            if _NOT_A_CASE.isdisjoint(match[1].split("_")):
+                # The case keeps its own capitals and marks where that is easy.
+                start, end = match.span(1)
+                found[name[start:end] if len(plain) == len(name) else match[1]] = array
         if found:
             return found
     return {}

@@ -64,12 +64,17 @@ def vtk_library(path: Path, what: str, *, native: bool = False) -> Iterator[None
 
 
 def _vtk_errors(text: str) -> str:
-    """The first error message of a VTK log; warnings do not count."""
-    found = re.search(r"ERROR: In [^\n]*\n(.*?)(?:\n\n|\Z)", text or "", re.DOTALL)
-    if not found:
-        return ""
-    message = re.sub(r"^\w+ \((?:0x)?[0-9a-fA-F]+\): ", "", found[1].strip())
-    return " ".join(message.split())[:300] or "no reason given"
+    """The first error message of a VTK log that counts; mere warnings do not."""
+    # Binary data that end too early are only warned of.
+    pattern = (
+        r"(?:ERROR: In [^\n]*\n|Generic Warning: In [^\n]*\n(?=Error reading))(.*?)(?:\n\n|\Z)"
+    )
+    for found in re.finditer(pattern, text or "", re.DOTALL):
+        message = re.sub(r"^\w+ \((?:0x)?[0-9a-fA-F]+\): ", "", found[1].strip())
+        # Metadata such as the range of an array; VTK cannot read back an infinite one.
+        if not message.startswith("Error reading InformationKey"):
+            return " ".join(message.split())[:300] or "no reason given"
+    return ""
 
 
 @contextmanager

@@ -115,7 +115,6 @@ def _header(file: BinaryIO) -> tuple[str, bool, int]:
 
 def _node_data(file: BinaryIO, ascii_: bool) -> tuple[str, int, float, Any, Any]:
     """Name, time step, time, node numbers from 0, and values (nodes, components)."""
-    from meshio.gmsh import common
 
     def tag_lines() -> list[str]:
         count = int(file.readline())
@@ -135,7 +134,8 @@ def _node_data(file: BinaryIO, ascii_: bool) -> tuple[str, int, float, Any, Any]
         if len(rows) != count:
             raise ReadError(f"$NodeData {name!r} holds {len(rows)} nodes, expected {count}")
         numbers, values = rows["node"].astype(np.int64), rows["values"]
-    common._fast_forward_to_end_block(file, "NodeData")
+    if not any(line.strip() == b"$EndNodeData" for line in file):
+        raise ReadError(f"$NodeData {name!r} is not closed: the file is cut short")
     return name, step, float(reals[0]) if reals else 0.0, numbers - 1, values
 
 

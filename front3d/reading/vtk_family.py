@@ -12,6 +12,8 @@ from front3d.errors import ReadError
 from front3d.reading.fields import DisplacementFinder
 from front3d.reading.files import identify
 from front3d.reading.guard import python_library, vtk_library
+from front3d.reading.legacy import check_tail
+from front3d.reading.netcdf import check_length
 from front3d.reading.raw import RawModel
 from front3d.reading.vtk_grid import has_solid, point_arrays, time_of, to_grid, to_model
 
@@ -29,6 +31,7 @@ def _load_vtu(path: Path) -> Any:
 def _load_legacy(path: Path) -> Any:
     from vtkmodules.vtkIOLegacy import vtkGenericDataObjectReader
 
+    check_tail(path)
     with vtk_library(path, "VTK legacy"):
         reader = vtkGenericDataObjectReader()
         reader.SetFileName(str(path))
@@ -111,6 +114,7 @@ def _read_vtkhdf(path: Path, finder: DisplacementFinder) -> RawModel:
 def _read_exodus(path: Path, finder: DisplacementFinder) -> RawModel:
     from vtkmodules.vtkIOExodus import vtkExodusIIReader
 
+    check_length(path)
     series = _Series(path, finder)
     with vtk_library(path, "Exodus", native=True):
         reader = vtkExodusIIReader()
