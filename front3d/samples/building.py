@@ -7,10 +7,10 @@ import numpy as np
 
 from front3d.errors import CaseError
 from front3d.samples.cells import check_cells
-from front3d.samples.elasticity import boundary_faces, held_points, traction_load
+from front3d.samples.elasticity import boundary_faces, traction_load
 from front3d.samples.penny import PENNY
 from front3d.samples.sample import Sample, SampleSpec
-from front3d.samples.solver import Progress, solve
+from front3d.samples.solver import Progress, solve_unfolded
 from front3d.samples.surface_crack import SURFACE_CRACK
 from front3d.solid import Material, Solid, Step
 
@@ -53,7 +53,8 @@ def build(
     values = spec.values(parameters)
     if progress:
         progress("meshing", 0.0)
-    solid = spec.mesh(values, cells)
+    model = spec.mesh(values, cells)
+    solid = model.solid
     material = Material(values["young"], values["poisson"])
     loads = spec.loads(values)
     faces = boundary_faces(solid)
@@ -67,7 +68,7 @@ def build(
             for load in loads
         ]
     )
-    moved = solve(solid, material, forces, held_points(solid.points), progress=progress)
+    moved = solve_unfolded(model, material, forces, progress)
     steps = tuple(
         Step(load.name, u, float(k)) for k, (load, u) in enumerate(zip(loads, moved, strict=True))
     )

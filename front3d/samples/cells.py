@@ -1,13 +1,13 @@
-"""Cutting a half into the wanted cells, and mirroring it to the whole solid."""
+"""Cutting the lattice of a part into the wanted kind of cells."""
 
 from typing import Literal, get_args
 
 import numpy as np
 
-from front3d.arrays import FloatArray, IntArray
 from front3d.elements import ELEMENTS
 from front3d.errors import CaseError
-from front3d.samples.lattice import Half
+from front3d.samples.lattice import Lattice
+from front3d.samples.mirror import Plane, Unfolded, unfold
 from front3d.samples.tetrahedra import split
 from front3d.solid import CellBlock, Solid
 
@@ -21,57 +21,37 @@ def check_cells(cells: str) -> None:
         raise CaseError(f"cells: found {cells!r}, expected one of {', '.join(CELL_KINDS)}")
 
 
-def cut(half: Half, cells: str) -> list[CellBlock]:
-    """The cells of the upper half.
+def cut(lattice: Lattice, cells: str) -> list[CellBlock]:
+    """Cells on the nodes of the lattice.
 
     bricks: 20-node bricks and 15-node wedges; brick8: 8-node bricks and 6-node wedges;
     tetra10: quadratic tetrahedra.
     """
     check_cells(cells)
     if cells == "tetra10":
-        return [CellBlock("tetra10", split(half))]
+        return [CellBlock("tetra10", split(lattice))]
     brick, wedge = ("hexahedron20", "wedge15") if cells == "bricks" else ("hexahedron", "wedge")
     return [
         CellBlock(kind, nodes[:, : len(ELEMENTS[kind].nodes)])
-        for kind, nodes in ((brick, half.bricks), (wedge, half.wedges))
+        for kind, nodes in ((brick, lattice.bricks), (wedge, lattice.wedges))
     ]
 
 
-def whole_solid(half: Half, cells: str, source: str) -> Solid:
-    """The half and its reflection in z = 0, sharing the joined nodes only.
+def cracked_solid(lattice: Lattice, axes: tuple[int, ...], cells: str, name: str) -> Unfolded:
+    """The solid whose part is the lattice: unfolded in the coordinate `axes`, then in z = 0.
 
-    Nodes of the crack faces stay double; the cells of the two faces match, because the lower
-    half is an image of the upper one.
+    In z = 0 the two halves share the joined nodes only.  The nodes of the crack faces stay
+    double, and their cells match, because one half is an image of the other.
     """
-    upper = cut(half, cells)
-    n = len(half.points)
-    image = np.arange(n, 2 * n)
-    image[half.joined] = np.flatnonzero(half.joined)
-    blocks = [
-        CellBlock(b.kind, np.concatenate([b.nodes, image[b.nodes[:, mirror_order(b.kind)]]]))
-        for b in upper
-    ]
-    points = np.concatenate([half.points, half.points * (1, 1, -1) + 0.0])
-    return _without_unused(points, blocks, source)
-
-
-def mirror_order(kind: str) -> IntArray:
-    """Order of the nodes of a reflected cell that keeps its orientation positive.
-
-    The reference cell has a plane of symmetry; walking the nodes in that reflection undoes
-    the reversal.
-    """
-    nodes = ELEMENTS[kind].nodes
-    image = nodes[:, [1, 0, 2]] if ELEMENTS[kind].family == "tetra" else nodes * (1, 1, -1)
-    gap = np.abs(nodes[None] - image[:, None]).max(axis=2)
-    order: IntArray = np.argmin(gap, axis=1).astype(np.int64)
-    return order
-
-
-def _without_unused(points: FloatArray, blocks: list[CellBlock], source: str) -> Solid:
-    used = np.zeros(len(points), dtype=bool)
+    blocks = cut(lattice, cells)
+    used = np.zeros(len(lattice.points), dtype=bool)
     for block in blocks:
         used[block.nodes] = True
     number = np.cumsum(used) - 1
-    renumbered = tuple(CellBlock(b.kind, number[b.nodes]) for b in blocks)
-    return Solid(points[used], renumbered, source=source)
+    part = Solid(
+        lattice.points[used],
+        tuple(CellBlock(b.kind, number[b.nodes]) for b in blocks),
+        source=name,
+    )
+    sides = [Plane(axis, part.points[:, axis] == 0.0) for axis in axes]
+    return unfold(part, (*sides, Plane(2, lattice.joined[used])), name)

@@ -5,8 +5,8 @@ from collections.abc import Callable, Sequence
 import numpy as np
 from scipy.sparse import bsr_array, csr_array
 
-from front3d.arrays import BoolArray, FloatArray, IntArray
-from front3d.elements import ELEMENTS, FACES, ElementType
+from front3d.arrays import FloatArray, IntArray
+from front3d.elements import FACES
 from front3d.errors import MeshError
 from front3d.solid import CellBlock, Material, Solid
 
@@ -117,80 +117,3 @@ def traction_load(
         forces = np.einsum("qn,fqi,fq,q->fni", shape, t, area, weights, optimize=True)
         np.add.at(load, nodes, forces)
     return load
-
-
-def rigid_modes(points: FloatArray) -> FloatArray:
-    """(3 n, 6): three translations and three rotations about the centre of the points."""
-    x, y, z = (points - points.mean(axis=0)).T
-    modes = np.zeros((len(points), 3, 6))
-    modes[:, [0, 1, 2], [0, 1, 2]] = 1.0
-    modes[:, 1, 3], modes[:, 2, 3] = -z, y
-    modes[:, 0, 4], modes[:, 2, 4] = z, -x
-    modes[:, 0, 5], modes[:, 1, 5] = -y, x
-    return modes.reshape(-1, 6)
-
-
-def held_points(points: FloatArray) -> BoolArray:
-    """(n, 3) mask of six constraints on three far points that stop every rigid motion.
-
-    Loads in equilibrium leave no reaction there, so the choice of points does not matter for
-    the stresses.
-    """
-    scale = np.ptp(points, axis=0)
-    first = int(np.argmin(points @ np.array([1.0, 1.0, 1.0])))
-    second = int(np.argmax(np.linalg.norm(points - points[first], axis=1)))
-    axis = points[second] - points[first]
-    arm = np.linalg.norm(np.cross(points - points[first], axis), axis=1)
-    third = int(np.argmax(arm))
-    if arm[third] <= 1e-9 * float(scale.max()) ** 2:
-        raise MeshError("all points lie on one line: found no third point to hold the solid")
-    held = np.zeros(points.shape, dtype=bool)
-    held[first] = True
-    along = int(np.argmax(np.abs(axis)))
-    held[second] = True
-    held[second, along] = False
-    normal = np.cross(axis, points[third] - points[first])
-    held[third, int(np.argmax(np.abs(normal)))] = True
-    return held
-
-
-def linear_interpolation(solid: Solid) -> tuple[csr_array, IntArray]:
-    """Matrix from values at corner nodes to values at all nodes, and the corner nodes.
-
-    A mid-side node takes the mean of its edge, other nodes the mean of their face or body, as
-    the linear element on the same corners does.
-    """
-    n = len(solid.points)
-    is_corner = np.zeros(n, dtype=bool)
-    for block in solid.blocks:
-        is_corner[block.nodes[:, : block.element.n_corners]] = True
-    corners = np.flatnonzero(is_corner)
-    number = np.cumsum(is_corner) - 1
-    rows, columns, values = [corners], [number[corners]], [np.ones(len(corners))]
-    seen = is_corner.copy()
-    for block in solid.blocks:
-        for local, weights in _interior_weights(block.element):
-            node = block.nodes[:, local]
-            fresh, first = np.unique(node, return_index=True)
-            first = first[~seen[fresh]]
-            seen[node[first]] = True
-            for corner, weight in weights:
-                rows.append(node[first])
-                columns.append(number[block.nodes[first, corner]])
-                values.append(np.full(len(first), weight))
-    matrix = csr_array(
-        (np.concatenate(values), (np.concatenate(rows), np.concatenate(columns))),
-        shape=(n, len(corners)),
-    )
-    return matrix, corners
-
-
-def _interior_weights(element: ElementType) -> list[tuple[int, list[tuple[int, float]]]]:
-    linear = {"tetra": "tetra", "hexahedron": "hexahedron", "wedge": "wedge", "pyramid": "pyramid"}
-    base = ELEMENTS[linear[element.family]]
-    out = []
-    for local in range(element.n_corners, len(element.nodes)):
-        shape = base.values(element.nodes[local : local + 1])[0]
-        used = np.flatnonzero(np.abs(shape) > 1e-12)
-        out.append((local, [(int(k), float(shape[k])) for k in used]))
-    return out

@@ -6,7 +6,7 @@ because a mapping is evaluated at the half indices, mid-side nodes lie on the tr
 """
 
 from collections.abc import Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 import numpy as np
 from scipy.sparse import coo_array
@@ -22,7 +22,7 @@ _PRISM = np.vstack([ELEMENTS["wedge15"].nodes, [[0.5, 0, 0], [0.5, 0.5, 0], [0, 
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Block:
-    """A structured block of the upper half, z >= 0.
+    """A structured block of a part in the upper half, z >= 0.
 
     Attributes
     ----------
@@ -36,16 +36,10 @@ class Block:
     joined: BoolArray
     wedges: bool = False
 
-    def mirrored(self, axis: int) -> "Block":
-        """The reflection in the plane through the origin normal to coordinate `axis`."""
-        points = self.points.copy()
-        points[..., axis] *= -1.0
-        return replace(self, points=points + 0.0)  # + 0.0 turns -0.0 into 0.0
-
 
 @dataclass(frozen=True, slots=True, eq=False)
-class Half:
-    """The upper half of a solid: every node that any kind of cell may need.
+class Lattice:
+    """A part of a solid, in the upper half: every node that any kind of cell may need.
 
     Attributes
     ----------
@@ -62,7 +56,7 @@ class Half:
     joined: BoolArray
 
 
-def unite(blocks: Sequence[Block], tolerance: float) -> Half:
+def unite(blocks: Sequence[Block], tolerance: float) -> Lattice:
     """Join blocks where their nodes coincide within `tolerance`.
 
     The upper half alone has no coincident nodes that must stay apart, so coordinates decide.
@@ -70,13 +64,15 @@ def unite(blocks: Sequence[Block], tolerance: float) -> Half:
     points = np.concatenate([b.points.reshape(-1, 3) for b in blocks])
     numbers, first = _merge(points, tolerance)
     joined = np.zeros(len(first), dtype=bool)
-    bricks, wedges, start = [], [], 0
+    bricks: list[IntArray] = []
+    wedges: list[IntArray] = []
+    start = 0
     for block in blocks:
         ids = numbers[start : start + block.joined.size].reshape(block.joined.shape)
         start += block.joined.size
         joined[ids[block.joined]] = True
         (wedges if block.wedges else bricks).append(_cells(block, ids))
-    return Half(points[first], np.concatenate(bricks), np.concatenate(wedges), joined)
+    return Lattice(points[first], np.concatenate(bricks), np.concatenate(wedges), joined)
 
 
 def _merge(points: FloatArray, tolerance: float) -> tuple[IntArray, IntArray]:

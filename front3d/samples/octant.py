@@ -1,20 +1,16 @@
-"""From a quarter of the crack plane to the upper half of a solid."""
-
-from collections.abc import Sequence
+"""From a quarter of the crack plane to an eighth of a solid."""
 
 import numpy as np
 
 from front3d.arrays import FloatArray
 from front3d.samples import grading
 from front3d.samples.ellipse import curve, spread_angles
-from front3d.samples.lattice import Block, Half, unite
+from front3d.samples.lattice import Block, Lattice, unite
 from front3d.samples.sheet import Density, Patch, Quarter, quarter_sheet
 
 
-def upper_half(
-    shape: Quarter, density: Density, height: float, mirrored: Sequence[int] = ()
-) -> Half:
-    """Mesh of 0 <= z <= height above a quarter crack plane, mirrored in the given axes.
+def octant(shape: Quarter, density: Density, height: float) -> Lattice:
+    """Lattice of 0 <= z <= height above a quarter crack plane.
 
     The patches are drawn up along z; those next to the front start above the tube, whose
     cross-section takes their place below.
@@ -22,8 +18,6 @@ def upper_half(
     levels, low = _levels(shape, density, height)
     blocks = [_drawn(p, levels[low if p.in_tube else 0 :]) for p in quarter_sheet(shape, density)]
     blocks += _tube_blocks(shape, density)
-    for axis in mirrored:
-        blocks += [block.mirrored(axis) for block in blocks]
     return unite(blocks, 1e-9 * max(shape.width, shape.depth, height))
 
 

@@ -6,9 +6,10 @@ from math import cos, radians, sin
 import numpy as np
 
 from front3d.arrays import BoolArray, FloatArray
-from front3d.samples.cells import whole_solid
+from front3d.samples.cells import cracked_solid
 from front3d.samples.fineness import density
-from front3d.samples.octant import upper_half
+from front3d.samples.mirror import Unfolded
+from front3d.samples.octant import octant
 from front3d.samples.sample import (
     Load,
     Parameter,
@@ -19,7 +20,6 @@ from front3d.samples.sample import (
     required,
 )
 from front3d.samples.sheet import Quarter
-from front3d.solid import Solid
 
 _PARAMETERS = {
     "radius": Parameter("radius of the crack", 10.0, 1e-9, 1e9, "length"),
@@ -41,11 +41,12 @@ def _complete(given: Mapping[str, float | None]) -> Values:
     return values
 
 
-def _mesh(values: Values, cells: str) -> Solid:
+def _mesh(values: Values, cells: str) -> Unfolded:
     a, body = values["radius"], values["body"]
     shape = Quarter(a, a, radius=0.25 * a, width=body, depth=body, round=True)
-    half = upper_half(shape, density(cells, values["refine"], 4), body, mirrored=(0, 1))
-    return whole_solid(half, cells, "penny")
+    return cracked_solid(
+        octant(shape, density(cells, values["refine"], 4), body), (0, 1), cells, "penny"
+    )
 
 
 def _loads(values: Values) -> tuple[Load, ...]:

@@ -7,6 +7,7 @@ from math import isfinite
 from front3d.arrays import BoolArray, FloatArray
 from front3d.errors import CaseError
 from front3d.samples.elasticity import Traction
+from front3d.samples.mirror import Unfolded
 from front3d.solid import Material, Solid
 
 Values = dict[str, float]
@@ -97,7 +98,7 @@ class SampleSpec:
     description : one line
     parameters : by name
     complete : fills the parameters whose default is None, and checks ratios between them
-    mesh : (values, cells) -> solid without steps
+    mesh : (values, cells) -> solid without steps, and the part it is unfolded from
     loads : values -> one or more loads, each in equilibrium
     """
 
@@ -105,7 +106,7 @@ class SampleSpec:
     description: str
     parameters: Mapping[str, Parameter]
     complete: Callable[[Mapping[str, float | None]], Values]
-    mesh: Callable[[Values, str], Solid]
+    mesh: Callable[[Values, str], Unfolded]
     loads: Callable[[Values], tuple[Load, ...]]
 
     def values(self, given: Mapping[str, float]) -> Values:

@@ -120,7 +120,7 @@ def _outer(arc: FloatArray, shape: Quarter, density: Density) -> list[Patch]:
     if width == shape.width:
         return [patch]
     columns = patch.points[: split + 1, -1]
-    last = np.linalg.norm(patch.points[0, -1] - patch.points[0, -3])
+    last = float(patch.points[0, -1, 0] - patch.points[0, -3, 0])
     n = grading.count(shape.width - width, last, density.growth)
     part = grading.fractions(shape.width - width, last, n)[0]
     far = np.repeat(columns[:, None], len(part), axis=1)

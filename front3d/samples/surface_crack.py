@@ -5,10 +5,11 @@ from collections.abc import Mapping
 import numpy as np
 
 from front3d.arrays import BoolArray, FloatArray
-from front3d.samples.cells import whole_solid
+from front3d.samples.cells import cracked_solid
 from front3d.samples.ellipse import smallest_radius
 from front3d.samples.fineness import density
-from front3d.samples.octant import upper_half
+from front3d.samples.mirror import Unfolded
+from front3d.samples.octant import octant
 from front3d.samples.sample import (
     Load,
     Parameter,
@@ -19,7 +20,6 @@ from front3d.samples.sample import (
     required,
 )
 from front3d.samples.sheet import Quarter
-from front3d.solid import Solid
 
 _PARAMETERS = {
     "depth": Parameter("depth of the crack, a", 6.0, 1e-9, 1e9, "length"),
@@ -54,21 +54,20 @@ def _complete(given: Mapping[str, float | None]) -> Values:
     return values
 
 
-def _mesh(values: Values, cells: str) -> Solid:
+def _mesh(values: Values, cells: str) -> Unfolded:
     a, c, t = values["depth"], values["half_length"], values["thickness"]
     radius = min(0.25 * a, 0.25 * c, 0.5 * smallest_radius(a, c), 0.4 * (t - a))
     shape = Quarter(a, c, radius, width=values["half_width"], depth=t)
     fine = density(cells, values["refine"], 2)
-    half = upper_half(shape, fine, values["half_height"], mirrored=(0,))
-    return whole_solid(half, cells, "surface-crack")
+    return cracked_solid(octant(shape, fine, values["half_height"]), (0,), cells, "surface-crack")
 
 
 def _loads(values: Values) -> tuple[Load, ...]:
     height, t = values["half_height"], values["thickness"]
 
     def ends(faces: FloatArray) -> BoolArray:
-        out: BoolArray = (np.abs(np.abs(faces[:, :, 2]) - height) < 1e-9 * height).all(axis=1)
-        return out
+        gap: FloatArray = np.abs(np.abs(faces[:, :, 2]) - height).max(axis=1)
+        return gap < 1e-9 * height
 
     def tension(points: FloatArray, normals: FloatArray) -> FloatArray:
         return values["tension"] * normals

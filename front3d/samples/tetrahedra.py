@@ -13,14 +13,14 @@ import numpy as np
 
 from front3d.arrays import IntArray
 from front3d.elements import ELEMENTS
-from front3d.samples.lattice import Half
+from front3d.samples.lattice import Lattice
 
 _TETRA_EDGES = [(0, 1), (1, 2), (2, 0), (0, 3), (1, 3), (2, 3)]
 
 
-def split(half: Half) -> IntArray:
-    """Tetrahedra, (n, 10), of the upper half; both kinds of cells."""
-    parts = [_split_cells(half.bricks, "hexahedron20"), _split_cells(half.wedges, "wedge15")]
+def split(lattice: Lattice) -> IntArray:
+    """Tetrahedra, (n, 10), of a part, from both kinds of its cells."""
+    parts = [_split_cells(lattice.bricks, "hexahedron20"), _split_cells(lattice.wedges, "wedge15")]
     return np.concatenate(parts)
 
 

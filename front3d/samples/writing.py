@@ -1,6 +1,5 @@
 """Writing a sample: the result as VTU, and a case file beside it."""
 
-import os
 from pathlib import Path
 from tempfile import TemporaryDirectory
 
@@ -24,7 +23,7 @@ def write_sample(sample: Sample, directory: str | Path) -> tuple[Path, Path]:
         made[1].write_text(case_text(sample), encoding="utf-8")
         vtu, case = (folder / path.name for path in made)
         for source, target in zip(made, (vtu, case), strict=True):
-            os.replace(source, target)
+            source.replace(target)
     return vtu, case
 
 
