@@ -50,22 +50,25 @@ def build_hats(solid: Solid, front: Front, width: float) -> Hats:
     tents = _tents(front, s, width, 1.0)
     gap = s[tents.row] - front.corner_s[tents.col]
     weight = tents.data * area[tents.row]
-    moments = [np.bincount(tents.col, weight * gap**power, minlength=n) for power in range(3)]
-    level, tilt = 1.0 / moments[0], np.zeros(n)
+    zeroth, first, second = (
+        np.bincount(tents.col, weight * gap**power, minlength=n) for power in range(3)
+    )
+    level, tilt = 1.0 / zeroth, np.zeros(n)
     cut = _cut_stations(front, width)
-    determinant = moments[0] * moments[2] - moments[1] ** 2
-    level[cut] = (moments[2] / determinant)[cut]
-    tilt[cut] = (-moments[1] / determinant)[cut]
+    determinant = zeroth * second - first**2
+    # A tent one edge wide on linear edges holds its own station only: nothing to tilt by.
+    cut = cut[determinant[cut] > 1e-9 * zeroth[cut] ** 2 * front.length**2 / n**2]
+    level[cut] = second[cut] / determinant[cut]
+    tilt[cut] = -first[cut] / determinant[cut]
     return Hats(front, width, level, tilt)
 
 
-def default_width(front: Front, touching_families: frozenset[str]) -> float:
+def default_width(front: Front, structured: bool) -> float:
     """One edge where bricks and wedges surround the front, four where tetrahedra do.
 
     On a structured ring the integral does not scatter and a wider hat would only blunt K; on
     tetrahedra the scatter falls as the hat widens.  Never more than a quarter of the front.
     """
-    structured = touching_families <= {"hexahedron", "wedge"}
     return 1.0 if structured else float(np.clip(len(front.edges) / 4, 1.0, 4.0))
 
 

@@ -22,10 +22,18 @@ from front3d.errors import MeshError
 from front3d.methods import nodal_forces
 from front3d.methods.context import FrontContext
 from front3d.methods.hats import build_hats, default_width
-from front3d.methods.tube import Tube, along_front, build_tube, plateau_radii, ring_radii
+from front3d.methods.tube import (
+    N_RINGS,
+    Tube,
+    along_front,
+    build_tube,
+    is_structured,
+    layer_reaches,
+    ring_radii,
+)
 from front3d.results import MethodResult, Rings
 
-NEAR_RULE, FAR_RULE, FACE_RULE = 5, 3, 8
+NEAR_RULE, FAR_RULE, FACE_RULE = 4, 3, 8
 """Gauss points a side: in cells that touch the front, where stresses are singular; elsewhere; and
 on faces, where the pressure's part is integrated through the singular auxiliary field."""
 
@@ -41,16 +49,17 @@ def evaluate(context: FrontContext) -> list[MethodResult]:
     """K of one front, one result per step."""
     solid, front, options = context.solid, context.front, context.options
     same = context.model.same
-    plateau = plateau_radii(solid, front, same)
-    radii = ring_radii(front, plateau, options.radii, solid.source)
+    structured = is_structured(solid, front, same)
+    reaches = layer_reaches(solid, front, same, 1 + N_RINGS)
+    radii = ring_radii(front, reaches, structured, options.radii, solid.source)
     tube = build_tube(solid, front, context.patch, same, float(radii.max()))
     forces = _nodal_forces(context, tube)
-    width = options.hat if options.hat is not None else default_width(front, tube.families)
+    width = options.hat if options.hat is not None else default_width(front, structured)
     hats = build_hats(solid, front, width)
     _, frame, _ = front.curve.frames(tube.s)
     along = np.einsum("fmnk,nk->fmn", forces, frame[:, 0])
     even, odd = hats.weights(tube.s), hats.weights(tube.s, odd=True)
-    flat = along_front(front, plateau, tube.s) * (1 + 1e-9)
+    flat = along_front(front, reaches[0], tube.s) * (1 + 1e-9)
     integrals = []
     for ring in radii:
         outer = along_front(front, ring, tube.s)

@@ -3,20 +3,31 @@
 from dataclasses import dataclass
 
 import numpy as np
+from scipy.spatial import cKDTree
 
 from front3d.arrays import BoolArray, FloatArray, IntArray
 from front3d.crack.coincidence import Coincidence
 from front3d.crack.front import Front, near_nodes
-from front3d.crack.patches import Patch, marked
+from front3d.crack.patches import Patch
 from front3d.errors import MethodError
 from front3d.solid import Solid
 
-DEFAULT_RINGS = (1.6, 2.0, 2.5, 3.0)
-"""Outer radii of the default rings in units of the plateau, the reach of the cells at the front."""
+N_RINGS = 4
+"""Rings taken by default around a structured front, one per layer of cells after the first."""
+
+RING_RATIOS = (1.6, 2.0, 2.5, 3.0)
+"""Outer radii of the default rings elsewhere, in reaches of the cells that touch the front."""
 
 MAX_TURN = 0.6
 """Largest ring radius in units of the front's radius of curvature: beyond it the planes across
 the front begin to meet and distances from it lose their meaning."""
+
+
+def is_structured(solid: Solid, front: Front, same: Coincidence) -> bool:
+    """Whether only bricks and wedges touch the front."""
+    on_front = np.isin(same.entity, same.entity[front.nodes])
+    families = {b.element.family for b in solid.blocks if on_front[b.nodes].any()}
+    return families <= {"hexahedron", "wedge"}
 
 
 def along_front(front: Front, at_corners: FloatArray, s: FloatArray) -> FloatArray:
@@ -37,7 +48,6 @@ class Tube:
     nodes : (m,) the nodes of these cells; local numbers below refer to rows of this
     s, r : (m,) arc length of the nearest front point, and distance from it
     side : (n_points,) int, +1 for nodes on the upper face only, -1 lower, 0 others
-    families : families of the cells that touch the front
     """
 
     cells: tuple[IntArray, ...]
@@ -46,33 +56,30 @@ class Tube:
     s: FloatArray
     r: FloatArray
     side: IntArray
-    families: frozenset[str]
 
 
-def plateau_radii(solid: Solid, front: Front, same: Coincidence) -> FloatArray:
-    """(n_corners,) largest distance from the front of a node of the cells that touch it there.
+def layer_reaches(solid: Solid, front: Front, same: Coincidence, count: int) -> FloatArray:
+    """(count, n_corners) how far each layer of cells reaches from the front, at each corner node.
 
-    Smoothed upwards over neighbouring corner nodes, so that q is flat on every touching cell.
+    Layer 0 are the cells that touch the front, layer k + 1 those that touch layer k.  The reach at
+    a corner node is the largest over it and its two neighbours.
     """
-    on_front = marked(len(solid.points), front.nodes)
-    on_front = on_front | np.isin(same.entity, same.entity[front.nodes])
-    position = {int(same.entity[n]): i for i, n in enumerate(front.corners)}
-    reach = np.zeros(len(front.corners))
-    for block in solid.blocks:
-        cells = block.nodes[on_front[block.nodes].any(axis=1)]
-        for row in cells:
-            here = {position[int(e)] for e in same.entity[row] if int(e) in position}
-            if not here:
-                continue
-            index = np.array(sorted(here))
-            x = solid.points[row]
-            _, distance = front.curve.project(x, np.full(len(row), front.corner_s[index[0]]))
-            reach[index] = np.maximum(reach[index], distance.max())
-    around = (-1, 0, 1)
-    if front.closed:
-        return np.max([np.roll(reach, k) for k in around], axis=0)
-    padded = np.pad(reach, 1, mode="edge")
-    return np.max([padded[1 + k : len(padded) - 1 + k] for k in around], axis=0)
+    n = len(front.corners)
+    inside = np.isin(same.entity, same.entity[front.nodes])
+    reaches = []
+    for _ in range(count):
+        grown = np.zeros(len(inside), bool)
+        for block in solid.blocks:
+            grown[block.nodes[inside[block.nodes].any(axis=1)]] = True
+        inside = grown[same.entity] | grown
+        nodes = np.flatnonzero(grown)
+        s, r = project(front, solid.points[nodes])
+        corner = np.rint(front.cell_coordinate(s)).astype(np.int64) % n
+        reach = np.zeros(n)
+        np.maximum.at(reach, corner, r)
+        padded = np.pad(reach, 1, mode="wrap" if front.closed else "edge")
+        reaches.append(np.max([padded[:-2], padded[1:-1], padded[2:]], axis=0))
+    return np.stack(reaches)
 
 
 def build_tube(solid: Solid, front: Front, patch: Patch, same: Coincidence, reach: float) -> Tube:
@@ -89,7 +96,7 @@ def build_tube(solid: Solid, front: Front, patch: Patch, same: Coincidence, reac
     # Outer nodes of these cells lie beyond the reach: they need places too, for seeds.
     far = nodes[~np.isfinite(r[nodes])]
     if len(far):
-        s[far], r[far] = _project_far(solid, front, far)
+        s[far], r[far] = project(front, solid.points[far])
     on_front = np.isin(same.entity, same.entity[front.nodes])
     touching = tuple(
         on_front[block.nodes[c]].any(axis=1) for block, c in zip(solid.blocks, cells, strict=True)
@@ -100,51 +107,52 @@ def build_tube(solid: Solid, front: Front, patch: Patch, same: Coincidence, reac
     else:
         side[same.double & np.isin(same.entity, same.entity[patch.pairs[:, 0]])] = 1
         side[same.double & np.isin(same.entity, same.entity[patch.pairs[:, 1]])] = -1
-    families = frozenset(
-        block.element.family
-        for block, touches in zip(solid.blocks, touching, strict=True)
-        if touches.any()
-    )
-    return Tube(cells, touching, nodes, s[nodes], r[nodes], side, families)
-
-
-def _project_far(solid: Solid, front: Front, nodes: IntArray) -> tuple[FloatArray, FloatArray]:
-    from scipy.spatial import cKDTree
-
-    knots = front.curve.knots
-    places, _, _ = front.curve.frames(knots)
-    _, index = cKDTree(places).query(solid.points[nodes])
-    return front.curve.project(solid.points[nodes], knots[index])
+    return Tube(cells, touching, nodes, s[nodes], r[nodes], side)
 
 
 def ring_radii(
-    front: Front, plateau: FloatArray, given: tuple[float, ...] | None, source: str
+    front: Front,
+    reaches: FloatArray,
+    structured: bool,
+    given: tuple[float, ...] | None,
+    source: str,
 ) -> FloatArray:
     """(n_rings, n_corners) outer radii.
 
-    By default in proportion to the plateau, so that rings follow a graded mesh; given radii are
-    the same all along the front.
+    By default they follow the mesh: where bricks and wedges surround the front a ring ends with
+    each layer of cells after the first; elsewhere layers are ragged, and radii grow in proportion
+    to the reach of the first.  Given radii are the same all along the front.
     """
-    if given is None:
-        radii = np.outer(DEFAULT_RINGS, plateau)
-        _, _, turning = front.curve.frames(front.corner_s)
-        curvature = np.linalg.norm(turning[:, :2], axis=1).max()
-        limit = MAX_TURN / curvature if curvature > 0 else np.inf
-        scale = min(1.0, float(limit / radii.max()))
-        if scale * DEFAULT_RINGS[-1] < DEFAULT_RINGS[0]:
+    plateau = reaches[0]
+    if given is not None:
+        radii = np.sort(np.asarray(given, float))
+        if radii[0] <= plateau.max():
             raise MethodError(
-                f"{source}: the cells at the front reach out to {plateau.max():.3g}, but the "
-                f"front's radius of curvature is {1 / curvature:.3g}; refine the mesh around the "
-                "front"
+                f"{source}: found a ring radius of {radii[0]:g}, expected more than "
+                f"{plateau.max():.4g}, the reach of the cells that touch the front"
             )
-        if scale < 1.0:
-            ratios = np.linspace(DEFAULT_RINGS[0], scale * DEFAULT_RINGS[-1], len(DEFAULT_RINGS))
-            radii = np.outer(ratios, plateau)
-        return radii
-    radii = np.sort(np.asarray(given, float))
-    if radii[0] <= plateau.max():
+        return np.repeat(radii[:, None], len(plateau), axis=1)
+    _, _, turning = front.curve.frames(front.corner_s)
+    curvature = np.linalg.norm(turning[:, :2], axis=1)
+    largest = MAX_TURN / float((plateau * curvature).max() + 1e-300)
+    if largest < RING_RATIOS[0]:
+        worst = int(np.argmax(plateau * curvature))
         raise MethodError(
-            f"{source}: found a ring radius of {radii[0]:g}, expected more than "
-            f"{plateau.max():.4g}, the reach of the cells that touch the front"
+            f"{source}: the cells that touch the front reach {plateau[worst]:.3g} from it where "
+            f"its radius of curvature is {1 / curvature[worst]:.3g}; expected at most "
+            f"{MAX_TURN / RING_RATIOS[0]:.2f} of it: refine the mesh around the front"
         )
-    return np.repeat(radii[:, None], len(plateau), axis=1)
+    fitting = reaches[1:][(reaches[1:] * curvature).max(axis=1) <= MAX_TURN]
+    if structured and len(fitting) > 1:
+        return fitting
+    if largest < RING_RATIOS[-1]:
+        return np.outer(np.linspace(RING_RATIOS[0], largest, len(RING_RATIOS)), plateau)
+    return np.outer(RING_RATIOS, plateau)
+
+
+def project(front: Front, x: FloatArray) -> tuple[FloatArray, FloatArray]:
+    """Arc length of the nearest front point, and distance from it, of points x, (n, 3)."""
+    knots = front.curve.knots
+    places, _, _ = front.curve.frames(knots)
+    _, index = cKDTree(places).query(x)
+    return front.curve.project(x, knots[index])
