@@ -2,6 +2,7 @@
 
 import ast
 from collections.abc import Iterator
+from functools import cache
 from pathlib import Path
 
 import pytest
@@ -37,6 +38,7 @@ RANK = {module: rank for rank, modules in enumerate(RANKS) for module in modules
 FILES = sorted(PACKAGE.rglob("*.py"))
 
 
+@cache
 def tree(path: Path) -> ast.Module:
     return ast.parse(path.read_text(encoding="utf-8"), str(path))
 

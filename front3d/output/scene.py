@@ -18,6 +18,7 @@ from front3d.output.view import (
     drawn_mode,
     peak_station,
     skin,
+    smooth_curve,
 )
 from front3d.results import CAUTION, MODES, FrontResult
 from front3d.solid import Solid
@@ -60,7 +61,7 @@ def scene_png(solid: Solid, fronts: tuple[FrontResult, ...], units: Units) -> by
     view = best_view(fronts[0], _box_corners(low, high))
     box = (low, high)
     figure = Figure(figsize=(8.0, 6.0), dpi=150, facecolor="white")
-    near = figure.add_axes((0.0, 0.09, 0.8, 0.80))
+    near = figure.add_axes((0.0, 0.1, 0.765, 0.765))
     near.imshow(_render(_clipped(parts, box), fronts, scale, view, box))
     near.set_axis_off()
     _draw_axes(near, view)
@@ -149,11 +150,12 @@ def _render(
 def _tube(front: FrontResult, scale: Scale, radius: float) -> Any:
     import pyvista as pv
 
-    order = np.arange(len(front))
+    points, s = smooth_curve(front)
+    stations, K = front.s, front.K[:, scale.mode]
     if front.closed:
-        order = np.append(order, 0)
-    line = pv.PolyData(front.positions[order], lines=np.r_[len(order), np.arange(len(order))])
-    line.point_data["K"] = front.K[order, scale.mode]
+        stations, K = np.append(stations, front.length), np.append(K, K[0])
+    line = pv.PolyData(points, lines=np.r_[len(points), np.arange(len(points))])
+    line.point_data["K"] = np.interp(s, stations, K)  # straight between stations, as in the table
     return line.tube(radius=radius, n_sides=24)
 
 
@@ -177,16 +179,14 @@ def _mark_peak(
         text += f" {mathtext(units.K_label)}"
     if units.K_factor is not None and (units.stress, units.length) != ("MPa", "m"):
         text += f"\n{value * units.K_factor:.4g} {mathtext('MPa sqrt(m)')}"
-    # Outwards of the front as seen, so that neither words nor arrow lie on it.
-    ahead = np.array(_pixel(front.positions[i] + front.frames[i, 0], view)) - (x, y)
-    ahead *= 105 / max(float(np.linalg.norm(ahead)), 1e-9)
-    if abs(ahead[0]) < 60:
-        ahead[0] = np.copysign(60, ahead[0])
-    words = np.clip((x, y) + ahead * 1.6, (140, 80), (_SHAPE[0] - 140, _SHAPE[1] - 80))
+    if front.flags[i]:
+        text += f"\n{front.flags[i]}"
+    drawn = np.concatenate([[_pixel(x, view) for x in smooth_curve(f)[0]] for f in fronts])
+    words = place_for_words(np.array((x, y)), drawn, text.count("\n") + 1)
     axes.annotate(
         text,
         (x, y),
-        xytext=tuple(words),
+        xytext=words,
         ha="center",
         va="center",
         fontsize=13,
@@ -194,6 +194,28 @@ def _mark_peak(
         bbox={"boxstyle": "round,pad=0.3", "facecolor": "white", "edgecolor": _INK, "alpha": 0.92},
         arrowprops={"arrowstyle": "-|>", "color": _INK, "shrinkB": 5},
     )
+
+
+def place_for_words(
+    peak: FloatArray, drawn: FloatArray, lines: int, half_width: float = 150.0
+) -> tuple[float, float]:
+    """Middle of a box of words near `peak` that lies inside the panel and clear of the front.
+
+    `drawn` (n, 2) are points of the fronts in the panel; all lengths are pixels.
+    """
+    half = np.array([half_width, 22.0 * lines + 10.0])
+    best, least = peak, np.inf
+    for distance in (1.0, 1.5, 2.0):
+        for angle in np.radians(np.arange(0, 360, 30) - 90):
+            way = np.array([np.cos(angle), np.sin(angle)])
+            middle = peak + way * (half + 60.0 * distance)
+            outside = np.maximum(np.abs(middle - np.array(_SHAPE) / 2) + half, 0)
+            outside = np.maximum(outside - np.array(_SHAPE) / 2, 0).sum()
+            hidden = (np.abs(drawn - middle) < half + 12).all(axis=1).sum()
+            cost = 1000 * hidden + 10 * outside + 30 * distance
+            if cost < least:
+                best, least = middle, cost
+    return float(best[0]), float(best[1])
 
 
 def _draw_axes(axes: Any, view: View) -> None:

@@ -5,7 +5,7 @@ from typing import Any
 
 import numpy as np
 
-from front3d.arrays import BoolArray, FloatArray
+from front3d.arrays import BoolArray, FloatArray, IntArray
 from front3d.results import FrontResult
 from front3d.solid import Solid
 
@@ -38,11 +38,9 @@ def skin(solid: Solid, fronts: tuple[FrontResult, ...]) -> Skin:
         cells[kind] = np.concatenate([cells[kind], block.nodes]) if kind in cells else block.nodes
     grid = pv.UnstructuredGrid(cells, np.asarray(solid.points))
     surface: Any = grid.extract_surface(algorithm="dataset_surface")
-    centres = surface.cell_centers().points
-    normals = surface.compute_normals(
-        point_normals=False, auto_orient_normals=False, consistent_normals=False
-    ).cell_data["Normals"]
-    crack = crack_faces(np.asarray(centres, float), np.asarray(normals, float), fronts)
+    triangles = np.asarray(surface.triangulate().faces).reshape(-1, 4)[:, 1:]
+    surface = pv.PolyData.from_regular_faces(surface.points, triangles)
+    crack = crack_faces(np.asarray(surface.points, np.float64), triangles, fronts)
     return Skin(as_surface(surface.extract_cells(~crack)), as_surface(surface.extract_cells(crack)))
 
 
@@ -52,19 +50,58 @@ def as_surface(cells: Any) -> Any:
 
 
 def crack_faces(
-    centres: FloatArray, normals: FloatArray, fronts: tuple[FrontResult, ...]
+    points: FloatArray, triangles: IntArray, fronts: tuple[FrontResult, ...]
 ) -> BoolArray:
-    """Which boundary faces are crack faces, (faces,), for drawing only.
+    """Which boundary triangles (m, 3) belong to crack faces, (m,), for drawing only."""
+    corners = points[triangles]
+    normals = np.cross(corners[:, 1] - corners[:, 0], corners[:, 2] - corners[:, 0])
+    area = np.linalg.norm(normals, axis=1)
+    normals /= np.maximum(area, 1e-300)[:, None]
+    facing = _with_opposite(points, triangles, normals, np.sqrt(area))
+    return facing if facing.any() else _behind_front(corners.mean(axis=1), normals, fronts)
 
-    In a full model they are the faces that coincide in pairs; in a half model there are none,
-    and the faces are taken that lie in the plane of the nearest station, behind its front.
+
+def _with_opposite(
+    points: FloatArray, triangles: IntArray, normals: FloatArray, sizes: FloatArray
+) -> BoolArray:
+    """Triangles whose centre lies in another one that faces the other way.
+
+    Not by equal centres: the two sides may be cut into triangles along different diagonals.
     """
     from scipy.spatial import KDTree
 
-    size = float(np.linalg.norm(np.ptp(centres, axis=0)))
-    paired = np.asarray(KDTree(centres).query(centres, k=2)[0])[:, 1] < 1e-6 * size
-    if paired.any():
-        return np.asarray(paired)
+    used = np.unique(triangles)
+    extent = float(np.linalg.norm(np.ptp(points, axis=0)))
+    twin = np.zeros(len(points), dtype=bool)
+    twin[used] = np.asarray(KDTree(points[used]).query(points[used], k=2)[0])[:, 1] < 1e-6 * extent
+    # One row of triangles more: a corner of the front may leave one whose points are all on it.
+    twin[triangles[twin[triangles].any(axis=1)]] = True
+    near = np.flatnonzero(twin[triangles].any(axis=1))
+    found = np.zeros(len(triangles), dtype=bool)
+    if not len(near):
+        return found
+    corners = points[triangles[near]]
+    centres = corners.mean(axis=1)
+    _, around = KDTree(centres).query(centres, k=min(16, len(near)))
+    for other in np.asarray(around).T:
+        normal, size = normals[near[other]], sizes[near[other]]
+        offset = np.einsum("ij,ij->i", centres - corners[other, 0], normal)
+        inside = np.abs(offset) < 0.05 * size
+        inside &= np.einsum("ij,ij->i", normals[near], normal) < -0.9
+        for k in range(3):
+            side = corners[other, (k + 1) % 3] - corners[other, k]
+            left = np.cross(side, centres - corners[other, k])
+            inside &= np.einsum("ij,ij->i", left, normal) > -1e-9 * size**2
+        found[near] |= inside
+    return found
+
+
+def _behind_front(
+    centres: FloatArray, normals: FloatArray, fronts: tuple[FrontResult, ...]
+) -> BoolArray:
+    """For a half model: triangles in the plane of the nearest station, behind the front."""
+    from scipy.spatial import KDTree
+
     positions = np.concatenate([front.positions for front in fronts])
     frames = np.concatenate([front.frames for front in fronts])
     reach, nearest = KDTree(positions).query(centres)
@@ -73,7 +110,19 @@ def crack_faces(
     in_plane = np.abs(np.einsum("ij,ij->i", offset, e2)) < 1e-3 * reach
     behind = np.einsum("ij,ij->i", offset, e1) < 0
     facing = np.abs(np.einsum("ij,ij->i", normals, e2)) > 0.99
-    return np.asarray(in_plane & behind & facing)
+    out: BoolArray = in_plane & behind & facing
+    return out
+
+
+def smooth_curve(front: FrontResult, between: int = 20) -> tuple[FloatArray, FloatArray]:
+    """Points (m, 3) on a cubic spline through the stations, and their arc lengths (m,)."""
+    from scipy.interpolate import CubicSpline
+
+    s, positions = front.s, front.positions
+    if front.closed:
+        s, positions = np.append(s, front.length), np.vstack([positions, positions[:1]])
+    fine = np.interp(np.arange(between * (len(s) - 1) + 1) / between, np.arange(len(s)), s)
+    return CubicSpline(s, positions, bc_type="periodic" if front.closed else "natural")(fine), fine
 
 
 def best_view(front: FrontResult, points: FloatArray) -> View:
@@ -89,7 +138,10 @@ def best_view(front: FrontResult, points: FloatArray) -> View:
     if front.closed or np.linalg.norm(depth) < 0.02 * front.length:
         flat = front.positions - front.positions.mean(axis=0)
         flat = flat - np.outer(flat @ up, up)
-        axes = np.linalg.svd(flat, full_matrices=False)[2]
+        _, widths, axes = np.linalg.svd(flat, full_matrices=False)
+        if front.closed and widths[0] < 1.02 * widths[1]:  # round: along a coordinate axis
+            axes = np.eye(3)[np.argsort(np.abs(up), kind="stable")]
+            axes = axes - np.outer(axes @ up, up)
         long = axes[0] if front.closed else front.frames[:, 2].mean(axis=0)
         towards = np.cross(_unit(long, axes[0]), up)
         if not front.closed:
