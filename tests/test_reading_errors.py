@@ -7,12 +7,14 @@ import os
 
 import h5py
 import meshio
+import netCDF4
 import numpy as np
 import pytest
 import pyvista as pv
 
 from front3d.errors import ReadError
 from front3d.reading import FORMATS, load
+from front3d.reading.guard import vtk_library
 from tests.reading_models import cells, displacement, grid, mesh, mixed, write_exodus
 
 SUFFIXES = [form.suffixes[0] for form in FORMATS]
@@ -228,6 +230,41 @@ def test_other_files_of_a_family_are_told_apart(tmp_path, refuse):
     with h5py.File(tmp_path / "a.med", "w") as file:
         file["numbers"] = [1, 2]
     refuse(tmp_path / "a.med", "HDF5 with numbers", "MED")
+
+
+def test_a_netcdf_file_that_is_no_exodus(tmp_path, refuse):
+    for name, form in (("a.e", "NETCDF3_CLASSIC"), ("b.e", "NETCDF4")):
+        with netCDF4.Dataset(tmp_path / name, "w", format=form) as file:
+            file.api_version = np.float32(5.1)
+            file.createDimension("x", 3)
+            file.createVariable("x", "f8", ("x",))[:] = 1.0
+        refuse(tmp_path / name, "cannot be read as Exodus")
+
+
+def test_what_c_libraries_write_to_standard_error_goes_into_the_message(tmp_path, capfd):
+    """The Exodus and HDF5 libraries write to file descriptor 2, behind Python and VTK."""
+    with (
+        pytest.raises(ReadError, match=r"a\.e: cannot be read as Exodus: a damaged header; check"),
+        vtk_library(tmp_path / "a.e", "Exodus", native=True),
+    ):
+        os.write(2, b"a damaged\nheader\n")
+        raise ReadError("no mesh")
+    with vtk_library(tmp_path / "a.e", "Exodus", native=True):
+        os.write(2, b"a remark about a good file")
+    assert capfd.readouterr() == ("", "")
+
+
+def test_hdf5_names_that_are_no_text(tmp_path, refuse):
+    with h5py.File(tmp_path / "a.med", "w") as file:
+        file[b"\xff\xfe"] = [1]
+    refuse(tmp_path / "a.med", "HDF5")
+
+
+def test_absurd_coordinates(tmp_path, refuse):
+    points, nodes = cells("tetra10")
+    points[nodes[0, 1]] = 1e300
+    grid(points, {"tetra10": nodes}, u=displacement(points * 0)).save(tmp_path / "a.vtu")
+    refuse(tmp_path / "a.vtu", "tetra10 cell 0")
 
 
 def test_a_companion_file_that_is_missing(good, tmp_path, refuse):

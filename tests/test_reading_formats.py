@@ -333,8 +333,9 @@ def test_voxels_become_hexahedra(tmp_path):
     assert set(voxels.celltypes) == {11}
     voxels.point_data["u"] = displacement(np.asarray(voxels.points, dtype=float))
     voxels.save(tmp_path / "a.vtu")
-    (block,) = load(tmp_path / "a.vtu").blocks
     solid = load(tmp_path / "a.vtu")
+    (block,) = solid.blocks
+    assert not solid.notes
     np.testing.assert_allclose(volumes(solid.points, "hexahedron", block.nodes), 1.0)
 
 

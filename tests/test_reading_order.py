@@ -159,9 +159,11 @@ def test_a_folded_cell_is_refused_with_its_number_and_gauss_point():
 
 
 @pytest.mark.parametrize("kind", KINDS)
-def test_a_flat_cell_is_refused(kind):
+@pytest.mark.parametrize("place", [0.0, 1e6 + 0.1], ids=["near", "far"])
+def test_a_flat_cell_is_refused(kind, place):
     points = np.array(ELEMENTS[kind].nodes)
     points[:, 2] = 0.0
+    points += place
     with pytest.raises(ReadError, match="not zero"):
         normalise(points, block(kind, np.arange(len(points))), 0.0)
 

@@ -47,7 +47,9 @@ def load(
     finder = DisplacementFinder(displacement)
     try:
         raw = _read(path, form.reader, finder)
-        return _solid(path, raw, finder, need_displacement)
+        # Absurd coordinates overflow in the checks and are refused by them.
+        with np.errstate(over="ignore", invalid="ignore"):
+            return _solid(path, raw, finder, need_displacement)
     except Front3DError as error:
         said = str(error)
         raise ReadError(said if said.startswith(str(path)) else f"{path}: {said}") from error

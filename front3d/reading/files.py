@@ -119,6 +119,6 @@ def _hdf_content(path: Path) -> str:
                 return "MED"
             if "api_version" in file.attrs or "num_nodes" in file:
                 return "Exodus"
-            return f"HDF5 with {', '.join(list(file)[:5]) or 'nothing in it'}"
+            return f"HDF5 with {', '.join(map(str, list(file)[:5])) or 'nothing in it'}"
     except (OSError, RuntimeError, KeyError):
         return "a damaged HDF5 file (cut short?)"

@@ -6,6 +6,7 @@ Exodus libraries write to file descriptor 2 behind Python's back.
 
 import os
 import re
+import tempfile
 import warnings
 from collections.abc import Iterator
 from contextlib import ExitStack, contextmanager, redirect_stderr, redirect_stdout
@@ -40,7 +41,7 @@ def python_library(path: Path, what: str) -> Iterator[None]:
 def vtk_library(path: Path, what: str, *, native: bool = False) -> Iterator[None]:
     """Turn errors that VTK reports, instead of raising them, into one ReadError about `path`.
 
-    `native` silences file descriptor 2 too, for the libraries that VTK calls in turn.
+    `native` captures file descriptor 2 too, for the libraries that VTK calls in turn.
     """
     from vtkmodules.vtkCommonCore import vtkLogger, vtkOutputWindow, vtkStringOutputWindow
 
@@ -50,17 +51,25 @@ def vtk_library(path: Path, what: str, *, native: bool = False) -> Iterator[None
     with python_library(path, what):
         vtkOutputWindow.SetInstance(window)
         vtkLogger.SetStderrVerbosity(vtkLogger.VERBOSITY_OFF)
+        native_text: list[str] = []
+        refusal: Front3DError | None = None
         try:
             with ExitStack() as stack:
                 if native:
-                    stack.enter_context(_descriptor_2())
+                    stack.enter_context(_descriptor_2(native_text))
                 yield
+        except Front3DError as error:
+            refusal = error  # often the consequence of what VTK has to say
         finally:
             vtkOutputWindow.SetInstance(before)
             vtkLogger.SetStderrVerbosity(verbosity)
         said = _vtk_errors(window.GetOutput())
+        if refusal is not None and native_text:
+            said = said or native_text[0]
         if said:
             raise ReadError(f"{path}: cannot be read as {what}: {said}; {_ADVICE}")
+        if refusal is not None:
+            raise refusal
 
 
 def _vtk_errors(text: str) -> str:
@@ -78,18 +87,21 @@ def _vtk_errors(text: str) -> str:
 
 
 @contextmanager
-def _descriptor_2() -> Iterator[None]:
-    """Discard what is written to file descriptor 2; VTK reports the same failures in its words."""
+def _descriptor_2(said: list[str]) -> Iterator[None]:
+    """Append to `said` what is written to file descriptor 2, if anything is."""
     try:
         kept = os.dup(2)
     except OSError:  # a process without standard error has nothing to spill on
         yield
         return
-    nowhere = os.open(os.devnull, os.O_WRONLY)
-    os.dup2(nowhere, 2)
-    os.close(nowhere)
-    try:
-        yield
-    finally:
-        os.dup2(kept, 2)
-        os.close(kept)
+    with tempfile.TemporaryFile() as file:
+        os.dup2(file.fileno(), 2)
+        try:
+            yield
+        finally:
+            os.dup2(kept, 2)
+            os.close(kept)
+            file.seek(0)
+            text = " ".join(file.read(2000).decode(errors="replace").split())[:300]
+            if text:
+                said.append(text)
