@@ -5,7 +5,6 @@ from math import cos, radians, sin
 
 import numpy as np
 
-from front3d.arrays import BoolArray, FloatArray
 from front3d.samples.cells import cracked_solid
 from front3d.samples.fineness import density
 from front3d.samples.mirror import Unfolded
@@ -15,9 +14,12 @@ from front3d.samples.sample import (
     Parameter,
     SampleSpec,
     Values,
+    acting,
     check_ratio,
     common_parameters,
+    outside,
     required,
+    uniform,
 )
 from front3d.samples.sheet import Quarter
 
@@ -44,21 +46,16 @@ def _complete(given: Mapping[str, float | None]) -> Values:
 def _mesh(values: Values, cells: str) -> Unfolded:
     a, body = values["radius"], values["body"]
     shape = Quarter(a, a, radius=0.25 * a, width=body, depth=body, round=True)
-    return cracked_solid(
-        octant(shape, density(cells, values["refine"], 4), body), (0, 1), cells, "penny"
-    )
+    fine = density(cells, values["refine"], 1.0, closed=True)
+    return cracked_solid(octant(shape, fine, body), (0, 1), cells, "penny")
 
 
 def _loads(values: Values) -> tuple[Load, ...]:
     tilt = radians(values["tilt"])
     axis = np.array([sin(tilt), 0.0, cos(tilt)])
     stress = values["tension"] * np.outer(axis, axis)
-    return (Load("tension", lambda points, normals: normals @ stress, _outer),)
-
-
-def _outer(faces: FloatArray) -> BoolArray:
-    """All faces but those of the crack."""
-    return np.abs(faces[:, :, 2]).max(axis=1) > 0.0
+    load = Load("tension", uniform(stress), outside)
+    return acting("penny", {"tension": (values["tension"], load)})
 
 
 PENNY = SampleSpec(

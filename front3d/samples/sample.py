@@ -4,6 +4,8 @@ from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field
 from math import isfinite
 
+import numpy as np
+
 from front3d.arrays import BoolArray, FloatArray
 from front3d.errors import CaseError
 from front3d.samples.elasticity import Traction
@@ -140,6 +142,26 @@ def required(values: Mapping[str, float | None], name: str) -> float:
     if value is None:
         raise CaseError(f"parameter {name}: found no value, expected a number")
     return value
+
+
+def uniform(stress: FloatArray) -> Traction:
+    """The tractions of a uniform stress tensor, (3, 3)."""
+    return lambda points, normals: normals @ stress
+
+
+def outside(faces: FloatArray) -> BoolArray:
+    """All boundary faces, (faces, m, 3) -> (faces,), but those of a crack in z = 0."""
+    return np.abs(faces[:, :, 2]).max(axis=1) > 0.0
+
+
+def acting(sample: str, loads: Mapping[str, tuple[float, Load]]) -> tuple[Load, ...]:
+    """The loads whose stress (by parameter) is not zero; CaseError when none is left."""
+    out = tuple(load for stress, load in loads.values() if stress != 0.0)
+    if not out:
+        raise CaseError(
+            f"sample {sample}: found no load, expected one of {', '.join(loads)} other than zero"
+        )
+    return out
 
 
 def check_ratio(sample: str, what: str, value: float, low: float, high: float) -> None:

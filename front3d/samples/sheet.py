@@ -73,7 +73,7 @@ def quarter_sheet(shape: Quarter, density: Density) -> list[Patch]:
         *_core(lines[:, 0], shape, density),
         Patch(lines[:, : half + 1], cracked=True, in_tube=True),
         Patch(lines[:, half:], cracked=False, in_tube=True),
-        *_outer(lines[:, -1], shape, density),
+        *_outer(lines[:, -1], lines[:, -1] - lines[:, half], shape, density),
     ]
 
 
@@ -98,8 +98,8 @@ def _core(arc: FloatArray, shape: Quarter, density: Density) -> list[Patch]:
     ]
 
 
-def _outer(arc: FloatArray, shape: Quarter, density: Density) -> list[Patch]:
-    """From the curve `arc` to the outer boundary."""
+def _outer(arc: FloatArray, outward: FloatArray, shape: Quarter, density: Density) -> list[Patch]:
+    """From the curve `arc`, with normals `outward`, to the outer boundary."""
     first = _tube_cell(shape, density)
     if shape.round:
         angle = np.linspace(0.0, np.pi / 2, len(arc))
@@ -109,7 +109,7 @@ def _outer(arc: FloatArray, shape: Quarter, density: Density) -> list[Patch]:
     # Far along x, columns of cells continue a block of about the crack's own size.
     near = max(1.3 * arc[0, 0], arc[0, 0] + shape.depth - arc[-1, 1])
     width = shape.width if near > 0.7 * shape.width else near
-    split = _corner_index(arc, width, shape.depth)
+    split = _corner_index(arc, outward, width, shape.depth)
     rim = np.empty_like(arc)
     rim[: split + 1, 0] = width
     rim[: split + 1, 1] = shape.depth * arc[: split + 1, 1] / arc[split, 1]
@@ -128,14 +128,16 @@ def _outer(arc: FloatArray, shape: Quarter, density: Density) -> list[Patch]:
     return [patch, Patch(far, cracked=False)]
 
 
-def _corner_index(arc: FloatArray, width: float, depth: float) -> int:
-    """The (even) index of the node of `arc` that goes to the corner of the rectangle: the one
-    whose ray from the middle of the crack's own scale points there best.
+def _corner_index(arc: FloatArray, outward: FloatArray, width: float, depth: float) -> int:
+    """The even index, not an end, of the node of `arc` that goes to the corner of the rectangle.
+
+    It is the one whose normal, followed as far as the rectangle is away, points there best.
     """
-    rays = np.arctan2(arc[:, 1] / depth, arc[:, 0] / width)
-    n = len(arc)
-    best = 2 * round(float(np.argmin(np.abs(rays - np.pi / 4))) / 2)
-    return int(min(max(best, 2), n - 3))
+    unit = outward / np.linalg.norm(outward, axis=1, keepdims=True)
+    target = arc + (depth - arc[-1, 1]) * unit
+    rays = np.arctan2(target[:, 1] / depth, target[:, 0] / width)
+    best = 2 * round(int(np.argmin(np.abs(rays - np.pi / 4))) / 2)
+    return min(max(best, 2), len(arc) - 3)
 
 
 def _blend(start: FloatArray, end: FloatArray, first: float, growth: float) -> Patch:

@@ -17,7 +17,7 @@ Progress = Callable[[str, float], None]
 """(stage, fraction done of that stage)."""
 
 TOLERANCE = 1e-10
-DIRECT_LIMIT = 24_000
+DIRECT_LIMIT = 30_000
 """Unknowns up to which a direct factorisation is faster than iterating, as measured."""
 
 

@@ -15,6 +15,7 @@ from front3d.samples.sample import (
     Parameter,
     SampleSpec,
     Values,
+    acting,
     check_ratio,
     common_parameters,
     required,
@@ -58,7 +59,7 @@ def _mesh(values: Values, cells: str) -> Unfolded:
     a, c, t = values["depth"], values["half_length"], values["thickness"]
     radius = min(0.25 * a, 0.25 * c, 0.5 * smallest_radius(a, c), 0.4 * (t - a))
     shape = Quarter(a, c, radius, width=values["half_width"], depth=t)
-    fine = density(cells, values["refine"], 2)
+    fine = density(cells, values["refine"], max(a, c) / min(a, c), closed=False)
     return cracked_solid(octant(shape, fine, values["half_height"]), (0,), cells, "surface-crack")
 
 
@@ -75,7 +76,13 @@ def _loads(values: Values) -> tuple[Load, ...]:
     def bending(points: FloatArray, normals: FloatArray) -> FloatArray:
         return values["bending"] * (1.0 - 2.0 * points[:, 1:2] / t) * normals
 
-    return Load("tension", tension, ends), Load("bending", bending, ends)
+    return acting(
+        "surface-crack",
+        {
+            "tension": (values["tension"], Load("tension", tension, ends)),
+            "bending": (values["bending"], Load("bending", bending, ends)),
+        },
+    )
 
 
 SURFACE_CRACK = SampleSpec(
