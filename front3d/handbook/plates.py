@@ -30,7 +30,8 @@ def surface_crack(
     a/c <= 0.2.  Fitted to finite-element results for Poisson's ratio 0.3; claimed within 5 % of
     them.  High-order finite elements made for this project differ, in per cent of the largest K
     of the front, by up to 4 in tension for a/c >= 0.4 and a/t <= 0.6 and 9 for deeper cracks; in
-    bending by up to 9 for a/c >= 0.4 and a/t <= 0.6 and 16 for a/c = 0.2.  At the free surface itself no K exists in the strict sense.
+    bending by up to 9 for a/c >= 0.4 and a/t <= 0.6 and 16 for a/c = 0.2.
+    At the free surface itself no K exists in the strict sense.
 
     Source: Newman and Raju, Eng. Fract. Mech. 15 (1981) 185, and NASA TM-83200 (1981),
     TM-85793 (1984).  The M factors, Q and f_w for a/c <= 1 were checked against a textbook that

@@ -49,7 +49,6 @@ def _stress(sigma, outer):
 
 TENSION = [[0, 0, 0], [0, 0, 0], [0, 0, 1]]
 SHEAR_XZ = [[0, 0, 1], [0, 0, 0], [1, 0, 0]]
-SHEAR_YZ = [[0, 0, 0], [0, 0, 1], [0, 1, 0]]
 
 
 def embedded(a, c, size, front_cells, loads, reach):
@@ -139,14 +138,14 @@ MODELS: dict[str, Model] = {
     "ellipse": embedded(
         a=1.0,
         c=2.0,
-        size=(0.045, 0.06, 0.4, 12.0),
+        size=(0.036, 0.05, 0.45, 12.0),
         front_cells=120,
-        loads={"tension": TENSION, "shear_xz": SHEAR_XZ, "shear_yz": SHEAR_YZ},
+        loads={"tension": TENSION, "shear": SHEAR_XZ},
         reach=0.5,
     ),
-    "surface_06_04": surface(0.6, 0.4, (0.06, 0.15, 0.35, 6.0), 0.6),
-    "surface_10_06": surface(1.0, 0.6, (0.05, 0.12, 0.35, 6.0), 0.6),
-    "row": row((0.07, 0.15, 0.3, 1.0), 0.6),
+    "surface_06_04": surface(0.6, 0.4, (0.06, 0.15, 0.35, 6.0), reach=0.6),
+    "surface_10_06": surface(1.0, 0.6, (0.05, 0.12, 0.35, 6.0), reach=0.6),
+    "row": row((0.045, 0.1, 0.35, 1.0), 0.5),
 }
 
 
@@ -184,7 +183,9 @@ def store(name, solid) -> Path:
     cells = solid.blocks[0].nodes
     grid = pv.UnstructuredGrid({pv.CellType.QUADRATIC_TETRA: cells}, solid.points)
     for step in solid.steps:
-        grid.point_data[f"displacement_{step.name}"] = step.displacement
+        # Digits below the solver's own tolerance do not compress: clear them.
+        kept = np.round(step.displacement * 2.0**34) / 2.0**34
+        grid.point_data[f"displacement_{step.name}"] = kept
     writer = vtkXMLUnstructuredGridWriter()
     path = DATA / f"{name}.vtu"
     writer.SetFileName(str(path))
