@@ -4,6 +4,7 @@ import argparse
 from typing import TYPE_CHECKING
 
 from front3d.case import read_case
+from front3d.cli.command import Command
 from front3d.cli.evaluate import add_output_flags, evaluate_case
 from front3d.cli.sample import write
 from front3d.cli.words import describe_evaluation, describe_written, table
@@ -11,8 +12,6 @@ from front3d.cli.words import describe_evaluation, describe_written, table
 if TYPE_CHECKING:
     from front3d.results import Evaluation, FrontResult
 
-NAME = "demo"
-HELP = "build a plate with a surface crack, evaluate it, and compare with the published solution"
 
 SAMPLE = "surface-crack"
 ANGLES = (15.0, 30.0, 45.0, 60.0, 75.0, 90.0)
@@ -78,3 +77,11 @@ def _rows(front: "FrontResult", values: dict[str, float]) -> list[dict[str, floa
         }
         for i in nearest
     ]
+
+
+COMMAND = Command(
+    "demo",
+    "build a plate with a surface crack, evaluate it, and compare with the published solution",
+    add_flags,
+    run,
+)

@@ -5,6 +5,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING
 
 from front3d.case import Case
+from front3d.cli.command import Command
 from front3d.cli.flags import add_evaluation_flags, case_of
 from front3d.cli.progress import progress_bar
 from front3d.cli.words import describe_evaluation, describe_written
@@ -13,9 +14,6 @@ from front3d.errors import CaseError
 if TYPE_CHECKING:
     from front3d.output.folder import Written
     from front3d.results import Evaluation
-
-NAME = "evaluate"
-HELP = "compute K_I, K_II, K_III along every crack front of a result"
 
 
 def add_flags(parser: argparse.ArgumentParser) -> None:
@@ -83,3 +81,8 @@ def evaluate_case(case: Case, out: Path, *, pictures: bool) -> "tuple[Evaluation
             evaluation, solid, out, inputs=inputs, pictures=pictures, progress=progress
         )
     return evaluation, written
+
+
+COMMAND = Command(
+    "evaluate", "compute K_I, K_II, K_III along every crack front of a result", add_flags, run
+)

@@ -5,14 +5,12 @@ from collections import Counter
 from collections.abc import Mapping, Sequence
 from typing import TYPE_CHECKING
 
+from front3d.cli.command import Command
 from front3d.cli.flags import add_crack_flags, case_of
 from front3d.cli.words import number, table
 
 if TYPE_CHECKING:
     from front3d.solid import Solid
-
-NAME = "inspect"
-HELP = "say what a result holds, and which crack fronts are found in it"
 
 
 def add_flags(parser: argparse.ArgumentParser) -> None:
@@ -59,3 +57,8 @@ def describe_cracks(found: Mapping[str, Sequence[Mapping[str, object]]]) -> list
         if rows:
             lines += table([{"no.": i, **row} for i, row in enumerate(rows)])
     return lines
+
+
+COMMAND = Command(
+    "inspect", "say what a result holds, and which crack fronts are found in it", add_flags, run
+)

@@ -4,7 +4,13 @@ import argparse
 from collections.abc import Sequence
 
 from front3d import __version__
-from front3d.cli import demo, evaluate, inspect, sample
+from front3d.cli.command import Command
+from front3d.cli.demo import COMMAND as DEMO
+from front3d.cli.evaluate import COMMAND as EVALUATE
+from front3d.cli.inspect import COMMAND as INSPECT
+from front3d.cli.sample import COMMAND as SAMPLE
+
+COMMANDS: tuple[Command, ...] = (DEMO, EVALUATE, INSPECT, SAMPLE)
 
 _DESCRIPTION = (
     "Stress intensity factors K_I, K_II, K_III along the crack fronts of a finite-element result. "
@@ -29,15 +35,15 @@ def build_parser(words: Sequence[str]) -> argparse.ArgumentParser:
     common = argparse.ArgumentParser(add_help=False, allow_abbrev=False)
     common.add_argument("--debug", action="store_true", help="show the traceback of an error")
     commands = parser.add_subparsers(title="commands", metavar="COMMAND", required=True)
-    for module in (demo, evaluate, inspect, sample):
-        command = commands.add_parser(
-            module.NAME,
-            help=module.HELP,
-            description=module.HELP,
+    for command in COMMANDS:
+        sub = commands.add_parser(
+            command.name,
+            help=command.help,
+            description=command.help,
             parents=[common],
             allow_abbrev=False,
         )
-        command.set_defaults(run=module.run, parser=command)
-        if module is not sample or sample.NAME in words:
-            module.add_flags(command)
+        sub.set_defaults(run=command.run, parser=sub)
+        if command is not SAMPLE or SAMPLE.name in words:
+            command.add_flags(sub)
     return parser

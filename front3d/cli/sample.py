@@ -5,15 +5,13 @@ from collections.abc import Mapping
 from pathlib import Path
 from typing import TYPE_CHECKING
 
+from front3d.cli.command import Command
 from front3d.cli.progress import progress_bar
 from front3d.cli.words import number, table
 from front3d.errors import CaseError
 
 if TYPE_CHECKING:
     from front3d.samples import SampleSpec
-
-NAME = "sample"
-HELP = "build and solve an embedded cracked solid, and write it as a result file"
 
 
 def add_flags(parser: argparse.ArgumentParser) -> None:
@@ -81,3 +79,11 @@ def write(name: str, cells: str, given: dict[str, float], out: Path) -> tuple[Pa
 def _listing(samples: "Mapping[str, SampleSpec]") -> list[str]:
     lines = ["samples: front3d sample NAME --help shows the parameters of each"]
     return lines + table([{"name": n, "what": spec.description} for n, spec in samples.items()])
+
+
+COMMAND = Command(
+    "sample",
+    "build and solve an embedded cracked solid, and write it as a result file",
+    add_flags,
+    run,
+)

@@ -20,7 +20,7 @@ def percent(value: float) -> str:
 def table(rows: Sequence[Mapping[str, Any]]) -> list[str]:
     """Rows as aligned text under their column names."""
     names = list(dict.fromkeys(name for row in rows for name in row))
-    lines = [[name.replace("_", " ") for name in names]]
+    lines = [names]
     lines += [[_cell(row.get(name, "")) for name in names] for row in rows]
     widths = [max(len(line[k]) for line in lines) for k in range(len(names))]
     return [
