@@ -2,6 +2,8 @@
 
 from dataclasses import dataclass
 
+import numpy as np
+
 from front3d.crack.coincidence import Coincidence, find_coincidence
 from front3d.crack.edges import Chain, full_model_edges, half_model_edges, order_edges
 from front3d.crack.ends import classify_ends
@@ -69,7 +71,19 @@ def find_cracks(solid: Solid, options: Options | None = None) -> CrackModel:
             f"{solid.source}: the coincident faces have no front: their sides share no edge, so "
             "they part the solid in two; a crack needs a front where its sides join"
         )
+    _refuse_meeting(solid, same, [front for fronts in fronts_of for front in fronts])
     return CrackModel(same, chosen, tuple(fronts_of), unopened)
+
+
+def _refuse_meeting(solid: Solid, same: Coincidence, fronts: list[Front]) -> None:
+    """CrackError if two fronts share a node: K has no meaning where they meet."""
+    nodes = np.concatenate([np.unique(same.entity[front.nodes]) for front in fronts])
+    shared, count = np.unique(nodes, return_counts=True)
+    if np.any(count > 1):
+        raise CrackError(
+            f"{solid.source}: two crack fronts meet at node {shared[np.argmax(count)]}; expected "
+            "fronts that keep apart"
+        )
 
 
 def _fronts(
