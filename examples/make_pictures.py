@@ -15,7 +15,7 @@ from PIL import Image
 
 from front3d.cli import main as front3d
 
-WIDTH, COLOURS = 900, 128  # small enough to be kept with the sources
+WIDTH = 900  # small enough to be kept with the sources
 MODEL = "surface-crack"
 
 
@@ -42,7 +42,7 @@ def reduced(path: Path) -> bytes:
         (WIDTH, round(image.height * WIDTH / image.width)), Image.Resampling.LANCZOS
     )
     out = io.BytesIO()
-    image.quantize(COLOURS).save(out, "PNG", optimize=True)
+    image.save(out, "PNG", optimize=True)
     return out.getvalue()
 
 

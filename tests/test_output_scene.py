@@ -10,7 +10,7 @@ import numpy as np
 import pytest
 
 from front3d.output import rendering
-from front3d.output.scene import close_up, colour_scale, scene_png
+from front3d.output.scene import close_up, colour_scale, place_for_words, scene_png
 from front3d.output.view import best_view, skin
 from front3d.results import FrontResult
 from tests.output_models import MILLIMETRES, cracked_block, elliptic_front
@@ -54,7 +54,10 @@ def test_surface_crack_is_seen_from_its_mouth_and_from_above() -> None:
     assert view.towards @ view.up == pytest.approx(0.0, abs=1e-12)
 
 
-@pytest.mark.parametrize("front", [SURFACE, EMBEDDED])
+LONG = elliptic_front(3.9, 0.3, closed=False)  # wider than the panel's 4 to 3
+
+
+@pytest.mark.parametrize("front", [SURFACE, EMBEDDED, LONG])
 def test_everything_fits_into_the_picture(front: FrontResult) -> None:
     low, high = close_up(front.positions, cracked_block(1.6, 1.2).points)
     points = np.array(np.meshgrid(*zip(low, high, strict=True))).reshape(3, -1).T
@@ -79,6 +82,17 @@ def test_a_front_under_shear_shows_the_mode_that_counts() -> None:
     K[:, 1] = 50.0
     assert colour_scale((with_K(EMBEDDED, K),)).mode == 1
     assert colour_scale((EMBEDDED,)).mode == 0
+
+
+def test_words_stand_clear_of_the_front_and_inside_the_panel() -> None:
+    angle = np.linspace(0, 2 * np.pi, 200)
+    circle = np.stack([520 + 300 * np.cos(angle), 390 + 180 * np.sin(angle)], axis=1)
+    for peak in circle[::10]:
+        x, y = place_for_words(peak, circle, lines=3)
+        # 3 lines of words of 13 points are about 300 x 150 pixels of the panel of 1040 x 780.
+        assert 150 <= x <= 890
+        assert 75 <= y <= 705
+        assert not ((np.abs(circle - (x, y)) < (150, 75)).all(axis=1)).any()
 
 
 def test_without_a_graphics_library_a_sentence_says_what_to_install(
