@@ -48,7 +48,7 @@ def test_the_python_block_runs(
     tmp_path: Path, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
 ) -> None:
     (code,) = blocks("python")
-    assert len(code.strip().splitlines()) == 5
+    assert len([line for line in code.splitlines() if line]) == 5
     shutil.copy(ROOT / "tests" / "data" / "row.vtu", tmp_path / "result.vtu")
     monkeypatch.chdir(tmp_path)
     exec(compile(code, "README.md", "exec"), {})
