@@ -64,12 +64,15 @@ def build_hats(solid: Solid, front: Front, width: float) -> Hats:
 
 
 def default_width(front: Front, structured: bool) -> float:
-    """One edge where bricks and wedges surround the front, four where tetrahedra do.
+    """One edge where bricks and wedges surround the front, three where tetrahedra do.
 
-    On a structured ring the integral does not scatter and a wider hat would only blunt K; on
-    tetrahedra the scatter falls as the hat widens.  Never more than a quarter of the front.
+    On a structured ring the integral does not scatter, and a wider hat would only blunt K.  On
+    tetrahedra scatter falls with the width, but the hat's own averaging grows with its square:
+    measured on a penny and an ellipse with 105 and 120 edges, the standard deviation of K_I was
+    0.26 and 0.23 % with two edges, 0.16 and 0.17 % with three, 0.10 and 0.27 % with four.
+    Never more than a quarter of the front.
     """
-    return 1.0 if structured else float(np.clip(len(front.edges) / 4, 1.0, 4.0))
+    return 1.0 if structured else float(np.clip(len(front.edges) / 4, 1.0, 3.0))
 
 
 def _cut_stations(front: Front, width: float) -> IntArray:

@@ -92,7 +92,7 @@ def load_classes(model: Unfolded, loads: FloatArray) -> Iterator[LoadClass]:
     By virtual work on displacements of the class: the force on a node of the part is the mean
     over its images, each reflected back.
     """
-    scale = float(np.abs(loads).max())
+    sizes = np.abs(loads).max(axis=(1, 2))
     for parity in product((1, -1), repeat=len(model.planes)):
         factor = _factor(model, parity)
         part = np.zeros((len(loads), *model.part.points.shape))
@@ -103,7 +103,8 @@ def load_classes(model: Unfolded, loads: FloatArray) -> Iterator[LoadClass]:
             normal = np.arange(3) == plane.axis
             held |= plane.shared[:, None] & (normal if sign == 1 else ~normal)
         part[:, held] = 0.0
-        if np.abs(part).max() > 1e-12 * scale:
+        part[np.abs(part).max(axis=(1, 2)) <= 1e-11 * sizes] = 0.0  # rounding only
+        if np.any(part):
             yield LoadClass(parity, held, part)
 
 
