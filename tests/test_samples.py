@@ -99,7 +99,7 @@ def test_files_hold_the_sample(small: Sample, tmp_path: Path) -> None:
     for block in small.solid.blocks:
         stop = start + len(block)
         assert set(grid.celltypes[start:stop]) == {block.element.vtk_type}
-        first, last = grid.offset[[start, stop]]
+        first, last = grid.cell_offsets[[start, stop]]
         np.testing.assert_array_equal(
             grid.cell_connectivity[first:last].reshape(block.nodes.shape), block.nodes
         )
@@ -139,8 +139,11 @@ def test_a_failed_write_leaves_the_old_files(
 # infinite solid; the normal stress here is sigma cos^2(tilt).  Sliding under shear tau, Eshelby
 # (1957), Kassir and Sih (1975): 16 (1 - nu^2) tau / (pi (2 - nu) E) sqrt(a^2 - r^2).  Both from
 # memory; they give K_I = 2 sigma sqrt(a / pi) and K_II = 4 tau sqrt(a / pi) / (2 - nu).
-def penny_error(sample: Sample, tilt: float) -> tuple[float, float]:
-    """Largest error of opening and of sliding within 0.5 a of the front, over the largest."""
+def penny_error(sample: Sample, tilt: float, nearest: float = 0.0) -> tuple[float, float]:
+    """Largest error of opening and of sliding from `nearest` to 0.5 a behind the front.
+
+    Relative to the opening that the whole stress would cause at the same place.
+    """
     x, jump = openings(sample)
     p, angle = sample.parameters, np.radians(tilt)
     a, nu, stress = p["radius"], p["poisson"], p["tension"]
@@ -148,7 +151,8 @@ def penny_error(sample: Sample, tilt: float) -> tuple[float, float]:
     compliance = (1 - nu**2) / (np.pi * p["young"])
     opening = 8 * compliance * stress * np.cos(angle) ** 2 * root
     sliding = 16 * compliance / (2 - nu) * stress * np.sin(angle) * np.cos(angle) * root
-    near = np.hypot(x[:, 0], x[:, 1]) > 0.5 * a
+    behind = a - np.hypot(x[:, 0], x[:, 1])
+    near = (behind > nearest) & (behind < 0.5 * a)
     assert near.sum() > 50
     out = []
     for component, exact in ((2, opening), (0, sliding)):
@@ -163,12 +167,17 @@ def test_coarse_penny_opens_and_slides_as_the_exact_solution() -> None:
 
 
 @pytest.mark.slow
-@pytest.mark.parametrize(("cells", "allowed"), [("bricks", 5e-3), ("tetra10", 2.5e-2)])
+@pytest.mark.parametrize(("cells", "allowed"), [("bricks", 5e-3), ("tetra10", 1e-2)])
 @pytest.mark.parametrize("tilt", [0.0, 45.0])
 def test_penny_opens_and_slides_as_the_exact_solution(
     cells: str, allowed: float, tilt: float
 ) -> None:
-    assert max(penny_error(build("penny", cells=cells, tilt=tilt), tilt)) < allowed
+    sample = build("penny", cells=cells, tilt=tilt)
+    # Without quarter-points the front seems to lie 0.12 of a cell further back (as measured
+    # on other meshes), here 0.005 a: look where that is small.
+    nearest = 0.2 * sample.parameters["radius"] if cells == "tetra10" else 0.0
+    errors = penny_error(sample, tilt, nearest)
+    assert max(errors) < allowed
 
 
 @pytest.mark.slow
@@ -189,10 +198,23 @@ def test_embedded_ellipse_opens_as_the_exact_solution() -> None:
 
 
 @pytest.mark.slow
-@pytest.mark.parametrize(("step", "F"), [("tension", 1.1384), ("bending", None)])
-def test_surface_crack_opens_at_its_deepest_point(step: str, F: float | None) -> None:
-    # F of K = F sigma sqrt(pi a / Q) from order-3 finite elements (computed for this project, not
-    # published): a/c 0.6, a/t 0.4, deepest point.  Here K from the opening at the quarter-point
-    # nodes, a plain estimate: 2.5 % is common practice for it.
-    if F is None:
-        pytest.skip("no value in hand")
+def test_surface_crack_opens_at_its_deepest_point() -> None:
+    # F of K_I = F sigma sqrt(pi a) / E(k) at a/c 0.6, a/t 0.4, c/b 0.1, deepest point: tension
+    # 1.138, bending 0.560, from order-3 finite elements made for this project (computed, not
+    # published).  K here from the opening at the quarter-point nodes (Shih, de Lorenzi and German
+    # 1976, from memory); 1 % for that estimate is common practice.
+    from scipy.special import ellipe
+
+    sample = build("surface-crack")
+    p, modulus = sample.parameters, sample.material.plane_strain_modulus
+    a = p["depth"]
+    for step, F in enumerate((1.1384, 0.5602)):
+        x, jump = openings(sample, step)
+        line = np.flatnonzero(x[:, 0] == 0.0)
+        quarter, end = line[np.argsort(a - x[line, 1])[:2]]
+        length = a - x[end, 1]
+        assert a - x[quarter, 1] == pytest.approx(length / 4)
+        opening = 4 * jump[quarter, 2] - jump[end, 2]
+        K_I = modulus / 8 * np.sqrt(2 * np.pi / length) * opening
+        expected = F * 100.0 * np.sqrt(np.pi * a) / ellipe(1 - 0.6**2)
+        assert pytest.approx(expected, rel=0.01) == K_I
