@@ -59,8 +59,8 @@ def evaluate(
     progress : called with a stage and the fraction done
     options : fields of `front3d.options.Options`, such as face_pressure=10.0
     """
-    from front3d.pipeline import evaluate_solid
     from front3d.options import Options
+    from front3d.pipeline import evaluate_solid
     from front3d.solid import Material
 
     return evaluate_solid(solid, Material(young, poisson), Options(**options), units, progress)

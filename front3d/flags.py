@@ -44,7 +44,7 @@ def front_warnings(
     """Sentences about the whole front."""
     interaction = methods["interaction"]
     K = interaction.K
-    warnings = []
+    warnings = [note for method in methods.values() for note in method.notes]
     largest = float(np.abs(K).max())
     overlap = int((K[:, 0] < -1e-3 * largest).sum())
     if overlap:

@@ -53,12 +53,14 @@ class MethodResult:
     K : (n, 3) K_I, K_II, K_III
     columns : further numbers per station, (n,) each, by column name
     rings : for the interaction integral
+    notes : sentences for the reader, about this method on this front
     """
 
     method: str
     K: FloatArray
     columns: Mapping[str, FloatArray] = field(default_factory=dict)
     rings: Rings | None = None
+    notes: tuple[str, ...] = ()
 
     def __post_init__(self) -> None:
         _freeze(self, ("K",))
@@ -119,7 +121,8 @@ class FrontResult:
     @property
     def mode_angles(self) -> FloatArray:
         """(n, 2) in degrees: psi = atan2(K_II, K_I), and the mode-III angle
-        atan2(K_III, hypot(K_I, K_II))."""
+        atan2(K_III, hypot(K_I, K_II)).
+        """
         k1, k2, k3 = self.K.T
         return np.degrees(np.stack([np.arctan2(k2, k1), np.arctan2(k3, np.hypot(k1, k2))], axis=1))
 

@@ -17,7 +17,7 @@ Row = Mapping[str, object]
 def describe(solid: Solid, options: Options | None = None) -> dict[str, list[Row]]:
     """Crack surfaces, fronts, and coincident faces left alone, a row of numbers and words each."""
     model = find_cracks(solid, options)
-    fronts = [
+    fronts: list[Row] = [
         {"crack": number, **_front(solid, front, model.same)}
         for number, group in enumerate(model.fronts)
         for front in group

@@ -103,7 +103,7 @@ def multiplicity(keys: IntArray) -> IntArray:
 
 def cells_with(solid: Solid, nodes: BoolArray) -> list[BoolArray]:
     """Per block, the mask of the cells that hold any of the marked nodes."""
-    return [nodes[block.nodes].any(axis=1) for block in solid.blocks]
+    return [np.asarray(nodes[block.nodes].any(axis=1)) for block in solid.blocks]
 
 
 def outer_faces(solid: Solid, entity: IntArray, nodes: BoolArray) -> FaceTable:
@@ -113,7 +113,7 @@ def outer_faces(solid: Solid, entity: IntArray, nodes: BoolArray) -> FaceTable:
     nodes, so looking at the cells around the marked nodes is enough.
     """
     table = faces_of_cells(solid, cells_with(solid, nodes))
-    table = table[nodes[table.nodes].any(axis=1)]
+    table = table[np.asarray(nodes[table.nodes].any(axis=1))]
     corners = entity[table.corners]
     distinct = (np.diff(np.sort(corners, axis=1), axis=1) != 0).sum(axis=1) + 1
     table = table[distinct >= 3]  # a collapsed brick has faces that are lines

@@ -184,12 +184,12 @@ def near_nodes(
     box = np.flatnonzero(((solid.points >= low) & (solid.points <= high)).all(axis=1))
     spacing = float(np.diff(knots).max()) / per_piece
     found, index = cKDTree(places).query(solid.points[box], distance_upper_bound=reach + spacing)
-    hit = np.isfinite(found)
+    hit = np.isfinite(np.asarray(found))
     s = np.full(len(solid.points), np.nan)
     distance = np.full(len(solid.points), np.inf)
     candidates = box[hit]
     s[candidates], distance[candidates] = front.curve.project(
-        solid.points[candidates], samples[index[hit]]
+        solid.points[candidates], samples[np.asarray(index)[hit]]
     )
     mask = distance <= reach
     return mask, s, distance

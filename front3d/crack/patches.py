@@ -125,8 +125,8 @@ def _connected_sides(faces: FaceTable, same: Coincidence) -> IntArray:
     graph = coo_array(
         (np.ones(len(entity), np.int8), (rows[member], len(faces) + entity)), shape=(n, n)
     )
-    label: IntArray = connected_components(graph, directed=False)[1][: len(faces)]
-    return label
+    label = connected_components(graph, directed=False)[1]
+    return label[: len(faces)].astype(np.int64)
 
 
 def _refuse_branches(sides: IntArray, faces: FaceTable, solid: Solid) -> None:
@@ -183,7 +183,7 @@ def find_half_patch(solid: Solid, same: Coincidence, options: Options) -> tuple[
     reach = float(np.ptp(solid.points, axis=0).max()) * 1e-6 + 2.0 * solid.point_spacing
     on_plane = np.abs(distance) <= reach
     free = outer_faces(solid, same.entity, on_plane)
-    free = free[on_plane[free.nodes].all(axis=1)]
+    free = free[np.asarray(on_plane[free.nodes].all(axis=1))]
     where = f"{solid.source}: the plane {_plane_text(normal, plane.offset)}"
     if not len(free):
         low, high = distance.min(), distance.max()
@@ -201,7 +201,7 @@ def find_half_patch(solid: Solid, same: Coincidence, options: Options) -> tuple[
         largest = float(np.abs(across).max())
         opening = max(opening, 2.0 * largest)
         moves[members] |= np.abs(across) > NEGLIGIBLE_OPENING * largest
-    moving_face = moves[free.nodes].any(axis=1)
+    moving_face = np.asarray(moves[free.nodes].any(axis=1))
     if not moving_face.any() or moving_face.all():
         state = "moves" if moving_face.all() else "stays in place"
         raise CrackError(

@@ -5,7 +5,7 @@ from dataclasses import dataclass
 import numpy as np
 from scipy.spatial import cKDTree
 
-from front3d.arrays import BoolArray, FloatArray, IntArray
+from front3d.arrays import FloatArray, IntArray
 from front3d.crack.coincidence import Coincidence
 from front3d.crack.front import Front, near_nodes
 from front3d.crack.patches import Patch
@@ -44,14 +44,12 @@ class Tube:
     Attributes
     ----------
     cells : per block, the numbers of the cells with a node inside the largest ring
-    touching : per block, whether each of these cells has a node on the front
     nodes : (m,) the nodes of these cells; local numbers below refer to rows of this
     s, r : (m,) arc length of the nearest front point, and distance from it
-    side : (n_points,) int, +1 for nodes on the upper face only, -1 lower, 0 others
+    side : (m,) +1 for nodes on the upper face only, -1 lower, 0 others
     """
 
     cells: tuple[IntArray, ...]
-    touching: tuple[BoolArray, ...]
     nodes: IntArray
     s: FloatArray
     r: FloatArray
@@ -97,17 +95,13 @@ def build_tube(solid: Solid, front: Front, patch: Patch, same: Coincidence, reac
     far = nodes[~np.isfinite(r[nodes])]
     if len(far):
         s[far], r[far] = project(front, solid.points[far])
-    on_front = np.isin(same.entity, same.entity[front.nodes])
-    touching = tuple(
-        on_front[block.nodes[c]].any(axis=1) for block, c in zip(solid.blocks, cells, strict=True)
-    )
     side = np.zeros(len(solid.points), np.int64)
     if patch.half:
         side[patch.pairs[:, 0]] = 1
     else:
         side[same.double & np.isin(same.entity, same.entity[patch.pairs[:, 0]])] = 1
         side[same.double & np.isin(same.entity, same.entity[patch.pairs[:, 1]])] = -1
-    return Tube(cells, touching, nodes, s[nodes], r[nodes], side)
+    return Tube(cells, nodes, s[nodes], r[nodes], side[nodes])
 
 
 def ring_radii(

@@ -1,0 +1,104 @@
+"""Outer surfaces near a front: which of them give a term of their own, and how near they come."""
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from front3d.arrays import BoolArray, FloatArray
+from front3d.crack.ends import end_faces
+from front3d.crack.facetable import FaceTable, outer_faces, set_keys
+from front3d.crack.front import SYMMETRY_PLANE
+from front3d.crack.patches import marked
+from front3d.methods.context import FrontContext
+from front3d.methods.nodal_forces import FREE, PRESSED
+from front3d.methods.tube import Tube
+
+_SAME_DIRECTION = 0.999
+"""Cosine between normals above which a face lies in a symmetry plane."""
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class SurfaceTerm:
+    """Faces that give a surface term, what is known of them (FREE or PRESSED), and the pressure."""
+
+    faces: FaceTable
+    kind: int
+    pressure: float = 0.0
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Surroundings:
+    """What the outer surfaces near a front mean for it.
+
+    Attributes
+    ----------
+    terms : faces that give a surface term
+    clearance : distance of the nearest surface on which the front does not end
+    symmetry_normals : (n, 3) unit normals of the symmetry planes at its ends or of a half model
+    """
+
+    terms: tuple[SurfaceTerm, ...]
+    clearance: float
+    symmetry_normals: FloatArray
+
+
+def surroundings(context: FrontContext, tube: Tube) -> Surroundings:
+    """Look at the outer faces inside the tube.
+
+    Faces on a symmetry plane give no term: for modes I and II the tractions on it do no work in
+    the interaction, and for mode III the hats vanish there.
+    """
+    solid, front, patch = context.solid, context.front, context.patch
+    same = context.model.same
+    inside = marked(len(solid.points), tube.nodes)
+    outer = outer_faces(solid, same.entity, inside)
+    outer = outer[np.asarray(inside[outer.nodes].all(axis=1))]
+    crack_faces = [patch.upper] if patch.lower is None else [patch.upper, patch.lower]
+    everything = np.concatenate([outer.nodes, *(faces.nodes for faces in crack_faces)])
+    keys = set_keys(same.entity[everything])
+    is_crack = np.isin(keys[: len(outer)], keys[len(outer) :])
+    rest = outer[~is_crack]
+    planes = _symmetry_planes(context)
+    free = rest[~_on_planes(context, tube, rest, planes)]
+    terms = [SurfaceTerm(free, FREE)] if len(free) else []
+    if context.options.face_pressure:
+        terms.append(SurfaceTerm(outer[is_crack], PRESSED, context.options.face_pressure))
+    local = np.searchsorted(tube.nodes, free.nodes)
+    distance, s = tube.r[local].min(axis=1), tube.s[local].mean(axis=1)
+    if not front.closed:
+        reach = distance.max(initial=0.0)
+        distance = distance[(s > reach) & (s < front.length - reach)]
+    normals = np.array([normal for normal, _ in planes]).reshape(-1, 3)
+    return Surroundings(tuple(terms), float(distance.min(initial=np.inf)), normals)
+
+
+def _symmetry_planes(context: FrontContext) -> list[tuple[FloatArray, FloatArray]]:
+    """Unit normal and a point of each symmetry plane at an end of the front or of a half model."""
+    solid, front = context.solid, context.front
+    planes = []
+    for end, node in zip(front.ends, front.corners[[0, -1]], strict=False):
+        if end == SYMMETRY_PLANE:
+            there = end_faces(solid, front, int(node), context.patch, context.model.same)
+            normal = there.area_vectors(solid.points).sum(axis=0)
+            planes.append((normal / np.linalg.norm(normal), solid.points[node]))
+    if context.options.crack_plane is not None:
+        normal = np.asarray(context.options.crack_plane.normal)
+        planes.append((normal, solid.points[front.corners[0]]))
+    return planes
+
+
+def _on_planes(
+    context: FrontContext,
+    tube: Tube,
+    faces: FaceTable,
+    planes: list[tuple[FloatArray, FloatArray]],
+) -> BoolArray:
+    """Which faces lie in one of the planes."""
+    points = context.solid.points
+    area = faces.area_vectors(points)
+    unit = area / np.linalg.norm(area, axis=1, keepdims=True)
+    on_any = np.zeros(len(faces), bool)
+    for normal, through in planes:
+        off = np.abs((points[faces.corners] - through) @ normal).max(axis=1)
+        on_any |= (np.abs(unit @ normal) > _SAME_DIRECTION) & (off < 1e-3 * tube.r.max())
+    return on_any
