@@ -167,15 +167,15 @@ def test_coarse_penny_opens_and_slides_as_the_exact_solution() -> None:
 
 
 @pytest.mark.slow
-@pytest.mark.parametrize(("cells", "allowed"), [("bricks", 5e-3), ("tetra10", 1e-2)])
+@pytest.mark.parametrize(("cells", "allowed"), [("bricks", 5e-3), ("tetra10", 2.2e-2)])
 @pytest.mark.parametrize("tilt", [0.0, 45.0])
 def test_penny_opens_and_slides_as_the_exact_solution(
     cells: str, allowed: float, tilt: float
 ) -> None:
     sample = build("penny", cells=cells, tilt=tilt)
-    # Without quarter-points the front seems to lie 0.12 of a cell further back (as measured
-    # on other meshes), here 0.005 a: look where that is small.
-    nearest = 0.2 * sample.parameters["radius"] if cells == "tetra10" else 0.0
+    # Without quarter-points the front of quadratic tetrahedra seems to lie 0.12 of a cell further
+    # back (measured on other meshes), here 0.0044 a: 2.2 % of the opening at 0.1 a.
+    nearest = 0.1 * sample.parameters["radius"] if cells == "tetra10" else 0.0
     errors = penny_error(sample, tilt, nearest)
     assert max(errors) < allowed
 

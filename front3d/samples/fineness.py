@@ -13,7 +13,7 @@ _BRICKS = {
 # Without quarter-points nothing is gained by very small cells at the front.
 _TETRA = {
     0: (4, 1, 3.0, Tube(sectors=4, rings=3, power=1.0, quarter_points=False)),
-    1: (8, 2, 2.5, Tube(sectors=4, rings=6, power=1.2, quarter_points=False)),
+    1: (8, 2, 2.5, Tube(sectors=4, rings=4, power=1.2, quarter_points=False)),
     2: (11, 2, 2.0, Tube(sectors=8, rings=5, power=1.2, quarter_points=False)),
 }
 
