@@ -1,0 +1,180 @@
+"""Crack closure in three dimensions: K from the work that would close the crack by one cell.
+
+G_m = (1 / 2 A) sum_n N_a(s_n) F_m^n w_m^n for each mode m along its own axis of the local frame,
+where F are the nodal forces between the cells above and below the faces ahead of the front, w
+the openings mirrored from behind it, N_a the hat of the station, and A its integral over the faces
+ahead.  Forces and openings are averaged each for itself, so a mode that changes sign along the
+front vanishes where it does.  Sources: Rybicki and Kanninen (1977); Shivakumar, Tan and Newman
+(1988); Raju (1987); Krueger (2004); Nairn (2011); Okada, Kawai and Araki (2008).
+"""
+
+import numpy as np
+
+from front3d.arrays import FloatArray, IntArray
+from front3d.methods.closure_columns import (
+    NOT_COUNTED,
+    Columns,
+    column_notes,
+    column_openings,
+    find_columns,
+    rows_of_nodes,
+)
+from front3d.methods.closure_forces import (
+    Ligament,
+    closing_forces,
+    face_nodes,
+    find_ligament,
+    mode_axes,
+)
+from front3d.methods.closure_formulas import signed_K
+from front3d.methods.closure_profile import build_profile, outer_line, places_ahead
+from front3d.methods.closure_weights import Tents, build_tents
+from front3d.methods.context import FrontContext
+from front3d.methods.hats import default_width
+from front3d.methods.tube import project
+from front3d.results import MethodResult
+
+DISAGREE = 0.01
+"""Part of the whole G by which the work of one mode may be negative without a word."""
+
+UNBALANCED = 0.05
+"""Part of the closing force that the two sides may leave over without a word."""
+
+
+def evaluate(context: FrontContext) -> list[MethodResult]:
+    """K of one front, one result per step; MethodError where no faces go on ahead."""
+    ligament = find_ligament(context)
+    forces, imbalance = closing_forces(context, ligament)
+    columns = find_columns(context, ligament)
+    front, options = context.front, context.options
+    width = options.hat if options.hat is not None else default_width(front, columns is not None)
+    tents = build_tents(context, ligament, width)
+    jump = openings(context)
+    if columns is not None:
+        work, opening = _work_in_columns(context, ligament, columns, tents, forces, jump)
+        about = column_notes(context, columns)
+    else:
+        work, opening = _work_of_faces(context, ligament, tents, forces, jump)
+        about = ("closure by faces of any shape, opening mirrored by distance",)
+    G = 0.5 * work
+    if front.half:
+        G[:, :, 1:] = 0.0
+    K = signed_K(G, opening, context.material)
+    uneven = _unevenness(ligament, context, forces, imbalance)
+    return [
+        MethodResult("closure", K[step], notes=_notes(about, G[step], uneven[step]))
+        for step in range(len(K))
+    ]
+
+
+def openings(context: FrontContext) -> FloatArray:
+    """(steps, n_points, 3) upper less lower displacement at each entity of the upper crack face;
+    zero elsewhere.  In a half model twice the displacement across the plane.
+    """
+    u, patch, entity = context.displacement, context.patch, context.model.same.entity
+    upper, lower = patch.pairs.T
+    out = np.zeros_like(u)
+    if context.options.crack_plane is not None and patch.half:
+        normal = np.asarray(context.options.crack_plane.normal)
+        out[:, entity[upper]] = 2.0 * (u[:, upper] @ normal)[..., None] * normal
+    else:
+        out[:, entity[upper]] = u[:, upper] - u[:, lower]
+    return out
+
+
+def _nodes_ahead(context: FrontContext, ligament: Ligament) -> IntArray:
+    """Nodes of the faces ahead, one per entity."""
+    members = [nodes.ravel() for _, nodes in face_nodes(context.solid, ligament.ahead)]
+    nodes = np.unique(np.concatenate(members))
+    return nodes[np.unique(context.model.same.entity[nodes], return_index=True)[1]]
+
+
+def _work_in_columns(
+    context: FrontContext,
+    ligament: Ligament,
+    columns: Columns,
+    tents: Tents,
+    forces: FloatArray,
+    jump: FloatArray,
+) -> tuple[FloatArray, FloatArray]:
+    """(steps, n_stations, 3) work, twice over, and opening, where nodes stand in columns."""
+    mirrored, far = column_openings(context, context.front, columns, jump)
+    row = rows_of_nodes(context, ligament, columns)
+    nodes = _nodes_ahead(context, ligament)
+    work = np.zeros_like(far)
+    for k in range(NOT_COUNTED):
+        mine = nodes[row[nodes] == k]
+        if not len(mine):
+            continue
+        s, local = _local_forces(context, mine, forces)
+        for mode in range(3):
+            summed = local[..., mode] @ tents.weights(s, odd=mode == 2)
+            work[..., mode] += summed * mirrored[:, :, k, mode]
+    return work, far
+
+
+def _work_of_faces(
+    context: FrontContext,
+    ligament: Ligament,
+    tents: Tents,
+    forces: FloatArray,
+    jump: FloatArray,
+) -> tuple[FloatArray, FloatArray]:
+    """(steps, n_stations, 3) work, twice over, and opening, on faces of any shape."""
+    front = context.front
+    outer, s_outer, reach = outer_line(context, ligament)
+    nodes = _nodes_ahead(context, ligament)
+    nodes = nodes[~outer[nodes]]
+    s, ahead = places_ahead(context, nodes)
+    ahead[ligament.on_front[nodes]] = 0.0
+    period = front.length if front.closed else None
+    distance = np.interp(s, s_outer, reach, period=period) - ahead
+    profile = build_profile(context, ligament, tents, jump, float(max(reach.max(), distance.max())))
+    _, local = _local_forces(context, nodes, forces)
+    n = len(front.corners)
+    work = np.zeros((len(jump), n, 3))
+    for mode in range(3):
+        weights = tents.weights(s, odd=mode == 2).tocoo()
+        mirrored = profile.at(weights.col.astype(np.int64), distance[weights.row])[..., mode]
+        part = weights.data * local[:, weights.row, mode] * mirrored
+        for step in range(len(jump)):
+            work[step, :, mode] = np.bincount(weights.col, part[step], n)
+    last = np.full(n, profile.distance[-1])
+    return work, profile.at(np.arange(n), last)
+
+
+def _local_forces(
+    context: FrontContext, nodes: IntArray, forces: FloatArray
+) -> tuple[FloatArray, FloatArray]:
+    """Arc lengths, (n,), and forces, (steps, n, 3), of nodes along the axes of the modes."""
+    s, _ = project(context.front, context.solid.points[nodes])
+    _, axes = mode_axes(context.front, s)
+    at = forces[:, context.model.same.entity[nodes]]
+    return s, np.einsum("tnk,nik->tni", at, axes)
+
+
+def _unevenness(
+    ligament: Ligament, context: FrontContext, forces: FloatArray, imbalance: FloatArray
+) -> FloatArray:
+    """(steps,) root mean square of what the sides leave over at the front, over that of forces."""
+    at = np.unique(context.model.same.entity[context.front.nodes])
+    left, whole = (np.sqrt((f[:, at] ** 2).sum(axis=(1, 2))) for f in (imbalance, forces))
+    return left / np.maximum(whole, 1e-300)
+
+
+def _notes(about: tuple[str, ...], G: FloatArray, uneven: float) -> tuple[str, ...]:
+    notes = list(about)
+    total = G.sum(axis=1, keepdims=True)
+    negative = (G + DISAGREE * np.abs(total) < 0.0).any(axis=1)
+    if negative.any():
+        notes.append(
+            f"closure: at {int(negative.sum())} of {len(G)} stations the force ahead and the "
+            "opening behind have opposite signs in some mode, which is given as zero there"
+        )
+    if uneven > UNBALANCED:
+        notes.append(
+            f"closure: the cells above and below the front leave {100 * uneven:.0f} % of the "
+            "closing force unbalanced: body force, or a result computed by another rule of "
+            "integration; it is shared between them by volume"
+        )
+    return tuple(notes)

@@ -1,0 +1,274 @@
+"""What holds the crack shut ahead of its front: the faces there, and the nodal forces across them.
+
+The cells that touch the front are parted into those above and below by the faces in which the crack
+plane goes on.  The forces that the upper ones pass down through these faces follow from their own
+internal forces; what acts on them besides is taken off: pressure on the crack face, and body force.
+"""
+
+from dataclasses import dataclass
+
+import numpy as np
+from scipy.sparse import coo_array
+from scipy.sparse.csgraph import connected_components
+
+from front3d.arrays import BoolArray, FloatArray, IntArray
+from front3d.crack.coincidence import Coincidence
+from front3d.crack.facetable import (
+    FaceTable,
+    cells_with,
+    faces_of_cells,
+    multiplicity,
+    outer_faces,
+    set_keys,
+)
+from front3d.crack.front import Front
+from front3d.elements import FACES
+from front3d.errors import MeshError, MethodError
+from front3d.methods.context import FrontContext
+from front3d.methods.tube import project
+from front3d.solid import CellBlock, Material, Solid
+
+FLAT = 0.05
+"""Largest rise of a face out of the crack plane, in parts of its reach from the front: a curved
+crack goes on nearly, not exactly, in its tangent plane."""
+
+RULE = 3
+"""Gauss points a side of cells and faces."""
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Ligament:
+    """The cells around a front, parted by the crack plane.
+
+    Attributes
+    ----------
+    ahead : faces ahead of the front that touch it, each as a face of the cell above
+    behind : upper crack faces that touch the front
+    above, below : per block, the numbers of the cells with a node on the front (no `below` in a
+        half model)
+    on_front : (n_points,) whether a node is one of the front's
+    """
+
+    ahead: FaceTable
+    behind: FaceTable
+    above: tuple[IntArray, ...]
+    below: tuple[IntArray, ...]
+    on_front: BoolArray
+
+
+def find_ligament(context: FrontContext) -> Ligament:
+    """Faces ahead and cells on both sides; MethodError where no faces go on ahead."""
+    solid, front, same, patch = context.solid, context.front, context.model.same, context.patch
+    on_front = np.isin(same.entity, same.entity[front.nodes])
+    touching = cells_with(solid, on_front)
+    behind = patch.upper[np.asarray(on_front[patch.upper.nodes].any(axis=1))]
+    if patch.lower is None:
+        free = outer_faces(solid, same.entity, on_front)
+        ahead = free[_in_plane(context, free)]
+        crack = set_keys(same.entity[np.concatenate([ahead.nodes, behind.nodes])])
+        ahead = ahead[~np.isin(crack[: len(ahead)], crack[len(ahead) :])]
+        if not len(ahead):
+            raise _refusal(context, 0)
+        none = tuple(np.zeros(0, np.int64) for _ in solid.blocks)
+        return Ligament(
+            ahead, behind, tuple(np.flatnonzero(mask) for mask in touching), none, on_front
+        )
+    faces, twin = _shared_faces(solid, same, touching)
+    flat = _in_plane(context, faces) & on_front[faces.nodes].any(axis=1)
+    label = _parts(solid, faces, twin, flat)
+    beneath = patch.lower[np.asarray(on_front[patch.lower.nodes].any(axis=1))]
+    start = _offsets(solid)
+    upper = np.isin(label, label[start[behind.block] + behind.cell])
+    lower = np.isin(label, label[start[beneath.block] + beneath.cell])
+    reached = np.unique(same.entity[faces.corners[flat]])
+    if (upper & lower).any():
+        raise _refusal(context, int(np.isin(same.entity[front.corners], reached).sum()))
+    ring = np.concatenate(touching)
+    split = start[1:-1]
+    above = np.split(ring & upper, split)
+    below = np.split(ring & lower, split)
+    of_upper = upper[start[faces.block] + faces.cell]
+    return Ligament(
+        faces[flat & of_upper],
+        behind,
+        tuple(np.flatnonzero(mask) for mask in above),
+        tuple(np.flatnonzero(mask) for mask in below),
+        on_front,
+    )
+
+
+def _refusal(context: FrontContext, with_faces: int) -> MethodError:
+    where = (
+        f"at {with_faces} of its {len(context.front.corners)} corner nodes only"
+        if with_faces
+        else "at none of its nodes"
+    )
+    return MethodError(
+        f"{context.solid.source}: closure: no faces ahead: cell faces go on in the crack plane "
+        f"ahead of the front {where}, so no upper side can be told from a lower one there; mesh "
+        "the continuation of the crack surface along with the crack"
+    )
+
+
+def _offsets(solid: Solid) -> IntArray:
+    """Number of the first cell of each block when all cells are counted through, and their sum."""
+    return np.concatenate([[0], np.cumsum([len(block) for block in solid.blocks])])
+
+
+def _shared_faces(
+    solid: Solid, same: Coincidence, cells: list[BoolArray]
+) -> tuple[FaceTable, IntArray]:
+    """Faces that two of the cells share, each seen from both; and the row of the other view."""
+    table = faces_of_cells(solid, cells)
+    corners = same.entity[table.corners]
+    distinct = (np.diff(np.sort(corners, axis=1), axis=1) != 0).sum(axis=1) + 1
+    table = table[distinct >= 3]
+    keys = set_keys(same.entity[table.nodes])
+    double = multiplicity(keys) == 2
+    table, keys = table[double], keys[double]
+    order = np.argsort(keys, kind="stable")
+    twin = np.empty(len(keys), np.int64)
+    twin[order[0::2]], twin[order[1::2]] = order[1::2], order[0::2]
+    return table, twin
+
+
+def _in_plane(context: FrontContext, faces: FaceTable) -> BoolArray:
+    """Which faces lie in the crack plane ahead of the front."""
+    if not len(faces):
+        return np.zeros(0, bool)
+    nodes, row = np.unique(faces.corners, return_inverse=True)
+    x = context.solid.points[nodes]
+    s, _ = project(context.front, x)
+    place, frame, _ = context.front.curve.frames(s)
+    local = np.einsum("nij,nj->ni", frame, x - place)[row.reshape(faces.corners.shape)]
+    reach = np.linalg.norm(local, axis=2).max(axis=1)
+    flat = np.abs(local[..., 1]).max(axis=1) <= FLAT * reach
+    ahead = local[..., 0].min(axis=1) >= -FLAT * reach
+    return np.asarray(flat & ahead)
+
+
+def _parts(solid: Solid, faces: FaceTable, twin: IntArray, cut: BoolArray) -> IntArray:
+    """(n_cells,) label of the part each cell belongs to, joined through faces that are not cut."""
+    start = _offsets(solid)
+    cell = start[faces.block] + faces.cell
+    kept = np.flatnonzero(~(cut | cut[twin]))
+    n = int(start[-1])
+    graph = coo_array((np.ones(len(kept), np.int8), (cell[kept], cell[twin[kept]])), shape=(n, n))
+    return np.asarray(connected_components(graph, directed=False)[1], np.int64)
+
+
+def mode_axes(front: Front, s: FloatArray) -> tuple[FloatArray, FloatArray]:
+    """Positions (n, 3) at arc lengths s, and (n, 3, 3) the axes of modes I, II and III in rows:
+    e2, e1 and e3 of the local frame.
+    """
+    place, frame, _ = front.curve.frames(s)
+    return place, frame[:, [1, 0, 2]]
+
+
+def closing_forces(context: FrontContext, ligament: Ligament) -> tuple[FloatArray, FloatArray]:
+    """Forces with which the upper side holds on to the lower one, at the front and ahead.
+
+    Returns
+    -------
+    forces : (steps, n_points, 3), each at the representative of its entity; positive along the
+        crack normal in tension.  Right at nodes that no cell beyond the touching ones holds.  On
+        loaded crack faces they include what the faces ahead would carry once open (Nairn 2011).
+    imbalance : (steps, n_points, 3) what is left of the forces of both sides: the body force
+    """
+    solid, patch = context.solid, context.patch
+    same, pressure = context.model.same, context.options.face_pressure
+    u = context.displacement
+    forces = -cell_forces(solid, ligament.above, context.material, u, same)
+    own = -pressure * area_forces(solid, ligament.behind, same)
+    forces += own
+    imbalance = np.zeros_like(forces)
+    if patch.lower is not None:
+        touching = np.asarray(ligament.on_front[patch.lower.nodes].any(axis=1))
+        other = -pressure * area_forces(solid, patch.lower[touching], same)
+        lower = other - cell_forces(solid, ligament.below, context.material, u, same)
+        # Inside each side and between them everything else is in equilibrium.
+        imbalance = -(forces + lower)
+        up, down = (volumes(solid, cells, same) for cells in (ligament.above, ligament.below))
+        forces += (up / np.maximum(up + down, 1e-300))[:, None] * imbalance
+    forces -= pressure * area_forces(solid, ligament.ahead, same)
+    return forces, imbalance
+
+
+def cell_forces(
+    solid: Solid,
+    cells: tuple[IntArray, ...],
+    material: Material,
+    displacement: FloatArray,
+    same: Coincidence,
+) -> FloatArray:
+    """(steps, n_points, 3) internal forces int sigma_ij dN/dx_j dV of chosen cells."""
+    out = np.zeros_like(displacement)
+    for block, numbers in zip(solid.blocks, cells, strict=True):
+        if not len(numbers):
+            continue
+        gradient, volume = _gradients(solid, block, numbers)
+        nodes = block.nodes[numbers]
+        for step, u in enumerate(displacement):
+            # Relative to one node of the cell: a rigid shift must not cost digits.
+            moved = u[nodes] - u[nodes[:, :1]]
+            slope = np.einsum("cni,cqnj->cqij", moved, gradient, optimize=True)
+            strain = (slope + slope.swapaxes(2, 3)) / 2.0
+            stress = 2.0 * material.shear_modulus * strain
+            stress += (
+                material.lame * np.trace(strain, axis1=2, axis2=3)[..., None, None] * np.eye(3)
+            )
+            f = np.einsum("cqij,cqnj,cq->cni", stress, gradient, volume, optimize=True)
+            np.add.at(out[step], same.entity[nodes], f)
+    return out
+
+
+def volumes(solid: Solid, cells: tuple[IntArray, ...], same: Coincidence) -> FloatArray:
+    """(n_points,) volume of the chosen cells around each node."""
+    out = np.zeros(len(solid.points))
+    for block, numbers in zip(solid.blocks, cells, strict=True):
+        if len(numbers):
+            _, volume = _gradients(solid, block, numbers)
+            nodes = same.entity[block.nodes[numbers]]
+            np.add.at(out, nodes, np.broadcast_to(volume.sum(axis=1)[:, None], nodes.shape))
+    return out
+
+
+def _gradients(solid: Solid, block: CellBlock, numbers: IntArray) -> tuple[FloatArray, FloatArray]:
+    """dN/dx, (cells, q, nodes, 3), and weights times Jacobian, (cells, q)."""
+    xi, weights = block.element.quadrature(RULE)
+    reference = block.element.gradients(xi)
+    x = solid.points[block.nodes[numbers]]
+    jacobian = np.einsum("cni,qnd->cqid", x - x[:, :1], reference, optimize=True)
+    det = np.linalg.det(jacobian)
+    if (det <= 0.0).any():
+        cell = numbers[np.argwhere(det <= 0.0)[0, 0]]
+        raise MeshError(
+            f"{solid.source}: {block.kind} cell {cell} at the front: the Jacobian determinant is "
+            "not positive; check its node order and mid-side nodes"
+        )
+    return np.matmul(reference[None], np.linalg.inv(jacobian)), det * weights
+
+
+def face_nodes(solid: Solid, faces: FaceTable) -> list[tuple[str, IntArray]]:
+    """All nodes of faces, (face type, (n, m) nodes) per type."""
+    groups: dict[str, list[IntArray]] = {}
+    for b, local in np.unique(np.stack([faces.block, faces.local], axis=1), axis=0):
+        block = solid.blocks[b]
+        kind, members = block.element.faces[local]
+        mine = (faces.block == b) & (faces.local == local)
+        groups.setdefault(kind, []).append(block.nodes[faces.cell[mine]][:, list(members)])
+    return [(kind, np.concatenate(parts)) for kind, parts in groups.items()]
+
+
+def area_forces(solid: Solid, faces: FaceTable, same: Coincidence) -> FloatArray:
+    """(n_points, 3) int N n dA: outward area vectors shared out among the nodes of faces."""
+    out = np.zeros_like(solid.points)
+    for kind, nodes in face_nodes(solid, faces):
+        face = FACES[kind]
+        xi, weights = face.quadrature(RULE + 1)
+        x = solid.points[nodes]
+        tangents = np.einsum("fni,qnd->fqdi", x - x[:, :1], face.gradients(xi))
+        normal = np.cross(tangents[:, :, 0], tangents[:, :, 1])
+        share = np.einsum("qn,fqi,q->fni", face.values(xi), normal, weights)
+        np.add.at(out, same.entity[nodes], share)
+    return out
