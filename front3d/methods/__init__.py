@@ -5,12 +5,15 @@ A new method is one file with an `evaluate` of this signature, and one line here
 
 from collections.abc import Callable
 
-from front3d.methods import interaction
+from front3d.methods import closure, interaction
 from front3d.methods.context import FrontContext
 from front3d.results import MethodResult
 
 Method = Callable[[FrontContext], list[MethodResult]]
 
-METHODS: dict[str, Method] = {"interaction": interaction.evaluate}
+METHODS: dict[str, Method] = {
+    "interaction": interaction.evaluate,
+    "closure": closure.evaluate,
+}
 
 __all__ = ["METHODS", "FrontContext", "Method"]
