@@ -189,7 +189,8 @@ def moved_ends(solid):
 
 def test_distances_are_taken_from_the_edges_of_the_mesh():
     """By hand: a chord over the angle b of a circle of radius 1 stands off it by 1 - cos(b/2) in
-    its middle, a quarter of the way by a quarter less, and meets it at the corners.
+    its middle, a quarter of the way by a quarter less, and meets it at the corners.  The curve
+    itself, a cubic spline, misses the circle by b^4/384 = 1.2e-5, 0.15 % of that.
     """
     mesh = curved("tetra10", 4, around=24, straight_edges=True)
     solid = impose(mesh.solid, mesh.side, lambda x, side: side[:, None] * [0.0, 0.0, 1e-3])
@@ -198,6 +199,6 @@ def test_distances_are_taken_from_the_edges_of_the_mesh():
     s = front.corner_s[3] + np.array([0.0, 0.25, 0.5]) * (front.corner_s[4] - front.corner_s[3])
     sagitta = 1.0 - np.cos(np.pi / 24)
     expected = -sagitta * np.array([0.0, 0.75, 1.0])
-    np.testing.assert_allclose(front_offset(context, s), expected, atol=1e-3 * sagitta)
+    np.testing.assert_allclose(front_offset(context, s), expected, atol=2e-3 * sagitta)
     _, distance = places_ahead(context, front.edges[:, 2])
     np.testing.assert_allclose(distance, 0.0, atol=1e-9)
