@@ -5,7 +5,7 @@ A new method is one file with an `evaluate` of this signature, and one line here
 
 from collections.abc import Callable
 
-from front3d.methods import interaction, opening
+from front3d.methods import closure, interaction, opening
 from front3d.methods.context import FrontContext
 from front3d.results import MethodResult
 
@@ -13,6 +13,7 @@ Method = Callable[[FrontContext], list[MethodResult]]
 
 METHODS: dict[str, Method] = {
     "interaction": interaction.evaluate,
+    "closure": closure.evaluate,
     "opening": opening.evaluate,
 }
 
