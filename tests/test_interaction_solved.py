@@ -171,3 +171,41 @@ def test_surface_cracks_on_tetrahedra(name, a_c, a_t):
     assert equation < 0.04
     table, _ = surface_deviations(stored(name)["bending"], "bending", 1.0, a_c, a_t)
     assert table < 0.015
+
+
+@pytest.mark.slow
+def test_penny_on_bricks():
+    """Sneddon (1946); measured 0.07 % at the default size."""
+    front = sampled("penny")["tension"]
+    K = infinite.penny_tension(100.0, 10.0)
+    assert np.abs(front.K[:, 0] / K - 1).max() < 0.005
+    assert np.abs(front.K[:, 1:] / K).max() < 0.005
+
+
+@pytest.mark.slow
+@pytest.mark.parametrize("cells", ["bricks", "tetra10"])
+def test_inclined_penny(cells):
+    """Kassir and Sih (1966); measured at 35 degrees: 0.43 % of the largest K on bricks, of which
+    the hat's averaging of a cosine over 1/24 of the circle is most; 0.7 % on tetrahedra.
+    """
+    front = sampled("penny", cells=cells, tilt=35.0)["tension"]
+    x, y, _ = front.positions.T
+    exact = infinite.penny_inclined(100.0, 10.0, np.radians(35.0), np.arctan2(y, x), 0.3)
+    exact = np.stack(exact, axis=1)
+    assert np.abs(front.K - exact).max() < 0.01 * np.abs(exact).max()
+
+
+@pytest.mark.slow
+@pytest.mark.parametrize("cells", ["bricks", "tetra10"])
+@pytest.mark.parametrize(("a_c", "a_t"), [(0.6, 0.4), (1.0, 0.2)])
+def test_surface_crack_samples(cells, a_c, a_t):
+    shape = {"depth": 6.0, "half_length": 6.0 / a_c, "thickness": 6.0 / a_t}
+    fronts = sampled("surface-crack", cells=cells, **shape)
+    for load, front in fronts.items():
+        table, equation = surface_deviations(front, load, 6.0, a_c, a_t, stress=100.0)
+        assert table < 0.015
+        if load == "tension":
+            assert equation < 0.04
+        spread = np.ptp(ring_values(front), axis=0).max(axis=1) / np.abs(front.K).max()
+        assert spread[1:-1].max() < 0.005
+        assert spread.max() < 0.01

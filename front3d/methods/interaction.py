@@ -12,7 +12,7 @@ from scipy.sparse import csr_array
 from front3d.arrays import FloatArray
 from front3d.methods.assembly import Assembly
 from front3d.methods.context import FrontContext
-from front3d.methods.hats import Hats, build_hats, default_width
+from front3d.methods.hats import Hats, build_hats, default_widths
 from front3d.methods.surfaces import surroundings
 from front3d.methods.tube import (
     N_RINGS,
@@ -44,7 +44,10 @@ def evaluate(context: FrontContext) -> list[MethodResult]:
     assembly.add_cells()
     for term in around.terms:
         assembly.add_faces(term)
-    width = options.hat if options.hat is not None else default_width(front, structured)
+    if options.hat is None:
+        width = default_widths(front, structured)
+    else:
+        width = np.full(len(front.corners), options.hat)
     hats = build_hats(solid, front, width)
     integrals = _integrals(assembly.forces, tube, hats, reaches[0], radii)
     modulus, shear = context.material.plane_strain_modulus, context.material.shear_modulus
@@ -52,7 +55,7 @@ def evaluate(context: FrontContext) -> list[MethodResult]:
     if front.half:  # the half that is not modelled gives the same again, and only mode I exists
         value *= 2.0
         value[:, :, 1:3] = 0.0
-    return [_result(value[:, step], radii, notes) for step in range(value.shape[1])]
+    return [_result(value[:, step], radii, hats, notes) for step in range(value.shape[1])]
 
 
 def _integrals(
@@ -92,12 +95,18 @@ def _clear_of_surfaces(
     )
 
 
-def _result(value: FloatArray, radii: FloatArray, notes: tuple[str, ...]) -> MethodResult:
+def _result(
+    value: FloatArray, radii: FloatArray, hats: Hats, notes: tuple[str, ...]
+) -> MethodResult:
     """Result of one step from (rings, modes, stations)."""
     K = np.moveaxis(value[:, :3], 1, 2)
     J = value[:, 3]
     trusted = slice(1, None) if len(K) > 1 else slice(None)
     mean = K[trusted].mean(axis=0)
     spread = np.ptp(K[trusted], axis=0).max(axis=1)
-    columns = {"J_interaction": J[trusted].mean(axis=0), "ring_spread": spread}
+    columns = {
+        "J_interaction": J[trusted].mean(axis=0),
+        "ring_spread": spread,
+        "hat": hats.width * hats.front.length / len(hats.front.edges),
+    }
     return MethodResult("interaction", mean, columns, Rings(radii, K, J), notes)
