@@ -7,7 +7,7 @@ import pytest
 
 from front3d.elements import ELEMENTS
 from front3d.errors import MeshError, MethodError
-from front3d.samples import SAMPLES, multigrid
+from front3d.samples import SAMPLES, schwarz
 from front3d.samples.elasticity import boundary_faces, stiffness, traction_load
 from front3d.samples.mirror import load_classes
 from front3d.samples.sample import uniform
@@ -231,7 +231,7 @@ def test_a_turned_cell_is_named() -> None:
 
 
 def test_iteration_that_does_not_converge_is_refused(monkeypatch: pytest.MonkeyPatch) -> None:
-    monkeypatch.setattr(multigrid, "MAX_ITERATIONS", 2)
+    monkeypatch.setattr(schwarz, "MAX_ITERATIONS", 2)
     solid = cube("hexahedron20")
     load = traction_load(solid.points, boundary_faces(solid), uniform(np.diag([0, 0, 1.0])))
     with pytest.raises(MethodError, match=r"residual of .* after 2 iterations, expected 1e-10"):
