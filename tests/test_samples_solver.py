@@ -21,6 +21,12 @@ CUBE = np.array([[i, j, k] for k in (0, 1) for j in (0, 1) for i in (0, 1)], dty
 ]
 
 
+@pytest.fixture(autouse=True)
+def small_clusters(monkeypatch: pytest.MonkeyPatch) -> None:
+    """Several clusters even on the small meshes here, so that iterating is put to the test."""
+    monkeypatch.setattr(schwarz, "CLUSTER", 30)
+
+
 def linear_cells(family: str, n: int = 2) -> tuple[np.ndarray, np.ndarray]:
     """The unit cube of n^3 bricks, each cut into the family's linear cells, distorted inside."""
     grid = np.arange(n + 1) / n

@@ -14,6 +14,9 @@ from scipy.interpolate import CubicSpline
 from front3d.arrays import FloatArray, frozen_floats
 from front3d.jit import kernel
 
+CurveArrays = tuple[FloatArray, FloatArray, FloatArray, bool]
+"""Knots, position, normal and closed of a `Curve`, as kernels take them."""
+
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Curve:
@@ -39,6 +42,11 @@ class Curve:
     def length(self) -> float:
         return float(self.knots[-1])
 
+    @property
+    def arrays(self) -> CurveArrays:
+        """What the kernels take."""
+        return self.knots, self.position, self.normal, self.closed
+
     def frames(self, s: FloatArray) -> tuple[FloatArray, FloatArray, FloatArray]:
         """Positions (n, 3), frames (n, 3, 3) with rows e1, e2, e3, and turning w (n, 3)."""
         s = np.ascontiguousarray(s, float)
@@ -47,13 +55,13 @@ class Curve:
             np.empty((len(s), 3, 3)),
             np.empty((len(s), 3)),
         )
-        _frames(s, self.knots, self.position, self.normal, self.closed, place, frame, turning)
+        _frames(s, self.arrays, place, frame, turning)
         return place, frame, turning
 
     def project(self, x: FloatArray, seed: FloatArray) -> tuple[FloatArray, FloatArray]:
         """Arc length of the nearest point and distance, (n,) each, for points x, (n, 3)."""
         s, distance = np.ascontiguousarray(seed, float).copy(), np.empty(len(x))
-        _project_all(np.ascontiguousarray(x), self.knots, self.position, self.closed, s, distance)
+        _project_all(np.ascontiguousarray(x), self.arrays, s, distance)
         return s, distance
 
 
@@ -132,19 +140,13 @@ def _bend(c: FloatArray, t: float, k: int) -> float:
 
 @kernel
 def frame_at(
-    s: float,
-    knots: FloatArray,
-    position: FloatArray,
-    normal: FloatArray,
-    closed: bool,
-    place: FloatArray,
-    frame: FloatArray,
-    turning: FloatArray,
+    s: float, curve: CurveArrays, place: FloatArray, frame: FloatArray, turning: FloatArray
 ) -> None:
     """Position, frame (rows e1, e2, e3) and turning w (components along e1, e2, e3) at s.
 
     Beyond the ends of an open curve the frame goes on unturned along the tangent.
     """
+    knots, position, normal, closed = curve
     piece, t, beyond = locate(s, knots, closed)
     c, n = position[piece], normal[piece]
     speed = 0.0
@@ -180,14 +182,13 @@ def frame_at(
 
 
 @kernel
-def nearest(
-    x: FloatArray, seed: float, knots: FloatArray, position: FloatArray, closed: bool
-) -> tuple[float, float]:
+def nearest(x: FloatArray, seed: float, curve: CurveArrays) -> tuple[float, float]:
     """Arc length of the point of the curve nearest to x, (3,), and its distance.
 
     Newton's method on (x - c(s)) . c'(s) = 0 from a seed within a cell or two of the answer; it
     converges quadratically, so a last step below 1e-8 of the length leaves rounding only.
     """
+    knots, position, _, closed = curve
     s = seed
     for _ in range(30):
         piece, t, beyond = locate(s, knots, closed)
@@ -216,28 +217,14 @@ def nearest(
 
 
 @kernel
-def _project_all(
-    x: FloatArray,
-    knots: FloatArray,
-    position: FloatArray,
-    closed: bool,
-    s: FloatArray,
-    distance: FloatArray,
-) -> None:
+def _project_all(x: FloatArray, curve: CurveArrays, s: FloatArray, distance: FloatArray) -> None:
     for n in range(len(x)):
-        s[n], distance[n] = nearest(x[n], s[n], knots, position, closed)
+        s[n], distance[n] = nearest(x[n], s[n], curve)
 
 
 @kernel
 def _frames(
-    s: FloatArray,
-    knots: FloatArray,
-    position: FloatArray,
-    normal: FloatArray,
-    closed: bool,
-    place: FloatArray,
-    frame: FloatArray,
-    turning: FloatArray,
+    s: FloatArray, curve: CurveArrays, place: FloatArray, frame: FloatArray, turning: FloatArray
 ) -> None:
     for n in range(len(s)):
-        frame_at(s[n], knots, position, normal, closed, place[n], frame[n], turning[n])
+        frame_at(s[n], curve, place[n], frame[n], turning[n])

@@ -58,7 +58,7 @@ def _preconditioner(
     for cluster in clusters(solid.points, np.arange(n)):
         inside = np.zeros(n)
         inside[cluster] = 1.0
-        near = np.flatnonzero(graph @ inside)
+        near = np.flatnonzero(np.asarray(graph @ inside))
         rows = number[(3 * near[:, None] + np.arange(3)).ravel()]
         rows = rows[rows >= 0]
         local.append((rows, factorise(matrix[rows][:, rows])))
