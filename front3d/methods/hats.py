@@ -36,6 +36,19 @@ class Hats:
     level: FloatArray
     tilt: FloatArray
 
+    @property
+    def half_lengths(self) -> FloatArray:
+        """(n_stations,) half-widths as lengths, by the edges at each station."""
+        front = self.front
+        knots = np.append(front.corner_s, front.length) if front.closed else front.corner_s
+        edges = np.diff(knots)
+        before, after = (
+            (np.roll(edges, 1), edges)
+            if front.closed
+            else (np.append(edges[0], edges), np.append(edges, edges[-1]))
+        )
+        return self.width * (before + after) / 2.0
+
     def weights(self, s: FloatArray, odd: bool = False) -> csr_array:
         """(len(s), n_stations) weights at arc lengths s; `odd` for K_III."""
         tents = _tents(self.front, s, self.width, -1.0 if odd else 1.0)

@@ -107,6 +107,6 @@ def _result(
     columns = {
         "J_interaction": J[trusted].mean(axis=0),
         "ring_spread": spread,
-        "hat": hats.width * hats.front.length / len(hats.front.edges),
+        "hat_interaction": hats.half_lengths,
     }
     return MethodResult("interaction", mean, columns, Rings(radii, K, J), notes)
