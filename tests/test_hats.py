@@ -78,6 +78,12 @@ def test_beyond_a_symmetry_plane_K_I_goes_on_evenly_and_K_III_oddly(bar, width):
     np.testing.assert_allclose(odd[[0, -1]], 0.0, atol=1e-12)
 
 
+def test_half_widths_are_given_as_lengths(bar):
+    solid, front = front_of(bar)
+    hats = build_hats(solid, front, np.full(len(front.corners), 2.0))
+    np.testing.assert_allclose(hats.half_lengths, 2.0 * LENGTH / 12, rtol=1e-12)
+
+
 def test_a_wave_around_a_closed_front_is_only_damped():
     """No station is special on a circle: cos and sin are averaged by one factor."""
     solid, front = front_of(curved("hexahedron20", 2, around=24))

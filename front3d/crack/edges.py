@@ -80,6 +80,8 @@ def order_edges(
     The sides of a face run anticlockwise seen from outside, and the upper faces are seen from
     below, so each edge already runs along e3 = e1 x e2: chains only have to be followed.
     """
+    if not len(edges.ends):
+        return ()
     start, end = same.entity[edges.ends[:, 0]], same.entity[edges.ends[:, 1]]
     nodes, degree = np.unique(np.concatenate([start, end]), return_counts=True)
     following = dict(zip(start.tolist(), range(len(start)), strict=True))
