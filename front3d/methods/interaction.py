@@ -13,16 +13,9 @@ from front3d.arrays import FloatArray
 from front3d.methods.assembly import Assembly
 from front3d.methods.context import FrontContext
 from front3d.methods.hats import Hats, build_hats, default_widths
+from front3d.methods.rings import N_RINGS, ring_radii
 from front3d.methods.surfaces import surroundings
-from front3d.methods.tube import (
-    N_RINGS,
-    Tube,
-    along_front,
-    build_tube,
-    is_structured,
-    layer_reaches,
-    ring_radii,
-)
+from front3d.methods.tube import Tube, along_front, build_tube, is_structured, layer_reaches
 from front3d.results import MethodResult, Rings
 
 PLATEAU = 0.5
@@ -36,10 +29,11 @@ def evaluate(context: FrontContext) -> list[MethodResult]:
     same = context.model.same
     structured = is_structured(solid, front, same)
     reaches = layer_reaches(solid, front, same, 1 + N_RINGS)
-    radii = ring_radii(front, reaches, structured, options.radii, solid.source)
+    others = [f for fronts in context.model.fronts for f in fronts if f is not front]
+    radii, notes = ring_radii(front, reaches, others, structured, options.radii, solid.source)
     tube = build_tube(solid, front, context.patch, same, float(radii.max()))
     around = surroundings(context, tube)
-    radii, notes = _clear_of_surfaces(radii, around.clearance, options.radii is not None)
+    radii, more = _clear_of_surfaces(radii, around.clearance, options.radii is not None)
     assembly = Assembly(context, tube, around.symmetry_normals)
     assembly.add_cells()
     for term in around.terms:
@@ -55,7 +49,7 @@ def evaluate(context: FrontContext) -> list[MethodResult]:
     if front.half:  # the half that is not modelled gives the same again, and only mode I exists
         value *= 2.0
         value[:, :, 1:3] = 0.0
-    return [_result(value[:, step], radii, hats, notes) for step in range(value.shape[1])]
+    return [_result(value[:, step], radii, hats, (*notes, *more)) for step in range(value.shape[1])]
 
 
 def _integrals(
