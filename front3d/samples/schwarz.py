@@ -11,6 +11,7 @@ from collections.abc import Callable
 
 import numpy as np
 from scipy.sparse import bsr_array, csr_array, diags_array, eye_array, kron
+from scipy.sparse.linalg import LinearOperator, cg
 
 from front3d.arrays import BoolArray, FloatArray, IntArray
 from front3d.errors import MethodError
@@ -96,27 +97,25 @@ def _conjugate_gradients(
     tolerance: float,
     report: Callable[[float], None],
 ) -> FloatArray:
-    x = np.zeros_like(right)
+    """Scipy's conjugate gradients; MethodError when they do not converge."""
     scale = float(np.linalg.norm(right))
-    if scale == 0.0:
-        return x
-    residual = right.copy()
-    direction = np.zeros_like(right)
-    previous = 1.0
-    for _ in range(MAX_ITERATIONS):
-        z = precondition(residual)
-        product = float(residual @ z)
-        direction = z + (product / previous) * direction
-        previous = product
-        image = matrix @ direction
-        step = product / float(direction @ image)
-        x += step * direction
-        residual -= step * image
-        relative = float(np.linalg.norm(residual)) / scale
-        report(relative)
-        if relative <= tolerance:
-            return x
-    raise MethodError(
-        f"solver: found a relative residual of {relative:.2g} after {MAX_ITERATIONS} iterations, "
-        f"expected {tolerance:g}; the mesh may be too distorted: choose less extreme ratios"
+
+    def relative_residual(x: FloatArray) -> float:
+        return float(np.linalg.norm(right - matrix @ x)) / scale
+
+    x, unfinished = cg(
+        matrix,
+        right,
+        rtol=tolerance,
+        maxiter=MAX_ITERATIONS,
+        M=LinearOperator(matrix.shape, matvec=precondition, dtype=np.float64),
+        callback=lambda x: report(relative_residual(x)),
     )
+    if unfinished:
+        raise MethodError(
+            f"solver: found a relative residual of {relative_residual(x):.2g} after "
+            f"{MAX_ITERATIONS} iterations, expected {tolerance:g}; the mesh may be too distorted: "
+            "choose less extreme ratios"
+        )
+    solution: FloatArray = x
+    return solution
