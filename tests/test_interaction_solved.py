@@ -15,6 +15,8 @@ from scipy.interpolate import CubicSpline
 import front3d
 from front3d.handbook import infinite, plates, rows
 from front3d.samples import build
+from front3d.solid import Material
+from tests.meshes.row import row_of_cracks
 
 DATA = Path(__file__).parent / "data"
 
@@ -92,9 +94,12 @@ def test_rings_agree_at_free_ends_over_a_wide_range_of_radii():
         assert spread[1:-1].max() < 0.005
 
 
-def test_a_row_of_collinear_cracks_between_symmetry_planes():
-    """Exact: the tangent formula (Westergaard 1939); half-period 2, half-length 1."""
-    solid = front3d.load(DATA / "row.vtu")
+def test_a_row_of_collinear_cracks_on_bricks():
+    """Exact: the tangent formula (Westergaard 1939); half-period 2, half-length 1.
+
+    20-node bricks without quarter-points; measured: 0.1 % low at every station.
+    """
+    solid = row_of_cracks(Material(1.0, 0.3), a=1.0, b=2.0)
     fronts = front3d.evaluate(solid, young=1.0, poisson=0.3).fronts
     assert len(fronts) == 2
     K = rows.collinear_row(1.0, 1.0, 2.0)
@@ -102,6 +107,23 @@ def test_a_row_of_collinear_cracks_between_symmetry_planes():
         assert front.ends == ("symmetry plane", "symmetry plane")
         assert np.abs(front.K[:, 0] / K - 1).max() < 0.005
         assert np.abs(front.K[:, 1:] / K).max() < 0.005
+
+
+def test_a_row_of_collinear_cracks_on_tetrahedra():
+    """The same row.  Measured: mean 0.2 % low, inside within 0.5 %, and at the stations next to
+    the symmetry planes, where the mesh has one-sided cells, 0.8 % low in K and in J alike: that is
+    the finite-element solution, not the integral.
+    """
+    solid = front3d.load(DATA / "row.vtu")
+    K = rows.collinear_row(1.0, 1.0, 2.0)
+    for front in front3d.evaluate(solid, young=1.0, poisson=0.3).fronts:
+        error = front.K[:, 0] / K - 1
+        assert front.ends == ("symmetry plane", "symmetry plane")
+        assert abs(error.mean()) < 0.003
+        assert np.abs(error[2:-2]).max() < 0.005
+        assert np.abs(error).max() < 0.01
+        J = front.methods["interaction"].columns["J_interaction"]
+        np.testing.assert_allclose(J, front.G, rtol=0.005)
 
 
 def table_values(load, a_c, a_t):
@@ -149,3 +171,41 @@ def test_surface_cracks_on_tetrahedra(name, a_c, a_t):
     assert equation < 0.04
     table, _ = surface_deviations(stored(name)["bending"], "bending", 1.0, a_c, a_t)
     assert table < 0.015
+
+
+@pytest.mark.slow
+def test_penny_on_bricks():
+    """Sneddon (1946); measured 0.07 % at the default size."""
+    front = sampled("penny")["tension"]
+    K = infinite.penny_tension(100.0, 10.0)
+    assert np.abs(front.K[:, 0] / K - 1).max() < 0.005
+    assert np.abs(front.K[:, 1:] / K).max() < 0.005
+
+
+@pytest.mark.slow
+@pytest.mark.parametrize("cells", ["bricks", "tetra10"])
+def test_inclined_penny(cells):
+    """Kassir and Sih (1966); measured at 35 degrees: 0.43 % of the largest K on bricks, of which
+    the hat's averaging of a cosine over 1/24 of the circle is most; 0.7 % on tetrahedra.
+    """
+    front = sampled("penny", cells=cells, tilt=35.0)["tension"]
+    x, y, _ = front.positions.T
+    exact = infinite.penny_inclined(100.0, 10.0, np.radians(35.0), np.arctan2(y, x), 0.3)
+    exact = np.stack(exact, axis=1)
+    assert np.abs(front.K - exact).max() < 0.01 * np.abs(exact).max()
+
+
+@pytest.mark.slow
+@pytest.mark.parametrize("cells", ["bricks", "tetra10"])
+@pytest.mark.parametrize(("a_c", "a_t"), [(0.6, 0.4), (1.0, 0.2)])
+def test_surface_crack_samples(cells, a_c, a_t):
+    shape = {"depth": 6.0, "half_length": 6.0 / a_c, "thickness": 6.0 / a_t}
+    fronts = sampled("surface-crack", cells=cells, **shape)
+    for load, front in fronts.items():
+        table, equation = surface_deviations(front, load, 6.0, a_c, a_t, stress=100.0)
+        assert table < 0.015
+        if load == "tension":
+            assert equation < 0.04
+        spread = np.ptp(ring_values(front), axis=0).max(axis=1) / np.abs(front.K).max()
+        assert spread[1:-1].max() < 0.005
+        assert spread.max() < 0.01

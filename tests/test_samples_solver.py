@@ -7,7 +7,7 @@ import pytest
 
 from front3d.elements import ELEMENTS
 from front3d.errors import MeshError, MethodError
-from front3d.samples import SAMPLES, multigrid
+from front3d.samples import SAMPLES, schwarz
 from front3d.samples.elasticity import boundary_faces, stiffness, traction_load
 from front3d.samples.mirror import load_classes
 from front3d.samples.sample import uniform
@@ -19,6 +19,12 @@ GRADIENT = 1e-3 * np.array([[1.0, -0.4, 0.3], [0.2, 0.7, -0.5], [0.6, 0.1, -0.8]
 CUBE = np.array([[i, j, k] for k in (0, 1) for j in (0, 1) for i in (0, 1)], dtype=float)[
     [0, 1, 3, 2, 4, 5, 7, 6]
 ]
+
+
+@pytest.fixture(autouse=True)
+def small_clusters(monkeypatch: pytest.MonkeyPatch) -> None:
+    """Several clusters even on the small meshes here, so that iterating is put to the test."""
+    monkeypatch.setattr(schwarz, "CLUSTER", 30)
 
 
 def linear_cells(family: str, n: int = 2) -> tuple[np.ndarray, np.ndarray]:
@@ -179,6 +185,26 @@ def test_reactions_vanish(name: str) -> None:
         assert gap < 1e-7 * np.abs(load).max()
 
 
+@pytest.mark.parametrize("kind", list(ELEMENTS))
+def test_tractions_add_up_to_area_times_stress(kind: str) -> None:
+    # A unit traction along z on every face of the unit cube; then one that grows with x.
+    solid = cube(kind)
+    faces = boundary_faces(solid)
+    up = traction_load(solid.points, faces, lambda x, n: np.tile([0.0, 0.0, 1.0], (len(x), 1)))
+    np.testing.assert_allclose(up.sum(axis=0), (0.0, 0.0, 6.0), atol=1e-12)
+    ramp = traction_load(solid.points, faces, lambda x, n: x[:, :1] * np.array([1.0, 0.0, 0.0]))
+    assert ramp.sum() == pytest.approx(3.0)  # mean of x on six faces: 0 + 1 + 4 / 2
+
+
+def test_bending_of_the_plate_is_a_pure_moment() -> None:
+    # Beam theory: M = S_b b t^2 / 6 about x on the upper end; no resultant; tension at y = 0.
+    model, loads = coarse("surface-crack", bending=120.0, half_width=50.0)
+    points, end = model.solid.points, loads[1] * (model.solid.points[:, 2:] > 0)
+    np.testing.assert_allclose(end.sum(axis=0), 0.0, atol=1e-9 * np.abs(end).sum())
+    moment = -(end[:, 2] * points[:, 1]).sum()
+    assert moment == pytest.approx(120.0 * 100.0 * 15.0**2 / 6.0)
+
+
 @pytest.mark.parametrize("kind", ["hexahedron20", "tetra10", "wedge15"])
 def test_iterating_agrees_with_factorising(kind: str) -> None:
     solid = cube(kind, bend=0.03)
@@ -211,7 +237,7 @@ def test_a_turned_cell_is_named() -> None:
 
 
 def test_iteration_that_does_not_converge_is_refused(monkeypatch: pytest.MonkeyPatch) -> None:
-    monkeypatch.setattr(multigrid, "MAX_ITERATIONS", 2)
+    monkeypatch.setattr(schwarz, "MAX_ITERATIONS", 2)
     solid = cube("hexahedron20")
     load = traction_load(solid.points, boundary_faces(solid), uniform(np.diag([0, 0, 1.0])))
     with pytest.raises(MethodError, match=r"residual of .* after 2 iterations, expected 1e-10"):

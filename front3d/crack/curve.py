@@ -14,6 +14,9 @@ from scipy.interpolate import CubicSpline
 from front3d.arrays import FloatArray, frozen_floats
 from front3d.jit import kernel
 
+CurveArrays = tuple[FloatArray, FloatArray, FloatArray, bool]
+"""Knots, position, normal and closed of a `Curve`, as kernels take them."""
+
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Curve:
@@ -39,6 +42,11 @@ class Curve:
     def length(self) -> float:
         return float(self.knots[-1])
 
+    @property
+    def arrays(self) -> CurveArrays:
+        """What the kernels take."""
+        return self.knots, self.position, self.normal, self.closed
+
     def frames(self, s: FloatArray) -> tuple[FloatArray, FloatArray, FloatArray]:
         """Positions (n, 3), frames (n, 3, 3) with rows e1, e2, e3, and turning w (n, 3)."""
         s = np.ascontiguousarray(s, float)
@@ -47,13 +55,13 @@ class Curve:
             np.empty((len(s), 3, 3)),
             np.empty((len(s), 3)),
         )
-        _frames(s, self.knots, self.position, self.normal, self.closed, place, frame, turning)
+        _frames(s, self.arrays, place, frame, turning)
         return place, frame, turning
 
     def project(self, x: FloatArray, seed: FloatArray) -> tuple[FloatArray, FloatArray]:
         """Arc length of the nearest point and distance, (n,) each, for points x, (n, 3)."""
         s, distance = np.ascontiguousarray(seed, float).copy(), np.empty(len(x))
-        _project_all(np.ascontiguousarray(x), self.knots, self.position, self.closed, s, distance)
+        _project_all(np.ascontiguousarray(x), self.arrays, s, distance)
         return s, distance
 
 
@@ -115,123 +123,108 @@ def locate(s: float, knots: FloatArray, closed: bool) -> tuple[int, float, float
 
 
 @kernel
-def cubic(
-    c: FloatArray, t: float, value: FloatArray, first: FloatArray, second: FloatArray
-) -> None:
-    """Value and derivatives, (3,) each, of a piece with coefficients c, (4, 3)."""
-    for k in range(3):
-        value[k] = c[0, k] + t * (c[1, k] + t * (c[2, k] + t * c[3, k]))
-        first[k] = c[1, k] + t * (2.0 * c[2, k] + 3.0 * t * c[3, k])
-        second[k] = 2.0 * c[2, k] + 6.0 * t * c[3, k]
+def _value(c: FloatArray, t: float, k: int) -> float:
+    """Component k of a piece with coefficients c, (4, 3), lowest power first."""
+    return c[0, k] + t * (c[1, k] + t * (c[2, k] + t * c[3, k]))
+
+
+@kernel
+def _slope(c: FloatArray, t: float, k: int) -> float:
+    return c[1, k] + t * (2.0 * c[2, k] + 3.0 * t * c[3, k])
+
+
+@kernel
+def _bend(c: FloatArray, t: float, k: int) -> float:
+    return 2.0 * c[2, k] + 6.0 * t * c[3, k]
 
 
 @kernel
 def frame_at(
-    s: float,
-    knots: FloatArray,
-    position: FloatArray,
-    normal: FloatArray,
-    closed: bool,
-    place: FloatArray,
-    frame: FloatArray,
-    turning: FloatArray,
+    s: float, curve: CurveArrays, place: FloatArray, frame: FloatArray, turning: FloatArray
 ) -> None:
     """Position, frame (rows e1, e2, e3) and turning w (components along e1, e2, e3) at s.
 
     Beyond the ends of an open curve the frame goes on unturned along the tangent.
     """
+    knots, position, normal, closed = curve
     piece, t, beyond = locate(s, knots, closed)
-    d1, d2, n0, n1, n2 = np.empty(3), np.empty(3), np.empty(3), np.empty(3), np.empty(3)
-    cubic(position[piece], t, place, d1, d2)
-    cubic(normal[piece], t, n0, n1, n2)
-    speed = np.sqrt(d1[0] ** 2 + d1[1] ** 2 + d1[2] ** 2)
-    e1, e2, e3 = frame[0], frame[1], frame[2]
+    c, n = position[piece], normal[piece]
+    speed = 0.0
+    for k in range(3):
+        frame[2, k] = _slope(c, t, k)
+        speed += frame[2, k] ** 2
+    speed = np.sqrt(speed)
     along = 0.0
     for k in range(3):
-        e3[k] = d1[k] / speed
-        place[k] += beyond * e3[k]
-        along += n0[k] * e3[k]
+        frame[2, k] /= speed
+        place[k] = _value(c, t, k) + beyond * frame[2, k]
+        along += _value(n, t, k) * frame[2, k]
     size = 0.0
     for k in range(3):
-        e2[k] = n0[k] - along * e3[k]
-        size += e2[k] ** 2
+        frame[1, k] = _value(n, t, k) - along * frame[2, k]
+        size += frame[1, k] ** 2
     size = np.sqrt(size)
     for k in range(3):
-        e2[k] /= size
+        frame[1, k] /= size
     for k in range(3):
         i, j = (k + 1) % 3, (k + 2) % 3
-        e1[k] = e2[i] * e3[j] - e2[j] * e3[i]
-    turning[:] = 0.0
+        frame[0, k] = frame[1, i] * frame[2, j] - frame[1, j] * frame[2, i]
+        turning[k] = 0.0
     if beyond != 0.0:
         return
     # de3/ds is the part of c'' across the tangent; de2/ds needs its component along e1 only.
     # w1 = e3 . de2/ds = -e2 . de3/ds,  w2 = e1 . de3/ds,  w3 = e2 . de1/ds = -e1 . de2/ds.
     for k in range(3):
-        turning[0] -= e2[k] * d2[k] / speed**2
-        turning[1] += e1[k] * d2[k] / speed**2
-        turning[2] -= e1[k] * n1[k] / (size * speed)
-        turning[2] += e1[k] * d2[k] / speed**2 * along / size
+        bend = _bend(c, t, k) / speed**2
+        turning[0] -= frame[1, k] * bend
+        turning[1] += frame[0, k] * bend
+        turning[2] += frame[0, k] * (bend * along - _slope(n, t, k) / speed) / size
 
 
 @kernel
-def nearest(
-    x: FloatArray, seed: float, knots: FloatArray, position: FloatArray, closed: bool
-) -> tuple[float, float]:
+def nearest(x: FloatArray, seed: float, curve: CurveArrays) -> tuple[float, float]:
     """Arc length of the point of the curve nearest to x, (3,), and its distance.
 
-    Newton's method on (x - c(s)) . c'(s) = 0 from a seed within a cell or two of the answer.
+    Newton's method on (x - c(s)) . c'(s) = 0 from a seed within a cell or two of the answer; it
+    converges quadratically, so a last step below 1e-8 of the length leaves rounding only.
     """
-    c, d1, d2 = np.empty(3), np.empty(3), np.empty(3)
+    knots, position, _, closed = curve
     s = seed
     for _ in range(30):
         piece, t, beyond = locate(s, knots, closed)
-        cubic(position[piece], t, c, d1, d2)
-        if beyond != 0.0:
-            d2[:] = 0.0
-        f, slope = 0.0, 0.0
+        c = position[piece]
+        f, square, bent = 0.0, 0.0, 0.0
         for k in range(3):
-            gap = x[k] - c[k] - beyond * d1[k]
-            f += gap * d1[k]
-            slope += d1[k] ** 2 - gap * d2[k]
-        if slope <= 0.0:
-            slope = d1[0] ** 2 + d1[1] ** 2 + d1[2] ** 2
-        step = f / slope
+            slope = _slope(c, t, k)
+            gap = x[k] - _value(c, t, k) - beyond * slope
+            f += gap * slope
+            square += slope**2
+            bent += gap * _bend(c, t, k)
+        if beyond == 0.0 and square > bent:
+            square -= bent
+        step = f / square
         s += step
-        if abs(step) <= 1e-13 * knots[-1]:
+        if abs(step) <= 1e-8 * knots[-1]:
             break
     piece, t, beyond = locate(s, knots, closed)
-    cubic(position[piece], t, c, d1, d2)
+    c = position[piece]
     distance = 0.0
     for k in range(3):
-        distance += (x[k] - c[k] - beyond * d1[k]) ** 2
+        distance += (x[k] - _value(c, t, k) - beyond * _slope(c, t, k)) ** 2
     if closed:
         s -= np.floor(s / knots[-1]) * knots[-1]
     return s, np.sqrt(distance)
 
 
 @kernel
-def _project_all(
-    x: FloatArray,
-    knots: FloatArray,
-    position: FloatArray,
-    closed: bool,
-    s: FloatArray,
-    distance: FloatArray,
-) -> None:
+def _project_all(x: FloatArray, curve: CurveArrays, s: FloatArray, distance: FloatArray) -> None:
     for n in range(len(x)):
-        s[n], distance[n] = nearest(x[n], s[n], knots, position, closed)
+        s[n], distance[n] = nearest(x[n], s[n], curve)
 
 
 @kernel
 def _frames(
-    s: FloatArray,
-    knots: FloatArray,
-    position: FloatArray,
-    normal: FloatArray,
-    closed: bool,
-    place: FloatArray,
-    frame: FloatArray,
-    turning: FloatArray,
+    s: FloatArray, curve: CurveArrays, place: FloatArray, frame: FloatArray, turning: FloatArray
 ) -> None:
     for n in range(len(s)):
-        frame_at(s[n], knots, position, normal, closed, place[n], frame[n], turning[n])
+        frame_at(s[n], curve, place[n], frame[n], turning[n])

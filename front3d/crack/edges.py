@@ -80,6 +80,8 @@ def order_edges(
     The sides of a face run anticlockwise seen from outside, and the upper faces are seen from
     below, so each edge already runs along e3 = e1 x e2: chains only have to be followed.
     """
+    if not len(edges.ends):
+        return ()
     start, end = same.entity[edges.ends[:, 0]], same.entity[edges.ends[:, 1]]
     nodes, degree = np.unique(np.concatenate([start, end]), return_counts=True)
     following = dict(zip(start.tolist(), range(len(start)), strict=True))
@@ -92,7 +94,10 @@ def order_edges(
             "most two front edges at each node (are two cracks joined there?)"
         )
     # A closed front starts at its node with the largest x, then y, then z, whatever its number.
-    ranked = np.unique(start)[np.lexsort(np.round(points[np.unique(start)], 9).T[::-1])[::-1]]
+    starts = np.unique(start)
+    x = points[starts]
+    places = np.round((x - x.min(axis=0)) / max(float(np.ptp(x, axis=0).max()), 1e-300), 9)
+    ranked = starts[np.lexsort(places.T[::-1])[::-1]]
     chains = []
     for first in [*first_nodes.tolist(), *ranked.tolist()]:
         path: list[int] = []

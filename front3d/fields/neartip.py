@@ -52,19 +52,22 @@ def near_tip(
     second[:] = 0.0
     kolosov = 3.0 - 4.0 * poisson
     scale = 1.0 / (2.0 * shear_modulus * np.sqrt(2.0 * np.pi))
-    root = np.sqrt(r) * complex(np.cos(angle / 2), np.sin(angle / 2))
-    z = root * root
-    zc = z.conjugate()
-    rc = root.conjugate()
+    # Powers of z as products of the root and its inverse: complex division is slow.
+    turn = complex(np.cos(angle / 2), np.sin(angle / 2))
+    root = np.sqrt(r) * turn
+    over_root = turn.conjugate() / np.sqrt(r)
+    over_z = over_root * over_root
+    z, over_root_c, over_zc = root * root, over_root.conjugate(), over_z.conjugate()
+    gap = z - z.conjugate()
     for mode in range(2):
         K = complex(1.0, 0.0) if mode == 0 else complex(0.0, -1.0)
         Kc = K.conjugate()
-        w = kolosov * K * root - K * rc - (z - zc) * Kc / (2.0 * rc)
-        dz = kolosov * K / (2.0 * root) - Kc / (2.0 * rc)
-        dc = (Kc - K) / (2.0 * rc) + (z - zc) * Kc / (4.0 * rc * zc)
-        dzz = -kolosov * K / (4.0 * root * z)
-        dzc = Kc / (4.0 * rc * zc)
-        dcc = (K - 2.0 * Kc) / (4.0 * rc * zc) - 3.0 * (z - zc) * Kc / (8.0 * rc * zc * zc)
+        w = kolosov * K * root - K * root.conjugate() - 0.5 * gap * Kc * over_root_c
+        dz = 0.5 * (kolosov * K * over_root - Kc * over_root_c)
+        dc = 0.5 * over_root_c * (Kc - K + 0.5 * gap * Kc * over_zc)
+        dzz = -0.25 * kolosov * K * over_root * over_z
+        dzc = 0.25 * Kc * over_root_c * over_zc
+        dcc = over_root_c * over_zc * (0.25 * (K - 2.0 * Kc) - 0.375 * gap * Kc * over_zc)
         d1, d2 = dz + dc, 1j * (dz - dc)
         d11, d12, d22 = dzz + 2.0 * dzc + dcc, 1j * (dzz - dcc), -(dzz - 2.0 * dzc + dcc)
         u[mode, 0], u[mode, 1] = scale * w.real, scale * w.imag
@@ -74,8 +77,8 @@ def near_tip(
         second[mode, 0, 1], second[mode, 1, 1] = scale * d12.real, scale * d12.imag
         second[mode, 0, 2], second[mode, 1, 2] = scale * d22.real, scale * d22.imag
     # u3 = Im f with f = 4 scale z^(1/2): d/dx1 = Im f', d/dx2 = Re f'.
-    df = 2.0 * scale / root
-    ddf = -scale / (root * z)
+    df = 2.0 * scale * over_root
+    ddf = -scale * over_root * over_z
     u[2, 2] = 4.0 * scale * root.imag
     first[2, 2, 0], first[2, 2, 1] = df.imag, df.real
     second[2, 2, 0], second[2, 2, 1], second[2, 2, 2] = ddf.imag, ddf.real, -ddf.imag

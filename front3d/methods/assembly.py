@@ -12,7 +12,7 @@ from front3d.arrays import FloatArray, IntArray, frozen_floats
 from front3d.elements import FACES, ElementType
 from front3d.errors import MeshError
 from front3d.methods.context import FrontContext
-from front3d.methods.nodal_forces import N_MODES, cell_forces, face_forces
+from front3d.methods.nodal_forces import N_MODES, Rule, cell_forces, face_forces
 from front3d.methods.surfaces import SurfaceTerm
 from front3d.methods.tube import Tube
 
@@ -39,23 +39,22 @@ class Assembly:
         self._displacement = frozen_floats(
             [_without_rigid_motion(self._points, u, symmetry_normals) for u in moved]
         )
-        curve = context.front.curve
-        self._front = (curve.knots, curve.position, curve.normal, curve.closed)
-        self._elastic = (context.material.young, context.material.poisson)
+        self._curve = context.front.curve.arrays
+        self._elastic = (context.material.shear_modulus, context.material.poisson)
         self.forces = np.zeros((len(moved), N_MODES, len(tube.nodes), 3))
 
     def add_cells(self) -> None:
         """Volume part of every cell in the tube; MeshError where a Jacobian is not positive."""
         for block, numbers in zip(self._solid.blocks, self._tube.cells, strict=True):
             xi, weights = block.element.quadrature(CELL_RULE)
-            tables = (block.element.values(xi), block.element.gradients(xi), weights)
+            rule = (block.element.values(xi), block.element.gradients(xi), weights)
             for part in _chunks(numbers):
                 cells = self._local(block.nodes[part])
                 out = self._room(cells)
                 status = np.zeros(len(cells), np.int64)
                 cell_forces(
-                    self._points, cells, *self._beside(cells), self._displacement, *tables,
-                    *self._front, *self._elastic, out, status,
+                    self._points, cells, *self._beside(cells), self._displacement, rule,
+                    self._curve, self._elastic, out, status,
                 )  # fmt: skip
                 if status.any():
                     bad = int(np.flatnonzero(status)[0])
@@ -71,13 +70,13 @@ class Assembly:
         faces = term.faces
         for b, local in np.unique(np.stack([faces.block, faces.local], axis=1), axis=0):
             block = self._solid.blocks[b]
-            tables = _face_tables(block.element, int(local))
+            rule, tangents = _face_rule(block.element, int(local))
             for part in _chunks(faces.cell[(faces.block == b) & (faces.local == local)]):
                 cells = self._local(block.nodes[part])
                 out = self._room(cells)
                 face_forces(
-                    self._points, cells, *self._beside(cells), self._displacement, *tables,
-                    term.kind, term.pressure, *self._front, *self._elastic, out,
+                    self._points, cells, *self._beside(cells), self._displacement, rule, tangents,
+                    term.kind, term.pressure, self._curve, self._elastic, out,
                 )  # fmt: skip
                 self._sum(cells, out)
 
@@ -123,11 +122,9 @@ def _chunks(cells: IntArray) -> Iterator[IntArray]:
         yield cells[start : start + _CHUNK]
 
 
-def _face_tables(
-    element: ElementType, local: int
-) -> tuple[FloatArray, FloatArray, FloatArray, FloatArray]:
-    """The cell's shape functions and their gradients at the Gauss points of one of its faces, the
-    face's tangents in the cell's reference coordinates, and weights.
+def _face_rule(element: ElementType, local: int) -> tuple[Rule, FloatArray]:
+    """The cell's own shape functions at the Gauss points of one of its faces, with weights; and
+    the face's tangents in the cell's reference coordinates.
     """
     kind, members = element.faces[local]
     face = FACES[kind]
@@ -135,4 +132,4 @@ def _face_tables(
     corners = element.nodes[list(members)]
     xi = face.values(eta) @ corners
     tangents = np.einsum("qnd,nx->qxd", face.gradients(eta), corners)
-    return element.values(xi), element.gradients(xi), np.ascontiguousarray(tangents), weights
+    return (element.values(xi), element.gradients(xi), weights), np.ascontiguousarray(tangents)

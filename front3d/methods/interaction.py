@@ -12,17 +12,10 @@ from scipy.sparse import csr_array
 from front3d.arrays import FloatArray
 from front3d.methods.assembly import Assembly
 from front3d.methods.context import FrontContext
-from front3d.methods.hats import Hats, build_hats, default_width
+from front3d.methods.hats import Hats, build_hats, default_widths
+from front3d.methods.rings import N_RINGS, ring_radii
 from front3d.methods.surfaces import surroundings
-from front3d.methods.tube import (
-    N_RINGS,
-    Tube,
-    along_front,
-    build_tube,
-    is_structured,
-    layer_reaches,
-    ring_radii,
-)
+from front3d.methods.tube import Tube, along_front, build_tube, is_structured, layer_reaches
 from front3d.results import MethodResult, Rings
 
 PLATEAU = 0.5
@@ -36,15 +29,19 @@ def evaluate(context: FrontContext) -> list[MethodResult]:
     same = context.model.same
     structured = is_structured(solid, front, same)
     reaches = layer_reaches(solid, front, same, 1 + N_RINGS)
-    radii = ring_radii(front, reaches, structured, options.radii, solid.source)
+    others = [f for fronts in context.model.fronts for f in fronts if f is not front]
+    radii, notes = ring_radii(front, reaches, others, structured, options.radii, solid.source)
     tube = build_tube(solid, front, context.patch, same, float(radii.max()))
     around = surroundings(context, tube)
-    radii, notes = _clear_of_surfaces(radii, around.clearance, options.radii is not None)
+    radii, more = _clear_of_surfaces(radii, around.clearance, options.radii is not None)
     assembly = Assembly(context, tube, around.symmetry_normals)
     assembly.add_cells()
     for term in around.terms:
         assembly.add_faces(term)
-    width = options.hat if options.hat is not None else default_width(front, structured)
+    if options.hat is None:
+        width = default_widths(front, structured)
+    else:
+        width = np.full(len(front.corners), options.hat)
     hats = build_hats(solid, front, width)
     integrals = _integrals(assembly.forces, tube, hats, reaches[0], radii)
     modulus, shear = context.material.plane_strain_modulus, context.material.shear_modulus
@@ -52,7 +49,7 @@ def evaluate(context: FrontContext) -> list[MethodResult]:
     if front.half:  # the half that is not modelled gives the same again, and only mode I exists
         value *= 2.0
         value[:, :, 1:3] = 0.0
-    return [_result(value[:, step], radii, notes) for step in range(value.shape[1])]
+    return [_result(value[:, step], radii, hats, (*notes, *more)) for step in range(value.shape[1])]
 
 
 def _integrals(
@@ -92,12 +89,18 @@ def _clear_of_surfaces(
     )
 
 
-def _result(value: FloatArray, radii: FloatArray, notes: tuple[str, ...]) -> MethodResult:
+def _result(
+    value: FloatArray, radii: FloatArray, hats: Hats, notes: tuple[str, ...]
+) -> MethodResult:
     """Result of one step from (rings, modes, stations)."""
     K = np.moveaxis(value[:, :3], 1, 2)
     J = value[:, 3]
     trusted = slice(1, None) if len(K) > 1 else slice(None)
     mean = K[trusted].mean(axis=0)
     spread = np.ptp(K[trusted], axis=0).max(axis=1)
-    columns = {"J_interaction": J[trusted].mean(axis=0), "ring_spread": spread}
+    columns = {
+        "J_interaction": J[trusted].mean(axis=0),
+        "ring_spread": spread,
+        "hat_interaction": hats.half_lengths,
+    }
     return MethodResult("interaction", mean, columns, Rings(radii, K, J), notes)

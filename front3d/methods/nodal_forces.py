@@ -14,12 +14,15 @@ import numba
 import numpy as np
 
 from front3d.arrays import FloatArray, IntArray
-from front3d.crack.curve import frame_at, nearest
+from front3d.crack.curve import CurveArrays, frame_at, nearest
 from front3d.fields.neartip import auxiliary, polar
 from front3d.jit import kernel, parallel_kernel
 
 N_MODES = 4
 """K_I, K_II, K_III and J."""
+
+Rule = tuple[FloatArray, FloatArray, FloatArray]
+"""Shape functions (q, nodes), their reference gradients (q, nodes, 3), and weights (q,)."""
 
 FREE, PRESSED = 0, 1
 """What is known of a face: no traction; or a crack face under a given pressure."""
@@ -61,17 +64,14 @@ def _look(
     x: FloatArray,
     seed: float,
     side: int,
-    knots: FloatArray,
-    position: FloatArray,
-    normal: FloatArray,
-    closed: bool,
+    curve: CurveArrays,
     place: FloatArray,
     frame: FloatArray,
     turning: FloatArray,
 ) -> tuple[float, float, float]:
     """Frame of the front nearest to x; returns its arc length, and radius and angle of x in it."""
-    s, _ = nearest(x, seed, knots, position, closed)
-    frame_at(s, knots, position, normal, closed, place, frame, turning)
+    s, _ = nearest(x, seed, curve)
+    frame_at(s, curve, place, frame, turning)
     x1, x2 = 0.0, 0.0
     for i in range(3):
         x1 += (x[i] - place[i]) * frame[0, i]
@@ -200,27 +200,22 @@ def cell_forces(
     side: IntArray,
     seed: FloatArray,
     displacement: FloatArray,
-    values: FloatArray,
-    gradients: FloatArray,
-    weights: FloatArray,
-    knots: FloatArray,
-    position: FloatArray,
-    normal: FloatArray,
-    closed: bool,
-    young: float,
-    poisson: float,
+    rule: Rule,
+    curve: CurveArrays,
+    elastic: tuple[float, float],
     out: FloatArray,
     status: IntArray,
 ) -> None:
     """Volume part of F for every cell.
 
     cells (n, nodes); side (n,) of the crack; seed (n,) arc length near each cell; displacement
-    (steps, points, 3); values (q, nodes), gradients (q, nodes, 3) and weights (q,) of the rule;
-    the curve's arrays.  Fills out, (n, steps, N_MODES, nodes, 3), and status, (n,): 0, or 1 + the
-    Gauss point at which the Jacobian is not positive.
+    (steps, points, 3); elastic: shear modulus and Poisson's ratio.  Fills out, (n, steps,
+    N_MODES, nodes, 3), and status, (n,): 0, or 1 + the Gauss point where the Jacobian is not
+    positive.
     """
-    shear = young / (2.0 * (1.0 + poisson))
+    shear, poisson = elastic
     lame = 2.0 * shear * poisson / (1.0 - 2.0 * poisson)
+    values, gradients, weights = rule
     for c in numba.prange(len(cells)):
         vectors, matrices = np.zeros((4, 3)), np.zeros((8, 3, 3))
         x, place, turning, T = vectors[0], vectors[1], vectors[2], vectors[3]
@@ -237,9 +232,7 @@ def cell_forces(
             if not det > 0.0:
                 status[c] = 1 + g
                 break
-            s, r, angle = _look(
-                x, s, side[c], knots, position, normal, closed, place, frame, turning
-            )
+            s, r, angle = _look(x, s, side[c], curve, place, frame, turning)
             auxiliary(
                 r, angle, turning, shear, poisson,
                 aux_gradient, aux_stress, divergence, incompatibility, work,
@@ -280,31 +273,26 @@ def face_forces(
     side: IntArray,
     seed: FloatArray,
     displacement: FloatArray,
-    values: FloatArray,
-    gradients: FloatArray,
+    rule: Rule,
     tangents: FloatArray,
-    weights: FloatArray,
     kind: int,
     pressure: float,
-    knots: FloatArray,
-    position: FloatArray,
-    normal: FloatArray,
-    closed: bool,
-    young: float,
-    poisson: float,
+    curve: CurveArrays,
+    elastic: tuple[float, float],
     out: FloatArray,
 ) -> None:
     """Surface part of F for one face of every cell: - int P_kj n_j phi_n dA.
 
-    `cells` are the cells that own the faces, all by the same local face; values (q, nodes) and
-    gradients (q, nodes, 3) are the cell's at the face's Gauss points; tangents (q, 3, 2) is the
-    derivative of the cell's reference coordinates along the face's own two.
+    `cells` are the cells that own the faces, all by the same local face; the rule holds the cell's
+    own shape functions at the face's Gauss points; tangents (q, 3, 2) is the derivative of the
+    cell's reference coordinates along the face's own two.
     On a FREE face the traction is zero, so sigma^aux_ij n_j u_i,k - (sigma : eps^aux) n_k is
     left; on a PRESSED crack face the auxiliary traction is zero and t_i u^aux_i,k is left, with
     t = - pressure n.  Fills out, (n, steps, N_MODES, nodes, 3).
     """
-    shear = young / (2.0 * (1.0 + poisson))
+    shear, poisson = elastic
     lame = 2.0 * shear * poisson / (1.0 - 2.0 * poisson)
+    values, gradients, weights = rule
     for c in numba.prange(len(cells)):
         vectors, matrices = np.zeros((5, 3)), np.zeros((7, 3, 3))
         x, place, turning, area = vectors[0], vectors[1], vectors[2], vectors[3]
@@ -319,9 +307,7 @@ def face_forces(
         s = seed[c]
         for g in range(len(weights)):
             _map(points, cells[c], values[g], gradients[g], x, jacobian, inverse)
-            s, r, angle = _look(
-                x, s, side[c], knots, position, normal, closed, place, frame, turning
-            )
+            s, r, angle = _look(x, s, side[c], curve, place, frame, turning)
             auxiliary(
                 r, angle, turning, shear, poisson,
                 aux_gradient, aux_stress, divergence, incompatibility, work,

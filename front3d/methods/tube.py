@@ -1,4 +1,4 @@
-"""The cells around a front, and the rings that fit among them."""
+"""The cells around a front: which they are, how far each layer reaches, where their nodes stand."""
 
 from dataclasses import dataclass
 
@@ -11,16 +11,6 @@ from front3d.crack.front import Front, near_nodes
 from front3d.crack.patches import Patch
 from front3d.errors import MethodError
 from front3d.solid import Solid
-
-N_RINGS = 4
-"""Rings taken by default around a structured front, one per layer of cells after the first."""
-
-RING_RATIOS = (1.6, 2.0, 2.5, 3.0)
-"""Outer radii of the default rings elsewhere, in reaches of the cells that touch the front."""
-
-MAX_TURN = 0.6
-"""Largest ring radius in units of the front's radius of curvature: beyond it the planes across
-the front begin to meet and distances from it lose their meaning."""
 
 
 def is_structured(solid: Solid, front: Front, same: Coincidence) -> bool:
@@ -102,46 +92,6 @@ def build_tube(solid: Solid, front: Front, patch: Patch, same: Coincidence, reac
         side[same.double & np.isin(same.entity, same.entity[patch.pairs[:, 0]])] = 1
         side[same.double & np.isin(same.entity, same.entity[patch.pairs[:, 1]])] = -1
     return Tube(cells, nodes, s[nodes], r[nodes], side[nodes])
-
-
-def ring_radii(
-    front: Front,
-    reaches: FloatArray,
-    structured: bool,
-    given: tuple[float, ...] | None,
-    source: str,
-) -> FloatArray:
-    """(n_rings, n_corners) outer radii.
-
-    By default they follow the mesh: where bricks and wedges surround the front a ring ends with
-    each layer of cells after the first; elsewhere layers are ragged, and radii grow in proportion
-    to the reach of the first.  Given radii are the same all along the front.
-    """
-    plateau = reaches[0]
-    if given is not None:
-        radii = np.sort(np.asarray(given, float))
-        if radii[0] <= plateau.max():
-            raise MethodError(
-                f"{source}: found a ring radius of {radii[0]:g}, expected more than "
-                f"{plateau.max():.4g}, the reach of the cells that touch the front"
-            )
-        return np.repeat(radii[:, None], len(plateau), axis=1)
-    _, _, turning = front.curve.frames(front.corner_s)
-    curvature = np.linalg.norm(turning[:, :2], axis=1)
-    largest = MAX_TURN / float((plateau * curvature).max() + 1e-300)
-    if largest < RING_RATIOS[0]:
-        worst = int(np.argmax(plateau * curvature))
-        raise MethodError(
-            f"{source}: the cells that touch the front reach {plateau[worst]:.3g} from it where "
-            f"its radius of curvature is {1 / curvature[worst]:.3g}; expected at most "
-            f"{MAX_TURN / RING_RATIOS[0]:.2f} of it: refine the mesh around the front"
-        )
-    fitting = reaches[1:][(reaches[1:] * curvature).max(axis=1) <= MAX_TURN]
-    if structured and len(fitting) > 1:
-        return fitting
-    if largest < RING_RATIOS[-1]:
-        return np.outer(np.linspace(RING_RATIOS[0], largest, len(RING_RATIOS)), plateau)
-    return np.outer(RING_RATIOS, plateau)
 
 
 def project(front: Front, x: FloatArray) -> tuple[FloatArray, FloatArray]:

@@ -19,7 +19,7 @@ from front3d.output.trust import agreement, rings_of
 from front3d.results import CAUTION, MODES, Evaluation, FrontResult
 from front3d.units import Units
 
-LIBRARIES = ("numpy", "scipy", "numba", "meshio", "pyvista", "vtk", "matplotlib", "h5py", "pyamg")
+LIBRARIES = ("numpy", "scipy", "numba", "meshio", "pyvista", "vtk", "matplotlib", "h5py")
 
 _INDEX_SUFFIXES = {".pvd", ".pvtu", ".xdmf", ".xmf", ".xml"}
 

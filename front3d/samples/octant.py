@@ -44,7 +44,7 @@ def _drawn(patch: Patch, levels: FloatArray) -> Block:
 
 def _tube_blocks(shape: Quarter, density: Density) -> list[Block]:
     """The wedges at the front and the rings of bricks around them."""
-    angles = spread_angles(shape.a, shape.c, density.along)
+    angles = spread_angles(density.along)
     section = shape.radius * density.tube.section()
     points = np.empty((len(angles), *section.shape[:2], 3))
     for j, k in np.ndindex(*section.shape[:2]):

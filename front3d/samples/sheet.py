@@ -64,7 +64,7 @@ class Patch:
 
 def quarter_sheet(shape: Quarter, density: Density) -> list[Patch]:
     """The patches of a quarter of the crack plane."""
-    angles = spread_angles(shape.a, shape.c, density.along)
+    angles = spread_angles(density.along)
     side = density.tube.side
     band = shape.radius * np.concatenate([-side[:0:-1], side])
     lines = np.stack([curve(shape.a, shape.c, angles, d) for d in band], axis=1)
