@@ -19,6 +19,7 @@ rings = [0.4, 0.6, 0.8]
 hat = 4
 up = [0, 0, 1]
 steps = ["tension"]
+methods = ["closure"]
 unopened = false
 ```
 """
@@ -52,6 +53,7 @@ class Case:
     hat: float | None = None
     up: Vector | None = None
     steps: tuple[str, ...] | None = None
+    methods: tuple[str, ...] | None = None
     unopened: bool | None = None
     source: Path | None = field(default=None, compare=False)
 
@@ -75,6 +77,7 @@ class Case:
             up=self.up,
             steps=self.steps,
             unopened=bool(self.unopened),
+            methods=self.methods or (),
         )
 
     @property
@@ -170,6 +173,7 @@ _KEYS: Mapping[str, Any] = {
         "hat": _number,
         "up": _vector,
         "steps": _list_of(_text, 'a list of step names such as ["step 1"]'),
+        "methods": _list_of(_text, 'a list of method names such as ["closure"]'),
         "unopened": _boolean,
     },
 }

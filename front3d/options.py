@@ -53,6 +53,7 @@ class Options:
         coordinate axis of the crack normal
     steps : names of the steps to evaluate; None takes all
     unopened : evaluate coincident faces that never part in any step, too
+    methods : further methods beside the interaction integral, by name
     """
 
     crack_plane: Plane | None = None
@@ -62,6 +63,7 @@ class Options:
     up: Vector | None = None
     steps: tuple[str, ...] | None = None
     unopened: bool = False
+    methods: tuple[str, ...] = ()
 
     def __post_init__(self) -> None:
         if self.radii is not None and (

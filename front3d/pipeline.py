@@ -6,13 +6,16 @@ from dataclasses import asdict
 import numpy as np
 
 from front3d.crack import CrackModel, Front, find_cracks
-from front3d.errors import CaseError
+from front3d.errors import CaseError, MethodError
 from front3d.flags import front_warnings, station_flags
 from front3d.methods import METHODS, FrontContext
 from front3d.options import Options
 from front3d.results import Evaluation, FrontResult, MethodResult, energy_release_rate
 from front3d.solid import Material, Solid, Step
 from front3d.units import Units
+
+REPORTED = "interaction"
+"""The method whose K is reported without a suffix."""
 
 Progress = Callable[[str, float], None]
 
@@ -41,6 +44,7 @@ def evaluate_solid(
     """
     options, units = options or Options(), units or Units()
     report = progress or _silent
+    _check_methods(options)
     steps = _chosen_steps(solid, options)
     report("finding the crack", 0.0)
     model = find_cracks(solid, options)
@@ -51,10 +55,10 @@ def evaluate_solid(
         for front in fronts:
             report(f"front {number + 1} of {model.n_fronts}", number / model.n_fronts)
             context = FrontContext(solid, model, patch, front, material, options, displacement)
-            by_method = {name: method(context) for name, method in METHODS.items()}
+            by_method, refused = _apply_methods(context)
             for index, step in enumerate(steps):
                 methods = {name: found[index] for name, found in by_method.items()}
-                results.append(_front_result(step, number, front, methods, material))
+                results.append(_front_result(step, number, front, methods, material, refused))
             number += 1
     report("done", 1.0)
     return Evaluation(
@@ -80,15 +84,36 @@ def _chosen_steps(solid: Solid, options: Options) -> list[Step]:
     return [by_name[name] for name in options.steps]
 
 
+def _apply_methods(context: FrontContext) -> tuple[dict[str, list[MethodResult]], tuple[str, ...]]:
+    """Results of the interaction integral and the further methods asked for, and the reasons of
+    those that do not apply to this front.  The interaction integral must apply.
+    """
+    by_method = {REPORTED: METHODS[REPORTED](context)}
+    refused = []
+    for name in context.options.methods:
+        try:
+            by_method[name] = METHODS[name](context)
+        except MethodError as reason:
+            refused.append(f"{name} does not apply: {reason}")
+    return by_method, tuple(refused)
+
+
+def _check_methods(options: Options) -> None:
+    unknown = [name for name in options.methods if name not in METHODS]
+    if unknown:
+        raise CaseError(f"method: found {unknown[0]!r}, expected one of {', '.join(METHODS)}")
+
+
 def _front_result(
     step: Step,
     number: int,
     front: Front,
     methods: Mapping[str, MethodResult],
     material: Material,
+    refused: tuple[str, ...],
 ) -> FrontResult:
     positions, frames, _ = front.curve.frames(front.corner_s)
-    K = methods["interaction"].K
+    K = methods[REPORTED].K
     return FrontResult(
         step=step.name,
         front=number,
@@ -102,7 +127,7 @@ def _front_result(
         G=energy_release_rate(K, material),
         flags=station_flags(front, methods),
         methods=methods,
-        warnings=front_warnings(front, methods, material),
+        warnings=(*refused, *front_warnings(front, methods, material)),
     )
 
 

@@ -88,6 +88,13 @@ def add_evaluation_flags(parser: argparse.ArgumentParser) -> None:
         metavar="NAME",
         help="evaluate this step only (may be repeated)",
     )
+    parser.add_argument(
+        "--method",
+        action="append",
+        dest="methods",
+        metavar="NAME",
+        help="apply a further method, too: closure or opening (may be repeated)",
+    )
     parser.add_argument("--length-unit", dest="length", metavar="UNIT", help="e.g. mm")
     parser.add_argument("--stress-unit", dest="stress", metavar="UNIT", help="e.g. MPa")
 
@@ -104,8 +111,9 @@ def case_of(arguments: argparse.Namespace) -> Case:
         if name not in ("result", "source")
         and (value := getattr(arguments, name, None)) is not None
     }
-    if "steps" in said:
-        said["steps"] = tuple(said["steps"])
+    for name in ("steps", "methods"):
+        if name in said:
+            said[name] = tuple(said[name])
     flags = Case(**said)
     try:
         _ = flags.options, flags.units

@@ -30,7 +30,7 @@ from front3d.methods.closure_formulas import signed_K
 from front3d.methods.closure_profile import build_profile, outer_line, places_ahead
 from front3d.methods.closure_weights import Tents, build_tents
 from front3d.methods.context import FrontContext
-from front3d.methods.hats import default_width
+from front3d.methods.hats import default_widths
 from front3d.methods.tube import project
 from front3d.results import MethodResult
 
@@ -47,7 +47,10 @@ def evaluate(context: FrontContext) -> list[MethodResult]:
     forces, imbalance = closing_forces(context, ligament)
     columns = find_columns(context, ligament)
     front, options = context.front, context.options
-    width = options.hat if options.hat is not None else default_width(front, columns is not None)
+    if options.hat is None:
+        width = default_widths(front, columns is not None)
+    else:
+        width = np.full(len(front.corners), options.hat)
     tents = build_tents(context, ligament, width)
     jump = openings(context)
     if columns is not None:

@@ -37,11 +37,11 @@ class Tents:
         return csr_array(self.plain.weights(s, odd) @ self.mixing)
 
 
-def build_tents(context: FrontContext, ligament: Ligament, width: float) -> Tents:
-    """Tents of a half-width in edges, one per station."""
+def build_tents(context: FrontContext, ligament: Ligament, width: FloatArray) -> Tents:
+    """Tents of given half-widths in edges, one per station."""
     front = context.front
     n = len(front.corners)
-    width = min(width, n / 2 if front.closed else float(n - 1))
+    width = np.minimum(width, n / 2 if front.closed else float(n - 1))
     plain = Hats(front, width, np.ones(n), np.zeros(n))
     s, area = _area_elements(context, ligament)
     weights = plain.weights(s)
@@ -55,15 +55,14 @@ def build_tents(context: FrontContext, ligament: Ligament, width: float) -> Tent
     return Tents(plain, csr_array(mixing))
 
 
-def _cut_stations(front: Front, width: float) -> list[tuple[int, int]]:
+def _cut_stations(front: Front, width: FloatArray) -> list[tuple[int, int]]:
     """Stations whose tents reach over a free end, each with the next one inwards."""
     n = len(front.corners)
-    reach = min(int(np.ceil(width)), n - 1)
     out: list[tuple[int, int]] = []
     if front.ends and front.ends[0] == FREE_SURFACE:
-        out += [(k, k + 1) for k in range(reach)]
+        out += [(k, k + 1) for k in range(n - 1) if k < width[k]]
     if front.ends and front.ends[1] == FREE_SURFACE:
-        out += [(n - 1 - k, n - 2 - k) for k in range(reach)]
+        out += [(k, k - 1) for k in range(n - 1, 0, -1) if n - 1 - k < width[k]]
     return out
 
 
