@@ -38,7 +38,7 @@ def find_fronts(solid: Solid, **options: Any) -> CrackModel:
     from front3d.crack import find_cracks
     from front3d.options import Options
 
-    return find_cracks(solid, Options(**options))
+    return find_cracks(solid, Options.from_words(**options))
 
 
 def evaluate(
@@ -63,4 +63,5 @@ def evaluate(
     from front3d.pipeline import evaluate_solid
     from front3d.solid import Material
 
-    return evaluate_solid(solid, Material(young, poisson), Options(**options), units, progress)
+    chosen = Options.from_words(**options)
+    return evaluate_solid(solid, Material(young, poisson), chosen, units, progress)

@@ -1,7 +1,8 @@
 """What a user may choose about an evaluation; the defaults come from the mesh."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, fields
 from math import isfinite
+from typing import Any
 
 from front3d.errors import CaseError
 
@@ -64,6 +65,22 @@ class Options:
     steps: tuple[str, ...] | None = None
     unopened: bool = False
     methods: tuple[str, ...] = ()
+
+    @classmethod
+    def from_words(cls, **words: Any) -> "Options":
+        """Options as a person writes them: a plane as "z=0", a single radius, step or method."""
+        known = [field.name for field in fields(cls)]
+        for name in words:
+            if name not in known:
+                raise CaseError(f"unknown option {name!r}, expected one of {', '.join(known)}")
+        if isinstance(plane := words.get("crack_plane"), str):
+            words["crack_plane"] = Plane.parse(plane)
+        if isinstance(radius := words.get("radii"), int | float):
+            words["radii"] = (float(radius),)
+        for name in ("steps", "methods"):
+            if isinstance(words.get(name), str):
+                words[name] = (words[name],)
+        return cls(**words)
 
     def __post_init__(self) -> None:
         if self.radii is not None and (

@@ -6,7 +6,7 @@ from dataclasses import asdict
 import numpy as np
 
 from front3d.crack import CrackModel, Front, find_cracks
-from front3d.errors import CaseError, MethodError
+from front3d.errors import CaseError, Front3DError, MeshError, MethodError
 from front3d.flags import front_warnings, station_flags
 from front3d.methods import METHODS, FrontContext
 from front3d.options import Options
@@ -50,20 +50,30 @@ def evaluate_solid(
     model = find_cracks(solid, options)
     displacement = np.stack([step.displacement for step in steps])
     results: list[FrontResult] = []
+    left_out: list[tuple[int, Front3DError]] = []
     number = 0
     for patch, fronts in zip(model.patches, model.fronts, strict=True):
         for front in fronts:
             report(f"front {number + 1} of {model.n_fronts}", number / model.n_fronts)
             context = FrontContext(solid, model, patch, front, material, options, displacement)
-            by_method, refused = _apply_methods(context)
+            try:
+                by_method, refused = _apply_methods(context)
+            except (MethodError, MeshError) as reason:
+                if model.n_fronts == 1:
+                    raise
+                left_out.append((number, reason))
+                number += 1
+                continue
             for index, step in enumerate(steps):
                 methods = {name: found[index] for name, found in by_method.items()}
                 results.append(_front_result(step, number, front, methods, material, refused))
             number += 1
+    if not results:
+        raise left_out[0][1]
     report("done", 1.0)
-    return Evaluation(
-        solid.source, material, units, tuple(results), asdict(options), _warnings(solid, model)
-    )
+    warnings = _warnings(solid, model)
+    warnings += tuple(f"front {front} was left out: {reason}" for front, reason in left_out)
+    return Evaluation(solid.source, material, units, tuple(results), asdict(options), warnings)
 
 
 def _silent(stage: str, fraction: float) -> None:

@@ -42,6 +42,22 @@ class Rings:
                 "(rings, stations), (rings, stations, 3), (rings, stations)"
             )
 
+    @property
+    def compared(self) -> slice:
+        """The rings that are averaged and compared: beyond the first where there are three.
+
+        The first one leans on the cells at the front, where any mesh is at its worst (leaving the
+        first contour out is common practice).
+        """
+        return slice(1, None) if len(self.radii) > 2 else slice(None)
+
+    @property
+    def spread(self) -> FloatArray:
+        """(n, 3) largest less smallest K of the compared rings; NaN for a single ring."""
+        if len(self.radii) < 2:
+            return np.full(self.K.shape[1:], np.nan)
+        return np.ptp(self.K[self.compared], axis=0)
+
 
 @dataclass(frozen=True, slots=True, eq=False)
 class MethodResult:

@@ -141,19 +141,30 @@ def test_modes_superpose():
     np.testing.assert_allclose(both, a + b, atol=1e-12 * np.abs(both).max())
 
 
-def test_internal_pressure_equals_remote_tension():
+@pytest.mark.parametrize(
+    ("kind", "allowed"),
+    [
+        ("quarter_wedge", 0.002),
+        ("hexahedron20", 0.006),
+        pytest.param("tetra10", 0.006, marks=pytest.mark.slow),
+    ],
+)
+def test_internal_pressure_equals_remote_tension(kind, allowed):
     """Superposition: the field of remote tension less its uniform part is that of pressure."""
-    mesh = curved("quarter_wedge", 8)
+    mesh = curved(kind, 8)
     uniform = np.array([-POISSON, -POISSON, 1.0]) / YOUNG
 
     def pressed(points, side):
         return exact.penny_tension(ELASTIC, 1.0)(points, side) - points * uniform
 
     solid = impose(mesh.solid, mesh.side, pressed)
-    front = front3d.evaluate(solid, young=YOUNG, poisson=POISSON, face_pressure=1.0).fronts[0]
+    front = front3d.evaluate(
+        solid, young=YOUNG, poisson=POISSON, radii=(0.3, 0.36), face_pressure=1.0
+    ).fronts[0]
     rings = front.methods["interaction"].rings
     expected = 2 * np.sqrt(1 / np.pi)  # Sneddon (1946)
-    np.testing.assert_allclose(rings.K[..., 0], expected, rtol=2e-3)
-    np.testing.assert_allclose(rings.J, expected**2 * (1 - POISSON**2) / YOUNG, rtol=1e-2)
+    np.testing.assert_allclose(rings.K[..., 0], expected, rtol=allowed)
+    if kind == "quarter_wedge":
+        np.testing.assert_allclose(rings.J, expected**2 * (1 - POISSON**2) / YOUNG, rtol=1e-2)
     without = front3d.evaluate(solid, young=YOUNG, poisson=POISSON).fronts[0]
     assert without.K[:, 0].max() < 0.9 * expected

@@ -64,7 +64,7 @@ def test_a_coarse_mesh_is_said_to_be_coarse_and_a_hopeless_one_is_refused():
 
 
 @pytest.mark.parametrize(
-    ("radii", "message"), [((0.05, 0.3), r"more than 0\.1"), ((0.3, 1.2), r"less than 1")]
+    ("radii", "message"), [((0.05, 0.3), r"more than 0\.1"), ((0.3, 1.2), r"less than 0\.8")]
 )
 def test_given_radii_must_fit(radii, message):
     front = closed_front(1.0, 1.0)

@@ -3,6 +3,7 @@
 from dataclasses import dataclass
 
 import numpy as np
+from scipy.spatial import cKDTree
 
 from front3d.arrays import BoolArray, FloatArray, IntArray, frozen_ints
 from front3d.crack.curve import Curve, fit_curve
@@ -59,8 +60,7 @@ class Front:
     def cell_coordinate(self, s: FloatArray) -> FloatArray:
         """Position along the front counted in edges: an integer at each corner node."""
         knots = np.append(self.corner_s, self.length) if self.closed else self.corner_s
-        inside = np.interp(s, knots, np.arange(len(knots)))
-        return inside
+        return np.interp(s, knots, np.arange(len(knots)))
 
 
 def build_front(solid: Solid, chain: Chain, upper: FaceTable, half: bool) -> Front:
@@ -173,8 +173,6 @@ def near_nodes(
     -------
     mask : (n_points,); s and distance : (n_points,), NaN and infinity outside the mask
     """
-    from scipy.spatial import cKDTree
-
     per_piece = 8
     knots = front.curve.knots
     t = (np.arange(per_piece) / per_piece)[None, :] * np.diff(knots)[:, None] + knots[:-1, None]

@@ -47,6 +47,11 @@ NEGLIGIBLE_OPENING = 1e-6
 """Sides that move by less than this times the spread of displacements do not part."""
 
 
+STILL = 1e-3
+"""Nodes of a half model's plane that move by less than this times the largest are held: supports
+by penalty give a little, and even the first node behind a front opens by several per cent."""
+
+
 def find_patches(solid: Solid, same: Coincidence, options: Options) -> tuple[Patch, ...]:
     """All pairs of coincident face patches of a full model; empty if there are none."""
     free = outer_faces(solid, same.entity, same.double)
@@ -200,7 +205,7 @@ def find_half_patch(solid: Solid, same: Coincidence, options: Options) -> tuple[
         across = step.displacement[members] @ normal
         largest = float(np.abs(across).max())
         opening = max(opening, 2.0 * largest)
-        moves[members] |= np.abs(across) > NEGLIGIBLE_OPENING * largest
+        moves[members] |= np.abs(across) > STILL * largest
     moving_face = np.asarray(moves[free.nodes].any(axis=1))
     if not moving_face.any() or moving_face.all():
         state = "moves" if moving_face.all() else "stays in place"

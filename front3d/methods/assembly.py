@@ -12,13 +12,14 @@ from front3d.arrays import FloatArray, IntArray, frozen_floats
 from front3d.elements import FACES, ElementType
 from front3d.errors import MeshError
 from front3d.methods.context import FrontContext
-from front3d.methods.nodal_forces import N_MODES, Rule, cell_forces, face_forces
+from front3d.methods.face_rules import PLAIN, graded_rule, touching_sides
+from front3d.methods.nodal_forces import N_MODES, PRESSED, Rule, cell_forces, face_forces
 from front3d.methods.surfaces import SurfaceTerm
 from front3d.methods.tube import Tube
 
 CELL_RULE, FACE_RULE = 3, 8
 """Gauss points a side.  In cells three give K within a hundredth of a per cent of six, at the
-front too, where q is flat; on faces the pressure meets the singular auxiliary field."""
+front too, where q is flat."""
 
 _CHUNK = 4096
 """Cells per call, which bounds the memory of the forces before they are summed at the nodes."""
@@ -39,6 +40,8 @@ class Assembly:
         self._displacement = frozen_floats(
             [_without_rigid_motion(self._points, u, symmetry_normals) for u in moved]
         )
+        same = context.model.same
+        self._on_front = np.isin(same.entity, same.entity[context.front.nodes])
         self._curve = context.front.curve.arrays
         self._elastic = (context.material.shear_modulus, context.material.poisson)
         self.forces = np.zeros((len(moved), N_MODES, len(tube.nodes), 3))
@@ -68,10 +71,15 @@ class Assembly:
     def add_faces(self, term: SurfaceTerm) -> None:
         """Surface part of the faces of one term."""
         faces = term.faces
-        for b, local in np.unique(np.stack([faces.block, faces.local], axis=1), axis=0):
+        how = np.full(len(faces), PLAIN)
+        if term.kind == PRESSED:
+            how = touching_sides(faces, self._on_front)
+        groups = np.stack([faces.block, faces.local, how], axis=1)
+        for group in np.unique(groups, axis=0):
+            b, local, touching = (int(k) for k in group)
             block = self._solid.blocks[b]
-            rule, tangents = _face_rule(block.element, int(local))
-            for part in _chunks(faces.cell[(faces.block == b) & (faces.local == local)]):
+            rule, tangents = _face_rule(block.element, local, touching)
+            for part in _chunks(faces.cell[(groups == group).all(axis=1)]):
                 cells = self._local(block.nodes[part])
                 out = self._room(cells)
                 face_forces(
@@ -122,13 +130,13 @@ def _chunks(cells: IntArray) -> Iterator[IntArray]:
         yield cells[start : start + _CHUNK]
 
 
-def _face_rule(element: ElementType, local: int) -> tuple[Rule, FloatArray]:
+def _face_rule(element: ElementType, local: int, touching: int) -> tuple[Rule, FloatArray]:
     """The cell's own shape functions at the Gauss points of one of its faces, with weights; and
     the face's tangents in the cell's reference coordinates.
     """
     kind, members = element.faces[local]
     face = FACES[kind]
-    eta, weights = face.quadrature(FACE_RULE)
+    eta, weights = graded_rule(face, touching, FACE_RULE)
     corners = element.nodes[list(members)]
     xi = face.values(eta) @ corners
     tangents = np.einsum("qnd,nx->qxd", face.gradients(eta), corners)

@@ -18,6 +18,9 @@ from front3d.methods.surfaces import surroundings
 from front3d.methods.tube import Tube, along_front, build_tube, is_structured, layer_reaches
 from front3d.results import MethodResult, Rings
 
+SMALLEST_RATIO = 1.3
+"""Smallest outer radius of a ring where a surface is near, in reaches of the cells at the front."""
+
 PLATEAU = 0.5
 """Smallest flat part of q, in ring radii: with more than the touching cells flat, the error of a
 ring falls with the element size at the rate of the element's order."""
@@ -33,7 +36,7 @@ def evaluate(context: FrontContext) -> list[MethodResult]:
     radii, notes = ring_radii(front, reaches, others, structured, options.radii, solid.source)
     tube = build_tube(solid, front, context.patch, same, float(radii.max()))
     around = surroundings(context, tube)
-    radii, more = _clear_of_surfaces(radii, around.clearance, options.radii is not None)
+    radii, more = _clear_of_surfaces(radii, reaches[0], around.clearance, options.radii is not None)
     assembly = Assembly(context, tube, around.symmetry_normals)
     assembly.add_cells()
     for term in around.terms:
@@ -71,21 +74,25 @@ def _integrals(
 
 
 def _clear_of_surfaces(
-    radii: FloatArray, clearance: float, given: bool
+    radii: FloatArray, plateau: FloatArray, clearance: float, given: bool
 ) -> tuple[FloatArray, tuple[str, ...]]:
-    """The rings that stay clear of surfaces on which the front does not end, and what to say.
+    """Rings that stay clear of surfaces beside the front, if the mesh allows, and what to say.
 
-    A ring may cut a surface that carries no load, because the surface term covers it, but whether
-    it carries load is not known here.
+    A ring that cuts a surface takes its traction from the stresses there, which are less accurate
+    than displacements.
     """
     clear = radii.max(axis=1) < clearance
-    if not given and clear.sum() > 1:
-        return radii[clear], ()
     if clear.all():
         return radii, ()
+    if not given:
+        if clear.sum() > 2:
+            return radii[clear], ()
+        room = 0.98 * clearance / float(plateau.max())
+        if room > SMALLEST_RATIO:
+            return np.outer(np.linspace(SMALLEST_RATIO, room, 3), plateau), ()
     return radii, (
         f"rings of radius {radii[~clear].max():.4g} reach a surface {clearance:.4g} from the front "
-        "on which it does not end: they hold only if that surface carries no load",
+        "on which it does not end, and take the traction there from the stresses",
     )
 
 
@@ -95,12 +102,13 @@ def _result(
     """Result of one step from (rings, modes, stations)."""
     K = np.moveaxis(value[:, :3], 1, 2)
     J = value[:, 3]
-    trusted = slice(1, None) if len(K) > 1 else slice(None)
-    mean = K[trusted].mean(axis=0)
-    spread = np.ptp(K[trusted], axis=0).max(axis=1)
+    rings = Rings(radii, K, J)
+    if len(radii) < 2:
+        notes = (*notes, "a single ring: nothing says how K depends on its radius")
     columns = {
-        "J_interaction": J[trusted].mean(axis=0),
-        "ring_spread": spread,
+        "J_interaction": J[rings.compared].mean(axis=0),
+        "ring_spread": rings.spread.max(axis=1),
         "hat_interaction": hats.half_lengths,
     }
-    return MethodResult("interaction", mean, columns, Rings(radii, K, J), notes)
+    mean = K[rings.compared].mean(axis=0)
+    return MethodResult("interaction", mean, columns, rings, notes)

@@ -24,8 +24,9 @@ N_MODES = 4
 Rule = tuple[FloatArray, FloatArray, FloatArray]
 """Shape functions (q, nodes), their reference gradients (q, nodes, 3), and weights (q,)."""
 
-FREE, PRESSED = 0, 1
-"""What is known of a face: no traction; or a crack face under a given pressure."""
+FREE, PRESSED, CUT = 0, 1, 2
+"""What is known of a face: no traction; a crack face under a given pressure; or nothing, so that
+its traction is taken from the stresses."""
 
 
 @kernel
@@ -288,7 +289,7 @@ def face_forces(
     cell's reference coordinates along the face's own two.
     On a FREE face the traction is zero, so sigma^aux_ij n_j u_i,k - (sigma : eps^aux) n_k is
     left; on a PRESSED crack face the auxiliary traction is zero and t_i u^aux_i,k is left, with
-    t = - pressure n.  Fills out, (n, steps, N_MODES, nodes, 3).
+    t = - pressure n; on a CUT all of P_kj n_j counts.  Fills out, (n, steps, N_MODES, nodes, 3).
     """
     shear, poisson = elastic
     lame = 2.0 * shear * poisson / (1.0 - 2.0 * poisson)
@@ -321,21 +322,22 @@ def face_forces(
                 energy = _hooke(H, lame, shear, stress)
                 for mode in range(N_MODES):
                     T[:] = 0.0
-                    if kind == FREE:
-                        mutual = energy
-                        if mode < 3:
-                            mutual = _mutual_energy(aux_stress[mode], H)
-                            for k in range(3):
-                                for i in range(3):
-                                    for j in range(3):
-                                        T[k] -= aux_stress[mode, i, j] * area[j] * H[i, k]
-                        for k in range(3):
-                            T[k] += mutual * area[k]
-                    else:
+                    if kind == PRESSED:
                         for k in range(3):
                             for i in range(3):
                                 moved = H[i, k] if mode == 3 else aux_gradient[mode, i, k]
                                 T[k] += pressure * area[i] * moved
+                    else:
+                        mutual = energy if mode == 3 else _mutual_energy(aux_stress[mode], H)
+                        for k in range(3):
+                            T[k] = mutual * area[k]
+                            for i in range(3):
+                                for j in range(3):
+                                    if mode < 3:
+                                        T[k] -= aux_stress[mode, i, j] * area[j] * H[i, k]
+                                    if kind == CUT:
+                                        moved = H[i, k] if mode == 3 else aux_gradient[mode, i, k]
+                                        T[k] -= stress[i, j] * area[j] * moved
                     _spread(
                         P, T, 1.0, frame, local, values[g], gradients[g], pull, out[c, step, mode]
                     )

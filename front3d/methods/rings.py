@@ -20,6 +20,12 @@ OF_OWN_ROOM, OF_GAP = 0.6, 0.75
 front (its radius of curvature, or half the width of a slender crack), and of the distance to
 another front."""
 
+OF_GIVEN = 0.8
+"""The same for radii that the user gives."""
+
+SHARP = 20.0
+"""Degrees by which the front turns at a node, and three times the usual, that make a corner."""
+
 COARSE = 0.3
 """Reach of the cells at the front, in parts of the same distance, above which K is called rough."""
 
@@ -82,28 +88,31 @@ def ring_radii(
                 f"{source}: found a ring radius of {radii[0]:g}, expected more than "
                 f"{plateau.max():.4g}, the reach of the cells that touch the front"
             )
-        largest = float(np.minimum(own, gap).min())
+        largest = float(OF_GIVEN * np.minimum(own, gap).min())
         if radii[-1] >= largest:
             raise MethodError(
                 f"{source}: found a ring radius of {radii[-1]:g}, expected less than "
-                f"{largest:.4g}, where rings would meet another part of a front"
+                f"{largest:.4g}, where rings come near another part of a front or "
+                "its centre of curvature"
             )
         radii = np.repeat(radii[:, None], len(plateau), axis=1)
     elif RATIOS[0] * plateau[tightest] > room[tightest]:
         raise MethodError(
             f"{source}: the cells that touch the front at node {front.corners[tightest]} reach "
             f"{plateau[tightest]:.4g} from it, but curvature and other fronts leave room for "
-            f"{room[tightest] / RATIOS[0]:.4g} only: refine the mesh around the front"
+            f"{room[tightest] / RATIOS[0]:.4g} only: refine the mesh around the front (a sharp "
+            "corner in the front leaves no room at any size, and has no K)"
         )
     else:
-        fitting = reaches[1:][(reaches[1:] <= room).all(axis=1)]
+        grows = (np.diff(reaches, axis=0) > 1e-6 * plateau).all(axis=1)  # not past the last layer
+        fitting = reaches[1:][grows & (reaches[1:] <= room).all(axis=1)]
         if structured and len(fitting) > 1:
             radii = fitting
         else:
             last = min(RATIOS[-1], float(room[tightest] / plateau[tightest]))
             ratios = RATIOS if last == RATIOS[-1] else np.linspace(RATIOS[0], last, len(RATIOS))
             radii = np.outer(ratios, plateau)
-    return radii, _roughness(plateau, own)
+    return radii, (*_roughness(plateau, own), *_sharp_corners(front))
 
 
 def _roughness(plateau: FloatArray, own: FloatArray) -> tuple[str, ...]:
@@ -113,4 +122,24 @@ def _roughness(plateau: FloatArray, own: FloatArray) -> tuple[str, ...]:
     return (
         f"the mesh is coarse for this front: the cells that touch it reach {100 * share:.0f} % of "
         "its radius of curvature (or half-width), so K may be off by some per cent",
+    )
+
+
+def _sharp_corners(front: Front) -> tuple[str, ...]:
+    """Say where the front turns much more sharply than anywhere else."""
+    places, _, _ = front.curve.frames(front.corner_s)
+    if front.closed:
+        places = np.vstack([places, places[:2]])
+    edges = np.diff(places, axis=0)
+    unit = edges / np.linalg.norm(edges, axis=1, keepdims=True)
+    turn = np.degrees(np.arccos(np.clip(np.sum(unit[1:] * unit[:-1], axis=1), -1.0, 1.0)))
+    if len(turn) < 3:
+        return ()
+    sharp = np.flatnonzero((turn > SHARP) & (turn > 3.0 * np.median(turn)))
+    if not len(sharp):
+        return ()
+    node = front.corners[(sharp[0] + 1) % len(front.corners)]
+    return (
+        f"the front turns by {turn[sharp[0]]:.0f} degrees at node {node}: at a corner there is no "
+        "K, and near it none of those given should be used",
     )

@@ -10,16 +10,20 @@ from front3d.crack.facetable import FaceTable, outer_faces, set_keys
 from front3d.crack.front import SYMMETRY_PLANE
 from front3d.crack.patches import marked
 from front3d.methods.context import FrontContext
-from front3d.methods.nodal_forces import FREE, PRESSED
+from front3d.methods.nodal_forces import CUT, FREE, PRESSED
 from front3d.methods.tube import Tube
 
 _SAME_DIRECTION = 0.999
 """Cosine between normals above which a face lies in a symmetry plane."""
 
 
+_ENDS = 0.5
+"""Cosine between a face's normal and the front above which the front ends on the face."""
+
+
 @dataclass(frozen=True, slots=True, eq=False)
 class SurfaceTerm:
-    """Faces that give a surface term, what is known of them (FREE or PRESSED), and the pressure."""
+    """Faces that give a surface term, what is known of them, and the pressure on them."""
 
     faces: FaceTable
     kind: int
@@ -45,10 +49,13 @@ class Surroundings:
 def surroundings(context: FrontContext, tube: Tube) -> Surroundings:
     """Look at the outer faces inside the tube.
 
-    Faces on a symmetry plane give no term: for modes I and II the tractions on it do no work in
-    the interaction, and for mode III the hats vanish there.
+    Surfaces on which the front ends are free of load; of others, beside the front, nothing is
+    known, and their traction comes from the stresses.
+
+    Faces on a symmetry plane at an end give no term: for modes I and II the tractions on it do no
+    work in the interaction, and for mode III the hats vanish there.
     """
-    solid, front, patch = context.solid, context.front, context.patch
+    solid, patch = context.solid, context.patch
     same = context.model.same
     inside = marked(len(solid.points), tube.nodes)
     outer = outer_faces(solid, same.entity, inside)
@@ -59,17 +66,30 @@ def surroundings(context: FrontContext, tube: Tube) -> Surroundings:
     is_crack = np.isin(keys[: len(outer)], keys[len(outer) :])
     rest = outer[~is_crack]
     planes = _symmetry_planes(context)
-    free = rest[~_on_planes(context, tube, rest, planes)]
-    terms = [SurfaceTerm(free, FREE)] if len(free) else []
+    rest = rest[~_on_planes(context, tube, rest, planes)]
+    ends_here = _across_the_front(context, tube, rest)
+    beside = rest[~ends_here]
+    terms = [
+        SurfaceTerm(faces, kind)
+        for faces, kind in ((rest[ends_here], FREE), (beside, CUT))
+        if len(faces)
+    ]
     if context.options.face_pressure:
         terms.append(SurfaceTerm(outer[is_crack], PRESSED, context.options.face_pressure))
-    local = np.searchsorted(tube.nodes, free.nodes)
-    distance, s = tube.r[local].min(axis=1), tube.s[local].mean(axis=1)
-    if not front.closed:
-        reach = distance.max(initial=0.0)
-        distance = distance[(s > reach) & (s < front.length - reach)]
+    distance = tube.r[np.searchsorted(tube.nodes, beside.nodes)]
     normals = np.array([normal for normal, _ in planes]).reshape(-1, 3)
     return Surroundings(tuple(terms), float(distance.min(initial=np.inf)), normals)
+
+
+def _across_the_front(context: FrontContext, tube: Tube, faces: FaceTable) -> BoolArray:
+    """Which faces lie across the front, as the surface on which it ends does, and not beside it."""
+    if context.front.closed:
+        return np.zeros(len(faces), bool)
+    s = tube.s[np.searchsorted(tube.nodes, faces.corners)].mean(axis=1)
+    _, frame, _ = context.front.curve.frames(s)
+    area = faces.area_vectors(context.solid.points)
+    along = np.abs(np.einsum("nk,nk->n", area, frame[:, 2]))
+    return along > _ENDS * np.linalg.norm(area, axis=1)
 
 
 def _symmetry_planes(context: FrontContext) -> list[tuple[FloatArray, FloatArray]]:

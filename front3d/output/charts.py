@@ -8,7 +8,7 @@ import numpy as np
 
 from front3d.arrays import FloatArray
 from front3d.output.formats import place
-from front3d.output.trust import outer_rings, rings_of
+from front3d.output.trust import rings_of
 from front3d.results import CAUTION, FrontResult
 from front3d.units import Units
 
@@ -55,7 +55,7 @@ def _draw_modes(axes: "Axes", front: FrontResult) -> None:
     rings = rings_of(front)
     for k, (name, style) in enumerate(_STYLES.items()):
         if rings is not None:
-            compared = rings.K[outer_rings(rings), :, k]
+            compared = rings.K[rings.compared, :, k]
             axes.fill_between(
                 x,
                 _closed(compared.min(axis=0), front),

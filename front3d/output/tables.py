@@ -8,7 +8,7 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from front3d.output.trust import ring_spread, rings_of
+from front3d.output.trust import rings_of
 from front3d.results import MODES, Evaluation, FrontResult
 from front3d.units import Units
 
@@ -42,7 +42,7 @@ def front_columns(front: FrontResult, units: Units) -> dict[str, Column]:
             columns[f"{column}_{name}" if column in columns else column] = np.asarray(values)
     rings = rings_of(front)
     if rings is not None:
-        spread = ring_spread(rings)
+        spread = rings.spread
         columns |= {f"{mode}_ring_spread": spread[:, k] for k, mode in enumerate(MODES)}
     columns["psi_deg"], columns["mode_III_deg"] = front.mode_angles.T
     for i, vector in enumerate(("e1", "e2", "e3")):

@@ -8,23 +8,9 @@ from front3d.arrays import FloatArray
 from front3d.results import MODES, FrontResult, Rings
 
 
-def outer_rings(rings: Rings) -> slice:
-    """The rings that are compared: those beyond the first where there are three or more.
-
-    The first ring touches the crack-tip cells, where a mesh of any kind is at its worst; the
-    published advice is to leave the first contour out (common practice).
-    """
-    return slice(1, None) if len(rings.radii) > 2 else slice(None)
-
-
 def rings_of(front: FrontResult) -> Rings | None:
     """The rings of the first method that has any."""
     return next((m.rings for m in front.methods.values() if m.rings is not None), None)
-
-
-def ring_spread(rings: Rings) -> FloatArray:
-    """Largest less smallest K over the compared rings, (n, 3), in units of K."""
-    return np.ptp(rings.K[outer_rings(rings)], axis=0)
 
 
 @dataclass(frozen=True, slots=True)
@@ -55,10 +41,10 @@ def agreement(front: FrontResult) -> Agreement:
     }
     if rings is None:
         return Agreement(None, None, methods)
-    spread = ring_spread(rings)
+    spread = rings.spread
     return Agreement(
         {mode: _largest(spread[:, k]) / scale for k, mode in enumerate(MODES)},
-        _largest(rings.J[outer_rings(rings)].mean(axis=0) - front.G) / _largest(front.G),
+        _largest(rings.J[rings.compared].mean(axis=0) - front.G) / _largest(front.G),
         methods,
     )
 
