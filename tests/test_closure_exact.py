@@ -16,6 +16,8 @@ from tests.meshes.held import near_tip_block
 from tests.meshes.structured import impose, straight
 from tests.reference import exact
 
+pytestmark = pytest.mark.slow
+
 YOUNG, POISSON = 200e3, 0.3
 ELASTIC = exact.Elastic.from_young(YOUNG, POISSON)
 TURNED = np.array([[2.0, -1.0, 2.0], [2.0, 2.0, -1.0], [-1.0, 2.0, 2.0]]) / 3.0

@@ -175,7 +175,11 @@ def test_each_station_gets_the_area_it_sweeps():
         (moved_ends(block()), [3.0, 1.25, -0.5]),
     ):
         context, ligament, _, _ = front_forces(solid)
-        weights = build_tents(context, ligament, 1.0).weights(places).toarray()
+        weights = (
+            build_tents(context, ligament, np.ones(len(context.front.corners)))
+            .weights(places)
+            .toarray()
+        )
         np.testing.assert_allclose(weights[:, 1], [0.0, 0.5, 1.0], atol=1e-12)
         np.testing.assert_allclose(weights[:, 0], first, atol=1e-12)
 

@@ -18,6 +18,8 @@ from front3d.solid import CellBlock, Material, Solid
 from tests.meshes.structured import ALL_KINDS, curved, impose, straight
 from tests.reference import exact
 
+pytestmark = pytest.mark.slow
+
 YOUNG, POISSON = 200e3, 0.3
 ELASTIC = exact.Elastic.from_young(YOUNG, POISSON)
 TURNED = np.array([[2.0, -1.0, 2.0], [2.0, 2.0, -1.0], [-1.0, 2.0, 2.0]]) / 3.0
