@@ -11,6 +11,7 @@ import numpy as np
 import pytest
 import pyvista as pv
 
+from front3d.output.formats import place
 from front3d.output.summary import companions, summary_json
 from front3d.output.tables import FIRST_COLUMNS, front_vtp, points_csv
 from front3d.output.trust import agreement
@@ -134,3 +135,9 @@ def test_files_named_by_an_index_are_hashed_too(tmp_path: Path) -> None:
     assert companions(pvd) == [tmp_path / "step_0.vtu"]
     assert companions(xdmf) == [tmp_path / "fields.h5"]
     assert companions(tmp_path / "step_0.vtu") == []
+
+
+def test_places_far_from_the_origin_keep_their_digits() -> None:
+    """A ten-thousandth of the front's length can be read off, wherever the model stands."""
+    assert place(np.array([5000.0123, -7000.0, 1e-15]), 0.01) == "5000.0123, -7000, 0"
+    assert place(np.array([12.3456789, 0.5, 0.0]), 10.0) == "12.346, 0.5, 0"

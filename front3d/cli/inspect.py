@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING
 
 from front3d.cli.command import Command
 from front3d.cli.flags import add_crack_flags, case_of
-from front3d.cli.words import number, table
+from front3d.cli.words import table
 
 if TYPE_CHECKING:
     from front3d.solid import Solid
@@ -32,12 +32,16 @@ def run(arguments: argparse.Namespace) -> int:
 
 def describe_solid(solid: "Solid") -> list[str]:
     """Points, cells, extent, steps and notes, one line each."""
+    from front3d.output.formats import coordinate
+
     kinds: Counter[str] = Counter()
     for block in solid.blocks:
         kinds[block.kind] += len(block)
     low, high = solid.points.min(axis=0), solid.points.max(axis=0)
+    size = float((high - low).max())
     extent = ", ".join(
-        f"{axis} {number(a)} to {number(b)}" for axis, a, b in zip("xyz", low, high, strict=True)
+        f"{axis} {coordinate(a, size)} to {coordinate(b, size)}"
+        for axis, a, b in zip("xyz", low.tolist(), high.tolist(), strict=True)
     )
     lines = [
         str(solid.source),

@@ -1,8 +1,20 @@
 """How numbers are written for a reader."""
 
+from math import ceil, log10
+
 from front3d.arrays import FloatArray
 
 
 def place(position: FloatArray, length: float) -> str:
-    """Coordinates of a point (3,); what is nought against `length` is written so."""
-    return ", ".join(f"{0.0 if abs(x) < 1e-9 * length else x:.4g}" for x in position.tolist())
+    """Coordinates of a point (3,) to a ten-thousandth of `length`, however far from the origin;
+    what is nought against `length` is written so.
+    """
+    return ", ".join(coordinate(x, length) for x in position.tolist())
+
+
+def coordinate(x: float, length: float) -> str:
+    """One coordinate to a ten-thousandth of `length`, with four digits at least."""
+    if abs(x) < 1e-9 * length:
+        return "0"
+    digits = 4 + max(0, ceil(log10(abs(x) / length)))
+    return f"{x:.{digits}g}"

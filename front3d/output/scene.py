@@ -1,7 +1,7 @@
 """The picture of the solid with K along the front, and its scale."""
 
 import io
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from textwrap import fill
 from typing import TYPE_CHECKING, Any
 
@@ -54,6 +54,7 @@ def scene_png(solid: Solid, fronts: tuple[FrontResult, ...], units: Units) -> by
     choose_window()
     from matplotlib.figure import Figure
 
+    solid, fronts = _near_the_origin(solid, fronts)
     parts = skin(solid, fronts)
     scale = colour_scale(fronts)
     positions = np.concatenate([front.positions for front in fronts])
@@ -78,6 +79,17 @@ def scene_png(solid: Solid, fronts: tuple[FrontResult, ...], units: Units) -> by
     out = io.BytesIO()
     figure.savefig(out, format="png")
     return out.getvalue()
+
+
+def _near_the_origin(
+    solid: Solid, fronts: tuple[FrontResult, ...]
+) -> tuple[Solid, tuple[FrontResult, ...]]:
+    """Both moved so that the fronts lie around the origin: graphics work in single precision, and
+    far from it would draw a smooth crack ragged.
+    """
+    centre = np.concatenate([front.positions for front in fronts]).mean(axis=0)
+    moved = replace(solid, points=solid.points - centre, steps=())
+    return moved, tuple(replace(front, positions=front.positions - centre) for front in fronts)
 
 
 def colour_scale(fronts: tuple[FrontResult, ...]) -> Scale:
