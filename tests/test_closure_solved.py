@@ -148,10 +148,13 @@ def upper_half(solid) -> Solid:
 
 @pytest.mark.parametrize("cells", CELLS)
 def test_a_half_model_has_the_same_K(cells):
-    """The whole is symmetric, so its upper half solves the half model."""
+    """The whole is symmetric, so its upper half solves the half model.
+
+    Hats three edges wide, so that K scatters little on tetrahedra (0.7 % with one edge).
+    """
     solid = sample(cells, refine=0)
-    _, whole, _ = closed(solid)
-    _, half, _ = closed(upper_half(solid), crack_plane=Plane.parse("z=0"))
+    _, whole, _ = closed(solid, hat=3)
+    _, half, _ = closed(upper_half(solid), hat=3, crack_plane=Plane.parse("z=0"))
     np.testing.assert_allclose(half[..., 0], whole[0, 0, 0], rtol=0.005)
     np.testing.assert_allclose(np.sort(half[0, :, 0]), np.sort(whole[0, :, 0]), rtol=1e-6)
     assert not half[..., 1:].any()
@@ -209,15 +212,16 @@ def test_refused_where_no_faces_go_on_ahead(name):
 
 
 @SLOW
-@pytest.mark.parametrize("cells", ["bricks", "tetra10"])
-def test_surface_crack_agrees_with_the_interaction_integral(cells):
+@pytest.mark.parametrize(("cells", "hat"), [("bricks", 1), ("tetra10", 3)])
+def test_surface_crack_agrees_with_the_interaction_integral(cells, hat):
     """A second witness where no exact solution is known, in tension and bending, in parts of the
-    largest K_I.  Measured: 1.0 % inside, 1.9 % at the very ends of the front.
+    largest K_I.  Measured: 1.0 % inside, 1.9 % at the very ends of the front; with the default
+    hats, of one edge on this coarse mesh of tetrahedra, 1.2 and 3.8 %.
     """
     model = build("surface-crack", cells=cells, refine=0)
     young, poisson = model.material.young, model.material.poisson
-    fronts = front3d.evaluate(model.solid, young=young, poisson=poisson).fronts
-    context, K, _ = closed(model.solid, young, poisson)
+    fronts = front3d.evaluate(model.solid, young=young, poisson=poisson, hat=hat).fronts
+    context, K, _ = closed(model.solid, young, poisson, hat=hat)
     assert context.front.ends == ("free surface", "free surface")
     for found, front in zip(K, fronts, strict=True):
         other = front.methods["interaction"].K
