@@ -77,7 +77,17 @@ def penny_errors(kind, n):
     return worst / np.abs(expected).max(axis=(1, 2))
 
 
-HEAVY = {"tetra", "tetra10", "pyramid", "pyramid13", "wedge", "wedge15", "hexahedron27", "mixed"}
+HEAVY = {
+    "collapsed",
+    "tetra",
+    "tetra10",
+    "pyramid",
+    "pyramid13",
+    "wedge",
+    "wedge15",
+    "hexahedron27",
+    "mixed",
+}
 
 
 def costly_marked(chosen):
@@ -117,7 +127,11 @@ def test_edges_that_cut_the_corners_of_the_front_cost_little():
 
 @pytest.mark.parametrize(
     ("kind", "allowed"),
-    [("hexahedron20", 0.04), ("collapsed", 0.03), *((k, 0.01) for k in QUARTER_POINT)],
+    [
+        ("hexahedron20", 0.04),
+        pytest.param("collapsed", 0.03, marks=pytest.mark.slow),
+        *((k, 0.01) for k in QUARTER_POINT),
+    ],
 )
 def test_J_of_the_same_domain_agrees_with_G_of_the_three_modes(kind, allowed):
     """J is quadratic in the field near the front, so it needs quarter-points more than K does:
@@ -145,7 +159,7 @@ def test_modes_superpose():
     ("kind", "allowed"),
     [
         ("quarter_wedge", 0.002),
-        ("hexahedron20", 0.006),
+        pytest.param("hexahedron20", 0.006, marks=pytest.mark.slow),
         pytest.param("tetra10", 0.006, marks=pytest.mark.slow),
     ],
 )

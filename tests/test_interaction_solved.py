@@ -110,7 +110,12 @@ def test_a_row_of_collinear_cracks_on_bricks():
 
 
 @pytest.mark.parametrize(
-    ("b", "first", "allowed"), [(1.08, 0.03, 0.013), (1.15, 0.05, 0.013), (1.15, 0.025, 0.006)]
+    ("b", "first", "allowed"),
+    [
+        (1.08, 0.03, 0.013),
+        pytest.param(1.15, 0.05, 0.013, marks=pytest.mark.slow),
+        pytest.param(1.15, 0.025, 0.006, marks=pytest.mark.slow),
+    ],
 )
 def test_a_loaded_surface_beside_the_front_does_not_spoil_the_rings(b, first, allowed):
     """Cracks so near to each other that the symmetry plane between them, which carries load, lies
