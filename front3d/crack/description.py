@@ -5,7 +5,7 @@ from collections.abc import Mapping
 import numpy as np
 
 from front3d.crack.coincidence import Coincidence
-from front3d.crack.front import Front
+from front3d.crack.front import Front, on_front_mask
 from front3d.crack.model import find_cracks
 from front3d.crack.patches import Patch
 from front3d.options import Options
@@ -55,7 +55,7 @@ def _front(solid: Solid, front: Front, same: Coincidence) -> Row:
 
 def _cells_at_front(solid: Solid, front: Front, same: Coincidence) -> str:
     """Number of cells of each type that touch the front, as text."""
-    on_front = np.isin(same.entity, same.entity[front.nodes])
+    on_front = on_front_mask(front, same)
     counts: dict[str, int] = {}
     for block in solid.blocks:
         touching = int(on_front[block.nodes].any(axis=1).sum())

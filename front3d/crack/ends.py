@@ -4,9 +4,9 @@ import dataclasses
 
 import numpy as np
 
-from front3d.arrays import BoolArray, FloatArray, IntArray
+from front3d.arrays import FloatArray, IntArray
 from front3d.crack.coincidence import Coincidence
-from front3d.crack.facetable import FaceTable, outer_faces, set_keys
+from front3d.crack.facetable import FaceTable, also_among, outer_faces
 from front3d.crack.front import FREE_SURFACE, SYMMETRY_PLANE, Front
 from front3d.crack.patches import Patch, marked
 from front3d.solid import Solid
@@ -33,9 +33,9 @@ def end_faces(solid: Solid, front: Front, node: int, patch: Patch, same: Coincid
     """Outer faces at an end node, without crack faces and the plane of a half model."""
     here = marked(len(solid.points), np.flatnonzero(same.entity == same.entity[node]))
     faces = outer_faces(solid, same.entity, here)
-    keep = ~_belongs(faces, patch.upper, same)
+    keep = ~also_among(faces, patch.upper, same.entity)
     if patch.lower is not None:
-        keep &= ~_belongs(faces, patch.lower, same)
+        keep &= ~also_among(faces, patch.lower, same.entity)
     else:  # the ligament's faces lie in the crack plane
         s = front.corner_s[0] if node == front.edges[0, 0] else front.corner_s[-1]
         _, frame, _ = front.curve.frames(np.array([s]))
@@ -43,11 +43,6 @@ def end_faces(solid: Solid, front: Front, node: int, patch: Patch, same: Coincid
         across = np.abs(area @ frame[0, 1]) / np.linalg.norm(area, axis=1)
         keep &= across < 0.99
     return faces[keep]
-
-
-def _belongs(faces: FaceTable, others: FaceTable, same: Coincidence) -> BoolArray:
-    keys = set_keys(same.entity[np.concatenate([faces.nodes, others.nodes])])
-    return np.isin(keys[: len(faces)], keys[len(faces) :])
 
 
 def _on_symmetry_plane(

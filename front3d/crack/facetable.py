@@ -101,6 +101,12 @@ def multiplicity(keys: IntArray) -> IntArray:
     return counts
 
 
+def also_among(faces: FaceTable, others: FaceTable, entity: IntArray) -> BoolArray:
+    """(n,) which faces have the same nodes as one of the others."""
+    keys = set_keys(entity[np.concatenate([faces.nodes, others.nodes])])
+    return np.isin(keys[: len(faces)], keys[len(faces) :])
+
+
 def cells_with(solid: Solid, nodes: BoolArray) -> list[BoolArray]:
     """Per block, the mask of the cells that hold any of the marked nodes."""
     return [np.asarray(nodes[block.nodes].any(axis=1)) for block in solid.blocks]

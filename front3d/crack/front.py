@@ -6,6 +6,7 @@ import numpy as np
 from scipy.spatial import cKDTree
 
 from front3d.arrays import BoolArray, FloatArray, IntArray, frozen_ints
+from front3d.crack.coincidence import Coincidence
 from front3d.crack.curve import Curve, fit_curve
 from front3d.crack.edges import Chain
 from front3d.crack.facetable import FaceTable
@@ -162,6 +163,11 @@ def _reference_of(nodes: IntArray, reference: FloatArray, node: int) -> FloatArr
     """Reference position of a node in a face; the mean of them in a collapsed face."""
     at: FloatArray = reference[nodes == node].mean(axis=0)
     return at
+
+
+def on_front_mask(front: Front, same: Coincidence) -> BoolArray:
+    """(n_points,) which nodes stand for a node of the front, those of collapsed cells included."""
+    return np.isin(same.entity, same.entity[front.nodes])
 
 
 def near_nodes(

@@ -9,6 +9,7 @@ from collections.abc import Iterator
 import numpy as np
 
 from front3d.arrays import FloatArray, IntArray, frozen_floats
+from front3d.crack.front import on_front_mask
 from front3d.elements import FACES, ElementType
 from front3d.errors import MeshError
 from front3d.methods.context import FrontContext
@@ -40,8 +41,7 @@ class Assembly:
         self._displacement = frozen_floats(
             [_without_rigid_motion(self._points, u, symmetry_normals) for u in moved]
         )
-        same = context.model.same
-        self._on_front = np.isin(same.entity, same.entity[context.front.nodes])
+        self._on_front = on_front_mask(context.front, context.model.same)
         self._curve = context.front.curve.arrays
         self._elastic = (context.material.shear_modulus, context.material.poisson)
         self.forces = np.zeros((len(moved), N_MODES, len(tube.nodes), 3))

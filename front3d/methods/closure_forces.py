@@ -21,7 +21,7 @@ from front3d.crack.facetable import (
     outer_faces,
     set_keys,
 )
-from front3d.crack.front import Front
+from front3d.crack.front import Front, on_front_mask
 from front3d.elements import FACES
 from front3d.errors import MeshError, MethodError
 from front3d.methods.context import FrontContext
@@ -59,7 +59,7 @@ class Ligament:
 def find_ligament(context: FrontContext) -> Ligament:
     """Faces ahead and cells on both sides; MethodError where no faces go on ahead."""
     solid, front, same, patch = context.solid, context.front, context.model.same, context.patch
-    on_front = np.isin(same.entity, same.entity[front.nodes])
+    on_front = on_front_mask(front, same)
     touching = cells_with(solid, on_front)
     behind = patch.upper[np.asarray(on_front[patch.upper.nodes].any(axis=1))]
     if patch.lower is None:

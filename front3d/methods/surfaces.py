@@ -6,7 +6,7 @@ import numpy as np
 
 from front3d.arrays import BoolArray, FloatArray
 from front3d.crack.ends import end_faces
-from front3d.crack.facetable import FaceTable, outer_faces, set_keys
+from front3d.crack.facetable import FaceTable, also_among, outer_faces
 from front3d.crack.front import SYMMETRY_PLANE
 from front3d.crack.patches import marked
 from front3d.methods.context import FrontContext
@@ -60,10 +60,9 @@ def surroundings(context: FrontContext, tube: Tube) -> Surroundings:
     inside = marked(len(solid.points), tube.nodes)
     outer = outer_faces(solid, same.entity, inside)
     outer = outer[np.asarray(inside[outer.nodes].all(axis=1))]
-    crack_faces = [patch.upper] if patch.lower is None else [patch.upper, patch.lower]
-    everything = np.concatenate([outer.nodes, *(faces.nodes for faces in crack_faces)])
-    keys = set_keys(same.entity[everything])
-    is_crack = np.isin(keys[: len(outer)], keys[len(outer) :])
+    is_crack = also_among(outer, patch.upper, same.entity)
+    if patch.lower is not None:
+        is_crack |= also_among(outer, patch.lower, same.entity)
     rest = outer[~is_crack]
     planes = _symmetry_planes(context)
     rest = rest[~_on_planes(context, tube, rest, planes)]

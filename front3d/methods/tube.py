@@ -7,7 +7,7 @@ from scipy.spatial import cKDTree
 
 from front3d.arrays import FloatArray, IntArray
 from front3d.crack.coincidence import Coincidence
-from front3d.crack.front import Front, near_nodes
+from front3d.crack.front import Front, near_nodes, on_front_mask
 from front3d.crack.patches import Patch
 from front3d.errors import MethodError
 from front3d.solid import Solid
@@ -15,7 +15,7 @@ from front3d.solid import Solid
 
 def is_structured(solid: Solid, front: Front, same: Coincidence) -> bool:
     """Whether only bricks and wedges touch the front."""
-    on_front = np.isin(same.entity, same.entity[front.nodes])
+    on_front = on_front_mask(front, same)
     families = {b.element.family for b in solid.blocks if on_front[b.nodes].any()}
     return families <= {"hexahedron", "wedge"}
 
@@ -53,7 +53,7 @@ def layer_reaches(solid: Solid, front: Front, same: Coincidence, count: int) -> 
     a corner node is the largest over it and its two neighbours.
     """
     n = len(front.corners)
-    inside = np.isin(same.entity, same.entity[front.nodes])
+    inside = on_front_mask(front, same)
     reaches = []
     for _ in range(count):
         grown = np.zeros(len(inside), bool)
