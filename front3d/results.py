@@ -69,17 +69,46 @@ class MethodResult:
     K : (n, 3) K_I, K_II, K_III
     columns : further numbers per station, (n,) each, by column name
     rings : for the interaction integral
-    notes : sentences for the reader, about this method on this front
+    variant : which form of the method the mesh allows, for the reader; empty where there is one
+    notes : what the reader must be warned of, about this method on this front
     """
 
     method: str
     K: FloatArray
     columns: Mapping[str, FloatArray] = field(default_factory=dict)
     rings: Rings | None = None
+    variant: str = ""
     notes: tuple[str, ...] = ()
 
     def __post_init__(self) -> None:
         _freeze(self, ("K",))
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Comparison:
+    """A published solution at the stations of one front.
+
+    Attributes
+    ----------
+    solution : its name in the handbook, e.g. "newman-raju-surface"
+    arguments : the numbers it was asked for with
+    source : author and year
+    claim : the accuracy its authors claim, in words
+    K : (n, 3) its K_I, K_II, K_III; NaN where it says nothing
+    angle : (n,) parametric angle of the ellipse at the stations, degrees; NaN where there is none
+    notes : what the reader must be warned of: range, known deviations and their evidence
+    """
+
+    solution: str
+    arguments: Mapping[str, float]
+    source: str
+    claim: str
+    K: FloatArray
+    angle: FloatArray
+    notes: tuple[str, ...] = ()
+
+    def __post_init__(self) -> None:
+        _freeze(self, ("K", "angle"))
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -100,6 +129,7 @@ class FrontResult:
     flags : (n,) text per station, empty where nothing is to be said
     methods : the result of each method that was applied
     warnings : sentences for the reader, about the whole front
+    comparisons : published solutions asked for, at the same stations
     """
 
     step: str
@@ -115,6 +145,7 @@ class FrontResult:
     flags: tuple[str, ...]
     methods: Mapping[str, MethodResult]
     warnings: tuple[str, ...] = ()
+    comparisons: tuple[Comparison, ...] = ()
 
     def __post_init__(self) -> None:
         _freeze(self, ("s", "positions", "frames", "K", "G"))

@@ -111,4 +111,4 @@ def _result(
         "hat_interaction": hats.half_lengths,
     }
     mean = K[rings.compared].mean(axis=0)
-    return MethodResult("interaction", mean, columns, rings, notes)
+    return MethodResult("interaction", mean, columns, rings, notes=notes)
