@@ -45,6 +45,8 @@ than MIN_WIDTH, which three corner nodes need at a free end."""
 
 MIN_WIDTH = 2.5
 
+VARIANT = "effective front, two terms of the opening"
+
 SPARE = 2
 """Pairs a station needs beyond the number of its unknowns."""
 
@@ -123,4 +125,4 @@ def _result(fit: Fit, count: IntArray, notes: tuple[str, ...]) -> MethodResult:
         "opening_eps": np.full(len(count), fit.eps[fit.leading]),
         "opening_pairs": count.astype(float),
     }
-    return MethodResult("opening", fit.K, columns, notes=notes)
+    return MethodResult("opening", fit.K, columns, variant=VARIANT, notes=notes)
