@@ -1,5 +1,6 @@
 """The further methods beside the interaction integral: asked for by name, refused with a reason."""
 
+import sys
 from pathlib import Path
 
 import numpy as np
@@ -9,7 +10,8 @@ import front3d
 from front3d.errors import CaseError
 from front3d.samples import build
 
-DATA = Path(__file__).parent / "data"
+ROOT = Path(__file__).parent.parent
+DATA = ROOT / "tests" / "data"
 
 
 def test_an_unknown_method_is_refused_by_name():
@@ -40,3 +42,22 @@ def test_three_methods_agree_on_quarter_point_bricks():
     assert list(front.methods) == ["interaction", "closure", "opening"]
     for result in front.methods.values():
         assert np.abs(result.K - front.K).max() < 0.01 * np.abs(front.K).max()
+
+
+@pytest.mark.slow
+def test_the_readme_states_how_the_methods_agree_on_embedded_models():
+    """Its table is printed by a script; one model of each kind of cells is printed again here."""
+    sys.path.insert(0, str(ROOT / "benchmarks"))
+    try:
+        from methods_agree import rows
+    finally:
+        sys.path.pop(0)
+    readme = (ROOT / "README.md").read_text(encoding="utf-8")
+    printed = list(rows(["penny"], ["bricks", "tetra10", "brick8"]))
+    assert len(printed) == 3
+    for row in printed:
+        *head, closure, opening, rings = (part.strip() for part in row.strip("| ").split("|"))
+        (line,) = [line for line in readme.splitlines() if line.startswith("| " + " | ".join(head))]
+        stated = [float(part.strip(" %")) for part in line.strip("| ").split("|")[-3:]]
+        found = [float(part.strip(" %")) for part in (closure, opening, rings)]
+        np.testing.assert_allclose(found, stated, rtol=0.2)
