@@ -8,9 +8,18 @@ import numpy as np
 from front3d.crack import CrackModel, Front, find_cracks
 from front3d.errors import CaseError, Front3DError, MeshError, MethodError
 from front3d.flags import front_warnings, station_flags
+from front3d.handbook.catalogue import parse
+from front3d.handbook.comparing import compare_fronts
+from front3d.handbook.placing import FrontShape
 from front3d.methods import METHODS, FrontContext
 from front3d.options import Options
-from front3d.results import Evaluation, FrontResult, MethodResult, energy_release_rate
+from front3d.results import (
+    Comparison,
+    Evaluation,
+    FrontResult,
+    MethodResult,
+    energy_release_rate,
+)
 from front3d.solid import Material, Solid, Step
 from front3d.units import Units
 
@@ -45,9 +54,11 @@ def evaluate_solid(
     options, units = options or Options(), units or Units()
     report = progress or _silent
     _check_methods(options)
+    requests = tuple(parse(text) for text in options.compare)
     steps = _chosen_steps(solid, options)
     report("finding the crack", 0.0)
     model = find_cracks(solid, options)
+    published, unlike = compare_fronts(requests, steps, _shapes(model), material.poisson)
     displacement = np.stack([step.displacement for step in steps])
     results: list[FrontResult] = []
     left_out: list[tuple[int, Front3DError]] = []
@@ -66,7 +77,9 @@ def evaluate_solid(
                 continue
             for index, step in enumerate(steps):
                 methods = {name: found[index] for name, found in by_method.items()}
-                results.append(_front_result(step, number, front, methods, material, refused))
+                beside = published.get((step.name, number), ())
+                said = (*refused, *unlike.get((step.name, number), ()))
+                results.append(_front_result(step, number, front, methods, material, beside, said))
             number += 1
     if not results:
         raise left_out[0][1]
@@ -92,6 +105,17 @@ def _chosen_steps(solid: Solid, options: Options) -> list[Step]:
             f"{solid.source}: found no step {missing[0]!r}; the file has {', '.join(by_name)}"
         )
     return [by_name[name] for name in options.steps]
+
+
+def _shapes(model: CrackModel) -> list[FrontShape]:
+    """What the fronts look like, in their order."""
+    shapes = []
+    for front in (front for fronts in model.fronts for front in fronts):
+        positions, frames, _ = front.curve.frames(front.corner_s)
+        shapes.append(
+            FrontShape(positions, frames, front.corner_s, front.length, front.closed, front.ends)
+        )
+    return shapes
 
 
 def _apply_methods(context: FrontContext) -> tuple[dict[str, list[MethodResult]], tuple[str, ...]]:
@@ -120,7 +144,8 @@ def _front_result(
     front: Front,
     methods: Mapping[str, MethodResult],
     material: Material,
-    refused: tuple[str, ...],
+    published: tuple[Comparison, ...],
+    said: tuple[str, ...],
 ) -> FrontResult:
     positions, frames, _ = front.curve.frames(front.corner_s)
     K = methods[REPORTED].K
@@ -137,7 +162,8 @@ def _front_result(
         G=energy_release_rate(K, material),
         flags=station_flags(front, methods),
         methods=methods,
-        warnings=(*refused, *front_warnings(front, methods, material)),
+        warnings=(*said, *front_warnings(front, methods, material)),
+        comparisons=published,
     )
 
 

@@ -4,6 +4,7 @@ import argparse
 import re
 from collections.abc import Sequence
 from pathlib import Path
+from typing import Any
 
 from front3d.case import Case, read_case
 from front3d.errors import CaseError
@@ -43,6 +44,25 @@ def vector(text: str) -> Vector:
         raise argparse.ArgumentTypeError(f"found {text!r}, expected three numbers such as 0,0,1")
     x, y, z = parts
     return (x, y, z)
+
+
+class _Compare(argparse.Action):
+    """Collects the solutions asked for; `help` lists what there is, and ends the program."""
+
+    def __call__(
+        self,
+        parser: argparse.ArgumentParser,
+        namespace: argparse.Namespace,
+        values: Any,
+        option_string: str | None = None,
+    ) -> None:
+        if values == "help":
+            from front3d.handbook.catalogue import described
+
+            print("\n".join(described()))
+            parser.exit()
+        before = getattr(namespace, self.dest) or []
+        setattr(namespace, self.dest, [*before, values])
 
 
 def add_crack_flags(parser: argparse.ArgumentParser) -> None:
@@ -95,6 +115,14 @@ def add_evaluation_flags(parser: argparse.ArgumentParser) -> None:
         metavar="NAME",
         help="apply a further method, too: closure or opening (may be repeated)",
     )
+    parser.add_argument(
+        "--compare",
+        action=_Compare,
+        dest="compare",
+        metavar="SOLUTION:NAME=VALUE,..",
+        help="put a published solution beside K, e.g. penny:a=10,tension=100 (may be repeated); "
+        "--compare help lists the solutions with their arguments",
+    )
     parser.add_argument("--length-unit", dest="length", metavar="UNIT", help="e.g. mm")
     parser.add_argument("--stress-unit", dest="stress", metavar="UNIT", help="e.g. MPa")
 
@@ -111,12 +139,17 @@ def case_of(arguments: argparse.Namespace) -> Case:
         if name not in ("result", "source")
         and (value := getattr(arguments, name, None)) is not None
     }
-    for name in ("steps", "methods"):
+    for name in ("steps", "methods", "compare"):
         if name in said:
             said[name] = tuple(said[name])
     flags = Case(**said)
     try:
         _ = flags.options, flags.units
+        if flags.compare:
+            from front3d.handbook.catalogue import parse
+
+            for text in flags.compare:
+                parse(text)
     except CaseError as error:
         arguments.parser.error(str(error))
     path = Path(arguments.result)
