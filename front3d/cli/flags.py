@@ -144,20 +144,25 @@ def case_of(arguments: argparse.Namespace) -> Case:
             said[name] = tuple(said[name])
     flags = Case(**said)
     try:
-        _ = flags.options, flags.units
-        if flags.compare:
-            from front3d.handbook.catalogue import parse
-
-            for text in flags.compare:
-                parse(text)
+        _check(flags)
     except CaseError as error:
         arguments.parser.error(str(error))
     path = Path(arguments.result)
     if path.suffix.lower() == ".toml":
         case = read_case(path).overridden_by(flags)
         try:
-            _ = case.options, case.units
+            _check(case)
         except CaseError as error:
             raise CaseError(f"{path}: {error}") from None
         return case
     return Case(result=path).overridden_by(flags)
+
+
+def _check(case: Case) -> None:
+    """CaseError where an option is out of range or a solution is not asked for as it should be."""
+    _ = case.options, case.units
+    if case.compare:
+        from front3d.handbook.catalogue import parse
+
+        for text in case.compare:
+            parse(text)

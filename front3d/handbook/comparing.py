@@ -52,10 +52,10 @@ def compare_fronts(
         if len(unlike) == len(shapes):
             raise CaseError(
                 f"comparison with {request.solution.name} suits no front: "
-                + "; ".join(f"front {number}: {reason}" for number, reason in unlike.items())
+                + "; ".join(f"front {number}: {why}" for number, why in unlike.items())
             )
-        for number, reason in unlike.items():
-            said = f"no comparison with {request.solution.name}: {reason}"
+        for number, why in unlike.items():
+            said = f"no comparison with {request.solution.name}: {why}"
             for name in there:
                 reasons[name, number] = (*reasons.get((name, number), ()), said)
     return found, reasons
@@ -114,8 +114,8 @@ def _left_out(shape: FrontShape, placed: Placed) -> list[str]:
         return []
     near = ""
     if np.isfinite(placed.phi).all():
-        near = f" and those with 2 phi/pi within {NEAR_SURFACE:g} of it"
+        near = f" or within 2 phi/pi = {NEAR_SURFACE:g} of one"
     return [
-        f"the deviation leaves out the stations at a free surface{near}: no K exists there in the "
+        f"worst and mean leave out stations at a free surface{near}, where no K exists in the "
         "strict sense"
     ]

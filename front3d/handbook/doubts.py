@@ -55,10 +55,10 @@ def doubts(
         if len(case.ratios) > 2:
             where += f", r/t = {case.ratios[2]:g}"
         sentences.append(
-            f"the equation itself is off under {load} {good_in_words}: by up to "
-            f"{100 * value:+.1f} % of the front's largest K around this shape ({where}, "
-            f"2 phi/pi = {place:g}), against high-order finite elements computed for front3d, "
-            f"not published (table {name})"
+            f"the equation itself is known to be off here: {good_in_words}; under {load} around "
+            f"this shape it differs by up to {100 * value:+.1f} % of the front's largest K "
+            f"({where}, 2 phi/pi = {place:g}) from high-order finite elements computed for front3d, not "
+            f"published (table {name})"
         )
     return tuple(sentences)
 

@@ -89,10 +89,10 @@ def _at_case(family: str) -> Equation:
 
 
 _GOOD_WORDS = {
-    "surface": "outside a/c >= 0.4 with a/t <= 0.6 in tension",
-    "corner": "outside a/c >= 0.4 with a/t <= 0.5 in tension",
-    "embedded": "outside a/c >= 0.4 with a/t <= 0.6",
-    "hole": "at holes",
+    "surface": "it holds within 4 % in tension for a/c >= 0.4 and a/t <= 0.6",
+    "corner": "it holds within 5 % in tension for a/c >= 0.4 and a/t <= 0.5",
+    "embedded": "it holds within 4 % for a/c >= 0.4 and a/t <= 0.6",
+    "hole": "at holes it holds within 5 % for a/c >= 1 only",
 }
 _DEEPEST_GOOD = {"surface": 0.6, "corner": 0.5, "embedded": 0.6}
 
