@@ -57,8 +57,8 @@ def doubts(
         sentences.append(
             f"the equation itself is known to be off here: {good_in_words}; under {load} around "
             f"this shape it differs by up to {100 * value:+.1f} % of the front's largest K "
-            f"({where}, 2 phi/pi = {place:g}) from high-order finite elements computed for front3d, not "
-            f"published (table {name})"
+            f"({where}, 2 phi/pi = {place:g}) from high-order finite elements computed for "
+            f"front3d, not published (table {name})"
         )
     return tuple(sentences)
 
