@@ -1,9 +1,9 @@
 """How the modes mix at a station, and where a crack would turn by published criteria.
 
 Angles are in degrees in the frame of a station: the kink angle phi turns the direction of growth
-from e1 towards e2 (about e3); the twist angle turns the normal of the new surface from there towards
-e3 (about the direction of growth).  Both criteria look at the singular stresses on a small cylinder
-around the front, times sqrt(2 pi r):
+from e1 towards e2 (about e3); the twist angle turns the normal of the new surface from there
+towards e3 (about the direction of growth).  Both criteria look at the singular stresses on a small
+cylinder around the front, times sqrt(2 pi r):
 
     s(phi) = cos(phi/2) (K_I cos^2(phi/2) - 3/2 K_II sin(phi))      tangential
     t(phi) = K_III cos(phi/2)                                       shear along the front
