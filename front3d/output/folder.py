@@ -35,12 +35,14 @@ def write_results(
     folder: Path,
     *,
     inputs: Sequence[Path] = (),
+    case_file: str = "",
     pictures: bool = True,
     progress: Progress | None = None,
 ) -> Written:
     """Write tables, charts and pictures of `evaluation`; `summary.json` last, as it lists them.
 
-    `inputs` are the files that were read, for their hashes. Pictures of an earlier run that this
+    `inputs` are the files that were read, for their hashes; `case_file` is the text of a case file
+    that repeats the evaluation. Pictures of an earlier run that this
     one does not write again are removed, so that no old picture stands beside new numbers.
     Raises WriteError; a file that is there is whole.
     """
@@ -65,7 +67,7 @@ def write_results(
     files = (*makers, "summary.json")
     for name in earlier - set(files):
         (folder / name).unlink(missing_ok=True)
-    write_whole(folder / "summary.json", summary_json(evaluation, inputs, files))
+    write_whole(folder / "summary.json", summary_json(evaluation, inputs, files, case_file))
     if progress is not None:
         progress("results written", 1.0)
     return Written(folder, files, tuple(notes))
