@@ -26,6 +26,7 @@ RANKS = [
     {"mixing"},
     {"methods"},
     {"handbook"},
+    {"evidence"},
     {"flags"},
     {"pipeline"},
     {"samples"},
