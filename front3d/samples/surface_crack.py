@@ -10,6 +10,7 @@ from front3d.samples.ellipse import smallest_radius
 from front3d.samples.fineness import density
 from front3d.samples.mirror import Unfolded
 from front3d.samples.octant import octant
+from front3d.samples.parts import SURFACE_PARTS
 from front3d.samples.sample import (
     Load,
     Parameter,
@@ -92,4 +93,5 @@ SURFACE_CRACK = SampleSpec(
     _complete,
     _mesh,
     _loads,
+    SURFACE_PARTS,
 )
