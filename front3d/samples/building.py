@@ -8,6 +8,7 @@ import numpy as np
 from front3d.errors import CaseError
 from front3d.samples.cells import check_cells
 from front3d.samples.corner_crack import CORNER_CRACK
+from front3d.samples.corner_crack_at_hole import CORNER_CRACK_AT_HOLE
 from front3d.samples.elasticity import boundary_faces, traction_load
 from front3d.samples.embedded_ellipse import EMBEDDED_ELLIPSE
 from front3d.samples.parts import CRACK_AXIS, WHOLE, check_symmetry, part_axes, take_part
@@ -18,7 +19,16 @@ from front3d.samples.surface_crack import SURFACE_CRACK
 from front3d.solid import Material, Solid, Step
 
 SAMPLES: Mapping[str, SampleSpec] = MappingProxyType(
-    {spec.name: spec for spec in (SURFACE_CRACK, PENNY, EMBEDDED_ELLIPSE, CORNER_CRACK)}
+    {
+        spec.name: spec
+        for spec in (
+            SURFACE_CRACK,
+            PENNY,
+            EMBEDDED_ELLIPSE,
+            CORNER_CRACK,
+            CORNER_CRACK_AT_HOLE,
+        )
+    }
 )
 
 

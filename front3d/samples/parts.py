@@ -52,6 +52,11 @@ def check_symmetry(
 
     forces : (n_loads, n_points, 3) nodal forces on the whole; names : (n_loads,)
     """
+    for axis in set(axes) - {plane.axis for plane in model.planes}:
+        raise CaseError(
+            f"sample {sample}: found a part cut at {_NAMES[axis]} = 0, but with these parameters "
+            "the solid is not symmetric about that plane; choose another part"
+        )
     for group in load_classes(model, forces) if axes else ():
         for plane, sign in zip(model.planes, group.parity, strict=True):
             if sign == 1 or plane.axis not in axes:
