@@ -77,7 +77,7 @@ class Case:
             up=self.up,
             steps=self.steps,
             unopened=bool(self.unopened),
-            methods=self.methods or (),
+            methods=self.methods,
         )
 
     @property

@@ -54,7 +54,8 @@ class Options:
         coordinate axis of the crack normal
     steps : names of the steps to evaluate; None takes all
     unopened : evaluate coincident faces that never part in any step, too
-    methods : further methods beside the interaction integral, by name
+    methods : the methods beside the interaction integral, which is always applied; None takes all
+        that apply
     """
 
     crack_plane: Plane | None = None
@@ -64,7 +65,7 @@ class Options:
     up: Vector | None = None
     steps: tuple[str, ...] | None = None
     unopened: bool = False
-    methods: tuple[str, ...] = ()
+    methods: tuple[str, ...] | None = None
 
     @classmethod
     def from_words(cls, **words: Any) -> "Options":

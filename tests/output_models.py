@@ -100,6 +100,7 @@ def elliptic_front(
         G,
         words,
         {"interaction": result, "opening": MethodResult("opening", 1.02 * K)},
+        ("interaction",) * n,
         ("the front is coarse",),
     )
 

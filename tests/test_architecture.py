@@ -25,6 +25,7 @@ RANKS = [
     {"results"},
     {"methods"},
     {"handbook"},
+    {"evidence"},
     {"flags"},
     {"pipeline"},
     {"samples"},

@@ -78,10 +78,12 @@ def front_summary(front: FrontResult, units: Units) -> dict[str, Any]:
             "spread_over_largest_K": trust.rings,
             "J_minus_G_over_largest_G": trust.J_and_G,
         },
-        "methods": list(front.methods),
+        "methods": {name: method.variant for name, method in front.methods.items()},
+        "K_from": {name: front.sources.count(name) for name in dict.fromkeys(front.sources)},
         "method_difference_over_largest_K": trust.methods,
         "flagged_stations": sum(bool(flag) for flag in front.flags),
         "warnings": list(front.warnings),
+        "notes": list(front.notes),
     }
 
 

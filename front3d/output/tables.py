@@ -44,6 +44,10 @@ def front_columns(front: FrontResult, units: Units) -> dict[str, Column]:
     if rings is not None:
         spread = rings.spread
         columns |= {f"{mode}_ring_spread": spread[:, k] for k, mode in enumerate(MODES)}
+    if len(front.methods) > 1:
+        spread = front.method_spread
+        columns |= {f"{mode}_method_spread": spread[:, k] for k, mode in enumerate(MODES)}
+        columns["K_from"] = np.array(front.sources, dtype=str)
     columns["psi_deg"], columns["mode_III_deg"] = front.mode_angles.T
     for i, vector in enumerate(("e1", "e2", "e3")):
         columns |= {f"{vector}{axis}": front.frames[:, i, j] for j, axis in enumerate("xyz")}
@@ -60,11 +64,14 @@ def all_columns(evaluation: Evaluation) -> dict[str, Column]:
     tables = [front_columns(front, evaluation.units) for front in evaluation.fronts]
     names = dict.fromkeys(name for table in tables for name in table)
     return {
-        name: np.concatenate(
-            [t[name] if name in t else np.full(len(t["s"]), np.nan) for t in tables]
-        )
+        name: np.concatenate([t[name] if name in t else _absent(name, len(t["s"])) for t in tables])
         for name in _in_order(names, tables)
     }
+
+
+def _absent(name: str, n: int) -> Column:
+    """A column that one front lacks."""
+    return np.full(n, "", dtype="U1") if name == "K_from" else np.full(n, np.nan)
 
 
 def points_csv(evaluation: Evaluation) -> bytes:
