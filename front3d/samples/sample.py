@@ -10,6 +10,7 @@ from front3d.arrays import BoolArray, FloatArray
 from front3d.errors import CaseError
 from front3d.samples.elasticity import Traction
 from front3d.samples.mirror import Unfolded
+from front3d.samples.parts import Parts
 from front3d.solid import Material, Solid
 
 Values = dict[str, float]
@@ -102,6 +103,7 @@ class SampleSpec:
     complete : fills the parameters whose default is None, and checks ratios between them
     mesh : (values, cells) -> solid without steps, and the part it is unfolded from
     loads : values -> one or more loads, each in equilibrium
+    parts : parts that the sample may be reduced to, beside the whole
     """
 
     name: str
@@ -110,6 +112,7 @@ class SampleSpec:
     complete: Callable[[Mapping[str, float | None]], Values]
     mesh: Callable[[Values, str], Unfolded]
     loads: Callable[[Values], tuple[Load, ...]]
+    parts: Parts = field(default_factory=dict)
 
     def values(self, given: Mapping[str, float]) -> Values:
         """All parameters, checked; CaseError for an unknown name or a bad value."""
