@@ -69,12 +69,14 @@ def build(
             for load in loads
         ]
     )
-    moved = solve_unfolded(model, material, forces, progress)
+    held = spec.held(values, model.part.points)
+    moved = solve_unfolded(model, material, forces, progress, held)
     steps = tuple(
         Step(load.name, u, float(k)) for k, (load, u) in enumerate(zip(loads, moved, strict=True))
     )
     solid = Solid(solid.points, solid.blocks, steps, source=f"sample {name}")
-    return Sample(name, solid, material, _description(spec, cells, values), _case(material), values)
+    case = _case(material, spec.options(values))
+    return Sample(name, solid, material, _description(spec, cells, values), case, values)
 
 
 def _description(spec: SampleSpec, cells: str, values: Mapping[str, float]) -> str:
@@ -82,9 +84,9 @@ def _description(spec: SampleSpec, cells: str, values: Mapping[str, float]) -> s
     return f"{spec.description}; {cells}; {numbers}"
 
 
-def _case(material: Material) -> dict[str, dict[str, object]]:
+def _case(material: Material, options: Mapping[str, object]) -> dict[str, Mapping[str, object]]:
     return {
         "material": {"young": material.young, "poisson": material.poisson},
         "units": {"length": "mm", "stress": "MPa"},
-        "options": {},
+        "options": options,
     }
