@@ -7,16 +7,29 @@ import numpy as np
 
 from front3d.errors import CaseError
 from front3d.samples.cells import check_cells
+from front3d.samples.collinear_row import COLLINEAR_ROW
 from front3d.samples.elasticity import boundary_faces, traction_load
 from front3d.samples.embedded_ellipse import EMBEDDED_ELLIPSE
 from front3d.samples.penny import PENNY
 from front3d.samples.sample import Sample, SampleSpec
+from front3d.samples.slanted_crack import SLANTED_CRACK
 from front3d.samples.solver import Progress, solve_unfolded
 from front3d.samples.surface_crack import SURFACE_CRACK
+from front3d.samples.through_crack import THROUGH_CRACK
 from front3d.solid import Material, Solid, Step
 
 SAMPLES: Mapping[str, SampleSpec] = MappingProxyType(
-    {spec.name: spec for spec in (SURFACE_CRACK, PENNY, EMBEDDED_ELLIPSE)}
+    {
+        spec.name: spec
+        for spec in (
+            SURFACE_CRACK,
+            PENNY,
+            EMBEDDED_ELLIPSE,
+            THROUGH_CRACK,
+            COLLINEAR_ROW,
+            SLANTED_CRACK,
+        )
+    }
 )
 
 
