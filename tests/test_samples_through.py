@@ -66,13 +66,13 @@ def test_meshes_are_valid_over_the_whole_range() -> None:
 
 
 def test_ratios_are_refused_outside_their_range() -> None:
-    with pytest.raises(CaseError, match="crack / width = 0.95, expected 0.01 to 0.9"):
+    with pytest.raises(CaseError, match=r"crack / width = 0.95, expected 0.01 to 0.9"):
         SAMPLES["through-crack"].values({"crack": 9.5, "width": 10.0})
-    with pytest.raises(CaseError, match="half_length / half_period = 0.02, expected 0.05 to 0.9"):
+    with pytest.raises(CaseError, match=r"half_length / half_period = 0.02, expected 0.05 to 0.9"):
         SAMPLES["collinear-row"].values({"half_length": 1.0, "half_period": 50.0})
-    with pytest.raises(CaseError, match="body / half_length = 1.5, expected 2 to 100"):
+    with pytest.raises(CaseError, match=r"body / half_length = 1.5, expected 2 to 100"):
         SAMPLES["slanted-crack"].values({"half_length": 10.0, "body": 15.0})
-    with pytest.raises(CaseError, match="free_sides: found 0.5, expected a whole number"):
+    with pytest.raises(CaseError, match=r"free_sides: found 0.5, expected a whole number"):
         SAMPLES["through-crack"].values({"free_sides": 0.5})
 
 
@@ -138,7 +138,8 @@ def test_free_sides_lie_between_plane_strain_and_plane_stress() -> None:
         mean = average(front, front.K[:, 0])
         middle = front.K[len(front.s) // 2, 0]
         assert mean > front.K[[0, -1], 0].max()
-        assert thickness > 10.0 or middle == pytest.approx(front.K[:, 0].max(), rel=1e-3) > mean
+        if thickness < 10.0:
+            assert front.K[:, 0].max() < 1.001 * middle and middle > mean
         assert front.ends == ("free surface", "free surface")
     assert 1.0 > ratios[0] > ratios[1] > ratios[2] > 0.91
     assert ratios[0] == pytest.approx(1.0, abs=0.01)

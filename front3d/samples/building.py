@@ -11,6 +11,7 @@ from front3d.samples.collinear_row import COLLINEAR_ROW
 from front3d.samples.elasticity import boundary_faces, traction_load
 from front3d.samples.embedded_ellipse import EMBEDDED_ELLIPSE
 from front3d.samples.penny import PENNY
+from front3d.samples.round_bar import ROUND_BAR
 from front3d.samples.sample import Sample, SampleSpec
 from front3d.samples.slanted_crack import SLANTED_CRACK
 from front3d.samples.solver import Progress, solve_unfolded
@@ -28,6 +29,7 @@ SAMPLES: Mapping[str, SampleSpec] = MappingProxyType(
             THROUGH_CRACK,
             COLLINEAR_ROW,
             SLANTED_CRACK,
+            ROUND_BAR,
         )
     }
 )
