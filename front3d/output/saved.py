@@ -11,6 +11,7 @@ import numpy as np
 
 from front3d.arrays import FloatArray
 from front3d.errors import Front3DError, ReadError
+from front3d.evidence import REPORTED
 from front3d.results import MODES, Comparison, Evaluation, FrontResult, MethodResult, Rings
 from front3d.solid import Material
 from front3d.units import Units
@@ -65,7 +66,7 @@ def read_saved(folder: Path) -> Saved:
             summary["options"],
             tuple(summary["warnings"]),
         )
-    except (KeyError, TypeError, ValueError, IndexError) as error:
+    except (KeyError, AttributeError, TypeError, ValueError, IndexError) as error:
         raise ReadError(
             f"{folder}: points.csv or summary.json lacks something that an evaluation writes "
             f"({type(error).__name__}: {error}); evaluate again into this folder"
@@ -117,8 +118,9 @@ def _front(about: Mapping[str, Any], rows: Rows, folder: Path) -> FrontResult:
             _modes(rows, f"_{name}"),
             interaction if name == "interaction" else {},
             _rings(rows) if name == "interaction" else None,
+            variant,
         )
-        for name in about["methods"]
+        for name, variant in about["methods"].items()
     }
     frames = np.stack(
         [[_column(rows, f"e{i}{axis}") for axis in "xyz"] for i in (1, 2, 3)]
@@ -137,7 +139,9 @@ def _front(about: Mapping[str, Any], rows: Rows, folder: Path) -> FrontResult:
             G=_column(rows, "G"),
             flags=tuple(row["flag"] for row in rows),
             methods=methods,
+            sources=tuple(row.get("K_from") or REPORTED for row in rows),
             warnings=tuple(about["warnings"]),
+            notes=tuple(about["notes"]),
             comparisons=tuple(_comparison(c, rows) for c in about.get("comparisons", ())),
         )
     except Front3DError as error:
