@@ -25,6 +25,7 @@ unopened = false
 ```
 """
 
+import json
 import tomllib
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field, fields, replace
@@ -79,7 +80,7 @@ class Case:
             up=self.up,
             steps=self.steps,
             unopened=bool(self.unopened),
-            methods=self.methods or (),
+            methods=self.methods,
             compare=self.compare or (),
         )
 
@@ -105,6 +106,34 @@ def read_case(path: Path) -> Case:
         )
     values["result"] = path.parent / values["result"]
     return Case(**values, source=path)
+
+
+def as_toml(case: Case) -> str:
+    """`case` as the text of a case file that stands beside its result."""
+    lines: list[str] = []
+    sections: list[str] = []
+    for key, check in _KEYS.items():
+        if isinstance(check, Mapping):
+            said = [_line(name, getattr(case, name)) for name in check]
+            if any(said):
+                sections += ["", f"[{key}]", *filter(None, said)]
+        else:
+            value = getattr(case, key)
+            lines += filter(None, [_line(key, value.name if isinstance(value, Path) else value)])
+    return "\n".join([*lines, *sections]) + "\n"
+
+
+def _line(key: str, value: Any) -> str:
+    return "" if value is None else f"{key} = {_toml(value)}"
+
+
+def _toml(value: Any) -> str:
+    if isinstance(value, Plane):
+        value = f"{','.join(map(repr, value.normal))}={value.offset!r}"
+    if isinstance(value, tuple):
+        return f"[{', '.join(map(_toml, value))}]"
+    # JSON's texts, numbers and booleans are TOML's.
+    return json.dumps(value)
 
 
 # --- what each key holds --------------------------------------------------------------------

@@ -54,7 +54,8 @@ class Options:
         coordinate axis of the crack normal
     steps : names of the steps to evaluate; None takes all
     unopened : evaluate coincident faces that never part in any step, too
-    methods : further methods beside the interaction integral, by name
+    methods : the methods beside the interaction integral, which is always applied; None takes all
+        that apply
     compare : published solutions to put beside the fronts, as front3d.handbook.catalogue reads
         them, such as "penny:a=10,tension=100"
     """
@@ -66,7 +67,7 @@ class Options:
     up: Vector | None = None
     steps: tuple[str, ...] | None = None
     unopened: bool = False
-    methods: tuple[str, ...] = ()
+    methods: tuple[str, ...] | None = None
     compare: tuple[str, ...] = ()
 
     @classmethod

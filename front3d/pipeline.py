@@ -5,8 +5,9 @@ from dataclasses import asdict
 
 import numpy as np
 
-from front3d.crack import CrackModel, Front, find_cracks
+from front3d.crack import CrackModel, find_cracks
 from front3d.errors import CaseError, Front3DError, MeshError, MethodError
+from front3d.evidence import REPORTED, weigh
 from front3d.flags import front_warnings, station_flags
 from front3d.handbook.catalogue import parse
 from front3d.handbook.comparing import compare_fronts
@@ -22,9 +23,6 @@ from front3d.results import (
 )
 from front3d.solid import Material, Solid, Step
 from front3d.units import Units
-
-REPORTED = "interaction"
-"""The method whose K is reported without a suffix."""
 
 Progress = Callable[[str, float], None]
 
@@ -78,8 +76,10 @@ def evaluate_solid(
             for index, step in enumerate(steps):
                 methods = {name: found[index] for name, found in by_method.items()}
                 beside = published.get((step.name, number), ())
-                said = (*refused, *unlike.get((step.name, number), ()))
-                results.append(_front_result(step, number, front, methods, material, beside, said))
+                unmatched = unlike.get((step.name, number), ())
+                results.append(
+                    _front_result(step, number, context, methods, beside, refused, unmatched)
+                )
             number += 1
     if not results:
         raise left_out[0][1]
@@ -119,21 +119,24 @@ def _shapes(model: CrackModel) -> list[FrontShape]:
 
 
 def _apply_methods(context: FrontContext) -> tuple[dict[str, list[MethodResult]], tuple[str, ...]]:
-    """Results of the interaction integral and the further methods asked for, and the reasons of
-    those that do not apply to this front.  The interaction integral must apply.
+    """Results of the interaction integral and the further methods, and the reasons of those that
+    do not apply to this front.  The interaction integral must apply.
     """
+    chosen = context.options.methods
     by_method = {REPORTED: METHODS[REPORTED](context)}
     refused = []
-    for name in context.options.methods:
+    for name, method in METHODS.items():
+        if name == REPORTED or not (chosen is None or name in chosen):
+            continue
         try:
-            by_method[name] = METHODS[name](context)
-        except MethodError as reason:
+            by_method[name] = method(context)
+        except (MethodError, MeshError) as reason:
             refused.append(f"{name} does not apply: {reason}")
     return by_method, tuple(refused)
 
 
 def _check_methods(options: Options) -> None:
-    unknown = [name for name in options.methods if name not in METHODS]
+    unknown = [name for name in options.methods or () if name not in METHODS]
     if unknown:
         raise CaseError(f"method: found {unknown[0]!r}, expected one of {', '.join(METHODS)}")
 
@@ -141,14 +144,15 @@ def _check_methods(options: Options) -> None:
 def _front_result(
     step: Step,
     number: int,
-    front: Front,
+    context: FrontContext,
     methods: Mapping[str, MethodResult],
-    material: Material,
     published: tuple[Comparison, ...],
-    said: tuple[str, ...],
+    refused: tuple[str, ...],
+    unmatched: tuple[str, ...],
 ) -> FrontResult:
+    front, material = context.front, context.material
     positions, frames, _ = front.curve.frames(front.corner_s)
-    K = methods[REPORTED].K
+    evidence = weigh(front, context.cells, methods, material)
     return FrontResult(
         step=step.name,
         front=number,
@@ -158,11 +162,13 @@ def _front_result(
         s=front.corner_s,
         positions=positions,
         frames=frames,
-        K=K,
-        G=energy_release_rate(K, material),
-        flags=station_flags(front, methods),
+        K=evidence.K,
+        G=energy_release_rate(evidence.K, material),
+        flags=station_flags(front, methods, evidence),
         methods=methods,
-        warnings=(*said, *front_warnings(front, methods, material)),
+        sources=evidence.source,
+        warnings=(*unmatched, *front_warnings(front, methods, evidence, material)),
+        notes=(*(f"{m.method}: {m.variant}" for m in methods.values() if m.variant), *refused),
         comparisons=published,
     )
 

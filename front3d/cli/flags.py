@@ -113,7 +113,8 @@ def add_evaluation_flags(parser: argparse.ArgumentParser) -> None:
         action="append",
         dest="methods",
         metavar="NAME",
-        help="apply a further method, too: closure or opening (may be repeated)",
+        help="apply this one beside the interaction integral: closure or opening (may be repeated; "
+        "default: all that apply; interaction: no other)",
     )
     parser.add_argument(
         "--compare",

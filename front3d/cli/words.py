@@ -90,7 +90,10 @@ def _describe_front(front: "FrontResult", evaluation: "Evaluation") -> list[str]
         if np.isfinite(spread):
             said.append(f"rings agree within {percent(spread)} of the largest K")
         said.append(f"J and G within {percent(trust.J_and_G)} of the largest G")
-    said += [f"{name} within {percent(value)}" for name, value in trust.methods.items()]
+    methods = [f"{name} within {percent(value)}" for name, value in trust.methods.items()]
+    if methods and "free surface" in front.ends:
+        methods[-1] += " (away from free surfaces)"
+    said += methods
     if said:
         lines.append(f"  {'; '.join(said)}")
     notes: dict[str, None] = {}
@@ -101,6 +104,7 @@ def _describe_front(front: "FrontResult", evaluation: "Evaluation") -> list[str]
     flagged = sum(bool(flag) for flag in front.flags)
     if flagged:
         lines.append(f"  {flagged} of {len(front)} stations are flagged, see points.csv")
+    lines += [f"  note: {note}" for note in front.notes]
     return [*lines, *(f"  warning: {warning}" for warning in front.warnings)]
 
 
