@@ -8,6 +8,7 @@ import numpy as np
 from front3d.errors import CaseError
 from front3d.samples.cells import check_cells
 from front3d.samples.collinear_row import COLLINEAR_ROW
+from front3d.samples.compact import COMPACT_SPECIMEN
 from front3d.samples.elasticity import boundary_faces, traction_load
 from front3d.samples.embedded_ellipse import EMBEDDED_ELLIPSE
 from front3d.samples.penny import PENNY
@@ -30,6 +31,7 @@ SAMPLES: Mapping[str, SampleSpec] = MappingProxyType(
             COLLINEAR_ROW,
             SLANTED_CRACK,
             ROUND_BAR,
+            COMPACT_SPECIMEN,
         )
     }
 )
