@@ -9,6 +9,7 @@ from front3d.errors import CaseError
 from front3d.samples.cells import check_cells
 from front3d.samples.collinear_row import COLLINEAR_ROW
 from front3d.samples.compact import COMPACT_SPECIMEN
+from front3d.samples.cylinder_crack import CYLINDER_CRACK
 from front3d.samples.elasticity import boundary_faces, traction_load
 from front3d.samples.embedded_ellipse import EMBEDDED_ELLIPSE
 from front3d.samples.penny import PENNY
@@ -32,6 +33,7 @@ SAMPLES: Mapping[str, SampleSpec] = MappingProxyType(
             SLANTED_CRACK,
             ROUND_BAR,
             COMPACT_SPECIMEN,
+            CYLINDER_CRACK,
         )
     }
 )

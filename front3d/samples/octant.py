@@ -9,13 +9,15 @@ from front3d.samples.lattice import Block, Lattice, unite
 from front3d.samples.sheet import Density, Patch, Quarter, quarter_sheet
 
 
-def octant(shape: Quarter, density: Density, height: float) -> Lattice:
+def octant(
+    shape: Quarter, density: Density, height: float, largest: float | None = None
+) -> Lattice:
     """Lattice of 0 <= z <= height above a quarter crack plane.
 
     The patches are drawn up along z; those next to the front start above the tube, whose
-    cross-section takes their place below.
+    cross-section takes their place below.  No cell is higher than `largest`.
     """
-    levels, low = _levels(shape, density, height)
+    levels, low = _levels(shape, density, height, largest)
     blocks = [
         _drawn(p, levels[low if p.in_tube else 0 :], p.inside == shape.outside)
         for p in quarter_sheet(shape, density)
@@ -24,13 +26,19 @@ def octant(shape: Quarter, density: Density, height: float) -> Lattice:
     return unite(blocks, 1e-9 * max(shape.width, shape.depth, height))
 
 
-def _levels(shape: Quarter, density: Density, height: float) -> tuple[FloatArray, int]:
+def _levels(
+    shape: Quarter, density: Density, height: float, largest: float | None
+) -> tuple[FloatArray, int]:
     """Node heights, and the index of the top of the tube."""
     inside = shape.radius * density.tube.side
     rest = height - shape.radius
     first = float(inside[-1] - inside[-3])
-    cells = grading.count(rest, first, density.growth)
-    above = shape.radius + rest * grading.fractions(rest, first, cells)[0]
+    if largest is None:
+        cells = grading.count(rest, first, density.growth)
+        part = grading.fractions(rest, first, cells)[0]
+    else:
+        part = grading.capped(rest, first, density.growth, largest)
+    above = shape.radius + rest * part
     return np.concatenate([inside, above[1:]]), len(inside) - 1
 
 
