@@ -20,10 +20,12 @@ hat = 4
 up = [0, 0, 1]
 steps = ["tension"]
 methods = ["closure"]
+compare = ["penny:a=10,tension=100"]
 unopened = false
 ```
 """
 
+import json
 import tomllib
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field, fields, replace
@@ -54,6 +56,7 @@ class Case:
     up: Vector | None = None
     steps: tuple[str, ...] | None = None
     methods: tuple[str, ...] | None = None
+    compare: tuple[str, ...] | None = None
     unopened: bool | None = None
     source: Path | None = field(default=None, compare=False)
 
@@ -77,7 +80,8 @@ class Case:
             up=self.up,
             steps=self.steps,
             unopened=bool(self.unopened),
-            methods=self.methods or (),
+            methods=self.methods,
+            compare=self.compare or (),
         )
 
     @property
@@ -102,6 +106,34 @@ def read_case(path: Path) -> Case:
         )
     values["result"] = path.parent / values["result"]
     return Case(**values, source=path)
+
+
+def as_toml(case: Case) -> str:
+    """`case` as the text of a case file that stands beside its result."""
+    lines: list[str] = []
+    sections: list[str] = []
+    for key, check in _KEYS.items():
+        if isinstance(check, Mapping):
+            said = [_line(name, getattr(case, name)) for name in check]
+            if any(said):
+                sections += ["", f"[{key}]", *filter(None, said)]
+        else:
+            value = getattr(case, key)
+            lines += filter(None, [_line(key, value.name if isinstance(value, Path) else value)])
+    return "\n".join([*lines, *sections]) + "\n"
+
+
+def _line(key: str, value: Any) -> str:
+    return "" if value is None else f"{key} = {_toml(value)}"
+
+
+def _toml(value: Any) -> str:
+    if isinstance(value, Plane):
+        value = f"{','.join(map(repr, value.normal))}={value.offset!r}"
+    if isinstance(value, tuple):
+        return f"[{', '.join(map(_toml, value))}]"
+    # JSON's texts, numbers and booleans are TOML's.
+    return json.dumps(value)
 
 
 # --- what each key holds --------------------------------------------------------------------
@@ -174,6 +206,7 @@ _KEYS: Mapping[str, Any] = {
         "up": _vector,
         "steps": _list_of(_text, 'a list of step names such as ["step 1"]'),
         "methods": _list_of(_text, 'a list of method names such as ["closure"]'),
+        "compare": _list_of(_text, 'a list of texts such as ["penny:a=10,tension=100"]'),
         "unopened": _boolean,
     },
 }

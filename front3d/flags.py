@@ -5,25 +5,20 @@ from collections.abc import Mapping
 import numpy as np
 
 from front3d.crack.front import FREE_SURFACE, Front
+from front3d.evidence import J_TOLERANCE, REPORTED, RING_TOLERANCE, Evidence
 from front3d.results import MethodResult, energy_release_rate
 from front3d.solid import Material
-
-RING_TOLERANCE = 0.02
-"""Spread of K over the rings beyond the first, in parts of the front's largest K, above which a
-station is flagged."""
-
-J_TOLERANCE = 0.03
-"""Difference of J and G, in parts of the front's largest G, above which a station is flagged."""
 
 OVERLAP = 0.01
 """Negative K_I, in parts of the front's largest K, below which scatter may be the reason and
 nothing is said."""
 
 
-def station_flags(front: Front, methods: Mapping[str, MethodResult]) -> tuple[str, ...]:
+def station_flags(
+    front: Front, methods: Mapping[str, MethodResult], evidence: Evidence
+) -> tuple[str, ...]:
     """One text per station, parts joined by "; ", empty where nothing is to be said."""
-    interaction = methods["interaction"]
-    K = interaction.K
+    interaction, K = methods[REPORTED], evidence.K
     n = len(K)
     parts: list[list[str]] = [[] for _ in range(n)]
     for where, end in zip((0, n - 1), front.ends, strict=False):
@@ -34,20 +29,24 @@ def station_flags(front: Front, methods: Mapping[str, MethodResult]) -> tuple[st
         parts[i].append("faces overlap (K_I < 0)")
     spread = interaction.columns["ring_spread"]
     for i in np.flatnonzero(spread > RING_TOLERANCE * largest):
-        parts[i].append("rings disagree")
+        source = evidence.source[i]
+        parts[i].append("rings disagree" + (f", K by {source}" if source != REPORTED else ""))
+    for i in np.flatnonzero(evidence.apart):
+        parts[i].append("methods disagree")
     return tuple("; ".join(p) for p in parts)
 
 
 def front_warnings(
-    front: Front, methods: Mapping[str, MethodResult], material: Material
+    front: Front, methods: Mapping[str, MethodResult], evidence: Evidence, material: Material
 ) -> tuple[str, ...]:
     """Sentences about the whole front.
 
     A wrong Young's modulus cannot be seen: it scales K and leaves J equal to G.
     """
-    interaction = methods["interaction"]
+    interaction = methods[REPORTED]
     K = interaction.K
     warnings = [note for method in methods.values() for note in method.notes]
+    warnings += evidence.warnings
     largest = float(np.abs(K).max())
     overlap = int((K[:, 0] < -OVERLAP * largest).sum())
     if overlap:

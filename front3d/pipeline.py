@@ -5,17 +5,24 @@ from dataclasses import asdict
 
 import numpy as np
 
-from front3d.crack import CrackModel, Front, find_cracks
+from front3d.crack import CrackModel, find_cracks
 from front3d.errors import CaseError, Front3DError, MeshError, MethodError
+from front3d.evidence import REPORTED, weigh
 from front3d.flags import front_warnings, station_flags
+from front3d.handbook.catalogue import parse
+from front3d.handbook.comparing import compare_fronts
+from front3d.handbook.placing import FrontShape
 from front3d.methods import METHODS, FrontContext
 from front3d.options import Options
-from front3d.results import Evaluation, FrontResult, MethodResult, energy_release_rate
+from front3d.results import (
+    Comparison,
+    Evaluation,
+    FrontResult,
+    MethodResult,
+    energy_release_rate,
+)
 from front3d.solid import Material, Solid, Step
 from front3d.units import Units
-
-REPORTED = "interaction"
-"""The method whose K is reported without a suffix."""
 
 Progress = Callable[[str, float], None]
 
@@ -45,9 +52,11 @@ def evaluate_solid(
     options, units = options or Options(), units or Units()
     report = progress or _silent
     _check_methods(options)
+    requests = tuple(parse(text) for text in options.compare)
     steps = _chosen_steps(solid, options)
     report("finding the crack", 0.0)
     model = find_cracks(solid, options)
+    published, unlike = compare_fronts(requests, steps, _shapes(model), material.poisson)
     displacement = np.stack([step.displacement for step in steps])
     results: list[FrontResult] = []
     left_out: list[tuple[int, Front3DError]] = []
@@ -66,7 +75,11 @@ def evaluate_solid(
                 continue
             for index, step in enumerate(steps):
                 methods = {name: found[index] for name, found in by_method.items()}
-                results.append(_front_result(step, number, front, methods, material, refused))
+                beside = published.get((step.name, number), ())
+                unmatched = unlike.get((step.name, number), ())
+                results.append(
+                    _front_result(step, number, context, methods, beside, refused, unmatched)
+                )
             number += 1
     if not results:
         raise left_out[0][1]
@@ -94,22 +107,36 @@ def _chosen_steps(solid: Solid, options: Options) -> list[Step]:
     return [by_name[name] for name in options.steps]
 
 
+def _shapes(model: CrackModel) -> list[FrontShape]:
+    """What the fronts look like, in their order."""
+    shapes = []
+    for front in (front for fronts in model.fronts for front in fronts):
+        positions, frames, _ = front.curve.frames(front.corner_s)
+        shapes.append(
+            FrontShape(positions, frames, front.corner_s, front.length, front.closed, front.ends)
+        )
+    return shapes
+
+
 def _apply_methods(context: FrontContext) -> tuple[dict[str, list[MethodResult]], tuple[str, ...]]:
-    """Results of the interaction integral and the further methods asked for, and the reasons of
-    those that do not apply to this front.  The interaction integral must apply.
+    """Results of the interaction integral and the further methods, and the reasons of those that
+    do not apply to this front.  The interaction integral must apply.
     """
+    chosen = context.options.methods
     by_method = {REPORTED: METHODS[REPORTED](context)}
     refused = []
-    for name in context.options.methods:
+    for name, method in METHODS.items():
+        if name == REPORTED or not (chosen is None or name in chosen):
+            continue
         try:
-            by_method[name] = METHODS[name](context)
-        except MethodError as reason:
+            by_method[name] = method(context)
+        except (MethodError, MeshError) as reason:
             refused.append(f"{name} does not apply: {reason}")
     return by_method, tuple(refused)
 
 
 def _check_methods(options: Options) -> None:
-    unknown = [name for name in options.methods if name not in METHODS]
+    unknown = [name for name in options.methods or () if name not in METHODS]
     if unknown:
         raise CaseError(f"method: found {unknown[0]!r}, expected one of {', '.join(METHODS)}")
 
@@ -117,13 +144,15 @@ def _check_methods(options: Options) -> None:
 def _front_result(
     step: Step,
     number: int,
-    front: Front,
+    context: FrontContext,
     methods: Mapping[str, MethodResult],
-    material: Material,
+    published: tuple[Comparison, ...],
     refused: tuple[str, ...],
+    unmatched: tuple[str, ...],
 ) -> FrontResult:
+    front, material = context.front, context.material
     positions, frames, _ = front.curve.frames(front.corner_s)
-    K = methods[REPORTED].K
+    evidence = weigh(front, context.cells, methods, material)
     return FrontResult(
         step=step.name,
         front=number,
@@ -133,11 +162,14 @@ def _front_result(
         s=front.corner_s,
         positions=positions,
         frames=frames,
-        K=K,
-        G=energy_release_rate(K, material),
-        flags=station_flags(front, methods),
+        K=evidence.K,
+        G=energy_release_rate(evidence.K, material),
+        flags=station_flags(front, methods, evidence),
         methods=methods,
-        warnings=(*refused, *front_warnings(front, methods, material)),
+        sources=evidence.source,
+        warnings=(*unmatched, *front_warnings(front, methods, evidence, material)),
+        notes=(*(f"{m.method}: {m.variant}" for m in methods.values() if m.variant), *refused),
+        comparisons=published,
     )
 
 

@@ -5,7 +5,8 @@ from dataclasses import dataclass, field
 
 import numpy as np
 
-from front3d.arrays import FloatArray, frozen_floats
+from front3d.arrays import BoolArray, FloatArray, frozen_floats
+from front3d.crack.front import FREE_SURFACE
 from front3d.errors import MethodError
 from front3d.solid import Material
 from front3d.units import Units
@@ -91,24 +92,35 @@ class Comparison:
     Attributes
     ----------
     solution : its name in the handbook, e.g. "newman-raju-surface"
-    arguments : the numbers it was asked for with
+    arguments : the numbers and directions it was asked for with
     source : author and year
     claim : the accuracy its authors claim, in words
     K : (n, 3) its K_I, K_II, K_III; NaN where it says nothing
     angle : (n,) parametric angle of the ellipse at the stations, degrees; NaN where there is none
     notes : what the reader must be warned of: range, known deviations and their evidence
+    judged : (n,) stations far enough from a free surface to be compared; all by default
     """
 
     solution: str
-    arguments: Mapping[str, float]
+    arguments: Mapping[str, float | tuple[float, ...]]
     source: str
     claim: str
     K: FloatArray
     angle: FloatArray
     notes: tuple[str, ...] = ()
+    judged: BoolArray = field(default_factory=lambda: np.zeros(0, dtype=bool))
 
     def __post_init__(self) -> None:
         _freeze(self, ("K", "angle"))
+        n = len(self.angle)
+        judged = np.array(self.judged, dtype=bool) if len(self.judged) else np.ones(n, dtype=bool)
+        judged.flags.writeable = False
+        object.__setattr__(self, "judged", judged)
+        if self.K.shape != (n, 3) or judged.shape != (n,):
+            raise MethodError(
+                f"comparison with {self.solution}: found K of shape {self.K.shape} and "
+                f"{len(judged)} stations judged for {n} angles"
+            )
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -128,7 +140,9 @@ class FrontResult:
     G : (n,) energy release rate from K: (K_I^2 + K_II^2) / E' + K_III^2 / (2 mu)
     flags : (n,) text per station, empty where nothing is to be said
     methods : the result of each method that was applied
+    sources : (n,) the method K is taken from, see `front3d.evidence`
     warnings : sentences for the reader, about the whole front
+    notes : what the reader may want to know, nothing to worry about
     comparisons : published solutions asked for, at the same stations
     """
 
@@ -144,17 +158,20 @@ class FrontResult:
     G: FloatArray
     flags: tuple[str, ...]
     methods: Mapping[str, MethodResult]
+    sources: tuple[str, ...]
     warnings: tuple[str, ...] = ()
+    notes: tuple[str, ...] = ()
     comparisons: tuple[Comparison, ...] = ()
 
     def __post_init__(self) -> None:
         _freeze(self, ("s", "positions", "frames", "K", "G"))
         n = len(self.s)
         found = (self.positions.shape, self.frames.shape, self.K.shape, self.G.shape)
-        if found != ((n, 3), (n, 3, 3), (n, 3), (n,)) or len(self.flags) != n:
+        words = (len(self.flags), len(self.sources))
+        if found != ((n, 3), (n, 3, 3), (n, 3), (n,)) or words != (n, n):
             raise MethodError(
-                f"front {self.front}: found arrays of shapes {found} and {len(self.flags)} flags "
-                f"for {n} stations"
+                f"front {self.front}: found arrays of shapes {found} and {words} flags and "
+                f"sources for {n} stations"
             )
 
     def __len__(self) -> int:
@@ -164,6 +181,15 @@ class FrontResult:
     def s_rel(self) -> FloatArray:
         """Arc length over the length of the front, (n,)."""
         return self.s / self.length
+
+    @property
+    def method_spread(self) -> FloatArray:
+        """(n, 3) largest less smallest K of the methods; NaN where fewer than two have a value."""
+        K = np.stack([method.K for method in self.methods.values()])
+        several = np.isfinite(K).sum(axis=0) > 1
+        high = np.where(np.isfinite(K), K, -np.inf).max(axis=0)
+        low = np.where(np.isfinite(K), K, np.inf).min(axis=0)
+        return np.where(several, high - np.where(several, low, 0.0), np.nan)
 
     @property
     def mode_angles(self) -> FloatArray:
@@ -190,6 +216,24 @@ def energy_release_rate(K: FloatArray, material: Material) -> FloatArray:
     """G = (K_I^2 + K_II^2) / E' + K_III^2 / (2 mu), (n,), from K, (n, 3); Irwin (1957)."""
     k1, k2, k3 = np.moveaxis(K, -1, 0)
     return (k1**2 + k2**2) / material.plane_strain_modulus + k3**2 / (2.0 * material.shear_modulus)
+
+
+def free_surface_layer(s: FloatArray, length: float, ends: tuple[str, ...]) -> BoolArray:
+    """(n,) the stations at which a free surface, where no K exists, is felt.
+
+    Within three stations or 5 % of the front's length of such an end: common practice, and where
+    the methods were seen to part.
+
+    Parameters
+    ----------
+    s : (n,) arc lengths of the stations; length : of the front; ends : what its ends lie on
+    """
+    number = np.arange(len(s))
+    layer = np.zeros(len(s), bool)
+    for end, stations, distance in zip(ends, (number, number[::-1]), (s, length - s), strict=False):
+        if end == FREE_SURFACE:
+            layer |= (distance < 0.05 * length) | (stations < 3)
+    return layer
 
 
 def _freeze(record: object, names: tuple[str, ...]) -> None:

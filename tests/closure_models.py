@@ -22,7 +22,7 @@ def contexts(solid, young=1.0, poisson=0.3, **options):
 
 
 def closed(solid, young=1.0, poisson=0.3, **options):
-    """Context, (steps, stations, 3) K and the notes of the first step of the only front."""
+    """Context, (steps, stations, 3) K and the first step's result of the only front."""
     (context,) = contexts(solid, young, poisson, **options)
     results = closure.evaluate(context)
-    return context, np.array([result.K for result in results]), results[0].notes
+    return context, np.array([result.K for result in results]), results[0]

@@ -23,8 +23,10 @@ RANKS = [
     {"fields"},
     # Results are the records that the methods fill in; no mathematics of theirs: hence before.
     {"results"},
+    {"mixing"},
     {"methods"},
     {"handbook"},
+    {"evidence"},
     {"flags"},
     {"pipeline"},
     {"samples"},

@@ -55,6 +55,7 @@ def test_near_tip_fields_give_back_their_K_on_every_element_type(kind):
         np.testing.assert_allclose(result.K, np.broadcast_to(K, result.K.shape), atol=1e-4)
         np.testing.assert_allclose(result.columns["opening_eps"], 0.0, atol=1e-3)
         assert result.columns["opening_residual"].max() < 1e-4
+        assert result.variant.startswith("effective front")
 
 
 @pytest.mark.parametrize("cells_behind", [-0.2, 0.12, 0.4])

@@ -11,10 +11,10 @@ front vanishes where it does.  Sources: Rybicki and Kanninen (1977); Shivakumar,
 import numpy as np
 
 from front3d.arrays import FloatArray, IntArray
+from front3d.crack.front import SYMMETRY_PLANE
 from front3d.methods.closure_columns import (
     NOT_COUNTED,
     Columns,
-    column_notes,
     column_openings,
     find_columns,
     rows_of_nodes,
@@ -28,6 +28,7 @@ from front3d.methods.closure_forces import (
 )
 from front3d.methods.closure_formulas import signed_K
 from front3d.methods.closure_profile import build_profile, outer_line, places_ahead
+from front3d.methods.closure_variant import column_notes, variant_name
 from front3d.methods.closure_weights import Tents, build_tents
 from front3d.methods.context import FrontContext
 from front3d.methods.hats import default_widths
@@ -53,19 +54,22 @@ def evaluate(context: FrontContext) -> list[MethodResult]:
         width = np.full(len(front.corners), options.hat)
     tents = build_tents(context, ligament, width)
     jump = openings(context)
+    about: tuple[str, ...] = ()
     if columns is not None:
         work, opening = _work_in_columns(context, ligament, columns, tents, forces, jump)
         about = column_notes(context, columns)
     else:
         work, opening = _work_of_faces(context, ligament, tents, forces, jump)
-        about = ("closure by faces of any shape, opening mirrored by distance",)
     G = 0.5 * work
     if front.half:
         G[:, :, 1:] = 0.0
     K = signed_K(G, opening, context.material)
     uneven = _unevenness(ligament, context, forces, imbalance)
+    variant = variant_name(context, ligament, columns)
     return [
-        MethodResult("closure", K[step], notes=_notes(about, G[step], uneven[step]))
+        MethodResult(
+            "closure", K[step], variant=variant, notes=_notes(about, G[step], uneven[step])
+        )
         for step in range(len(K))
     ]
 
@@ -159,9 +163,19 @@ def _local_forces(
 def _unevenness(
     ligament: Ligament, context: FrontContext, forces: FloatArray, imbalance: FloatArray
 ) -> FloatArray:
-    """(steps,) root mean square of what the sides leave over at the front, over that of forces."""
-    at = np.unique(context.model.same.entity[context.front.nodes])
-    left, whole = (np.sqrt((f[:, at] ** 2).sum(axis=(1, 2))) for f in (imbalance, forces))
+    """(steps,) root mean square of what the sides leave over at the front, over that of forces.
+
+    A symmetry plane at an end of the front holds the node there along e3; that is no imbalance.
+    """
+    front, entity = context.front, context.model.same.entity
+    at = np.unique(entity[front.nodes])
+    left = imbalance[:, at].copy()
+    for k, kind in zip((0, -1), front.ends, strict=False):
+        if kind == SYMMETRY_PLANE:
+            _, axes = mode_axes(front, front.corner_s[[k]])
+            row = np.searchsorted(at, entity[front.corners[k]])
+            left[:, row] -= (left[:, row] @ axes[0, 2])[:, None] * axes[0, 2]
+    left, whole = (np.sqrt((f**2).sum(axis=(1, 2))) for f in (left, forces[:, at]))
     return left / np.maximum(whole, 1e-300)
 
 

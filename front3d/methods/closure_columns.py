@@ -12,14 +12,11 @@ from front3d.arrays import FloatArray, IntArray
 from front3d.crack.facetable import FaceTable
 from front3d.crack.front import Front
 from front3d.methods.closure_forces import Ligament, face_nodes, mode_axes
-from front3d.methods.closure_formulas import QUARTER, mirrored_openings
+from front3d.methods.closure_formulas import mirrored_openings
 from front3d.methods.context import FrontContext
 
 NOT_COUNTED = 2
 """Row of the nodes whose opening is zero once the crack is closed by one face."""
-
-UNEQUAL = 1.2
-"""Ratio of the lengths ahead and behind that is worth a word."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -101,7 +98,7 @@ def column_openings(
     fars = np.empty((len(jump), n, 3))
     for station in range(n):
         (length_a, middle_a), (length_b, middle_b) = (
-            _lengths(context, place[station], nodes[station])
+            length_and_middle(context, place[station], nodes[station])
             for nodes in (columns.ahead, columns.behind)
         )
         at_far = jump[:, entity[columns.behind[station, 1]]] @ axes[station].T
@@ -116,7 +113,7 @@ def column_openings(
     return openings, fars
 
 
-def _lengths(
+def length_and_middle(
     context: FrontContext, station: FloatArray, nodes: IntArray
 ) -> tuple[float, float | None]:
     """Length of an edge across the front, and where on it the mid-side node lies."""
@@ -125,27 +122,3 @@ def _lengths(
     if nodes[0] < 0:
         return length, None
     return length, float(np.linalg.norm(x[nodes[0]] - station)) / length
-
-
-def column_notes(context: FrontContext, columns: Columns) -> tuple[str, ...]:
-    """What the columns are made of, and what to beware of."""
-    place, _, _ = context.front.curve.frames(context.front.corner_s)
-    n = len(place)
-    ahead, behind = (
-        [_lengths(context, place[k], nodes[k]) for k in range(n)]
-        for nodes in (columns.ahead, columns.behind)
-    )
-    ratio = max(max(a / b, b / a) for (a, _), (b, _) in zip(ahead, behind, strict=True))
-    middles = [middle for _, middle in ahead if middle is not None]
-    if middles and np.mean(middles) < QUARTER:
-        return ("closure by quadratic bricks or wedges with quarter-points",)
-    kind = (
-        "quadratic bricks or wedges with mid-side nodes" if middles else "linear bricks or wedges"
-    )
-    notes: tuple[str, ...] = (f"closure by {kind}",)
-    if ratio > UNEQUAL:
-        notes += (
-            f"closure: cells ahead of and behind the front differ in length by up to {ratio:.2g} "
-            "times; without quarter-points this is made up for only in part",
-        )
-    return notes

@@ -1,9 +1,10 @@
 """What every method is given: one front of a cracked solid, with material, options and steps."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 from front3d.arrays import FloatArray, frozen_floats
 from front3d.crack import CrackModel, Front, Patch
+from front3d.crack.cells import FrontCells, cells_of_front
 from front3d.options import Options
 from front3d.solid import Material, Solid
 
@@ -18,6 +19,7 @@ class FrontContext:
     patch, front : the crack surface and the front on it
     material, options : elastic constants, and the user's choices
     displacement : (n_steps, n_points, 3) of the steps to evaluate
+    cells : what surrounds the front
     """
 
     solid: Solid
@@ -27,6 +29,9 @@ class FrontContext:
     material: Material
     options: Options
     displacement: FloatArray
+    cells: FrontCells = field(init=False)
 
     def __post_init__(self) -> None:
+        around = cells_of_front(self.solid, self.front, self.model.same)
+        object.__setattr__(self, "cells", around)
         object.__setattr__(self, "displacement", frozen_floats(self.displacement))

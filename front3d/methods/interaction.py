@@ -15,7 +15,7 @@ from front3d.methods.context import FrontContext
 from front3d.methods.hats import Hats, build_hats, default_widths
 from front3d.methods.rings import N_RINGS, ring_radii
 from front3d.methods.surfaces import surroundings
-from front3d.methods.tube import Tube, along_front, build_tube, is_structured, layer_reaches
+from front3d.methods.tube import Tube, along_front, build_tube, layer_reaches
 from front3d.results import MethodResult, Rings
 
 SMALLEST_RATIO = 1.3
@@ -30,7 +30,7 @@ def evaluate(context: FrontContext) -> list[MethodResult]:
     """K of one front, one result per step."""
     solid, front, options = context.solid, context.front, context.options
     same = context.model.same
-    structured = is_structured(solid, front, same)
+    structured = context.cells.structured
     reaches = layer_reaches(solid, front, same, 1 + N_RINGS)
     others = [f for fronts in context.model.fronts for f in fronts if f is not front]
     radii, notes = ring_radii(front, reaches, others, structured, options.radii, solid.source)

@@ -45,6 +45,8 @@ than MIN_WIDTH, which three corner nodes need at a free end."""
 
 MIN_WIDTH = 2.5
 
+VARIANT = "effective front, two terms of the opening"
+
 SPARE = 2
 """Pairs a station needs beyond the number of its unknowns."""
 
@@ -61,9 +63,9 @@ def evaluate(context: FrontContext) -> list[MethodResult]:
     chosen = Pairs(pairs.s[near], d[near], pairs.other[near], pairs.jump[near])
     fit, count = _equations(context, chosen, cell, reach)
     scale = _scale(context.material)
-    notes = _notes(cell, reach)
+    variant = _variant(cell, reach)
     steps = range(context.displacement.shape[0])
-    return [_result(fit.solve(chosen.jump[:, k] * scale), count, notes) for k in steps]
+    return [_result(fit.solve(chosen.jump[:, k] * scale), count, variant) for k in steps]
 
 
 def _equations(
@@ -107,20 +109,17 @@ def _scale(material: Material) -> FloatArray:
     return scale
 
 
-def _notes(cell: FloatArray, reach: FloatArray) -> tuple[str, ...]:
-    cut = int((reach < 0.999 * LAST * cell).sum())
-    if not cut:
-        return ()
-    return (
-        f"at {cut} of {len(cell)} stations the curvature of the front leaves "
-        f"{(reach / cell).min():.2g} cells of opening to fit, instead of {LAST:g}",
-    )
+def _variant(cell: FloatArray, reach: FloatArray) -> str:
+    """The form of the fit, and the range it is made over, which curvature may cut short."""
+    last = (reach / cell).min(), (reach / cell).max()
+    cells = f"{last[1]:.2g}" if last[0] > 0.999 * last[1] else f"{last[0]:.2g} to {last[1]:.2g}"
+    return f"{VARIANT}, from {FIRST:g} to {cells} cells behind the front"
 
 
-def _result(fit: Fit, count: IntArray, notes: tuple[str, ...]) -> MethodResult:
+def _result(fit: Fit, count: IntArray, variant: str) -> MethodResult:
     columns = {
         "opening_residual": fit.residual,
         "opening_eps": np.full(len(count), fit.eps[fit.leading]),
         "opening_pairs": count.astype(float),
     }
-    return MethodResult("opening", fit.K, columns, notes=notes)
+    return MethodResult("opening", fit.K, columns, variant=variant)

@@ -13,13 +13,6 @@ from front3d.errors import MethodError
 from front3d.solid import Solid
 
 
-def is_structured(solid: Solid, front: Front, same: Coincidence) -> bool:
-    """Whether only bricks and wedges touch the front."""
-    on_front = on_front_mask(front, same)
-    families = {b.element.family for b in solid.blocks if on_front[b.nodes].any()}
-    return families <= {"hexahedron", "wedge"}
-
-
 def along_front(front: Front, at_corners: FloatArray, s: FloatArray) -> FloatArray:
     """Values at arc lengths s, linear between the corner nodes of the front."""
     if front.closed:

@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 
 from front3d.arrays import FloatArray
-from front3d.output.charts import mathtext
+from front3d.output.charts.style import mathtext
 from front3d.output.rendering import choose_window
 from front3d.output.view import (
     Skin,

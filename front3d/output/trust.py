@@ -5,7 +5,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from front3d.arrays import FloatArray
-from front3d.results import MODES, FrontResult, Rings
+from front3d.results import MODES, FrontResult, Rings, free_surface_layer
 
 
 def rings_of(front: FrontResult) -> Rings | None:
@@ -21,8 +21,9 @@ class Agreement:
     ----------
     rings : per mode the largest ring spread; None without rings
     J_and_G : largest |J - G|; None without rings
-    methods : per further method, the largest difference of any mode from the reported K, over
-        the stations where that method gives a value
+    methods : per method, the largest difference of any mode from the reported K, over the stations
+        where that method gives a value and no free surface is near; the method that is reported
+        everywhere is left out
     """
 
     rings: dict[str, float] | None
@@ -34,10 +35,11 @@ def agreement(front: FrontResult) -> Agreement:
     """Compare rings, J with G, and methods along `front`."""
     scale = _largest(front.K)
     rings = rings_of(front)
+    inside = ~free_surface_layer(front.s, front.length, front.ends)
     methods = {
-        name: _largest(result.K - front.K) / scale
+        name: _largest((result.K - front.K)[inside]) / scale
         for name, result in front.methods.items()
-        if not np.array_equal(result.K, front.K, equal_nan=True)
+        if set(front.sources) != {name}
     }
     if rings is None:
         return Agreement(None, None, methods)

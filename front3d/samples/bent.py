@@ -7,17 +7,16 @@ import numpy as np
 from front3d.arrays import FloatArray
 from front3d.samples.lattice import Lattice
 
-_CELLS_AROUND_HALF = 8
+_CELLS_AROUND_HALF = 6
 
 
-def half_circumference(bore: float, thickness: float) -> float:
-    """The height of the plate that becomes half a cylinder: measured at mid-wall."""
-    return float(np.pi) * (bore + thickness / 2.0)
+def heights(bore: float, thickness: float) -> tuple[float, ...]:
+    """Heights of the plate that must be levels of its mesh, so that the circle is round enough.
 
-
-def largest_cell(bore: float, thickness: float) -> float:
-    """The height of cells that make the circle round enough."""
-    return half_circumference(bore, thickness) / _CELLS_AROUND_HALF
+    The last one becomes half the circumference, measured at mid-wall.
+    """
+    top = np.pi * (bore + thickness / 2.0)
+    return tuple((top * np.arange(1, _CELLS_AROUND_HALF + 1) / _CELLS_AROUND_HALF).tolist())
 
 
 def bent(plate: Lattice, bore: float, thickness: float) -> Lattice:
@@ -28,7 +27,7 @@ def bent(plate: Lattice, bore: float, thickness: float) -> Lattice:
     keep their shape; further on, all radii come to share their angles.  bore > thickness / 2.
     """
     x, y, z = plate.points.T
-    height = half_circumference(bore, thickness)
+    height = heights(bore, thickness)[-1]
     radius, mean = bore + y, bore + thickness / 2.0
     far = z / height
     angle = z * ((1.0 - far) / radius + far / mean)

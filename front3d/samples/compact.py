@@ -11,7 +11,7 @@ import numpy as np
 
 from front3d.arrays import BoolArray, FloatArray
 from front3d.samples.cells import cracked_solid
-from front3d.samples.hole import with_hole
+from front3d.samples.holed_grid import with_hole
 from front3d.samples.mirror import Unfolded
 from front3d.samples.plates import free_sides_parameter, growth_for, hold, layers, tube_for
 from front3d.samples.sample import (

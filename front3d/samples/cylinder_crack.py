@@ -6,7 +6,7 @@ import numpy as np
 
 from front3d.arrays import BoolArray, FloatArray
 from front3d.errors import CaseError
-from front3d.samples.bent import bent, half_circumference, largest_cell
+from front3d.samples.bent import bent, heights
 from front3d.samples.cells import cracked_solid
 from front3d.samples.ellipse import smallest_radius
 from front3d.samples.fineness import density
@@ -57,7 +57,7 @@ def _mesh(values: Values, cells: str) -> Unfolded:
     radius = min(0.25 * a, 0.25 * c, 0.5 * smallest_radius(a, c), 0.4 * (t - a))
     shape = Quarter(a, c, radius, width=values["half_height"], depth=t)
     fine = density(cells, values["refine"], max(a, c) / min(a, c), closed=False)
-    plate = octant(shape, fine, half_circumference(bore, t), largest_cell(bore, t))
+    plate = octant(shape, fine, *heights(bore, t))
     return cracked_solid(bent(plate, bore, t), (0,), cells, _NAME)
 
 

@@ -35,18 +35,6 @@ def fractions(length: FloatArray | float, first: float, cells: int) -> FloatArra
     return with_middles(ends)
 
 
-def capped(length: float, first: float, growth: float, largest: float) -> FloatArray:
-    """The same for one length, (2 cells + 1,), with cells that stop growing at `largest`.
-
-    All are shrunk a little together, so that they fill the length.
-    """
-    sizes = [min(first, largest)]
-    while sum(sizes) < length:
-        sizes.append(min(sizes[-1] * growth, largest))
-    ends = np.concatenate([[0.0], np.cumsum(sizes)]) / sum(sizes)
-    return with_middles(ends[None])[0]
-
-
 def with_middles(ends: FloatArray) -> FloatArray:
     """(n, m) end positions -> (n, 2 m - 1) with their midpoints between."""
     out = np.empty((len(ends), 2 * ends.shape[1] - 1))

@@ -9,37 +9,33 @@ from front3d.samples.lattice import Block, Lattice, unite
 from front3d.samples.sheet import Density, Patch, Quarter, quarter_sheet
 
 
-def octant(
-    shape: Quarter, density: Density, height: float, largest: float | None = None
-) -> Lattice:
-    """Lattice of 0 <= z <= height above a quarter crack plane.
+def octant(shape: Quarter, density: Density, *heights: float) -> Lattice:
+    """Lattice of 0 <= z <= the last of `heights` above a quarter crack plane; each is a level.
 
     The patches are drawn up along z; those next to the front start above the tube, whose
-    cross-section takes their place below.  No cell is higher than `largest`.
+    cross-section takes their place below.
     """
-    levels, low = _levels(shape, density, height, largest)
+    levels, low = _levels(shape, density, heights)
     blocks = [
         _drawn(p, levels[low if p.in_tube else 0 :], p.inside == shape.outside)
         for p in quarter_sheet(shape, density)
     ]
     blocks += _tube_blocks(shape, density)
-    return unite(blocks, 1e-9 * max(shape.width, shape.depth, height))
+    return unite(blocks, 1e-9 * max(shape.width, shape.depth, *heights))
 
 
-def _levels(
-    shape: Quarter, density: Density, height: float, largest: float | None
-) -> tuple[FloatArray, int]:
+def _levels(shape: Quarter, density: Density, heights: tuple[float, ...]) -> tuple[FloatArray, int]:
     """Node heights, and the index of the top of the tube."""
     inside = shape.radius * density.tube.side
-    rest = height - shape.radius
-    first = float(inside[-1] - inside[-3])
-    if largest is None:
+    levels = inside
+    for height in heights:
+        rest = height - levels[-1]
+        first = float(levels[-1] - levels[-3])
         cells = grading.count(rest, first, density.growth)
-        part = grading.fractions(rest, first, cells)[0]
-    else:
-        part = grading.capped(rest, first, density.growth, largest)
-    above = shape.radius + rest * part
-    return np.concatenate([inside, above[1:]]), len(inside) - 1
+        above = levels[-1] + rest * grading.fractions(rest, first, cells)[0]
+        above[-1] = height
+        levels = np.concatenate([levels, above[1:]])
+    return levels, len(inside) - 1
 
 
 def _drawn(patch: Patch, levels: FloatArray, ligament: bool) -> Block:

@@ -10,6 +10,7 @@ from front3d.arrays import BoolArray, FloatArray
 from front3d.errors import CaseError
 from front3d.samples.elasticity import Traction
 from front3d.samples.mirror import Unfolded
+from front3d.samples.parts import Parts
 from front3d.solid import Material, Solid
 
 Values = dict[str, float]
@@ -116,6 +117,7 @@ class SampleSpec:
     held : (values, points of the part (n, 3)) -> (n, 3) components kept from moving, besides those
         that symmetry holds
     options : values -> the options that an evaluation of the sample needs
+    parts : parts that the sample may be reduced to, beside the whole
     """
 
     name: str
@@ -124,6 +126,7 @@ class SampleSpec:
     complete: Callable[[Mapping[str, float | None]], Values]
     mesh: Callable[[Values, str], Unfolded]
     loads: Callable[[Values], tuple[Load, ...]]
+    parts: Parts = field(default_factory=dict)
     held: Callable[[Values, FloatArray], BoolArray] = nothing_held
     options: Callable[[Values], Mapping[str, object]] = no_options
 
