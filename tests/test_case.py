@@ -105,7 +105,7 @@ def test_a_case_written_down_reads_back_as_itself(tmp_path: Path) -> None:
     path = tmp_path / "again.toml"
     for case in (
         read_case(write(tmp_path, FULL)),
-        Case(result=Path("a \\"strange\\" name.vtu"), young=1e5, poisson=0.1 + 0.2),
+        Case(result=Path('a "strange" name.vtu'), young=1e5, poisson=0.1 + 0.2),
         Case(result=Path("b.vtu"), crack_plane=Plane.parse("1,0.1,-3=0.7"), rings=(1e-7, 2.0)),
     ):
         path.write_text(as_toml(case), encoding="utf-8")

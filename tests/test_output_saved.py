@@ -38,7 +38,17 @@ def test_everything_reads_back(tmp_path: Path) -> None:
     assert (found.material, found.warnings) == (SEVERAL.material, SEVERAL.warnings)
     assert saved.files == ("points.csv",)
     for back, front in zip(found.fronts, SEVERAL.fronts, strict=True):
-        for name in ("step", "front", "closed", "ends", "length", "flags", "warnings"):
+        for name in (
+            "step",
+            "front",
+            "closed",
+            "ends",
+            "length",
+            "flags",
+            "warnings",
+            "sources",
+            "notes",
+        ):
             assert getattr(back, name) == getattr(front, name), name
         for name in ("s", "positions", "frames", "K", "G"):
             assert np.array_equal(getattr(back, name), getattr(front, name)), name
@@ -95,5 +105,5 @@ def test_what_is_missing_or_broken_is_said(tmp_path: Path) -> None:
             read_saved(folder)
     (folder / "points.csv").unlink()
     (folder / "summary.json").write_text(json.dumps(about))
-    with pytest.raises(ReadError, match="points.csv: cannot be read"):
+    with pytest.raises(ReadError, match=r"points\.csv: cannot be read"):
         read_saved(folder)

@@ -11,6 +11,7 @@ import numpy as np
 
 from front3d.arrays import FloatArray
 from front3d.errors import Front3DError, ReadError
+from front3d.evidence import REPORTED
 from front3d.results import MODES, Comparison, Evaluation, FrontResult, MethodResult, Rings
 from front3d.solid import Material
 from front3d.units import Units
@@ -65,7 +66,7 @@ def read_saved(folder: Path) -> Saved:
             summary["options"],
             tuple(summary["warnings"]),
         )
-    except (KeyError, TypeError, ValueError, IndexError) as error:
+    except (KeyError, AttributeError, TypeError, ValueError, IndexError) as error:
         raise ReadError(
             f"{folder}: points.csv or summary.json lacks something that an evaluation writes "
             f"({type(error).__name__}: {error}); evaluate again into this folder"
@@ -117,8 +118,9 @@ def _front(about: Mapping[str, Any], rows: Rows, folder: Path) -> FrontResult:
             _modes(rows, f"_{name}"),
             interaction if name == "interaction" else {},
             _rings(rows) if name == "interaction" else None,
+            variant,
         )
-        for name in about["methods"]
+        for name, variant in about["methods"].items()
     }
     frames = np.stack(
         [[_column(rows, f"e{i}{axis}") for axis in "xyz"] for i in (1, 2, 3)]
@@ -137,7 +139,9 @@ def _front(about: Mapping[str, Any], rows: Rows, folder: Path) -> FrontResult:
             G=_column(rows, "G"),
             flags=tuple(row["flag"] for row in rows),
             methods=methods,
+            sources=tuple(row.get("K_from") or REPORTED for row in rows),
             warnings=tuple(about["warnings"]),
+            notes=tuple(about["notes"]),
             comparisons=tuple(_comparison(c, rows) for c in about.get("comparisons", ())),
         )
     except Front3DError as error:
@@ -145,10 +149,11 @@ def _front(about: Mapping[str, Any], rows: Rows, folder: Path) -> FrontResult:
 
 
 def _rings(rows: Rows) -> Rings | None:
-    count = sum(name.startswith("radius_ring_") for name in rows[0])
-    if not count:
+    # The table has as many columns as the front with most rings: the others are empty here.
+    columns = sum(name.startswith("radius_ring_") for name in rows[0])
+    numbers = [n for n in range(1, columns + 1) if rows[0][f"radius_ring_{n}"] != "nan"]
+    if not numbers:
         return None
-    numbers = range(1, count + 1)
     return Rings(
         np.stack([_column(rows, f"radius_ring_{ring}") for ring in numbers]),
         np.stack([_modes(rows, f"_ring_{ring}") for ring in numbers]),
