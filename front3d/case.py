@@ -20,6 +20,7 @@ hat = 4
 up = [0, 0, 1]
 steps = ["tension"]
 methods = ["closure"]
+compare = ["penny:a=10,tension=100"]
 unopened = false
 ```
 """
@@ -55,6 +56,7 @@ class Case:
     up: Vector | None = None
     steps: tuple[str, ...] | None = None
     methods: tuple[str, ...] | None = None
+    compare: tuple[str, ...] | None = None
     unopened: bool | None = None
     source: Path | None = field(default=None, compare=False)
 
@@ -79,6 +81,7 @@ class Case:
             steps=self.steps,
             unopened=bool(self.unopened),
             methods=self.methods,
+            compare=self.compare or (),
         )
 
     @property
@@ -203,6 +206,7 @@ _KEYS: Mapping[str, Any] = {
         "up": _vector,
         "steps": _list_of(_text, 'a list of step names such as ["step 1"]'),
         "methods": _list_of(_text, 'a list of method names such as ["closure"]'),
+        "compare": _list_of(_text, 'a list of texts such as ["penny:a=10,tension=100"]'),
         "unopened": _boolean,
     },
 }

@@ -56,6 +56,8 @@ class Options:
     unopened : evaluate coincident faces that never part in any step, too
     methods : the methods beside the interaction integral, which is always applied; None takes all
         that apply
+    compare : published solutions to put beside the fronts, as front3d.handbook.catalogue reads
+        them, such as "penny:a=10,tension=100"
     """
 
     crack_plane: Plane | None = None
@@ -66,10 +68,11 @@ class Options:
     steps: tuple[str, ...] | None = None
     unopened: bool = False
     methods: tuple[str, ...] | None = None
+    compare: tuple[str, ...] = ()
 
     @classmethod
     def from_words(cls, **words: Any) -> "Options":
-        """Options as a person writes them: a plane as "z=0", a single radius, step or method."""
+        """Options as a person writes them: a plane as "z=0", a single radius, step, method, ..."""
         known = [field.name for field in fields(cls)]
         for name in words:
             if name not in known:
@@ -78,7 +81,7 @@ class Options:
             words["crack_plane"] = Plane.parse(plane)
         if isinstance(radius := words.get("radii"), int | float):
             words["radii"] = (float(radius),)
-        for name in ("steps", "methods"):
+        for name in ("steps", "methods", "compare"):
             if isinstance(words.get(name), str):
                 words[name] = (words[name],)
         return cls(**words)

@@ -16,7 +16,7 @@ if TYPE_CHECKING:
 
 def add_flags(parser: argparse.ArgumentParser) -> None:
     """A parser per sample, with a flag per parameter, from the registry."""
-    from front3d.samples import CELL_KINDS, SAMPLES
+    from front3d.samples import CELL_KINDS, SAMPLES, WHOLE
 
     parser.add_argument("--list", action="store_true", help="list the samples and end")
     names = parser.add_subparsers(title="samples", metavar="NAME", dest="name")
@@ -31,6 +31,14 @@ def add_flags(parser: argparse.ArgumentParser) -> None:
         sample.add_argument(
             "--cells", choices=CELL_KINDS, default=CELL_KINDS[0], help="default: %(default)s"
         )
+        if spec.parts:
+            sample.add_argument(
+                "--part",
+                choices=(WHOLE, *spec.parts),
+                default=WHOLE,
+                help="the whole solid, or a part that ends at symmetry planes; "
+                "default: %(default)s",
+            )
         for parameter, about in spec.parameters.items():
             unit = f" [{about.unit}]" if about.unit else ""
             default = "" if about.default is None else f" (default: {number(about.default)})"
@@ -44,7 +52,7 @@ def add_flags(parser: argparse.ArgumentParser) -> None:
 
 
 def run(arguments: argparse.Namespace) -> int:
-    from front3d.samples import SAMPLES
+    from front3d.samples import SAMPLES, WHOLE
 
     if arguments.list or arguments.name is None:
         print("\n".join(_listing(SAMPLES)))
@@ -58,19 +66,22 @@ def run(arguments: argparse.Namespace) -> int:
         SAMPLES[arguments.name].values(given)
     except CaseError as error:
         arguments.parser.error(str(error))
-    solid, case = write(arguments.name, arguments.cells, given, arguments.out)
+    part = getattr(arguments, "part", WHOLE)
+    solid, case = write(arguments.name, arguments.cells, given, arguments.out, part)
     print(f"written: {solid}, {case}\nnext: front3d evaluate {case}")
     return 0
 
 
-def write(name: str, cells: str, given: dict[str, float], out: Path) -> tuple[Path, Path]:
+def write(
+    name: str, cells: str, given: dict[str, float], out: Path, part: str = "full"
+) -> tuple[Path, Path]:
     """Build, solve and write a sample; say what it is; its result and case files."""
     from front3d.output.files import prepare_folder
     from front3d.samples import build, write_sample
 
     prepare_folder(out)
     with progress_bar() as progress:
-        sample = build(name, cells=cells, progress=progress, **given)
+        sample = build(name, cells=cells, part=part, progress=progress, **given)
         solid, case = write_sample(sample, out)
     print(sample.description)
     return solid, case

@@ -15,8 +15,9 @@ import numpy as np
 
 from front3d import __version__
 from front3d.errors import ReadError
+from front3d.output.deviation import deviation
 from front3d.output.trust import agreement, rings_of
-from front3d.results import CAUTION, MODES, Evaluation, FrontResult
+from front3d.results import CAUTION, MODES, Comparison, Evaluation, FrontResult
 from front3d.units import Units
 
 LIBRARIES = ("numpy", "scipy", "numba", "meshio", "pyvista", "vtk", "matplotlib", "h5py")
@@ -86,9 +87,37 @@ def front_summary(front: FrontResult, units: Units) -> dict[str, Any]:
         "methods": {name: method.variant for name, method in front.methods.items()},
         "K_from": {name: front.sources.count(name) for name in dict.fromkeys(front.sources)},
         "method_difference_over_largest_K": trust.methods,
+        "comparisons": [compared(front, one) for one in front.comparisons],
         "flagged_stations": sum(bool(flag) for flag in front.flags),
         "warnings": list(front.warnings),
         "notes": list(front.notes),
+    }
+
+
+def compared(front: FrontResult, comparison: Comparison) -> dict[str, Any]:
+    """A published solution: what it is, and how far K is from it at the stations judged."""
+    found = deviation(front, comparison)
+    worst = None
+    if found.judged:
+        i = found.station
+        worst = {
+            "percent": found.worst,
+            "mode": found.mode,
+            "station": i,
+            "phi_deg": float(comparison.angle[i]),
+            "position": front.positions[i].tolist(),
+        }
+    return {
+        "solution": comparison.solution,
+        "arguments": dict(comparison.arguments),
+        "source": comparison.source,
+        "claim": comparison.claim,
+        "deviation_of": "K less the solution, in per cent of the solution's largest K of the front",
+        "worst": worst,
+        "mean_percent": found.mean,
+        "mean_with_sign_percent": found.balance,
+        "stations_judged": found.judged,
+        "notes": list(comparison.notes),
     }
 
 

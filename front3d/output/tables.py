@@ -9,6 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from front3d.mixing import mix_columns
+from front3d.output.deviation import deviation
 from front3d.output.trust import rings_of
 from front3d.results import MODES, Evaluation, FrontResult, Rings
 from front3d.solid import Material
@@ -50,6 +51,7 @@ def front_columns(front: FrontResult, units: Units, material: Material) -> dict[
         spread = front.method_spread
         columns |= {f"{mode}_method_spread": spread[:, k] for k, mode in enumerate(MODES)}
         columns["K_from"] = np.array(front.sources, dtype=str)
+    columns |= _comparison_columns(front)
     columns["psi_deg"], columns["mode_III_deg"] = front.mode_angles.T
     columns |= mix_columns(front.K, material)
     for i, vector in enumerate(("e1", "e2", "e3")):
@@ -71,10 +73,27 @@ def _ring_columns(rings: Rings) -> dict[str, Column]:
     return columns
 
 
+def _comparison_columns(front: FrontResult) -> dict[str, Column]:
+    """The angle on the ellipse, then K of each published solution and the deviation from it."""
+    columns: dict[str, Column] = {}
+    angles = [c.angle for c in front.comparisons if np.isfinite(c.angle).any()]
+    if angles:
+        columns["phi_deg"] = angles[0]
+    for comparison in front.comparisons:
+        percent = deviation(front, comparison).percent
+        for k, mode in enumerate(MODES):
+            if np.isfinite(comparison.K[:, k]).any():
+                name = f"{mode}_{comparison.solution}"
+                columns[name] = comparison.K[:, k]
+                columns[f"{name}_deviation_pct"] = percent[:, k]
+    return columns
+
+
 def all_columns(evaluation: Evaluation) -> dict[str, Column]:
     """The columns of all fronts and steps, one below the other.
 
-    A method that was applied to some fronts only has nan for the stations of the others.
+    A method that was applied to some fronts only, and a solution that suits some only, has nan for
+    the stations of the others.
     """
     units, material = evaluation.units, evaluation.material
     tables = [front_columns(front, units, material) for front in evaluation.fronts]

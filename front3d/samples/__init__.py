@@ -2,12 +2,14 @@
 
 from front3d.samples.building import SAMPLES, build, sample_spec
 from front3d.samples.cells import CELL_KINDS
+from front3d.samples.parts import WHOLE
 from front3d.samples.sample import Parameter, Sample, SampleSpec
 from front3d.samples.writing import write_sample
 
 __all__ = [
     "CELL_KINDS",
     "SAMPLES",
+    "WHOLE",
     "Parameter",
     "Sample",
     "SampleSpec",

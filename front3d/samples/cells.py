@@ -4,6 +4,7 @@ from typing import Literal, get_args
 
 import numpy as np
 
+from front3d.arrays import BoolArray
 from front3d.elements import ELEMENTS
 from front3d.errors import CaseError
 from front3d.samples.lattice import Lattice
@@ -43,6 +44,24 @@ def cracked_solid(lattice: Lattice, axes: tuple[int, ...], cells: str, name: str
     In z = 0 the two halves share the joined nodes only.  The nodes of the crack faces stay
     double, and their cells match, because one half is an image of the other.
     """
+    part, joined = _part(lattice, cells, name)
+    sides = [Plane(axis, part.points[:, axis] == 0.0) for axis in axes]
+    return unfold(part, (*sides, Plane(2, joined)), name)
+
+
+def half_cracked_solid(lattice: Lattice, cells: str, name: str) -> Unfolded:
+    """As `cracked_solid` with the axis 0, but the side x < 0 has no crack.
+
+    It is symmetric about z = 0 only: its part has both sides.
+    """
+    quarter, joined = _part(lattice, cells, name)
+    model = unfold(quarter, (Plane(0, quarter.points[:, 0] == 0.0),), name)
+    x, _, z = model.solid.points.T
+    return unfold(model.solid, (Plane(2, (z == 0.0) & (joined[model.source] | (x < 0.0))),), name)
+
+
+def _part(lattice: Lattice, cells: str, name: str) -> tuple[Solid, BoolArray]:
+    """Cells on the nodes they use, and which of these are joined."""
     blocks = cut(lattice, cells)
     used = np.zeros(len(lattice.points), dtype=bool)
     for block in blocks:
@@ -53,5 +72,4 @@ def cracked_solid(lattice: Lattice, axes: tuple[int, ...], cells: str, name: str
         tuple(CellBlock(b.kind, number[b.nodes]) for b in blocks),
         source=name,
     )
-    sides = [Plane(axis, part.points[:, axis] == 0.0) for axis in axes]
-    return unfold(part, (*sides, Plane(2, lattice.joined[used])), name)
+    return part, lattice.joined[used]

@@ -1,4 +1,4 @@
-"""An elliptical crack in the middle of a large cube, under tension and shear."""
+"""An elliptical crack in the middle of a large block, or of a plate, under tension and shear."""
 
 from collections.abc import Mapping
 
@@ -9,6 +9,7 @@ from front3d.samples.ellipse import smallest_radius
 from front3d.samples.fineness import density
 from front3d.samples.mirror import Unfolded
 from front3d.samples.octant import octant
+from front3d.samples.parts import INNER_PARTS
 from front3d.samples.sample import (
     Load,
     Parameter,
@@ -29,7 +30,11 @@ _PARAMETERS = {
     "semi_x": Parameter("semi-axis of the crack along x, c", 10.0, 1e-9, 1e9, "length"),
     "semi_y": Parameter("semi-axis along y, a", 5.0, 1e-9, 1e9, "length"),
     "body": Parameter(
-        "half the edge of the cube (default 10 times the larger semi-axis)",
+        "half the edge of the block along x and z (default 10 times the larger semi-axis)",
+        None, 1e-9, 1e10, "length",
+    ),
+    "thickness": Parameter(
+        "whole extent along y, of a plate with the crack in its middle (default twice `body`)",
         None, 1e-9, 1e10, "length",
     ),
     "tension": Parameter("stress s_zz", 100.0, -1e12, 1e12, "stress"),
@@ -43,15 +48,18 @@ def _complete(given: Mapping[str, float | None]) -> Values:
     values = {k: v for k, v in given.items() if v is not None}
     c, a = required(given, "semi_x"), required(given, "semi_y")
     values.setdefault("body", 10.0 * max(a, c))
+    values.setdefault("thickness", 2.0 * values["body"])
     check_ratio(_NAME, "semi_y / semi_x", a / c, 0.2, 5.0)
     check_ratio(_NAME, "body / larger semi-axis", values["body"] / max(a, c), 2.0, 50.0)
+    check_ratio(_NAME, "2 semi_y / thickness", 2.0 * a / values["thickness"], 0.02, 0.8)
     return values
 
 
 def _mesh(values: Values, cells: str) -> Unfolded:
     c, a, body = values["semi_x"], values["semi_y"], values["body"]
-    radius = min(0.25 * a, 0.25 * c, 0.5 * smallest_radius(a, c))
-    shape = Quarter(a, c, radius, width=body, depth=body)
+    depth = values["thickness"] / 2.0
+    radius = min(0.25 * a, 0.25 * c, 0.5 * smallest_radius(a, c), 0.4 * (depth - a))
+    shape = Quarter(a, c, radius, width=body, depth=depth)
     fine = density(cells, values["refine"], max(a, c) / min(a, c), closed=True)
     return cracked_solid(octant(shape, fine, body), (0, 1), cells, _NAME)
 
@@ -67,9 +75,10 @@ def _loads(values: Values) -> tuple[Load, ...]:
 
 EMBEDDED_ELLIPSE = SampleSpec(
     _NAME,
-    "elliptical crack in a large cube, one step for each of tension and shear that is not zero",
+    "elliptical crack in a large block or plate, one step for each of tension and shear not zero",
     _PARAMETERS,
     _complete,
     _mesh,
     _loads,
+    INNER_PARTS,
 )

@@ -9,6 +9,7 @@ from front3d.samples.cells import cracked_solid
 from front3d.samples.fineness import density
 from front3d.samples.mirror import Unfolded
 from front3d.samples.octant import octant
+from front3d.samples.parts import PENNY_PARTS
 from front3d.samples.sample import (
     Load,
     Parameter,
@@ -65,4 +66,5 @@ PENNY = SampleSpec(
     _complete,
     _mesh,
     _loads,
+    PENNY_PARTS,
 )

@@ -10,6 +10,7 @@ from front3d.arrays import BoolArray, FloatArray
 from front3d.errors import CaseError
 from front3d.samples.elasticity import Traction
 from front3d.samples.mirror import Unfolded
+from front3d.samples.parts import Parts
 from front3d.solid import Material, Solid
 
 Values = dict[str, float]
@@ -91,6 +92,16 @@ class Load:
     on: Callable[[FloatArray], BoolArray]
 
 
+def nothing_held(values: Values, points: FloatArray) -> BoolArray:
+    """No displacement is held, (n, 3)."""
+    return np.zeros(points.shape, dtype=bool)
+
+
+def no_options(values: Values) -> Mapping[str, object]:
+    """The defaults of an evaluation suit the sample."""
+    return {}
+
+
 @dataclass(frozen=True, slots=True)
 class SampleSpec:
     """An entry of the registry.
@@ -101,7 +112,11 @@ class SampleSpec:
     parameters : by name
     complete : fills the parameters whose default is None, and checks ratios between them
     mesh : (values, cells) -> solid without steps, and the part it is unfolded from
-    loads : values -> one or more loads, each in equilibrium
+    loads : values -> one or more loads, each in equilibrium or carried by what is held
+    held : (values, points of the part (n, 3)) -> (n, 3) components kept from moving, besides those
+        that symmetry holds
+    options : values -> the options that an evaluation of the sample needs
+    parts : parts that the sample may be reduced to, beside the whole
     """
 
     name: str
@@ -110,6 +125,9 @@ class SampleSpec:
     complete: Callable[[Mapping[str, float | None]], Values]
     mesh: Callable[[Values, str], Unfolded]
     loads: Callable[[Values], tuple[Load, ...]]
+    parts: Parts = field(default_factory=dict)
+    held: Callable[[Values, FloatArray], BoolArray] = nothing_held
+    options: Callable[[Values], Mapping[str, object]] = no_options
 
     def values(self, given: Mapping[str, float]) -> Values:
         """All parameters, checked; CaseError for an unknown name or a bad value."""

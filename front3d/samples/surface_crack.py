@@ -2,20 +2,18 @@
 
 from collections.abc import Mapping
 
-import numpy as np
-
-from front3d.arrays import BoolArray, FloatArray
 from front3d.samples.cells import cracked_solid
 from front3d.samples.ellipse import smallest_radius
 from front3d.samples.fineness import density
 from front3d.samples.mirror import Unfolded
 from front3d.samples.octant import octant
+from front3d.samples.parts import SURFACE_PARTS
+from front3d.samples.plate_loads import ends, load_parameters, plate_loads
 from front3d.samples.sample import (
     Load,
     Parameter,
     SampleSpec,
     Values,
-    acting,
     check_ratio,
     common_parameters,
     required,
@@ -32,10 +30,7 @@ _PARAMETERS = {
     "half_height": Parameter(
         "half of its height (default the half width)", None, 1e-9, 1e10, "length"
     ),
-    "tension": Parameter("remote tension, step 1", 100.0, -1e12, 1e12, "stress"),
-    "bending": Parameter(
-        "remote bending stress at the cracked surface, step 2", 100.0, -1e12, 1e12, "stress"
-    ),
+    **load_parameters(),
     **common_parameters(),
 }
 
@@ -64,25 +59,7 @@ def _mesh(values: Values, cells: str) -> Unfolded:
 
 
 def _loads(values: Values) -> tuple[Load, ...]:
-    height, t = values["half_height"], values["thickness"]
-
-    def ends(faces: FloatArray) -> BoolArray:
-        gap: FloatArray = np.abs(np.abs(faces[:, :, 2]) - height).max(axis=1)
-        return gap < 1e-9 * height
-
-    def tension(points: FloatArray, normals: FloatArray) -> FloatArray:
-        return values["tension"] * normals
-
-    def bending(points: FloatArray, normals: FloatArray) -> FloatArray:
-        return values["bending"] * (1.0 - 2.0 * points[:, 1:2] / t) * normals
-
-    return acting(
-        "surface-crack",
-        {
-            "tension": (values["tension"], Load("tension", tension, ends)),
-            "bending": (values["bending"], Load("bending", bending, ends)),
-        },
-    )
+    return plate_loads("surface-crack", values, ends(values["half_height"]))
 
 
 SURFACE_CRACK = SampleSpec(
@@ -92,4 +69,5 @@ SURFACE_CRACK = SampleSpec(
     _complete,
     _mesh,
     _loads,
+    SURFACE_PARTS,
 )
