@@ -149,10 +149,11 @@ def _front(about: Mapping[str, Any], rows: Rows, folder: Path) -> FrontResult:
 
 
 def _rings(rows: Rows) -> Rings | None:
-    count = sum(name.startswith("radius_ring_") for name in rows[0])
-    if not count:
+    # The table has as many columns as the front with most rings: the others are empty here.
+    columns = sum(name.startswith("radius_ring_") for name in rows[0])
+    numbers = [n for n in range(1, columns + 1) if rows[0][f"radius_ring_{n}"] != "nan"]
+    if not numbers:
         return None
-    numbers = range(1, count + 1)
     return Rings(
         np.stack([_column(rows, f"radius_ring_{ring}") for ring in numbers]),
         np.stack([_modes(rows, f"_ring_{ring}") for ring in numbers]),

@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 
 from front3d.arrays import FloatArray
-from front3d.results import CAUTION, FrontResult
+from front3d.results import CAUTION, FrontResult, free_surface_layer
 from front3d.units import Units
 
 if TYPE_CHECKING:
@@ -171,20 +171,14 @@ def widen(low: float, high: float, least: float) -> tuple[float, float]:
 
 
 def layer_lengths(front: FrontResult) -> tuple[float, float]:
-    """Arc lengths of the free-surface layers at the start and the end of a front; 0 elsewhere.
-
-    One half-width of the end station's weight: stations inside share their K with the surface
-    point, where none exists in the strict sense.  Without weights, the first cell.
+    """Arc lengths from the start and from the end of a front up to the last station at which a free
+    surface is felt; 0 at other ends.
     """
-    from front3d.crack.front import FREE_SURFACE
-
-    columns = front.methods["interaction"].columns if "interaction" in front.methods else {}
-    widths = columns.get("hat_interaction")
-    gaps = np.diff(front.s)
+    if front.closed:
+        return 0.0, 0.0
     found = []
-    for end, gap in zip((0, -1), (0, -1), strict=True):
-        if front.closed or not front.ends or front.ends[end] != FREE_SURFACE or not len(gaps):
-            found.append(0.0)
-        else:
-            found.append(float(gaps[gap] if widths is None else widths[end]))
+    for end, reach in ((0, front.s), (1, front.length - front.s)):
+        ends = tuple(name if i == end else "" for i, name in enumerate(front.ends))
+        layer = free_surface_layer(front.s, front.length, ends)
+        found.append(float(reach[layer].max(initial=0.0)))
     return found[0], found[1]
