@@ -117,6 +117,7 @@ def compared(front: FrontResult, comparison: Comparison) -> dict[str, Any]:
         "mean_percent": found.mean,
         "mean_with_sign_percent": found.balance,
         "stations_judged": found.judged,
+        "stations_left_out": np.flatnonzero(~comparison.judged).tolist(),
         "notes": list(comparison.notes),
     }
 
