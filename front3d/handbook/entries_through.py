@@ -31,7 +31,7 @@ def _place(values: Values, shape: FrontShape) -> Placed:
 
 
 def _unseen(values: Values) -> tuple[str, ...]:
-    return (_UNSEEN, "a plane-strain or plane-stress value: K falls off at free side faces")
+    return (_UNSEEN,)
 
 
 def _averaged(values: Values) -> tuple[str, ...]:
