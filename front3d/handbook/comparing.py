@@ -106,6 +106,7 @@ def compare(request: Request, shape: FrontShape, poisson: float) -> Comparison:
         angle=np.degrees(placed.phi),
         notes=tuple(notes),
         judged=placed.judged,
+        average=solution.average,
     )
 
 
