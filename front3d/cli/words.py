@@ -127,7 +127,7 @@ def describe_comparison(front: "FrontResult", comparison: "Comparison") -> list[
         f"{found.mean:.2f} %, {found.judged} of {len(front)} stations",
     ]
     if found.average is not None:
-        lines.append(f"    average over the front {found.average:+.2f} %, which is what it gives")
+        lines.append(f"    root mean square over the whole front {found.average:+.2f} %")
     return lines
 
 

@@ -21,8 +21,8 @@ class Deviation:
     balance : per mode given, its mean with the sign, each station weighted by its share of the
         front: near zero where K only scatters about the solution
     judged : number of stations judged
-    average : root mean square of K_I over the whole front, which is what the average J gives, less
-        the solution; None where the solution is not an average
+    average : root mean square of K_I over the whole front, as from the average J, less the
+        solution, in per cent; None where the solution is not an average
     """
 
     percent: FloatArray
