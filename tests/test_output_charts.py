@@ -348,6 +348,14 @@ def test_svg_is_a_picture_that_is_the_same_in_every_run() -> None:
     assert len(root.findall(".//{http://www.w3.org/2000/svg}path")) > 30
 
 
+@pytest.mark.slow
+def test_both_formats_have_the_same_layout() -> None:
+    figure = along_front(BUSY, MILLIMETRES)
+    png(figure)
+    after = svg(figure)
+    assert after == svg(along_front(BUSY, MILLIMETRES))
+
+
 def test_names_from_files_are_shown_as_they_are() -> None:
     assert mathtext("MPa sqrt(mm)") == r"MPa $\sqrt{\mathrm{mm}}$"
     assert plain_text("cost in $\nper $x") == r"cost in \$ per \$x"

@@ -64,6 +64,7 @@ def new_figure(height: float, title: str, captions: Sequence[str], legend_rows: 
 def png(figure: "Figure") -> bytes:
     """PNG, 1200 pixels wide, legible at half that width."""
     out = io.BytesIO()
+    _settle(figure)
     figure.savefig(out, format="png")
     return out.getvalue()
 
@@ -73,9 +74,17 @@ def svg(figure: "Figure") -> bytes:
     from matplotlib import rc_context
 
     out = io.BytesIO()
+    _settle(figure)
     with rc_context({"svg.fonttype": "path", "svg.hashsalt": "front3d"}):
         figure.savefig(out, format="svg", metadata={"Date": None})
     return out.getvalue()
+
+
+def _settle(figure: "Figure") -> None:
+    """Lay out once: a second time, for another format, the layout may fail, and would differ."""
+    if figure.get_layout_engine() is not None:
+        figure.draw_without_rendering()
+        figure.set_layout_engine("none")
 
 
 def dress(axes: "Axes") -> None:
