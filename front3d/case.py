@@ -15,6 +15,7 @@ stress = "MPa"
 [options]
 crack_plane = "z=0"             # half model
 face_pressure = 0.0
+surface_pressure = 0.0          # where a front ends
 rings = [0.4, 0.6, 0.8]
 hat = 4
 up = [0, 0, 1]
@@ -51,6 +52,7 @@ class Case:
     stress: str | None = None
     crack_plane: Plane | None = None
     face_pressure: float | None = None
+    surface_pressure: float | None = None
     rings: tuple[float, ...] | None = None
     hat: float | None = None
     up: Vector | None = None
@@ -75,6 +77,7 @@ class Case:
         return Options(
             crack_plane=self.crack_plane,
             face_pressure=self.face_pressure or 0.0,
+            surface_pressure=self.surface_pressure or 0.0,
             radii=self.rings,
             hat=self.hat,
             up=self.up,
@@ -201,6 +204,7 @@ _KEYS: Mapping[str, Any] = {
     "options": {
         "crack_plane": _plane,
         "face_pressure": _number,
+        "surface_pressure": _number,
         "rings": _list_of(_number, "a list of radii such as [0.2, 0.4]"),
         "hat": _number,
         "up": _vector,

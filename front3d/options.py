@@ -47,6 +47,7 @@ class Options:
     ----------
     crack_plane : symmetry plane that holds the crack, for a half model
     face_pressure : pressure on the crack faces, positive when it opens them
+    surface_pressure : pressure on the surface on which a front ends, positive when it pushes
     radii : outer radii of the rings; None takes them from the mesh
     hat : half-width, in cells along the front, of the weight of one station; None takes it from
         the mesh
@@ -62,6 +63,7 @@ class Options:
 
     crack_plane: Plane | None = None
     face_pressure: float = 0.0
+    surface_pressure: float = 0.0
     radii: tuple[float, ...] | None = None
     hat: float | None = None
     up: Vector | None = None
@@ -93,9 +95,10 @@ class Options:
             raise CaseError(f"ring radii: found {self.radii}, expected positive lengths")
         if self.hat is not None and not (isfinite(self.hat) and self.hat >= 1):
             raise CaseError(f"hat half-width: found {self.hat:g} cells, expected 1 or more")
-        if not isfinite(self.face_pressure):
-            raise CaseError(
-                f"face pressure: found {self.face_pressure}, expected a number in the stress unit"
-            )
+        for name in ("face_pressure", "surface_pressure"):
+            if not isfinite(value := getattr(self, name)):
+                raise CaseError(
+                    f"{name.replace('_', ' ')}: found {value}, expected a number in the stress unit"
+                )
         if self.up is not None and not any(self.up):
             raise CaseError("up: found a zero vector, expected a direction such as 0,0,1")

@@ -21,6 +21,7 @@ stress = "MPa"
 [options]
 crack_plane = "z = 2"
 face_pressure = 5
+surface_pressure = -2.5
 rings = [0.2, 0.4]
 hat = 3
 up = [0, 0, -1]
@@ -43,6 +44,7 @@ def test_every_key_arrives(tmp_path: Path) -> None:
     assert case.options == Options(
         crack_plane=Plane((0, 0, 1), 2.0),
         face_pressure=5.0,
+        surface_pressure=-2.5,
         radii=(0.2, 0.4),
         hat=3.0,
         up=(0.0, 0.0, -1.0),

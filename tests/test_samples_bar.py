@@ -6,6 +6,7 @@ import numpy as np
 import pytest
 
 from front3d.errors import CaseError
+from front3d.handbook.bars import round_bar_tension, round_bar_torsion
 from front3d.options import Options
 from front3d.pipeline import evaluate_solid
 from front3d.results import FrontResult
@@ -23,19 +24,9 @@ def fronts(ratio: float, cells: str = "bricks", **parameters: float) -> dict[str
 
 
 def published(x: float) -> tuple[float, float]:
-    """K_I in tension and K_III in torsion for a = x b.
-
-    Tada, Paris and Irwin (1985) pp. 27.1 and 27.3, after Benthem and Koiter (1973), as quoted by
-    Dowling, Fig. 8.14; claimed 1 %.  An axisymmetric finite-element check made for this project
-    found the first low by up to 2.9 % (x = 0.8, nu = 0.3) and 0.7 % at 0.3, the second high by up
-    to 1.9 % near x = 0.85 and 0.4 % at x = 0.5 (computed, not published).
-    """
+    """K_I in tension and K_III in torsion for a = x b: Tada, Paris and Irwin (1985)."""
     a = x * B
-    root = np.sqrt(1 - x) * np.sqrt(np.pi * a)
-    tension = 0.5 * (1 + x / 2 + 3 * x**2 / 8 - 0.363 * x**3 + 0.731 * x**4)
-    series = 1 + x / 2 + 3 * x**2 / 8 + 5 * x**3 / 16 + 35 * x**4 / 128 + 0.208 * x**5
-    net, shear = FORCE / (np.pi * a**2), 2 * TORQUE / (np.pi * a**3)
-    return float(net * root * tension), float(shear * root * 3 / 8 * series)
+    return float(round_bar_tension(FORCE, a, B)), float(round_bar_torsion(TORQUE, a, B))
 
 
 @pytest.mark.parametrize(("x", "cells"), [(0.2, "bricks"), (0.9, "bricks"), (0.5, "tetra10")])

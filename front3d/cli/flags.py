@@ -96,6 +96,12 @@ def add_evaluation_flags(parser: argparse.ArgumentParser) -> None:
         "--face-pressure", type=float, metavar="P", help="pressure on the crack faces, + opens"
     )
     parser.add_argument(
+        "--surface-pressure",
+        type=float,
+        metavar="P",
+        help="pressure on the surface on which the front ends, + pushes",
+    )
+    parser.add_argument(
         "--rings", type=numbers, metavar="R1,R2,..", help="radii of the integration domains"
     )
     parser.add_argument(

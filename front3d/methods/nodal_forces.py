@@ -24,9 +24,9 @@ N_MODES = 4
 Rule = tuple[FloatArray, FloatArray, FloatArray]
 """Shape functions (q, nodes), their reference gradients (q, nodes, 3), and weights (q,)."""
 
-FREE, PRESSED, CUT = 0, 1, 2
-"""What is known of a face: no traction; a crack face under a given pressure; or nothing, so that
-its traction is taken from the stresses."""
+OUTER, PRESSED, CUT = 0, 1, 2
+"""What is known of a face: an outer surface under a given pressure or none; a crack face under a
+given pressure; or nothing, so that its traction is taken from the stresses."""
 
 
 @kernel
@@ -291,9 +291,10 @@ def face_forces(
     `cells` are the cells that own the faces, all by the same local face; the rule holds the cell's
     own shape functions at the face's Gauss points; tangents (q, 3, 2) is the derivative of the
     cell's reference coordinates along the face's own two.
-    On a FREE face the traction is zero, so sigma^aux_ij n_j u_i,k - (sigma : eps^aux) n_k is
-    left; on a PRESSED crack face the auxiliary traction is zero and t_i u^aux_i,k is left, with
-    t = - pressure n; on a CUT all of P_kj n_j counts.  Fills out, (n, steps, N_MODES, nodes, 3).
+    Where the traction is known, t = - pressure n, t_i u^aux_i,k is counted with it.  On an OUTER
+    face sigma^aux_ij n_j u_i,k - (sigma : eps^aux) n_k comes with it; on a PRESSED crack face
+    the auxiliary traction is zero, and q lies in the face.  On a CUT all of P_kj n_j counts.
+    Fills out, (n, steps, N_MODES, nodes, 3).
     """
     shear, poisson, turn = constants
     lame = 2.0 * shear * poisson / (1.0 - 2.0 * poisson)
@@ -326,15 +327,15 @@ def face_forces(
                 energy = _hooke(H, lame, shear, stress)
                 for mode in range(N_MODES):
                     T[:] = 0.0
-                    if kind == PRESSED:
+                    if pressure != 0.0:
                         for k in range(3):
                             for i in range(3):
                                 moved = H[i, k] if mode == 3 else aux_gradient[mode, i, k]
                                 T[k] += pressure * area[i] * moved
-                    else:
+                    if kind != PRESSED:
                         mutual = energy if mode == 3 else _mutual_energy(aux_stress[mode], H)
                         for k in range(3):
-                            T[k] = mutual * area[k]
+                            T[k] += mutual * area[k]
                             for i in range(3):
                                 for j in range(3):
                                     if mode < 3:

@@ -82,7 +82,11 @@ def _loads(values: Values) -> tuple[Load, ...]:
 
 
 def _options(values: Values) -> Mapping[str, object]:
-    return {"face_pressure": values["face_pressure"]} if values["face_pressure"] else {}
+    pressures = {
+        "face_pressure": values["face_pressure"],
+        "surface_pressure": values["bore_pressure"],
+    }
+    return {name: pressure for name, pressure in pressures.items() if pressure}
 
 
 CYLINDER_CRACK = SampleSpec(
