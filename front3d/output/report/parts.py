@@ -1,5 +1,6 @@
 """The parts of a report; every figure in them is taken from the saved results."""
 
+import re
 from collections.abc import Mapping
 from typing import Any
 
@@ -25,7 +26,7 @@ def number(value: float, digits: int = _DIGITS) -> str:
 def percent(value: float | None) -> str:
     if value is None or not np.isfinite(value):
         return "no value"
-    return f"{100 * value:.2g} %"
+    return f"{100 * value:.2g}\N{NO-BREAK SPACE}%"
 
 
 def heading(saved: Saved) -> Markup:
@@ -59,9 +60,9 @@ def answer(saved: Saved) -> Markup:
         class_="answer",
     )
     rows = [_largest_row(f, mode, units) for f in fronts for mode in range(3)]
-    head = ["front", "step", "mode", f"largest [{units.K_label}]"]
+    head = ["front", "step", "mode", f"largest [{rooted(units.K_label)}]"]
     if units.K_factor is not None:
-        head.append("[MPa sqrt(m)]")
+        head.append(f"[{rooted('MPa sqrt(m)')}]")
     head += ["s/L", "place", "flag", "largest without a flag"]
     trust = [line for front in fronts for line in _trust_sentences(front, len(fronts) > 1)]
     return section(
@@ -76,10 +77,15 @@ def answer(saved: Saved) -> Markup:
 
 def with_units(K: float, units: Units) -> str:
     """K in the model's units, and in MPa sqrt(m) where they are named."""
-    text = f"{number(K)} {units.K_label}" if units.named else number(K)
+    text = f"{number(K)} {rooted(units.K_label)}" if units.named else number(K)
     if units.K_factor is not None and (units.length, units.stress) != ("m", "MPa"):
-        text += f" ({number(K * units.K_factor)} MPa sqrt(m))"
+        text += f" ({number(K * units.K_factor)} {rooted('MPa sqrt(m)')})"
     return text
+
+
+def rooted(unit: str) -> str:
+    """A unit of K with the root as a sign: MPa sqrt(mm) becomes MPa, root, mm."""
+    return re.sub(r"sqrt\((\w+)\)", "\N{SQUARE ROOT}\\1", unit)
 
 
 def _has_values(front: FrontResult) -> bool:
@@ -161,7 +167,7 @@ def question(saved: Saved) -> Markup:
         ),
         (
             "units",
-            f"length in {units.length}, stress in {units.stress}, K in {units.K_label}"
+            f"length in {units.length}, stress in {units.stress}, K in {rooted(units.K_label)}"
             if units.named
             else "not named: K in stress times the root of length, in the units of the file",
         ),
@@ -265,7 +271,7 @@ def mix(saved: Saved) -> Markup:
                 int(np.isnan(kink3).sum()),
             ]
         )
-    unit = f" [{units.K_label}]"
+    unit = f" [{rooted(units.K_label)}]"
     head = [
         "front, step",
         "kink, MTS [deg]",
@@ -311,7 +317,7 @@ def stations(saved: Saved) -> Markup:
         tag(
             "p",
             "K in ",
-            evaluation.units.K_label,
+            rooted(evaluation.units.K_label),
             ". The file points.csv has these figures with all digits, and more columns.",
             class_="small",
         )
