@@ -11,6 +11,7 @@ import pytest
 from front3d.cli import main
 from front3d.cli.words import describe_evaluation
 from front3d.output.deviation import deviation
+from front3d.output.saved import read_saved
 from front3d.output.summary import summary_json
 from front3d.output.tables import points_csv
 from front3d.results import Comparison
@@ -104,6 +105,20 @@ def test_summary_of_the_solutions():
     assert (one["source"], one["claim"]) == ("Newman and Raju (1981)", "within 5 %")
     assert one["notes"] == ["the equation itself is off"]
     assert one["stations_judged"] == len(FRONT)
+
+
+def test_a_solution_reads_back_from_the_folder(tmp_path):
+    judged = np.ones(len(FRONT), dtype=bool)
+    judged[[0, 1, -1]] = False
+    evaluation = evaluation_of(beside(FRONT, judged=judged))
+    (tmp_path / "points.csv").write_bytes(points_csv(evaluation))
+    (tmp_path / "summary.json").write_bytes(summary_json(evaluation, [], []))
+    (front,) = read_saved(tmp_path).evaluation.fronts
+    (back,) = front.comparisons
+    np.testing.assert_array_equal(back.judged, judged)
+    np.testing.assert_array_equal(back.K, evaluation.fronts[0].comparisons[0].K)
+    np.testing.assert_array_equal(back.angle, ANGLE)
+    assert deviation(front, back).worst == pytest.approx(100 * 0.02 / 0.98)
 
 
 def test_words_about_the_solutions():

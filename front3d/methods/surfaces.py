@@ -11,6 +11,7 @@ from front3d.crack.front import SYMMETRY_PLANE
 from front3d.crack.patches import marked
 from front3d.methods.context import FrontContext
 from front3d.methods.nodal_forces import CUT, FREE, PRESSED
+from front3d.methods.terms import FACE_LOAD, FREE_SURFACE, included
 from front3d.methods.tube import Tube
 
 _SAME_DIRECTION = 0.999
@@ -71,9 +72,9 @@ def surroundings(context: FrontContext, tube: Tube) -> Surroundings:
     terms = [
         SurfaceTerm(faces, kind)
         for faces, kind in ((rest[ends_here], FREE), (beside, CUT))
-        if len(faces)
+        if len(faces) and (kind != FREE or included(FREE_SURFACE))
     ]
-    if context.options.face_pressure:
+    if context.options.face_pressure and included(FACE_LOAD):
         terms.append(SurfaceTerm(outer[is_crack], PRESSED, context.options.face_pressure))
     distance = tube.r[np.searchsorted(tube.nodes, beside.nodes)]
     normals = np.array([normal for normal, _ in planes]).reshape(-1, 3)

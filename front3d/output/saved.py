@@ -164,6 +164,8 @@ def _rings(rows: Rows) -> Rings | None:
 def _comparison(about: Mapping[str, Any], rows: Rows) -> Comparison:
     name = about["solution"]
     nothing = np.full(len(rows), np.nan)
+    judged = np.ones(len(rows), dtype=bool)
+    judged[about["stations_left_out"]] = False
     return Comparison(
         solution=name,
         arguments=about["arguments"],
@@ -172,6 +174,7 @@ def _comparison(about: Mapping[str, Any], rows: Rows) -> Comparison:
         K=np.stack([_column(rows, f"{mode}_{name}", nothing) for mode in MODES], axis=1),
         angle=_column(rows, "phi_deg", nothing),
         notes=tuple(about["notes"]),
+        judged=judged,
     )
 
 

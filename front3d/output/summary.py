@@ -49,7 +49,7 @@ def summary(
         },
         "units": {"length": units.length, "stress": units.stress, "K": units.K_label},
         "options": plain(evaluation.options),
-        "versions": _versions(),
+        "versions": versions(),
         "fronts": [front_summary(front, units) for front in evaluation.fronts],
         "warnings": list(evaluation.warnings),
         "files": list(files),
@@ -117,6 +117,7 @@ def compared(front: FrontResult, comparison: Comparison) -> dict[str, Any]:
         "mean_percent": found.mean,
         "mean_with_sign_percent": found.balance,
         "stations_judged": found.judged,
+        "stations_left_out": np.flatnonzero(~comparison.judged).tolist(),
         "notes": list(comparison.notes),
     }
 
@@ -183,7 +184,7 @@ def _sha256(path: Path) -> str:
         ) from error
 
 
-def _versions() -> dict[str, str]:
+def versions() -> dict[str, str]:
     found = {"front3d": __version__, "python": platform.python_version()}
     for library in LIBRARIES:
         try:

@@ -8,8 +8,10 @@ import numpy as np
 from front3d.errors import CaseError
 from front3d.samples.cells import check_cells
 from front3d.samples.collinear_row import COLLINEAR_ROW
+from front3d.samples.compact import COMPACT_SPECIMEN
 from front3d.samples.corner_crack import CORNER_CRACK
 from front3d.samples.corner_crack_at_hole import CORNER_CRACK_AT_HOLE
+from front3d.samples.cylinder_crack import CYLINDER_CRACK
 from front3d.samples.elasticity import boundary_faces, traction_load
 from front3d.samples.embedded_ellipse import EMBEDDED_ELLIPSE
 from front3d.samples.parts import CRACK_AXIS, WHOLE, check_symmetry, part_axes, take_part
@@ -35,6 +37,8 @@ SAMPLES: Mapping[str, SampleSpec] = MappingProxyType(
             COLLINEAR_ROW,
             SLANTED_CRACK,
             ROUND_BAR,
+            COMPACT_SPECIMEN,
+            CYLINDER_CRACK,
         )
     }
 )

@@ -24,7 +24,8 @@ class Parameter:
     ----------
     default : its value; None when it follows from the others (`meaning` says how)
     low, high : the range allowed, both ends included
-    unit : "length", "stress", "degrees" or "" for a pure number
+    unit : "length", "stress", "force" (stress times squared length), "degrees" or "" for a pure
+        number
     whole : only whole numbers
     """
 
