@@ -28,9 +28,7 @@ def beside_solutions(outcomes: Sequence[Outcome]) -> list[Measured]:
                 if not about.judged:
                     continue
                 where = f"{about.mode} at s/L {front.s_rel[about.station]:.3f}"
-                found.append(
-                    Measured(name, load, about.judged, about.worst, where, about.mean)
-                )
+                found.append(Measured(name, load, about.judged, about.worst, where, about.mean))
     return found
 
 

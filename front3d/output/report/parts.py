@@ -17,10 +17,21 @@ from front3d.units import Units
 
 NAMES = tuple(join(["K", tag("sub", mode)]) for mode in ("I", "II", "III"))
 _DIGITS = 4
+_RIGHT_ANGLE = 90.0  # degrees: what angles are compared with
 
 
 def number(value: float, digits: int = _DIGITS) -> str:
     return "no value" if not np.isfinite(value) else f"{value:.{digits}g}"
+
+
+def levelled(value: float, largest: float, digits: int = _DIGITS) -> str:
+    """`value` with as many decimals as show `largest` with `digits`: what is nought against it
+    reads so.
+    """
+    if not np.isfinite(value) or not 0 < largest < 1e7:
+        return number(value, digits)
+    decimals = max(0, digits - 1 - int(np.floor(np.log10(largest))))
+    return f"{round(value, decimals) + 0.0:.{decimals}f}"
 
 
 def percent(value: float | None) -> str:
@@ -98,9 +109,10 @@ def _largest_row(front: FrontResult, k: int, units: Units) -> list[Any]:
     if not np.isfinite(values).any():
         return [*start, "no value"]
     i = int(np.nanargmax(np.abs(values)))
-    row = [*start, number(values[i])]
+    most = float(np.nanmax(np.abs(front.K)))
+    row = [*start, levelled(values[i], most)]
     if units.K_factor is not None:
-        row.append(number(values[i] * units.K_factor))
+        row.append(levelled(values[i] * units.K_factor, most * units.K_factor))
     row += [f"{front.s_rel[i]:.3f}", place(front.positions[i], front.length), front.flags[i]]
     plain = np.array([not flag for flag in front.flags]) & np.isfinite(values)
     inside = np.where(plain, np.abs(values), -1.0)
@@ -109,7 +121,7 @@ def _largest_row(front: FrontResult, k: int, units: Units) -> list[Any]:
         return [*row, "the same"]
     if not plain.any():
         return [*row, "every station is flagged"]
-    return [*row, f"{number(values[j])} at s/L {front.s_rel[j]:.3f}"]
+    return [*row, f"{levelled(values[j], most)} at s/L {front.s_rel[j]:.3f}"]
 
 
 def _trust_sentences(front: FrontResult, named: bool) -> list[str]:
@@ -262,12 +274,22 @@ def mix(saved: Saved) -> Markup:
     rows = []
     for front in saved.evaluation.fronts:
         columns = mix_columns(front.K, saved.evaluation.material)
+        largest = float(np.nanmax(np.abs(front.K), initial=0.0))
         kink, K_eq = columns["kink_deg_mts"], columns["K_eq_mts"]
         kink3, twist = columns["kink_deg_schollmann"], columns["twist_deg_schollmann"]
         rows.append(
             [
                 f"{front.front}, {front.step}",
-                *(_extreme(v) for v in (kink, K_eq, kink3, twist, columns["K_eq_schollmann"])),
+                *(
+                    _extreme(values, most)
+                    for values, most in (
+                        (kink, _RIGHT_ANGLE),
+                        (K_eq, largest),
+                        (kink3, _RIGHT_ANGLE),
+                        (twist, _RIGHT_ANGLE),
+                        (columns["K_eq_schollmann"], largest),
+                    )
+                ),
                 int(np.isnan(kink3).sum()),
             ]
         )
@@ -295,10 +317,10 @@ def mix(saved: Saved) -> Markup:
     )
 
 
-def _extreme(values: Any) -> str:
+def _extreme(values: Any, largest: float) -> str:
     if not np.isfinite(values).any():
         return "no value"
-    return number(float(values[int(np.nanargmax(np.abs(values)))]))
+    return levelled(float(values[int(np.nanargmax(np.abs(values)))]), largest)
 
 
 def stations(saved: Saved) -> Markup:
@@ -324,13 +346,15 @@ def stations(saved: Saved) -> Markup:
     ]
     for front in evaluation.fronts:
         rows = []
+        most = float(np.nanmax(np.abs(front.K), initial=0.0))
+        most_G = float(np.nanmax(front.G, initial=0.0))
         x = [place(p, front.length).split(", ") for p in front.positions]
         for i in range(len(front)):
             row: list[Any] = [i, f"{front.s_rel[i]:.4f}", *x[i]]
-            row += [*map(_cell, front.K[i]), _cell(front.G[i])]
+            row += [*(_cell(K, most) for K in front.K[i]), _cell(front.G[i], most_G)]
             for name in names:
                 K = front.methods[name].K[i] if name in front.methods else [np.nan] * 3
-                row += map(_cell, K)
+                row += [_cell(value, most) for value in K]
             rows.append([*row, front.flags[i]])
         if len(evaluation.fronts) > 1:
             children.append(tag("h3", f"Front {front.front}, step {front.step}"))
@@ -338,8 +362,8 @@ def stations(saved: Saved) -> Markup:
     return section("Table", *children, name="table")
 
 
-def _cell(value: float) -> str:
-    return f"{value:.5g}" if np.isfinite(value) else ""
+def _cell(value: float, largest: float) -> str:
+    return levelled(value, largest, 5) if np.isfinite(value) else ""
 
 
 def inputs(saved: Saved) -> Markup:
