@@ -70,6 +70,21 @@ def test_the_mean_with_its_sign_weighs_by_length():
     assert found.mean > 0
 
 
+def test_an_average_is_that_of_the_squares():
+    """K^2 = s/L over the front has the mean 1/2, by hand: 1/sqrt(2) against a solution of 0.7."""
+    K = np.zeros((len(FRONT), 3))
+    K[:, 0] = np.sqrt(FRONT.s_rel)
+    published = np.full((len(FRONT), 3), np.nan)
+    published[:, 0] = 0.7
+    nowhere = np.full(len(FRONT), np.nan)
+    one = Comparison("compact-specimen", {}, "", "", published, nowhere, average=True)
+    front = replace(FRONT, K=K, comparisons=(one,))
+    expected = 100 * (np.sqrt(0.5) / 0.7 - 1)
+    assert deviation(front, one).average == pytest.approx(expected, rel=1e-9)
+    assert f"front {expected:+.2f} %" in "\n".join(describe_evaluation(evaluation_of(front)))
+    assert deviation(front, replace(one, average=False)).average is None
+
+
 def test_nothing_judged_gives_no_figure():
     front = beside(FRONT, judged=np.zeros(len(FRONT), dtype=bool))
     found = deviation(front, front.comparisons[0])

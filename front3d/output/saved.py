@@ -175,6 +175,7 @@ def _comparison(about: Mapping[str, Any], rows: Rows) -> Comparison:
         angle=_column(rows, "phi_deg", nothing),
         notes=tuple(about["notes"]),
         judged=judged,
+        average=about["average"],
     )
 
 

@@ -116,6 +116,8 @@ def compared(front: FrontResult, comparison: Comparison) -> dict[str, Any]:
         "worst": worst,
         "mean_percent": found.mean,
         "mean_with_sign_percent": found.balance,
+        "average": comparison.average,
+        "average_percent": found.average,
         "stations_judged": found.judged,
         "stations_left_out": np.flatnonzero(~comparison.judged).tolist(),
         "notes": list(comparison.notes),
