@@ -117,7 +117,7 @@ ul.warnings { margin: .5rem 0; padding: .6rem .9rem .6rem 2rem; border-left: 5px
 table { border-collapse: collapse; font-size: .88rem; font-variant-numeric: tabular-nums; }
 th, td { padding: .25rem .6rem; border-bottom: 1px solid var(--line); text-align: left;
   vertical-align: top; }
-thead th { border-bottom: 2px solid var(--ink); white-space: nowrap; vertical-align: bottom; }
+thead th { border-bottom: 2px solid var(--ink); vertical-align: bottom; }
 table.numbers td:not(:first-child), table.numbers th:not(:first-child) { text-align: right; }
 table.numbers td { white-space: nowrap; }
 table.stations { font-size: .8rem; }
@@ -138,7 +138,9 @@ code { font-family: "Liberation Mono", "DejaVu Sans Mono", monospace; font-size:
   main { max-width: none; padding: 0; }
   h2 { break-after: avoid; margin-top: 1.4rem; }
   figure, .answer, .caution, ul.warnings { break-inside: avoid; }
-  figure svg, figure img { max-height: 225mm; width: auto; max-width: 100%; margin: 0 auto; }
+  figure svg, figure img { max-height: 165mm; width: auto; max-width: 100%; margin: 0 auto; }
+  figure img { max-height: 118mm; }
+  h3, .small { break-after: avoid; }
   thead { display: table-header-group; }
   tr { break-inside: avoid; }
   .wide { overflow: visible; }

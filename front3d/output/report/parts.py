@@ -1,5 +1,6 @@
 """The parts of a report; every figure in them is taken from the saved results."""
 
+import re
 from collections.abc import Mapping
 from typing import Any
 
@@ -16,16 +17,27 @@ from front3d.units import Units
 
 NAMES = tuple(join(["K", tag("sub", mode)]) for mode in ("I", "II", "III"))
 _DIGITS = 4
+_RIGHT_ANGLE = 90.0  # degrees: what angles are compared with
 
 
 def number(value: float, digits: int = _DIGITS) -> str:
     return "no value" if not np.isfinite(value) else f"{value:.{digits}g}"
 
 
+def levelled(value: float, largest: float, digits: int = _DIGITS) -> str:
+    """`value` with as many decimals as show `largest` with `digits`: what is nought against it
+    reads so.
+    """
+    if not np.isfinite(value) or not 0 < largest < 1e7:
+        return number(value, digits)
+    decimals = max(0, digits - 1 - int(np.floor(np.log10(largest))))
+    return f"{round(value, decimals) + 0.0:.{decimals}f}"
+
+
 def percent(value: float | None) -> str:
     if value is None or not np.isfinite(value):
         return "no value"
-    return f"{100 * value:.2g} %"
+    return f"{100 * value:.2g}\N{NO-BREAK SPACE}%"
 
 
 def heading(saved: Saved) -> Markup:
@@ -59,9 +71,9 @@ def answer(saved: Saved) -> Markup:
         class_="answer",
     )
     rows = [_largest_row(f, mode, units) for f in fronts for mode in range(3)]
-    head = ["front", "step", "mode", f"largest [{units.K_label}]"]
+    head = ["front", "step", "mode", f"largest [{rooted(units.K_label)}]"]
     if units.K_factor is not None:
-        head.append("[MPa sqrt(m)]")
+        head.append(f"[{rooted('MPa sqrt(m)')}]")
     head += ["s/L", "place", "flag", "largest without a flag"]
     trust = [line for front in fronts for line in _trust_sentences(front, len(fronts) > 1)]
     return section(
@@ -76,10 +88,15 @@ def answer(saved: Saved) -> Markup:
 
 def with_units(K: float, units: Units) -> str:
     """K in the model's units, and in MPa sqrt(m) where they are named."""
-    text = f"{number(K)} {units.K_label}" if units.named else number(K)
+    text = f"{number(K)} {rooted(units.K_label)}" if units.named else number(K)
     if units.K_factor is not None and (units.length, units.stress) != ("m", "MPa"):
-        text += f" ({number(K * units.K_factor)} MPa sqrt(m))"
+        text += f" ({number(K * units.K_factor)} {rooted('MPa sqrt(m)')})"
     return text
+
+
+def rooted(unit: str) -> str:
+    """A unit of K with the root as a sign: MPa sqrt(mm) becomes MPa, root, mm."""
+    return re.sub(r"sqrt\((\w+)\)", "\N{SQUARE ROOT}\\1", unit)
 
 
 def _has_values(front: FrontResult) -> bool:
@@ -92,9 +109,10 @@ def _largest_row(front: FrontResult, k: int, units: Units) -> list[Any]:
     if not np.isfinite(values).any():
         return [*start, "no value"]
     i = int(np.nanargmax(np.abs(values)))
-    row = [*start, number(values[i])]
+    most = float(np.nanmax(np.abs(front.K)))
+    row = [*start, levelled(values[i], most)]
     if units.K_factor is not None:
-        row.append(number(values[i] * units.K_factor))
+        row.append(levelled(values[i] * units.K_factor, most * units.K_factor))
     row += [f"{front.s_rel[i]:.3f}", place(front.positions[i], front.length), front.flags[i]]
     plain = np.array([not flag for flag in front.flags]) & np.isfinite(values)
     inside = np.where(plain, np.abs(values), -1.0)
@@ -103,7 +121,7 @@ def _largest_row(front: FrontResult, k: int, units: Units) -> list[Any]:
         return [*row, "the same"]
     if not plain.any():
         return [*row, "every station is flagged"]
-    return [*row, f"{number(values[j])} at s/L {front.s_rel[j]:.3f}"]
+    return [*row, f"{levelled(values[j], most)} at s/L {front.s_rel[j]:.3f}"]
 
 
 def _trust_sentences(front: FrontResult, named: bool) -> list[str]:
@@ -161,7 +179,7 @@ def question(saved: Saved) -> Markup:
         ),
         (
             "units",
-            f"length in {units.length}, stress in {units.stress}, K in {units.K_label}"
+            f"length in {units.length}, stress in {units.stress}, K in {rooted(units.K_label)}"
             if units.named
             else "not named: K in stress times the root of length, in the units of the file",
         ),
@@ -256,16 +274,26 @@ def mix(saved: Saved) -> Markup:
     rows = []
     for front in saved.evaluation.fronts:
         columns = mix_columns(front.K, saved.evaluation.material)
+        largest = float(np.nanmax(np.abs(front.K), initial=0.0))
         kink, K_eq = columns["kink_deg_mts"], columns["K_eq_mts"]
         kink3, twist = columns["kink_deg_schollmann"], columns["twist_deg_schollmann"]
         rows.append(
             [
                 f"{front.front}, {front.step}",
-                *(_extreme(v) for v in (kink, K_eq, kink3, twist, columns["K_eq_schollmann"])),
+                *(
+                    _extreme(values, most)
+                    for values, most in (
+                        (kink, _RIGHT_ANGLE),
+                        (K_eq, largest),
+                        (kink3, _RIGHT_ANGLE),
+                        (twist, _RIGHT_ANGLE),
+                        (columns["K_eq_schollmann"], largest),
+                    )
+                ),
                 int(np.isnan(kink3).sum()),
             ]
         )
-    unit = f" [{units.K_label}]"
+    unit = f" [{rooted(units.K_label)}]"
     head = [
         "front, step",
         "kink, MTS [deg]",
@@ -289,10 +317,10 @@ def mix(saved: Saved) -> Markup:
     )
 
 
-def _extreme(values: Any) -> str:
+def _extreme(values: Any, largest: float) -> str:
     if not np.isfinite(values).any():
         return "no value"
-    return number(float(values[int(np.nanargmax(np.abs(values)))]))
+    return levelled(float(values[int(np.nanargmax(np.abs(values)))]), largest)
 
 
 def stations(saved: Saved) -> Markup:
@@ -311,20 +339,22 @@ def stations(saved: Saved) -> Markup:
         tag(
             "p",
             "K in ",
-            evaluation.units.K_label,
+            rooted(evaluation.units.K_label),
             ". The file points.csv has these figures with all digits, and more columns.",
             class_="small",
         )
     ]
     for front in evaluation.fronts:
         rows = []
+        most = float(np.nanmax(np.abs(front.K), initial=0.0))
+        most_G = float(np.nanmax(front.G, initial=0.0))
         x = [place(p, front.length).split(", ") for p in front.positions]
         for i in range(len(front)):
             row: list[Any] = [i, f"{front.s_rel[i]:.4f}", *x[i]]
-            row += [*map(_cell, front.K[i]), _cell(front.G[i])]
+            row += [*(_cell(K, most) for K in front.K[i]), _cell(front.G[i], most_G)]
             for name in names:
                 K = front.methods[name].K[i] if name in front.methods else [np.nan] * 3
-                row += map(_cell, K)
+                row += [_cell(value, most) for value in K]
             rows.append([*row, front.flags[i]])
         if len(evaluation.fronts) > 1:
             children.append(tag("h3", f"Front {front.front}, step {front.step}"))
@@ -332,8 +362,8 @@ def stations(saved: Saved) -> Markup:
     return section("Table", *children, name="table")
 
 
-def _cell(value: float) -> str:
-    return f"{value:.5g}" if np.isfinite(value) else ""
+def _cell(value: float, largest: float) -> str:
+    return levelled(value, largest, 5) if np.isfinite(value) else ""
 
 
 def inputs(saved: Saved) -> Markup:

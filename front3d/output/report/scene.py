@@ -12,11 +12,12 @@ import numpy as np
 
 from front3d.output.rendering import why_no_pictures
 from front3d.output.report.page import Markup, join, tag
+from front3d.output.report.parts import NAMES, rooted
 from front3d.output.saved import Saved
-from front3d.output.scene import Scale, add_solid, close_up, colour_scale, colours
+from front3d.output.scene import Scale, add_solid, colour_scale, colours
 from front3d.output.skin import read_skin
 from front3d.output.view import best_view
-from front3d.results import MODES, FrontResult
+from front3d.results import FrontResult
 
 PACKAGE = "trame-pyvista"
 """The package that packs a scene and its viewer into one page; not needed for anything else."""
@@ -51,14 +52,13 @@ def _fronts_of_largest(fronts: tuple[FrontResult, ...]) -> tuple[FrontResult, ..
 
 def _viewer(saved: Saved, fronts: tuple[FrontResult, ...], scale: Scale) -> str:
     """A page of its own with the scene and its viewer."""
-    parts: Any = read_skin(saved.folder / "skin.vtp")
+    parts, box = read_skin(saved.folder / "skin.vtp")
     # Graphics work in single precision: moved to the origin, as in the still picture.
     centre = np.concatenate([front.positions for front in fronts]).mean(axis=0)
     for surface in (parts.outside, parts.crack):
         surface.points = np.asarray(surface.points) - centre
+    box = (box[0] - centre, box[1] - centre)
     fronts = tuple(replace(front, positions=front.positions - centre) for front in fronts)
-    points = np.concatenate([np.asarray(s.points) for s in (parts.outside, parts.crack)])
-    box = close_up(np.concatenate([front.positions for front in fronts]), points)
     corners = np.array(np.meshgrid(*zip(*box, strict=True))).reshape(3, -1).T
 
     async def export(path: Path) -> None:
@@ -68,7 +68,14 @@ def _viewer(saved: Saved, fronts: tuple[FrontResult, ...], scale: Scale) -> str:
         await jupyter.launch_server().ready
         plotter: Any = pv.Plotter(off_screen=True, window_size=[1040, 780])
         try:
-            add_solid(plotter, parts, fronts, scale, best_view(fronts[0], corners), box)
+            view = best_view(fronts[0], corners)
+            add_solid(plotter, parts, fronts, scale, view, box)
+            # The viewer knows perspective only: as near as shows the same.
+            camera = plotter.camera
+            camera.parallel_projection = False
+            distance = 1.15 * view.half_height / np.tan(np.radians(camera.view_angle / 2))
+            camera.position = view.focus + distance * view.towards
+            plotter.reset_camera_clipping_range()
             plotter.trame.export_html(str(path))
         finally:
             plotter.close()
@@ -85,11 +92,10 @@ def _legend(saved: Saved, scale: Scale) -> Markup:
 
     stops = ", ".join(to_hex(colours()(x)) for x in np.linspace(0, 1, 9))
     bar = tag("span", class_="bar", style=f"background: linear-gradient(to right, {stops})")
-    name = MODES[scale.mode]
-    unit = saved.evaluation.units.K_label
+    unit = rooted(saved.evaluation.units.K_label)
     return tag(
         "div",
-        join([f"{name} [{unit}]", " ", f"{scale.low:.4g}"]),
+        join([NAMES[scale.mode], f" [{unit}] {scale.low:.4g}"]),
         bar,
         f"{scale.high:.4g}",
         class_="legend",
