@@ -102,7 +102,7 @@ def test_holes_of_the_whole_range_have_valid_cells(cells: str, refine: int) -> N
                         continue
                     sizes = {"depth": 1.0, "length": c, "thickness": 1 / a_t, "hole_radius": r}
                     if "narrow" in shape:
-                        sizes |= {"half_width": 2.0 * (r + c), "half_height": 4.0 * (r + c)}
+                        sizes |= {"half_width": 2.0 * (r + c), "half_height": 6.0 * (r + c)}
                     elif shape:
                         sizes |= shape
                     part = mesh(HOLE, cells, refine=refine, **sizes).part
@@ -212,14 +212,17 @@ def test_plates_have_the_computed_K(
 @pytest.mark.slow
 def test_one_crack_at_a_hole_by_shahs_conversion() -> None:
     # Shah (1976), as used by Newman and Raju (1984), from memory: K of one crack over K of two is
-    # sqrt((4/pi + u/2) / (4/pi + u)), u = a c / (t r).  An approximation: within 2 % here.
+    # sqrt((4/pi + u/2) / (4/pi + u)), u = a c / (t r).  A conversion by area that takes too much
+    # off: for through cracks with c = r/2 it gives 0.927, and the exact factors of Bowie (1956,
+    # from memory: 1.73 and 1.83) 0.945.  Measured here: 1.6 to 2.2 % above it.
     sizes = {"depth": 6.0, "length": 6.0, "thickness": 12.0, "hole_radius": 12.0, "bending": 0.0}
     fronts = {n: evaluated(build(HOLE, refine=0, cracks=n, **sizes))["tension"] for n in (1, 2)}
     ratio = at_places(fronts[1], 6.0, 6.0, 12.0) / at_places(fronts[2], 6.0, 6.0, 12.0)
     u = 36.0 / 144.0
     expected = np.sqrt((4 / np.pi + u / 2) / (4 / np.pi + u))
     assert (ratio < 1.0).all()
-    np.testing.assert_allclose(ratio, expected, rtol=0.02)
+    np.testing.assert_allclose(ratio, expected, rtol=0.03)
+    assert (ratio > expected).all()
 
 
 @pytest.mark.slow

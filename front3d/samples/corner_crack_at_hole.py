@@ -61,7 +61,7 @@ def _complete(given: Mapping[str, float | None]) -> Values:
     check_ratio(_NAME, "half_width / (hole_radius + length)",
                 values["half_width"] / (r + c), 2.0, 50.0)  # fmt: skip
     check_ratio(_NAME, "half_height / half_width",
-                values["half_height"] / values["half_width"], 1.0, 5.0)  # fmt: skip
+                values["half_height"] / values["half_width"], 1.0, 3.0)  # fmt: skip
     return values
 
 
