@@ -2,7 +2,8 @@
 
     python examples/make_pictures.py [FOLDER]
 
-Writes chart.png, through_thickness.png and scene.png into FOLDER (default: the folder pictures beside this file).
+Writes chart.png, through_thickness.png and scene.png into FOLDER (default: the folder pictures
+beside this file).
 """
 
 import argparse
