@@ -69,7 +69,11 @@ def superposed(outcomes: Sequence[Outcome]) -> list[Measured]:
 
 def thickness_average(outcomes: Sequence[Outcome]) -> list[Measured]:
     """Mean J over the thickness of a compact specimen against K^2/E' of ASTM E399, in per cent of
-    K; and whether K is above its average in the middle and drops at the faces.
+    K; and whether K is above its average in the middle and drops at the faces, where they are free.
+
+    With free faces the mean lies between plane strain and plane stress: at the usual thickness of
+    W/2 about 3 % of K above the former (J is what the compliance says, and stiffness of the arms
+    is nearer to plane stress), at 2 W within 1 %.
     """
     sample = outcomes[0].sample
     values = sample.parameters
@@ -85,7 +89,8 @@ def thickness_average(outcomes: Sequence[Outcome]) -> list[Measured]:
     k1 = front.methods["interaction"].K[:, 0]
     middle, faces = k1[len(k1) // 2], k1[[0, -1]]
     average = float(np.trapezoid(k1, front.s) / front.length)
-    if not (middle > average and (faces < average).all()):
+    free = values["free_sides"] and sample.material.poisson
+    if free and not (middle > average and (faces < average).all()):
         raise CaseError(
             f"{sample.name}: found K_I {middle:.4g} in the middle and {faces.max():.4g} at the "
             f"faces, expected them above and below the average {average:.4g}"
