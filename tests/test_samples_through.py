@@ -118,8 +118,8 @@ def test_free_sides_lie_between_plane_strain_and_plane_stress() -> None:
     # the middle.
     K = float(centre_crack(100.0, 10.0, 50.0))
     ratios = []
-    for thickness in (1.0, 5.0, 15.0):
-        front, _ = fronts("through-crack", thickness=thickness, free_sides=1)
+    for thickness in (5.0, 15.0, 40.0):
+        front, _ = fronts("through-crack", thickness=thickness, free_sides=1, refine=0)
         ratios.append(200e3 * average(front, front.G) / K**2)
         mean = average(front, front.K[:, 0])
         middle = front.K[len(front.s) // 2, 0]
@@ -128,4 +128,4 @@ def test_free_sides_lie_between_plane_strain_and_plane_stress() -> None:
             assert front.K[:, 0].max() < 1.001 * middle and middle > mean
         assert front.ends == ("free surface", "free surface")
     assert 1.0 > ratios[0] > ratios[1] > ratios[2] > 0.91
-    assert ratios[0] == pytest.approx(1.0, abs=0.01)
+    assert ratios[0] == pytest.approx(1.0, abs=0.015)
