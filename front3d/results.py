@@ -99,6 +99,7 @@ class Comparison:
     angle : (n,) parametric angle of the ellipse at the stations, degrees; NaN where there is none
     notes : what the reader must be warned of: range, known deviations and their evidence
     judged : (n,) stations far enough from a free surface to be compared; all by default
+    average : whether the solution is one of the whole front, as for a test specimen
     """
 
     solution: str
@@ -109,6 +110,7 @@ class Comparison:
     angle: FloatArray
     notes: tuple[str, ...] = ()
     judged: BoolArray = field(default_factory=lambda: np.zeros(0, dtype=bool))
+    average: bool = False
 
     def __post_init__(self) -> None:
         _freeze(self, ("K", "angle"))

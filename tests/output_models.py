@@ -123,7 +123,19 @@ def curve_front(
     }
     flags = tuple(ends[0] if x == 0 else ends[1] if x == s[-1] else "" for x in s)
     return FrontResult(
-        "tension", 0, False, ends, float(s[-1]), s, positions, frames, K, G, flags, methods
+        "tension",
+        0,
+        False,
+        ends,
+        float(s[-1]),
+        s,
+        positions,
+        frames,
+        K,
+        G,
+        flags,
+        methods,
+        ("interaction",) * len(s),
     )
 
 

@@ -31,6 +31,7 @@ RANKS = [
     {"pipeline"},
     {"samples"},
     {"output"},
+    {"verification"},
     {"case"},
     {"cli"},
     {"__main__"},

@@ -253,6 +253,22 @@ def test_an_ellipse_under_shear_anywhere(turn, other_face, a, c):
     np.testing.assert_allclose(K[:, 2], sign * k3, atol=1e-5)
 
 
+@pytest.mark.parametrize("turn", TURNS)
+@pytest.mark.parametrize("other_face", [False, True])
+@pytest.mark.parametrize("start", [0, 90, 180, 270])
+def test_half_an_ellipse_under_shear(turn, other_face, start):
+    """Half of it between symmetry planes, on either side of either axis: K of the whole."""
+    shape, _ = elliptic(start, start + 180, ends=(SYMMETRY, SYMMETRY))
+    shape = flipped(shape) if other_face else shape
+    along = np.array([1.0, 0.0, 0.0] if start % 180 == 0 else [0.0, 1.0, 0.0])
+    phi = np.arctan2(shape.positions[:, 1] / A, shape.positions[:, 0] / C)
+    k2, k3 = handbook.ellipse_shear(*(3 * along[:2]), A, C, phi, NU)
+    text = f"ellipse-shear:a=6,c=10,shear=3,along={'/'.join(f'{v:.15g}' for v in turn @ along)}"
+    K = compare(parse(text), moved(shape, turn, SHIFT), NU).K
+    np.testing.assert_allclose(K[:, 1], k2, atol=1e-8)
+    np.testing.assert_allclose(K[:, 2], (-1.0 if other_face else 1.0) * k3, atol=1e-8)
+
+
 def straight(e1, ends=(FREE, FREE)):
     """A front along y at the end of a crack in z = 0 that grows along e1 = +x or -x."""
     positions = np.outer(np.linspace(-2, 2, 9), [0.0, 1.0, 0.0])

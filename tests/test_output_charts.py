@@ -339,6 +339,14 @@ def test_png_is_1200_pixels_wide_and_not_blank() -> None:
     assert blue.sum() > 1000  # the reported curve
 
 
+def test_of_many_steps_the_worst_has_its_own_charts() -> None:
+    found = charts_of(evaluation_of(*steps(1, 1.1, 1.2, 1.5, 1.4, 1.3, 1.2)))
+    assert set(found) == {
+        "steps",
+        *(f"{kind}_front0_step1.5" for kind in ("chart", "through_thickness", "mode_mix")),
+    }
+
+
 @pytest.mark.slow
 def test_svg_is_a_picture_that_is_the_same_in_every_run() -> None:
     first, second = (svg(along_front(SURFACE, MILLIMETRES)) for _ in range(2))
@@ -346,6 +354,14 @@ def test_svg_is_a_picture_that_is_the_same_in_every_run() -> None:
     root = ElementTree.fromstring(first)
     assert root.tag.endswith("svg")
     assert len(root.findall(".//{http://www.w3.org/2000/svg}path")) > 30
+
+
+@pytest.mark.slow
+def test_both_formats_have_the_same_layout() -> None:
+    figure = along_front(BUSY, MILLIMETRES)
+    png(figure)
+    after = svg(figure)
+    assert after == svg(along_front(BUSY, MILLIMETRES))
 
 
 def test_names_from_files_are_shown_as_they_are() -> None:

@@ -11,6 +11,7 @@ import pytest
 from front3d.cli import main
 from front3d.cli.words import describe_evaluation
 from front3d.output.deviation import deviation
+from front3d.output.saved import read_saved
 from front3d.output.summary import summary_json
 from front3d.output.tables import points_csv
 from front3d.results import Comparison
@@ -69,6 +70,21 @@ def test_the_mean_with_its_sign_weighs_by_length():
     assert found.mean > 0
 
 
+def test_an_average_is_that_of_the_squares():
+    """K^2 = s/L over the front has the mean 1/2, by hand: 1/sqrt(2) against a solution of 0.7."""
+    K = np.zeros((len(FRONT), 3))
+    K[:, 0] = np.sqrt(FRONT.s_rel)
+    published = np.full((len(FRONT), 3), np.nan)
+    published[:, 0] = 0.7
+    nowhere = np.full(len(FRONT), np.nan)
+    one = Comparison("compact-specimen", {}, "", "", published, nowhere, average=True)
+    front = replace(FRONT, K=K, comparisons=(one,))
+    expected = 100 * (np.sqrt(0.5) / 0.7 - 1)
+    assert deviation(front, one).average == pytest.approx(expected, rel=1e-9)
+    assert f"front {expected:+.2f} %" in "\n".join(describe_evaluation(evaluation_of(front)))
+    assert deviation(front, replace(one, average=False)).average is None
+
+
 def test_nothing_judged_gives_no_figure():
     front = beside(FRONT, judged=np.zeros(len(FRONT), dtype=bool))
     found = deviation(front, front.comparisons[0])
@@ -104,6 +120,20 @@ def test_summary_of_the_solutions():
     assert (one["source"], one["claim"]) == ("Newman and Raju (1981)", "within 5 %")
     assert one["notes"] == ["the equation itself is off"]
     assert one["stations_judged"] == len(FRONT)
+
+
+def test_a_solution_reads_back_from_the_folder(tmp_path):
+    judged = np.ones(len(FRONT), dtype=bool)
+    judged[[0, 1, -1]] = False
+    evaluation = evaluation_of(beside(FRONT, judged=judged))
+    (tmp_path / "points.csv").write_bytes(points_csv(evaluation))
+    (tmp_path / "summary.json").write_bytes(summary_json(evaluation, [], []))
+    (front,) = read_saved(tmp_path).evaluation.fronts
+    (back,) = front.comparisons
+    np.testing.assert_array_equal(back.judged, judged)
+    np.testing.assert_array_equal(back.K, evaluation.fronts[0].comparisons[0].K)
+    np.testing.assert_array_equal(back.angle, ANGLE)
+    assert deviation(front, back).worst == pytest.approx(100 * 0.02 / 0.98)
 
 
 def test_words_about_the_solutions():

@@ -89,7 +89,7 @@ def without_graphics(monkeypatch: pytest.MonkeyPatch) -> None:
 def test_without_graphics_everything_else_is_written_and_it_is_said(tmp_path: Path) -> None:
     written = write_results(evaluation_of(FRONT), SOLID, tmp_path)
     charts = [f"{name}.{kind}" for name in ("chart", "mode_mix") for kind in ("png", "svg")]
-    assert written.files == ("points.csv", "front.vtp", *charts, "summary.json")
+    assert written.files == ("points.csv", "front.vtp", *charts, "skin.vtp", "summary.json")
     assert written.notes == ("left out: apt-get install egl",)
 
 

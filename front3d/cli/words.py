@@ -121,11 +121,14 @@ def describe_comparison(front: "FrontResult", comparison: "Comparison") -> list[
     i = found.station
     angle = comparison.angle[i]
     where = f"phi = {angle:.0f} degrees" if isfinite(angle) else f"s/L {front.s_rel[i]:.3f}"
-    return [
+    lines = [
         head,
         f"    worst {found.worst:+.2f} % of its largest K ({found.mode}, {where}), mean "
         f"{found.mean:.2f} %, {found.judged} of {len(front)} stations",
     ]
+    if found.average is not None:
+        lines.append(f"    root mean square over the whole front {found.average:+.2f} %")
+    return lines
 
 
 def describe_written(written: "Written") -> list[str]:

@@ -244,12 +244,16 @@ def _frames(
 
 
 def _half(q: FloatArray) -> Frame:
-    """From one end of an axis to the other."""
+    """From one end of an axis to the other.
+
+    A front runs along e3 = e1 x e2, so that a crack that grows outwards bulges to the left of the
+    chord, seen against e2.
+    """
     chord = q[-1] - q[0]
     along = chord / np.linalg.norm(chord)
     across = np.array([-along[1], along[0]])
-    centre = (q[0] + q[-1]) / 2
-    return centre, along, across * np.sign(((q - centre) @ across).sum())
+    centre: FloatArray = (q[0] + q[-1]) / 2
+    return centre, along, across
 
 
 def _quarter(q: FloatArray, a: float, c: float) -> Iterator[Frame]:

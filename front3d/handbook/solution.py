@@ -44,6 +44,7 @@ class Solution:
     source : authors and year
     claim : the accuracy claimed, in words, and by whom
     doubts : values -> what is known against it for these values
+    average : whether it gives the average of the whole front, not K at each station
     poisson : Poisson's ratio it holds for; None where it is exact for any, or takes the material's
     """
 
@@ -57,6 +58,7 @@ class Solution:
     claim: str
     doubts: Callable[[Values], tuple[str, ...]] = lambda values: ()
     poisson: float | None = None
+    average: bool = False
 
 
 def only(mode: int, K: FloatArray, n: int) -> FloatArray:

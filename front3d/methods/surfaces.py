@@ -11,6 +11,7 @@ from front3d.crack.front import SYMMETRY_PLANE
 from front3d.crack.patches import marked
 from front3d.methods.context import FrontContext
 from front3d.methods.nodal_forces import CUT, OUTER, PRESSED
+from front3d.methods.terms import FACE_LOAD, FREE_SURFACE, included
 from front3d.methods.tube import Tube
 
 _SAME_DIRECTION = 0.999
@@ -74,8 +75,10 @@ def surroundings(context: FrontContext, tube: Tube) -> Surroundings:
         SurfaceTerm(rest[ends_here], OUTER, options.surface_pressure),
         SurfaceTerm(beside, CUT),
     ]
-    if options.face_pressure:
+    if options.face_pressure and included(FACE_LOAD):
         terms.append(SurfaceTerm(outer[is_crack], PRESSED, options.face_pressure))
+    if not included(FREE_SURFACE):
+        terms = [term for term in terms if term.kind != OUTER]
     terms = [term for term in terms if len(term.faces)]
     distance = tube.r[np.searchsorted(tube.nodes, beside.nodes)]
     normals = np.array([normal for normal, _ in planes]).reshape(-1, 3)

@@ -21,6 +21,8 @@ class Deviation:
     balance : per mode given, its mean with the sign, each station weighted by its share of the
         front: near zero where K only scatters about the solution
     judged : number of stations judged
+    average : root mean square of K_I over the whole front, as from the average J, less the
+        solution, in per cent; None where the solution is not an average
     """
 
     percent: FloatArray
@@ -30,6 +32,7 @@ class Deviation:
     mean: float
     balance: dict[str, float]
     judged: int
+    average: float | None = None
 
 
 def deviation(front: FrontResult, comparison: Comparison) -> Deviation:
@@ -60,7 +63,14 @@ def deviation(front: FrontResult, comparison: Comparison) -> Deviation:
         max(means),
         balance,
         int(known.any(axis=1).sum()),
+        _average(front, comparison) if comparison.average else None,
     )
+
+
+def _average(front: FrontResult, comparison: Comparison) -> float:
+    square = np.average(front.K[:, 0] ** 2, weights=_weights(front))
+    expected = float(np.abs(comparison.K[:, 0]).mean())
+    return float(100.0 * (np.sqrt(square) / expected - 1.0))
 
 
 def _weights(front: FrontResult) -> FloatArray:

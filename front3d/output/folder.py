@@ -12,6 +12,7 @@ from front3d.output.charts.style import png, svg
 from front3d.output.files import file_names, prepare_folder, write_whole
 from front3d.output.rendering import why_no_pictures
 from front3d.output.scene import scene_png
+from front3d.output.skin import skin_vtp
 from front3d.output.summary import summary_json
 from front3d.output.tables import front_vtp, points_csv
 from front3d.results import Evaluation
@@ -55,6 +56,7 @@ def write_results(
     notes: list[str] = []
     if pictures and evaluation.fronts:
         makers |= _charts(evaluation)
+        makers["skin.vtp"] = lambda: skin_vtp(solid, evaluation.fronts)
         reason = why_no_pictures()
         if reason is None:
             makers |= _scenes(evaluation, solid)

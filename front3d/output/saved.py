@@ -149,10 +149,11 @@ def _front(about: Mapping[str, Any], rows: Rows, folder: Path) -> FrontResult:
 
 
 def _rings(rows: Rows) -> Rings | None:
-    count = sum(name.startswith("radius_ring_") for name in rows[0])
-    if not count:
+    # The table has as many columns as the front with most rings: the others are empty here.
+    columns = sum(name.startswith("radius_ring_") for name in rows[0])
+    numbers = [n for n in range(1, columns + 1) if rows[0][f"radius_ring_{n}"] != "nan"]
+    if not numbers:
         return None
-    numbers = range(1, count + 1)
     return Rings(
         np.stack([_column(rows, f"radius_ring_{ring}") for ring in numbers]),
         np.stack([_modes(rows, f"_ring_{ring}") for ring in numbers]),
@@ -163,6 +164,8 @@ def _rings(rows: Rows) -> Rings | None:
 def _comparison(about: Mapping[str, Any], rows: Rows) -> Comparison:
     name = about["solution"]
     nothing = np.full(len(rows), np.nan)
+    judged = np.ones(len(rows), dtype=bool)
+    judged[about["stations_left_out"]] = False
     return Comparison(
         solution=name,
         arguments=about["arguments"],
@@ -171,6 +174,8 @@ def _comparison(about: Mapping[str, Any], rows: Rows) -> Comparison:
         K=np.stack([_column(rows, f"{mode}_{name}", nothing) for mode in MODES], axis=1),
         angle=_column(rows, "phi_deg", nothing),
         notes=tuple(about["notes"]),
+        judged=judged,
+        average=about["average"],
     )
 
 

@@ -49,7 +49,7 @@ def summary(
         },
         "units": {"length": units.length, "stress": units.stress, "K": units.K_label},
         "options": plain(evaluation.options),
-        "versions": _versions(),
+        "versions": versions(),
         "fronts": [front_summary(front, units) for front in evaluation.fronts],
         "warnings": list(evaluation.warnings),
         "files": list(files),
@@ -116,7 +116,10 @@ def compared(front: FrontResult, comparison: Comparison) -> dict[str, Any]:
         "worst": worst,
         "mean_percent": found.mean,
         "mean_with_sign_percent": found.balance,
+        "average": comparison.average,
+        "average_percent": found.average,
         "stations_judged": found.judged,
+        "stations_left_out": np.flatnonzero(~comparison.judged).tolist(),
         "notes": list(comparison.notes),
     }
 
@@ -183,7 +186,7 @@ def _sha256(path: Path) -> str:
         ) from error
 
 
-def _versions() -> dict[str, str]:
+def versions() -> dict[str, str]:
     found = {"front3d": __version__, "python": platform.python_version()}
     for library in LIBRARIES:
         try:

@@ -65,7 +65,8 @@ def build(
     Parameters
     ----------
     name : a key of SAMPLES
-    cells : "bricks" (20 nodes, quarter-point wedges at the front), "tetra10" or "brick8"
+    cells : "bricks" (20 nodes, quarter-point wedges at the front), "tetra10", "brick8", "brick20"
+        (mid-side nodes in the middle at the front, too) or "tetra4"
     part : "full", or one of the sample's parts that end at symmetry planes
     progress : called with (stage, fraction of the stage)
     parameters : those of SAMPLES[name], in its units
@@ -75,7 +76,19 @@ def build(
     CaseError for a wrong name or parameter, or a load that a part cannot carry; MeshError or
     MethodError when the mesh cannot be solved.
     """
-    spec = sample_spec(name)
+    return build_from(sample_spec(name), cells=cells, part=part, progress=progress, **parameters)
+
+
+def build_from(
+    spec: SampleSpec,
+    *,
+    cells: str = "bricks",
+    part: str = WHOLE,
+    progress: Progress | None = None,
+    **parameters: float,
+) -> Sample:
+    """`build`, of a sample that need not be in SAMPLES."""
+    name = spec.name
     check_cells(cells)
     axes = part_axes(name, spec.parts, part)
     values = spec.values(parameters)

@@ -1,6 +1,7 @@
 """Quarter-elliptical corner cracks at a circular hole in a plate, under tension and bending."""
 
 from collections.abc import Mapping
+from dataclasses import replace
 
 import numpy as np
 
@@ -60,7 +61,7 @@ def _complete(given: Mapping[str, float | None]) -> Values:
     check_ratio(_NAME, "half_width / (hole_radius + length)",
                 values["half_width"] / (r + c), 2.0, 50.0)  # fmt: skip
     check_ratio(_NAME, "half_height / half_width",
-                values["half_height"] / values["half_width"], 1.0, 5.0)  # fmt: skip
+                values["half_height"] / values["half_width"], 1.0, 3.0)  # fmt: skip
     return values
 
 
@@ -71,6 +72,8 @@ def _mesh(values: Values, cells: str) -> Unfolded:
     radius = min(0.25 * a, 0.25 * c, 0.5 * smallest_radius(a, c), 0.4 * (t - a), 0.25 * r)
     shape = Quarter(a, c, radius, width=hole.half_width - r, depth=t)
     fine = density(cells, values["refine"], max(a, c) / min(a, c), closed=False)
+    if a > 0.6 * t:  # K climbs steeply towards the bore: 1.6 % there with the usual cells
+        fine = replace(fine, along=fine.along + 2)
     lattice = hole.bend(octant(shape, fine, *hole.heights))
     if values["cracks"] == 1:
         return half_cracked_solid(lattice, cells, _NAME)

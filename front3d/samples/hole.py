@@ -2,9 +2,9 @@
 
 The block, 0 <= x <= width above z = 0, becomes a quarter of the solid around the hole's axis, y:
 its face x = 0 the hole, its far face the outer boundary, and its top the plane x = 0 through the
-axis.  All surfaces x = const become circles (near the outer boundary of a plate: gradually its
-rectangle).  Up to `straight` heights stay what they are, so that nothing is stretched around the
-front, however small the hole; above, they turn into angles.
+axis.  Surfaces x = const become circles, which in a plate go over into its rectangle: linearly, so
+that mid-side nodes stay in the middle.  Up to `straight` heights stay what they are, so that
+nothing is stretched around the front, however small the hole; above, they turn into angles.
 """
 
 from dataclasses import dataclass, replace
@@ -58,7 +58,7 @@ class Hole:
         out[:, ::2] = self._circles(self.radius + x, z)
         if self.half_height is not None:
             gap = self._rectangle(z) - self._circles(np.full_like(z, self.half_width), z)
-            out[:, ::2] += (x / (self.half_width - self.radius))[:, None] ** 2 * gap
+            out[:, ::2] += (x / (self.half_width - self.radius))[:, None] * gap
         out[z == self.heights[-1], 0] = 0.0  # exactly in the plane of symmetry
         return replace(block, points=out + 0.0)
 

@@ -5,7 +5,7 @@ from collections.abc import Mapping
 import numpy as np
 
 from front3d.arrays import FloatArray
-from front3d.samples.cells import cracked_solid
+from front3d.samples.cells import cracked_solid, is_tetra
 from front3d.samples.fineness import density
 from front3d.samples.mirror import Unfolded
 from front3d.samples.octant import octant
@@ -47,7 +47,7 @@ def _complete(given: Mapping[str, float | None]) -> Values:
 def _mesh(values: Values, cells: str) -> Unfolded:
     a, b = values["ligament"], values["radius"]
     # Without quarter-points the error in K_III goes with the size of the cells over the radius.
-    radius = min((0.12 if cells == "tetra10" else 0.25) * a, 0.4 * (b - a))
+    radius = min((0.12 if is_tetra(cells) else 0.25) * a, 0.4 * (b - a))
     shape = Quarter(a, a, radius, width=b, depth=b, round=True, outside=True)
     fine = density(cells, values["refine"], 1.0, closed=True)
     return cracked_solid(octant(shape, fine, values["half_length"]), (0, 1), cells, _NAME)

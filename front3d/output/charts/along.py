@@ -136,20 +136,16 @@ def _draw(axes: "Axes", front: FrontResult, mode: int) -> None:
 
 
 def _other_methods(front: FrontResult) -> dict[str, FloatArray]:
-    """K of the methods whose K is not the reported one."""
+    """K of the methods whose K is not the reported one everywhere."""
     return {
-        name: method.K
-        for name, method in front.methods.items()
-        if not np.array_equal(method.K, front.K, equal_nan=True)
+        name: method.K for name, method in front.methods.items() if set(front.sources) != {name}
     }
 
 
 def reported_by(front: FrontResult) -> str:
-    """Name of the method whose K is reported."""
-    for name, method in front.methods.items():
-        if np.array_equal(method.K, front.K, equal_nan=True):
-            return METHOD_NAMES.get(name, name)
-    return "several methods"
+    """Name of the method whose K is reported, or of those that take turns."""
+    names = dict.fromkeys(front.sources)
+    return " / ".join(METHOD_NAMES.get(name, name) for name in names)
 
 
 def _also_fitted(front: FrontResult, mode: int) -> list[FloatArray]:

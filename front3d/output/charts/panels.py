@@ -50,7 +50,7 @@ def panel_heights(fronts: Sequence[FrontResult], modes: Sequence[int]) -> list[f
     for mode in modes[1:]:
         values = np.concatenate([front.K[:, mode] for front in fronts])
         small = np.nanmax(np.abs(values), initial=0.0) < LEAST_SPAN / 2 * largest
-        heights.append(1.1 if small else 1.7)
+        heights.append(1.25 if small else 1.7)
     return heights
 
 

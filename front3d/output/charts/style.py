@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 
 from front3d.arrays import FloatArray
-from front3d.results import CAUTION, FrontResult
+from front3d.results import CAUTION, FrontResult, free_surface_layer
 from front3d.units import Units
 
 if TYPE_CHECKING:
@@ -64,6 +64,7 @@ def new_figure(height: float, title: str, captions: Sequence[str], legend_rows: 
 def png(figure: "Figure") -> bytes:
     """PNG, 1200 pixels wide, legible at half that width."""
     out = io.BytesIO()
+    _settle(figure)
     figure.savefig(out, format="png")
     return out.getvalue()
 
@@ -73,9 +74,17 @@ def svg(figure: "Figure") -> bytes:
     from matplotlib import rc_context
 
     out = io.BytesIO()
+    _settle(figure)
     with rc_context({"svg.fonttype": "path", "svg.hashsalt": "front3d"}):
         figure.savefig(out, format="svg", metadata={"Date": None})
     return out.getvalue()
+
+
+def _settle(figure: "Figure") -> None:
+    """Lay out once: a second time, for another format, the layout may fail, and would differ."""
+    if figure.get_layout_engine() is not None:
+        figure.draw_without_rendering()
+        figure.set_layout_engine("none")
 
 
 def dress(axes: "Axes") -> None:
@@ -171,20 +180,14 @@ def widen(low: float, high: float, least: float) -> tuple[float, float]:
 
 
 def layer_lengths(front: FrontResult) -> tuple[float, float]:
-    """Arc lengths of the free-surface layers at the start and the end of a front; 0 elsewhere.
-
-    One half-width of the end station's weight: stations inside share their K with the surface
-    point, where none exists in the strict sense.  Without weights, the first cell.
+    """Arc lengths from the start and from the end of a front up to the last station at which a free
+    surface is felt; 0 at other ends.
     """
-    from front3d.crack.front import FREE_SURFACE
-
-    columns = front.methods["interaction"].columns if "interaction" in front.methods else {}
-    widths = columns.get("hat_interaction")
-    gaps = np.diff(front.s)
+    if front.closed:
+        return 0.0, 0.0
     found = []
-    for end, gap in zip((0, -1), (0, -1), strict=True):
-        if front.closed or not front.ends or front.ends[end] != FREE_SURFACE or not len(gaps):
-            found.append(0.0)
-        else:
-            found.append(float(gaps[gap] if widths is None else widths[end]))
+    for end, reach in ((0, front.s), (1, front.length - front.s)):
+        ends = tuple(name if i == end else "" for i, name in enumerate(front.ends))
+        layer = free_surface_layer(front.s, front.length, ends)
+        found.append(float(reach[layer].max(initial=0.0)))
     return found[0], found[1]
