@@ -15,7 +15,7 @@ from front3d.samples import SAMPLES, build
 from tests.test_samples_mesh import jacobian_ratio
 
 NAMES = ("through-crack", "collinear-row", "slanted-crack")
-ALLOWED = {"bricks": 0.01, "tetra10": 0.015}
+ALLOWED = {"bricks": 0.001, "tetra10": 0.0035}
 
 
 @cache
@@ -107,7 +107,8 @@ def test_plane_strain_plates_by_the_published_formulas(cells: str) -> None:
             assert deviation < ALLOWED[cells], x
         (front,) = fronts("through-crack", cells, crack=a, width=b, edge=1)
         deviation = np.abs(front.K[:, 0] / edge_crack(100.0, a, b) - 1).max()
-        assert deviation < ALLOWED[cells], x  # of which up to 0.6 % are the formula's
+        # Up to 0.6 % are the formula's: so far from it are the bricks.
+        assert deviation < {"bricks": 0.0065, "tetra10": 0.015}[cells], x
 
 
 @pytest.mark.slow
