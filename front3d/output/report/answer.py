@@ -13,6 +13,9 @@ from front3d.output.trust import agreement
 from front3d.results import CAUTION, FrontResult
 from front3d.units import Units
 
+_NOUGHT = 1e-5
+"""Part of the front's largest K below which the place of another mode's largest is scatter."""
+
 
 def heading(saved: Saved) -> Markup:
     return join(
@@ -74,6 +77,8 @@ def _largest_row(front: FrontResult, k: int, units: Units) -> list[Any]:
     row = [*start, levelled(values[i], most)]
     if units.K_factor is not None:
         row.append(levelled(values[i] * units.K_factor, most * units.K_factor))
+    if abs(values[i]) < _NOUGHT * most:
+        return [*row, "", "", "", "nought against the largest K"]
     row += [f"{front.s_rel[i]:.3f}", place(front.positions[i], front.length), front.flags[i]]
     plain = np.array([not flag for flag in front.flags]) & np.isfinite(values)
     inside = np.where(plain, np.abs(values), -1.0)
