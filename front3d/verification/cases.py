@@ -11,6 +11,7 @@ from itertools import product
 
 from front3d.verification.case import Case, Run
 from front3d.verification.measures import (
+    beside_interaction,
     beside_solutions,
     same_as_full,
     superposed,
@@ -63,6 +64,9 @@ def _exact() -> Iterator[Case]:
             "penny, tension", source, Run("penny", cells, compare=(penny,)), limit,
             quick=cells == "bricks",
         )  # fmt: skip
+        pressed = {"tension": 0.0, "face_pressure": 100.0}
+        run = Run("penny", cells, "full", pressed, ("penny:a={radius},tension={face_pressure}",))
+        yield _case("penny, pressed open", source, run, limit, quick=cells == "bricks")
         source = f"{EXACT}: Sneddon (1946), Kassir and Sih (1966)"
         run = Run("penny", cells, parameters={"tilt": 30.0}, compare=(lean,))
         yield _case("penny, load inclined by 30 degrees", source, run, limit)
@@ -183,6 +187,14 @@ def _laws() -> Iterator[Case]:
         "crack in a cylinder: with, less without, is pressed faces alone", "law: superposition",
         runs, superposed, limit, quick=False,
     )  # fmt: skip
+    for what, run in (
+        ("surface crack", Run("surface-crack", part="half", parameters={"bending": 0.0})),
+        ("crack in a cylinder, pressed faces", runs[0]),
+    ):
+        yield Case(
+            f"{what}: closure agrees, at the free surface too", "law: independent methods",
+            (run,), beside_interaction, {"closure": 2.0}, quick=what == "surface crack",
+        )  # fmt: skip
     source = f"{PUBLISHED}: Srawley (1976), ASTM E399, claimed within 0.5 %"
     for what, parameters in (
         ("free faces, thickness 2 W", {"thickness": 100.0}),

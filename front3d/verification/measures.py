@@ -67,6 +67,18 @@ def superposed(outcomes: Sequence[Outcome]) -> list[Measured]:
     return found
 
 
+def beside_interaction(outcomes: Sequence[Outcome]) -> list[Measured]:
+    """Every method against the interaction integral, at every station."""
+    found = []
+    for front in _fronts(outcomes[0]):
+        expected = front.methods["interaction"].K
+        for name, result in front.methods.items():
+            gap, scale = result.K - expected, float(np.abs(expected).max())
+            if name != "interaction":
+                found.append(_measured(name, front.step, front, gap, scale))
+    return found
+
+
 def thickness_average(outcomes: Sequence[Outcome]) -> list[Measured]:
     """Mean J over the thickness of a compact specimen against K^2/E' of ASTM E399, in per cent of
     K; and whether K is above its average in the middle and drops at the faces, where they are free.
@@ -89,7 +101,7 @@ def thickness_average(outcomes: Sequence[Outcome]) -> list[Measured]:
     k1 = front.methods["interaction"].K[:, 0]
     middle, faces = k1[len(k1) // 2], k1[[0, -1]]
     average = float(np.trapezoid(k1, front.s) / front.length)
-    free = values["free_sides"] and sample.material.poisson
+    free = values["free_sides"] > 0 and sample.material.poisson > 0
     if free and not (middle > average and (faces < average).all()):
         raise CaseError(
             f"{sample.name}: found K_I {middle:.4g} in the middle and {faces.max():.4g} at the "
