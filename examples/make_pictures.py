@@ -2,7 +2,8 @@
 
     python examples/make_pictures.py [FOLDER]
 
-Writes chart.png and scene.png into FOLDER (default: the folder pictures beside this file).
+Writes chart.png, through_thickness.png and scene.png into FOLDER (default: the folder pictures
+beside this file).
 """
 
 import argparse
@@ -26,7 +27,7 @@ def make(folder: Path) -> None:
         case = next(work.glob("*.toml"))
         call("evaluate", str(case), "--step", "tension", "--out", name)
         folder.mkdir(parents=True, exist_ok=True)
-        for picture in ("chart.png", "scene.png"):
+        for picture in ("chart.png", "through_thickness.png", "scene.png"):
             (folder / picture).write_bytes(reduced(work / picture))
 
 

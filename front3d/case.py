@@ -15,15 +15,18 @@ stress = "MPa"
 [options]
 crack_plane = "z=0"             # half model
 face_pressure = 0.0
+surface_pressure = 0.0          # where a front ends
 rings = [0.4, 0.6, 0.8]
 hat = 4
 up = [0, 0, 1]
 steps = ["tension"]
 methods = ["closure"]
+compare = ["penny:a=10,tension=100"]
 unopened = false
 ```
 """
 
+import json
 import tomllib
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field, fields, replace
@@ -49,11 +52,13 @@ class Case:
     stress: str | None = None
     crack_plane: Plane | None = None
     face_pressure: float | None = None
+    surface_pressure: float | None = None
     rings: tuple[float, ...] | None = None
     hat: float | None = None
     up: Vector | None = None
     steps: tuple[str, ...] | None = None
     methods: tuple[str, ...] | None = None
+    compare: tuple[str, ...] | None = None
     unopened: bool | None = None
     source: Path | None = field(default=None, compare=False)
 
@@ -72,12 +77,14 @@ class Case:
         return Options(
             crack_plane=self.crack_plane,
             face_pressure=self.face_pressure or 0.0,
+            surface_pressure=self.surface_pressure or 0.0,
             radii=self.rings,
             hat=self.hat,
             up=self.up,
             steps=self.steps,
             unopened=bool(self.unopened),
             methods=self.methods,
+            compare=self.compare or (),
         )
 
     @property
@@ -102,6 +109,34 @@ def read_case(path: Path) -> Case:
         )
     values["result"] = path.parent / values["result"]
     return Case(**values, source=path)
+
+
+def as_toml(case: Case) -> str:
+    """`case` as the text of a case file that stands beside its result."""
+    lines: list[str] = []
+    sections: list[str] = []
+    for key, check in _KEYS.items():
+        if isinstance(check, Mapping):
+            said = [_line(name, getattr(case, name)) for name in check]
+            if any(said):
+                sections += ["", f"[{key}]", *filter(None, said)]
+        else:
+            value = getattr(case, key)
+            lines += filter(None, [_line(key, value.name if isinstance(value, Path) else value)])
+    return "\n".join([*lines, *sections]) + "\n"
+
+
+def _line(key: str, value: Any) -> str:
+    return "" if value is None else f"{key} = {_toml(value)}"
+
+
+def _toml(value: Any) -> str:
+    if isinstance(value, Plane):
+        value = f"{','.join(map(repr, value.normal))}={value.offset!r}"
+    if isinstance(value, tuple):
+        return f"[{', '.join(map(_toml, value))}]"
+    # JSON's texts, numbers and booleans are TOML's.
+    return json.dumps(value)
 
 
 # --- what each key holds --------------------------------------------------------------------
@@ -169,11 +204,13 @@ _KEYS: Mapping[str, Any] = {
     "options": {
         "crack_plane": _plane,
         "face_pressure": _number,
+        "surface_pressure": _number,
         "rings": _list_of(_number, "a list of radii such as [0.2, 0.4]"),
         "hat": _number,
         "up": _vector,
         "steps": _list_of(_text, 'a list of step names such as ["step 1"]'),
         "methods": _list_of(_text, 'a list of method names such as ["closure"]'),
+        "compare": _list_of(_text, 'a list of texts such as ["penny:a=10,tension=100"]'),
         "unopened": _boolean,
     },
 }

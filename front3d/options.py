@@ -47,6 +47,7 @@ class Options:
     ----------
     crack_plane : symmetry plane that holds the crack, for a half model
     face_pressure : pressure on the crack faces, positive when it opens them
+    surface_pressure : pressure on the surface on which a front ends, positive when it pushes
     radii : outer radii of the rings; None takes them from the mesh
     hat : half-width, in cells along the front, of the weight of one station; None takes it from
         the mesh
@@ -56,20 +57,24 @@ class Options:
     unopened : evaluate coincident faces that never part in any step, too
     methods : the methods beside the interaction integral, which is always applied; None takes all
         that apply
+    compare : published solutions to put beside the fronts, as front3d.handbook.catalogue reads
+        them, such as "penny:a=10,tension=100"
     """
 
     crack_plane: Plane | None = None
     face_pressure: float = 0.0
+    surface_pressure: float = 0.0
     radii: tuple[float, ...] | None = None
     hat: float | None = None
     up: Vector | None = None
     steps: tuple[str, ...] | None = None
     unopened: bool = False
     methods: tuple[str, ...] | None = None
+    compare: tuple[str, ...] = ()
 
     @classmethod
     def from_words(cls, **words: Any) -> "Options":
-        """Options as a person writes them: a plane as "z=0", a single radius, step or method."""
+        """Options as a person writes them: a plane as "z=0", a single radius, step, method, ..."""
         known = [field.name for field in fields(cls)]
         for name in words:
             if name not in known:
@@ -78,7 +83,7 @@ class Options:
             words["crack_plane"] = Plane.parse(plane)
         if isinstance(radius := words.get("radii"), int | float):
             words["radii"] = (float(radius),)
-        for name in ("steps", "methods"):
+        for name in ("steps", "methods", "compare"):
             if isinstance(words.get(name), str):
                 words[name] = (words[name],)
         return cls(**words)
@@ -90,9 +95,10 @@ class Options:
             raise CaseError(f"ring radii: found {self.radii}, expected positive lengths")
         if self.hat is not None and not (isfinite(self.hat) and self.hat >= 1):
             raise CaseError(f"hat half-width: found {self.hat:g} cells, expected 1 or more")
-        if not isfinite(self.face_pressure):
-            raise CaseError(
-                f"face pressure: found {self.face_pressure}, expected a number in the stress unit"
-            )
+        for name in ("face_pressure", "surface_pressure"):
+            if not isfinite(value := getattr(self, name)):
+                raise CaseError(
+                    f"{name.replace('_', ' ')}: found {value}, expected a number in the stress unit"
+                )
         if self.up is not None and not any(self.up):
             raise CaseError("up: found a zero vector, expected a direction such as 0,0,1")

@@ -9,9 +9,18 @@ from front3d.crack import CrackModel, find_cracks
 from front3d.errors import CaseError, Front3DError, MeshError, MethodError
 from front3d.evidence import REPORTED, weigh
 from front3d.flags import front_warnings, station_flags
+from front3d.handbook.catalogue import parse
+from front3d.handbook.comparing import compare_fronts
+from front3d.handbook.placing import FrontShape
 from front3d.methods import METHODS, FrontContext
 from front3d.options import Options
-from front3d.results import Evaluation, FrontResult, MethodResult, energy_release_rate
+from front3d.results import (
+    Comparison,
+    Evaluation,
+    FrontResult,
+    MethodResult,
+    energy_release_rate,
+)
 from front3d.solid import Material, Solid, Step
 from front3d.units import Units
 
@@ -43,9 +52,11 @@ def evaluate_solid(
     options, units = options or Options(), units or Units()
     report = progress or _silent
     _check_methods(options)
+    requests = tuple(parse(text) for text in options.compare)
     steps = _chosen_steps(solid, options)
     report("finding the crack", 0.0)
     model = find_cracks(solid, options)
+    published, unlike = compare_fronts(requests, steps, _shapes(model), material.poisson)
     displacement = np.stack([step.displacement for step in steps])
     results: list[FrontResult] = []
     left_out: list[tuple[int, Front3DError]] = []
@@ -64,7 +75,11 @@ def evaluate_solid(
                 continue
             for index, step in enumerate(steps):
                 methods = {name: found[index] for name, found in by_method.items()}
-                results.append(_front_result(step, number, context, methods, refused))
+                beside = published.get((step.name, number), ())
+                unmatched = unlike.get((step.name, number), ())
+                results.append(
+                    _front_result(step, number, context, methods, beside, refused, unmatched)
+                )
             number += 1
     if not results:
         raise left_out[0][1]
@@ -90,6 +105,17 @@ def _chosen_steps(solid: Solid, options: Options) -> list[Step]:
             f"{solid.source}: found no step {missing[0]!r}; the file has {', '.join(by_name)}"
         )
     return [by_name[name] for name in options.steps]
+
+
+def _shapes(model: CrackModel) -> list[FrontShape]:
+    """What the fronts look like, in their order."""
+    shapes = []
+    for front in (front for fronts in model.fronts for front in fronts):
+        positions, frames, _ = front.curve.frames(front.corner_s)
+        shapes.append(
+            FrontShape(positions, frames, front.corner_s, front.length, front.closed, front.ends)
+        )
+    return shapes
 
 
 def _apply_methods(context: FrontContext) -> tuple[dict[str, list[MethodResult]], tuple[str, ...]]:
@@ -120,7 +146,9 @@ def _front_result(
     number: int,
     context: FrontContext,
     methods: Mapping[str, MethodResult],
+    published: tuple[Comparison, ...],
     refused: tuple[str, ...],
+    unmatched: tuple[str, ...],
 ) -> FrontResult:
     front, material = context.front, context.material
     positions, frames, _ = front.curve.frames(front.corner_s)
@@ -139,8 +167,9 @@ def _front_result(
         flags=station_flags(front, methods, evidence),
         methods=methods,
         sources=evidence.source,
-        warnings=front_warnings(front, methods, evidence, material),
+        warnings=(*unmatched, *front_warnings(front, methods, evidence, material)),
         notes=(*(f"{m.method}: {m.variant}" for m in methods.values() if m.variant), *refused),
+        comparisons=published,
     )
 
 

@@ -92,24 +92,37 @@ class Comparison:
     Attributes
     ----------
     solution : its name in the handbook, e.g. "newman-raju-surface"
-    arguments : the numbers it was asked for with
+    arguments : the numbers and directions it was asked for with
     source : author and year
     claim : the accuracy its authors claim, in words
     K : (n, 3) its K_I, K_II, K_III; NaN where it says nothing
     angle : (n,) parametric angle of the ellipse at the stations, degrees; NaN where there is none
     notes : what the reader must be warned of: range, known deviations and their evidence
+    judged : (n,) stations far enough from a free surface to be compared; all by default
+    average : whether the solution is one of the whole front, as for a test specimen
     """
 
     solution: str
-    arguments: Mapping[str, float]
+    arguments: Mapping[str, float | tuple[float, ...]]
     source: str
     claim: str
     K: FloatArray
     angle: FloatArray
     notes: tuple[str, ...] = ()
+    judged: BoolArray = field(default_factory=lambda: np.zeros(0, dtype=bool))
+    average: bool = False
 
     def __post_init__(self) -> None:
         _freeze(self, ("K", "angle"))
+        n = len(self.angle)
+        judged = np.array(self.judged, dtype=bool) if len(self.judged) else np.ones(n, dtype=bool)
+        judged.flags.writeable = False
+        object.__setattr__(self, "judged", judged)
+        if self.K.shape != (n, 3) or judged.shape != (n,):
+            raise MethodError(
+                f"comparison with {self.solution}: found K of shape {self.K.shape} and "
+                f"{len(judged)} stations judged for {n} angles"
+            )
 
 
 @dataclass(frozen=True, slots=True, eq=False)

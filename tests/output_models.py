@@ -105,5 +105,56 @@ def elliptic_front(
     )
 
 
+def curve_front(
+    positions: np.ndarray, normal: np.ndarray, K: np.ndarray, ends: tuple[str, str]
+) -> FrontResult:
+    """An open front through `positions`; it grows to the side that e1 = e2 x e3 gives."""
+    steps = np.linalg.norm(np.diff(positions, axis=0), axis=1)
+    s = np.concatenate([[0.0], np.cumsum(steps)])
+    e3 = np.gradient(positions, s, axis=0, edge_order=2)
+    e3 /= np.linalg.norm(e3, axis=1, keepdims=True)
+    e2 = np.tile(normal, (len(s), 1))
+    frames = np.stack([np.cross(e2, e3), e2, e3], axis=1)
+    G = energy_release_rate(K, STEEL)
+    rings = Rings(np.outer([1, 2, 3], np.ones(len(s))), np.stack([K, 0.99 * K, K]), [G, G, G])
+    methods = {
+        "interaction": MethodResult("interaction", K, {"hat_interaction": 0 * s + 0.6}, rings),
+        "closure": MethodResult("closure", 1.01 * K),
+    }
+    flags = tuple(ends[0] if x == 0 else ends[1] if x == s[-1] else "" for x in s)
+    return FrontResult(
+        "tension",
+        0,
+        False,
+        ends,
+        float(s[-1]),
+        s,
+        positions,
+        frames,
+        K,
+        G,
+        flags,
+        methods,
+        ("interaction",) * len(s),
+    )
+
+
+def corner_front(ends: tuple[str, str] = ("free surface", "free surface")) -> FrontResult:
+    """A quarter of an ellipse, 6 along x and 4 along y, from (6, 0) to (0, 4)."""
+    angle = np.linspace(0, np.pi / 2, 61)
+    cos, sin, zero = np.cos(angle), np.sin(angle), 0 * angle
+    K = np.stack([300 + 40 * np.sin(2 * angle), 8 * cos, zero], axis=1)
+    positions = np.stack([6 * cos, 4 * sin, zero], axis=1)
+    return curve_front(positions, np.array([0.0, 0.0, -1.0]), K, ends)
+
+
+def through_front(ends: tuple[str, str] = ("free surface", "free surface")) -> FrontResult:
+    """A slightly bowed front through a thickness of 10 along z; the solid is where x is larger."""
+    z = np.linspace(0, 10, 41)
+    K = np.stack([500 - 3 * (z - 5) ** 2, 6 * (z - 5), 0.16 * np.abs(z - 5) ** 3], axis=1)
+    positions = np.stack([3 + 0.4 * np.sin(np.pi * z / 10), 0 * z, z], axis=1)
+    return curve_front(positions, np.array([0.0, 1.0, 0.0]), K, ends)
+
+
 def evaluation_of(*fronts: FrontResult, units: Units = MILLIMETRES) -> Evaluation:
     return Evaluation("block.vtu", STEEL, units, fronts, {"radii": (0.1, 0.2, 0.3)}, ("check it",))

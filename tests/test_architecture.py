@@ -23,6 +23,7 @@ RANKS = [
     {"fields"},
     # Results are the records that the methods fill in; no mathematics of theirs: hence before.
     {"results"},
+    {"mixing"},
     {"methods"},
     {"handbook"},
     {"evidence"},
@@ -30,6 +31,7 @@ RANKS = [
     {"pipeline"},
     {"samples"},
     {"output"},
+    {"verification"},
     {"case"},
     {"cli"},
     {"__main__"},

@@ -1,11 +1,11 @@
 """The case file: what it holds, what it refuses and with which words."""
 
-from dataclasses import fields
+from dataclasses import fields, replace
 from pathlib import Path
 
 import pytest
 
-from front3d.case import Case, read_case
+from front3d.case import Case, as_toml, read_case
 from front3d.errors import CaseError
 from front3d.options import Options, Plane
 
@@ -21,6 +21,7 @@ stress = "MPa"
 [options]
 crack_plane = "z = 2"
 face_pressure = 5
+surface_pressure = -2.5
 rings = [0.2, 0.4]
 hat = 3
 up = [0, 0, -1]
@@ -43,6 +44,7 @@ def test_every_key_arrives(tmp_path: Path) -> None:
     assert case.options == Options(
         crack_plane=Plane((0, 0, 1), 2.0),
         face_pressure=5.0,
+        surface_pressure=-2.5,
         radii=(0.2, 0.4),
         hat=3.0,
         up=(0.0, 0.0, -1.0),
@@ -99,3 +101,17 @@ def test_what_is_wrong_is_named(tmp_path: Path, text: str, words: list[str]) -> 
 def test_a_missing_file_is_a_case_error(tmp_path: Path) -> None:
     with pytest.raises(CaseError, match="cannot be read"):
         read_case(tmp_path / "none.toml")
+
+
+def test_a_case_written_down_reads_back_as_itself(tmp_path: Path) -> None:
+    path = tmp_path / "again.toml"
+    for case in (
+        read_case(write(tmp_path, FULL)),
+        Case(result=Path('a "strange" name.vtu'), young=1e5, poisson=0.1 + 0.2),
+        Case(result=Path("b.vtu"), crack_plane=Plane.parse("1,0.1,-3=0.7"), rings=(1e-7, 2.0)),
+    ):
+        path.write_text(as_toml(case), encoding="utf-8")
+        again = read_case(path)
+        assert again.result is not None and case.result is not None
+        assert again.result.name == case.result.name
+        assert replace(again, result=None, source=None) == replace(case, result=None, source=None)

@@ -98,8 +98,8 @@ def test_flags_override_the_case_file(call: Call, result: Path, asked: Any) -> N
     case = case_file(result, '[options]\nface_pressure = 3\ncrack_plane = "z=0"\nhat = 2')
     code, _, _ = call(
         "evaluate", str(case), "--poisson", "0.2", "--face-pressure", "-1e1", "--up", "-1,0,0",
-        "--rings", "0.1,0.2", "--step", "displacement", "--method", "closure", "--unopened",
-        "--no-pictures", "--out", str(result.parent / "out"),
+        "--surface-pressure", "-2", "--rings", "0.1,0.2", "--step", "displacement",
+        "--method", "closure", "--unopened", "--no-pictures", "--out", str(result.parent / "out"),
     )  # fmt: skip
     assert code == 0
     _, material, options, _ = asked[0]
@@ -107,6 +107,7 @@ def test_flags_override_the_case_file(call: Call, result: Path, asked: Any) -> N
     assert options == Options(
         crack_plane=Plane((0, 0, 1), 0.0),
         face_pressure=-10.0,
+        surface_pressure=-2.0,
         hat=2.0,
         up=(-1.0, 0.0, 0.0),
         methods=("closure",),

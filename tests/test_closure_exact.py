@@ -3,7 +3,8 @@
 Quarter-point cells hold the field, so it may be imposed on every node.  Other cells do not: with
 the field imposed their nodal forces are those of its interpolant, and K comes out 14 to 50 % high
 at every size.  There the field is held around the block, and the error is first order in
-cells across: cells at the front blunt the field, and the held boundary feels it.
+cells across: cells at the front blunt the field, and the held boundary feels it.  That error is the
+finite elements' own: the interaction integral has the same on the same model.
 """
 
 from dataclasses import replace
@@ -12,7 +13,8 @@ from functools import cache
 import numpy as np
 import pytest
 
-from tests.closure_models import closed
+from front3d.methods import closure, interaction
+from tests.closure_models import closed, contexts
 from tests.meshes.held import near_tip_block
 from tests.meshes.structured import impose, straight
 from tests.reference import exact
@@ -35,11 +37,17 @@ def imposed(kind, n):
 
 
 @cache
-def held(kind, n, along=1, stretch=None):
+def block(kind, n, along=1, stretch=None, poisson=POISSON, tall=1.0, mirrored=False):
+    solid = near_tip_block(kind, n, YOUNG, poisson, along, stretch, tall, mirrored)
+    (context,) = contexts(solid, YOUNG, poisson, up=(0, 1, 0))
+    return context
+
+
+@cache
+def held(*args, method=closure, **options):
     """As `imposed`, with the field held around the block only."""
-    solid = near_tip_block(kind, n, YOUNG, POISSON, along, stretch)
-    _, K, found = closed(solid, YOUNG, POISSON, up=(0, 1, 0))
-    return K[:, K.shape[1] // 2], found
+    results = method.evaluate(block(*args, **options))
+    return np.array([r.K[len(r.K) // 2] for r in results]), results[0]
 
 
 def own(K):
@@ -91,8 +99,8 @@ SLOW = pytest.mark.slow
         pytest.param("collapsed", 20, 0.01, "collapsed 20-node bricks, mid-side nodes", marks=SLOW),
         pytest.param("mixed", 24, 0.01, "15-node wedges, mid-side nodes", marks=SLOW),
         pytest.param("pyramid13", 16, 0.01, "13-node pyramids, mid-side nodes", marks=SLOW),
-        # 6-node wedges are stiff: 1.3 % at 80 cells across.
-        pytest.param("wedge", 40, 0.025, "6-node wedges", marks=SLOW),
+        # 6-node wedges are stiff, as the interaction integral shows, too: 1.7 % at 40 cells across.
+        pytest.param("wedge", 80, 0.01, "6-node wedges", marks=SLOW),
     ],
 )
 def test_cells_without_quarter_points_converge(kind, n, allowed, name):
@@ -103,10 +111,40 @@ def test_cells_without_quarter_points_converge(kind, n, allowed, name):
     assert np.log2(own(coarse).max() / own(fine).max()) > 0.85
 
 
-@pytest.mark.parametrize("kind", ["hexahedron", "hexahedron20"])
-def test_modes_keep_apart_on_meshes_alike_above_and_below(kind):
-    K, _ = held(kind, 8)
-    assert others(K) < 1e-3
+CUT_ALIKE = [("wedge", 20, 1), ("wedge15", 8, 1), ("tetra10", 8, 2)]
+"""Kinds whose cells above the crack plane are no mirror images of those below."""
+
+
+@pytest.mark.parametrize(
+    ("kind", "n", "along", "mirrored"),
+    [("hexahedron", 24, 1, False), ("hexahedron20", 12, 1, False), ("wedge15", 12, 1, True)],
+)
+def test_the_error_is_that_of_the_finite_elements(kind, n, along, mirrored):
+    """K within 0.02 % of the interaction integral's on the same model, which is 1.5 to 1.8 % off;
+    the reason is in `signed_K`: in a mesh that repeats itself the work of closure is exact.
+    """
+    found = np.diag(held(kind, n, along, mirrored=mirrored)[0])
+    other = np.diag(held(kind, n, along, mirrored=mirrored, method=interaction)[0])
+    np.testing.assert_allclose(found, other, rtol=5e-4)
+    assert np.abs(other - 1.0).max() > 0.0145
+
+
+@pytest.mark.parametrize(("kind", "n", "along"), CUT_ALIKE)
+def test_the_work_of_all_modes_is_right_where_they_mix(kind, n, along):
+    """G of in-plane modes together, against the interaction integral.  Measured: 0.05 to 0.13 %."""
+    found, other = (
+        (held(kind, n, along, method=m)[0][:2, :2] ** 2).sum(axis=1) for m in (closure, interaction)
+    )
+    np.testing.assert_allclose(found, other, rtol=2e-3)
+
+
+@pytest.mark.parametrize(
+    ("kind", "n", "along", "mirrored"),
+    [("hexahedron", 8, 1, False), ("hexahedron20", 8, 1, False), *((*c, True) for c in CUT_ALIKE)],
+)
+def test_modes_keep_apart_where_cells_below_mirror_those_above(kind, n, along, mirrored):
+    K, _ = held(kind, n, along, mirrored=mirrored)
+    assert others(K) < 1e-6
 
 
 def test_what_a_symmetry_plane_holds_is_no_imbalance():
@@ -119,9 +157,12 @@ def test_what_a_symmetry_plane_holds_is_no_imbalance():
 
 
 def test_quadratic_tetrahedra_with_faces_ahead():
-    """Measured at 8 cells across: 2.2, 2.4 and 1.2 % for the modes themselves.  The cells of
-    this mesh are cut alike above and below, not as mirror images, and so mode I appears as a K_II
-    of 3.6 % at any size: sliding and force at the front, both due to the mesh.
+    """Measured at 8 cells across: 2.1, 2.3 and 1.2 % for the modes themselves; the interaction
+    integral has 2.3, 2.4 and 1.2 %.  The cells of this mesh are cut alike above and below, not as
+    mirror images, and so mode I appears as a K_II of 3.6 % at any size: the first cells slide and
+    shear by a share of K_I that only the mesh decides.  It is 0.13 % of G, which is right as a
+    whole, and is gone when the cells are mirrored; nothing that one row of cells holds tells it
+    from a true K_II.
     """
     K, found = held("tetra10", 8, along=2)
     assert found.variant == "10-node tetrahedra, faces of any shape"
@@ -155,13 +196,57 @@ def test_unequal_lengths_with_quarter_points(kind, stretch):
 
 @SLOW
 @pytest.mark.parametrize("stretch", STRETCHES)
-@pytest.mark.parametrize(
-    ("kind", "n", "allowed"), [("hexahedron", 48, 0.011), ("hexahedron20", 20, 0.005)]
-)
-def test_unequal_lengths_without_quarter_points(kind, n, allowed, stretch):
-    """Poisson's ratio 0.3, square cells at a ratio of 1: where the powers were measured.  At a
-    ratio of 2, 8-node bricks gain 1.1 % in mode I, just above the 1 % wanted; no power does better.
-    """
+@pytest.mark.parametrize(("kind", "n"), [("hexahedron", 48), ("hexahedron20", 20)])
+def test_unequal_lengths_without_quarter_points(kind, n, stretch):
+    """Measured: 0.5 % in all; part of it is the finite elements' own, as the cells are longer."""
     grown, found = growth(kind, n, stretch)
-    assert grown < allowed
+    assert grown < 0.007
     assert any("differ in length" in note for note in found.notes)
+
+
+def own_growth(stretch, *args, **options):
+    """(3,) growth by unequal lengths of the difference from the interaction integral's K."""
+    equal, unequal = (
+        np.diag(held(*args, **options, stretch=s)[0])
+        - np.diag(held(*args, **options, stretch=s, method=interaction)[0])
+        for s in (None, stretch)
+    )
+    return np.abs(unequal - equal).max()
+
+
+@SLOW
+@pytest.mark.parametrize("stretch", STRETCHES[:2])
+@pytest.mark.parametrize(
+    ("kind", "n", "poisson", "allowed"),
+    [
+        ("hexahedron", 24, 0.0, 0.01),
+        ("hexahedron", 24, 0.2, 0.01),
+        # Nearly incompressible, fully integrated linear bricks lock: 1.4 %, above the 1 % wanted.
+        ("hexahedron", 24, 0.45, 0.015),
+        ("hexahedron20", 12, 0.0, 0.01),
+        ("hexahedron20", 12, 0.2, 0.01),
+        ("hexahedron20", 12, 0.45, 0.0125),
+    ],
+)
+def test_unequal_lengths_at_other_poissons_ratios(kind, n, poisson, allowed, stretch):
+    """Ratio 2, error of closure itself.  Measured: 0.5 % up to 0.2, 1.4 and 1.2 % at 0.45."""
+    assert own_growth(stretch, kind, n, poisson=poisson) < allowed
+
+
+@SLOW
+@pytest.mark.parametrize("stretch", [(1.75, 1.0), (1.0, 1.75)])
+@pytest.mark.parametrize(
+    ("kind", "n", "allowed"),
+    [
+        ("hexahedron", 24, 0.01),
+        ("hexahedron20", 12, 0.01),
+        ("hexahedron27", 12, 0.01),
+        ("wedge15", 12, 0.01),
+        # Not of the kinds that the law was fitted to, and up to 1.6 % off: above the 1 % wanted.
+        ("wedge", 24, 0.018),
+    ],
+)
+def test_unequal_lengths_where_the_law_was_not_fitted(kind, n, allowed, stretch):
+    """Other kinds of cells, heights, Poisson's ratio and ratios of length than in POWER_FIT."""
+    options = {"poisson": 0.4, "tall": 1.5, "mirrored": kind.startswith("wedge")}
+    assert own_growth(stretch, kind, n, **options) < allowed

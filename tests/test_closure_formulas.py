@@ -1,4 +1,9 @@
-"""Each closed formula of crack closure against an example worked by hand."""
+"""Each closed formula of crack closure against an example worked by hand.
+
+8-node bricks and 6-node wedges; 20-node bricks and 15-node wedges with mid-side nodes; 27-node
+bricks; quarter-points; mid-side nodes at different places ahead and behind, or on one side only;
+unequal lengths; faces of any shape; G to K; nodal forces, loaded faces, body force, a half model.
+"""
 
 from dataclasses import replace
 
@@ -6,11 +11,21 @@ import numpy as np
 import pytest
 from scipy.integrate import quad
 
+from front3d.methods import closure
+from front3d.methods.closure_columns import find_columns, rows_of_nodes
 from front3d.methods.closure_forces import closing_forces, find_ligament
-from front3d.methods.closure_formulas import LENGTH_POWERS, mirrored_openings, signed_K
+from front3d.methods.closure_formulas import (
+    RISE_RANGE,
+    USUAL_RISE,
+    length_powers,
+    mirrored_openings,
+    rise,
+    signed_K,
+)
 from front3d.methods.closure_profile import front_offset, places_ahead
 from front3d.methods.closure_weights import build_tents
-from front3d.solid import Material
+from front3d.options import Plane
+from front3d.solid import CellBlock, Material, Solid, Step
 from tests.closure_models import contexts
 from tests.meshes.structured import curved, impose, straight
 
@@ -32,12 +47,22 @@ def test_eight_node_bricks():
 
 
 def test_faces_that_overlap_give_a_negative_K_I():
-    """Force and opening both negative: G is positive, K takes the sign of the opening; where
-    they disagree there is no K.  E' = 100000: G = 0.04 gives 63.2.
+    """Force and opening both negative: G is positive, K takes the sign of the opening.
+    E' = 100000: G = 0.04 gives 63.2.
     """
     material = Material(91000.0, 0.3)
-    K = signed_K(np.array([0.04, -0.01, 0.0]), np.array([-1e-3, 1e-3, 0.0]), material)
+    K = signed_K(np.array([0.04, 0.0, 0.0]), np.array([-1e-3, 1e-3, 0.0]), material)
     np.testing.assert_allclose(K, [-np.sqrt(4000.0), 0.0, 0.0])
+
+
+def test_a_mode_whose_force_and_opening_disagree_is_taken_from_the_others():
+    """By hand: 0.04 + 0.01 - 0.01 = 0.04 in all, shared 4 : 1, so 0.032 and 0.008; E' = 100000,
+    2 mu = 70000.  Nothing is left where the whole is below zero.
+    """
+    material, opening = Material(91000.0, 0.3), np.array([1e-3, 1e-3, -1e-3])
+    K = signed_K(np.array([[0.04, -0.01, 0.01], [0.01, -0.04, 0.0]]), opening, material)
+    np.testing.assert_allclose(K[0], [np.sqrt(3200.0), 0.0, -np.sqrt(560.0)])
+    assert not K[1].any()
 
 
 def test_twenty_node_bricks():
@@ -88,16 +113,51 @@ def test_quarter_point_weights_integrate_the_field_they_stand_for(A, B, p, q):
     np.testing.assert_allclose(F_0 * first + F_1 * second, expected, rtol=1e-9)
 
 
-def test_unequal_lengths():
-    """Krueger (2004), quarter-points: the opening goes with the root of the length.  By hand: 2 mm
-    ahead, 0.5 mm behind, so twice the opening.  Without quarter-points the powers are ours.
+def test_unequal_lengths_with_quarter_points():
+    """Krueger (2004): the opening goes with the root of the length.  By hand: 2 mm ahead, 0.5 mm
+    behind, so twice the opening.
     """
     quarter, far = np.full(3, 2e-3), np.full(3, 4e-3)
     equal = mirrored_openings(quarter, far, 1.0, 1.0, 0.25, 0.25)
     longer = mirrored_openings(quarter, far, 2.0, 0.5, 0.25, 0.25)
     np.testing.assert_allclose(longer, 2.0 * np.array(equal))
-    linear, _ = mirrored_openings(None, far, 2.0, 0.5, None, None)
-    np.testing.assert_allclose(linear, 4e-3 * 4.0 ** np.array(LENGTH_POWERS[1]))
+
+
+def test_unequal_lengths_without_quarter_points():
+    """Our own law.  By hand, 8-node bricks, twice as long ahead, openings 1.414 times as large at
+    twice the distance: a rise of 1/2, the power 0.321 + 0.686 / 2 - 0.061 ln 2 = 0.62172, and
+    2^0.62172 = 1.53870 times the opening.  20-node bricks, rises 0.6 and 0.5, half as long ahead:
+    0.144 + 0.369 * 0.6 + 0.417 / 2 + 0.050 ln 2 = 0.60856, and 2^-0.60856 = 0.65585.
+    """
+    near = np.array([[[3.0] * 3, [4.0] * 3]])
+    usual = np.array(USUAL_RISE[1])
+    over = rise(near, np.sqrt(2.0) * near, np.array([2.0, 2.0]), usual)
+    np.testing.assert_allclose(over, 0.5)
+    powers = length_powers(1, 2.0, over, over)
+    longer, _ = mirrored_openings(None, np.full(3, 4e-3), 2.0, 1.0, None, None, powers[0])
+    np.testing.assert_allclose(longer, 4e-3 * 1.53870, rtol=1e-5)
+    powers = length_powers(2, 0.5, np.array(0.6), np.array(0.5))
+    middle, far = np.full(3, 3e-3), np.full(3, 4e-3)
+    shorter = mirrored_openings(middle, far, 0.5, 1.0, 0.5, 0.5, powers)
+    np.testing.assert_allclose(shorter, 0.65585 * np.array([far, middle]), rtol=1e-5)
+
+
+def test_the_rise_of_a_mode_that_does_not_open_is_the_usual_one():
+    """Nor is one believed that no cell shows: 8 times over twice the distance is a rise of 3."""
+    near = np.array([[[1.0, 0.0, 1.0]]])
+    found = rise(near, np.array([[[8.0, 0.0, 1.0]]]), np.array([2.0]), np.array([0.5, 0.6, 0.7]))
+    np.testing.assert_allclose(found, [[RISE_RANGE[1], 0.6, RISE_RANGE[0]]])
+
+
+def test_mid_side_node_ahead_only():
+    """8-node bricks behind: the opening halfway is that of the square root.  By hand 4e-3 at the
+    far corner gives 2.82843e-3, and 2e-3 at a quarter.
+    """
+    far = np.full(3, 4e-3)
+    first, second = mirrored_openings(None, far, 1.0, 1.0, 0.5, None)
+    np.testing.assert_allclose([first[0], second[0]], [4e-3, 2.82843e-3], rtol=2e-6)
+    quarter = mirrored_openings(None, far, 1.0, 1.0, 0.25, None)
+    np.testing.assert_allclose(quarter, mirrored_openings(far / 2, far, 1.0, 1.0, 0.25, 0.25))
 
 
 @pytest.mark.parametrize(("ahead", "behind"), [(0.5, 0.25), (0.25, 0.5)])
@@ -161,6 +221,80 @@ def test_body_force_is_shared_by_both_sides():
     np.testing.assert_allclose(forces, [-1.0, -2.0, -1.0])
     # A corner's share of a unit brick is -1/8; four bricks at an end, eight in the middle.
     np.testing.assert_allclose(imbalance[:, 1], -4.0 * np.array([4, 8, 4]) * (-1 / 8))
+
+
+def test_a_half_model_counts_its_opening_twice():
+    """By hand: 2e-3 above the plane is an opening of 4e-3; along the plane nothing is counted."""
+    solid = block()
+    upper = [b.nodes[solid.points[b.nodes][:, :, 1].mean(axis=1) > 0] for b in solid.blocks]
+    used = np.unique(np.concatenate([nodes.ravel() for nodes in upper]))
+    cells = tuple(
+        CellBlock(b.kind, np.searchsorted(used, nodes))
+        for b, nodes in zip(solid.blocks, upper, strict=True)
+    )
+    points = solid.points[used]
+    moved = np.where(points[:, :1] < 0.0, [[7e-3, 2e-3, 0.0]], 0.0)
+    half = Solid(points, cells, (Step("half", moved),), source="half")
+    (context,) = contexts(half, crack_plane=Plane.parse("y=0"), up=(0, 1, 0))
+    at = context.model.same.entity[(points[:, 0] == -1.0) & (points[:, 1] == 0.0)]
+    np.testing.assert_allclose(closure.openings(context)[0, at], [[0.0, 4e-3, 0.0]] * 3)
+
+
+def columns_of(kind, n):
+    context, ligament, _, _ = front_forces(wide(kind, n))
+    columns = find_columns(context, ligament)
+    return context, ligament, columns
+
+
+def wide(kind, n):
+    """As `block`, n cells across: each 2 / n long."""
+    mesh = straight(kind, n, along=2, length=2.0)
+    return impose(mesh.solid, mesh.side, lambda x, _: 3.0 * x * [0.0, 1.0, 0.0])
+
+
+@pytest.mark.parametrize("kind", ["hexahedron", "wedge15", "hexahedron27"])
+def test_the_second_edge_behind_goes_straight_on(kind):
+    """By hand: cells half a unit long, so at x = -1; in a crack one cell deep there is none."""
+    context, _, columns = columns_of(kind, 4)
+    x = context.solid.points
+    expected = x[context.front.corners] - [1.0, 0.0, 0.0]
+    np.testing.assert_allclose(x[columns.beyond], expected, atol=1e-12)
+    assert (columns_of(kind, 2)[2].beyond == -1).all()
+
+
+def test_the_centre_of_a_27_node_bricks_face_counts_with_the_mid_side_nodes():
+    """Uniform stress 6 on a 9-node face of 1 x 1, by hand (Simpson's rule twice): corners 1/36,
+    sides 4/36, centre 16/36.  On row 1, halfway across, a unit length along the front holds
+    6 (4 + 16 + 4) / 36 = 4; of the cells ahead only.
+    """
+    context, ligament, columns = columns_of("hexahedron27", 2)
+    forces, _ = closing_forces(context, ligament)
+    row = rows_of_nodes(context, ligament, columns)
+    x, entity = context.solid.points, context.model.same.entity
+    first = np.unique(entity[(row == 1)])
+    z, ahead = x[first, 2], forces[0, first, 1]
+    assert set(x[first, 0]) == {0.5}
+    np.testing.assert_allclose(ahead[np.argsort(z)], 6 * np.array([4, 16, 8, 16, 4]) / 36)
+
+
+def test_faces_of_any_shape():
+    """Okada, Kawai and Araki (2008), on triangles.  By hand: two unit squares ahead, each cut in
+    two triangles that all touch the front, end 1 from it.  Force 10, -3, 8 at the middle node of
+    the front works on the opening 1 behind it, 4e-3, -2e-3, 1e-3; the tent has area 1:
+    2 G = 0.04, 0.006, 0.008.  Nodes at the end of the faces stay shut.
+    """
+    context, ligament, _, _ = front_forces(block("tetra"))
+    assert find_columns(context, ligament) is None
+    entity, x = context.model.same.entity, context.solid.points
+    forces, jump = np.zeros((1, len(x), 3)), np.zeros((1, len(x), 3))
+    forces[0, entity[context.front.corners]] = [-3.0, 10.0, 8.0]
+    forces[0, entity[np.isclose(x[:, 0], 1.0)]] = 1e6
+    behind = np.isclose(x[:, 0], -1.0) & (np.abs(x[:, 1]) < 1e-9)
+    jump[0, entity[behind]] = [-2e-3, 4e-3, 1e-3]
+    tents = build_tents(context, ligament, np.ones(3))
+    work, opening = closure._work_of_faces(context, ligament, tents, forces, jump)
+    np.testing.assert_allclose(work[0, 1], [0.04, 0.006, 0.008], rtol=1e-9)
+    np.testing.assert_allclose(np.abs(opening[0, 1]), [4e-3, 2e-3, 1e-3], rtol=1e-9)
 
 
 def test_each_station_gets_the_area_it_sweeps():

@@ -17,6 +17,7 @@ from front3d.handbook import infinite, plates, rows
 from front3d.samples import build
 from front3d.solid import Material
 from tests.meshes.row import row_of_cracks
+from tests.reference.tables import TABLES
 
 DATA = Path(__file__).parent / "data"
 
@@ -148,7 +149,7 @@ def test_a_row_of_collinear_cracks_on_tetrahedra():
 
 def table_values(load, a_c, a_t):
     """2 phi/pi and F of the high-order table: computed, not a published value (0.5 % inside)."""
-    with (DATA / "fe3d_surface.csv").open(newline="") as file:
+    with (TABLES / "fe3d_surface.csv").open(newline="") as file:
         lines = (line for line in file if not line.startswith("#"))
         rows_ = [
             (float(row["two_phi_over_pi"]), float(row["F"]))

@@ -1,101 +1,370 @@
-"""The chart: what it shows, read from the drawn objects and from the finished picture."""
+"""The charts: what they show, read from the drawn objects and from the finished picture."""
 
 import io
+from collections.abc import Callable, Iterator
+from dataclasses import replace
+from functools import cache
 from typing import Any
+from xml.etree import ElementTree
 
-import matplotlib
-import matplotlib.figure
 import matplotlib.image
 import numpy as np
 import pytest
 
-from front3d.output.charts import chart_png, mathtext
-from front3d.results import FrontResult
+from front3d.output.charts import charts_of
+from front3d.output.charts.along import along_front
+from front3d.output.charts.mix import mode_mix
+from front3d.output.charts.steps import over_steps
+from front3d.output.charts.style import mathtext, plain_text, png, svg
+from front3d.output.charts.through import through_thickness
+from front3d.output.shape import section_of
+from front3d.results import Comparison, FrontResult, MethodResult
 from front3d.units import Units
-from tests.output_models import MILLIMETRES, elliptic_front
+from tests.output_models import (
+    MILLIMETRES,
+    STEEL,
+    corner_front,
+    elliptic_front,
+    evaluation_of,
+    through_front,
+)
+
+SURFACE = elliptic_front(
+    1.6, 1.2, closed=False, flags={0: "free surface"}, ends=("free surface", "free surface")
+)
 
 
-@pytest.fixture
-def drawn(monkeypatch: pytest.MonkeyPatch) -> list[Any]:
-    """The figures that are drawn, in order."""
-    figures: list[Any] = []
-    real = matplotlib.figure.Figure.savefig
-
-    def keep(self: Any, *arguments: Any, **named: Any) -> Any:
-        figures.append(self)
-        return real(self, *arguments, **named)
-
-    monkeypatch.setattr(matplotlib.figure.Figure, "savefig", keep)
-    return figures
-
-
-def curves(figure: Any) -> dict[str, Any]:
-    (axes,) = figure.axes
-    return {line.get_label(): line for line in axes.lines if line.get_label().startswith("$")}
-
-
-def chart(front: FrontResult, units: Units, drawn: list[Any]) -> Any:
-    image = matplotlib.image.imread(io.BytesIO(chart_png(front, units)))
-    assert image.shape[1] == 1200
-    return drawn[-1]
+def busy() -> FrontResult:
+    """Everything that a chart can show: three methods, one with a gap, and a published solution."""
+    front = corner_front()
+    gap = np.array(0.98 * front.K)
+    gap[20:25] = np.nan
+    methods = dict(front.methods) | {"opening": MethodResult("opening", gap)}
+    published = Comparison(
+        "newman-raju-corner",
+        {"a": 4.0},
+        "Newman and Raju (1981)",
+        "5 %",
+        np.stack([1.03 * front.K[:, 0], *np.full((2, len(front)), np.nan)], axis=1),
+        np.degrees(np.arctan2(front.positions[:, 1] / 4, front.positions[:, 0] / 6)),
+    )
+    return replace(
+        front, methods=methods, comparisons=(published,), step="a step with a long name, $1"
+    )
 
 
-def test_curves_are_the_K_of_the_table(drawn: list[Any]) -> None:
-    front = elliptic_front(1.6, 1.2, closed=False)
-    lines = curves(chart(front, MILLIMETRES, drawn))
-    assert list(lines) == ["$K_I$", "$K_{II}$", "$K_{III}$"]
-    for k, line in enumerate(lines.values()):
-        assert np.array_equal(line.get_xdata(), front.s_rel)
-        assert np.array_equal(line.get_ydata(), front.K[:, k])
+BUSY = busy()
 
 
-def test_modes_differ_without_colour(drawn: list[Any]) -> None:
-    lines = curves(chart(elliptic_front(1.6, 1.2, closed=False), Units(), drawn)).values()
-    assert len({line.get_linestyle() for line in lines}) == 3
-    assert len({line.get_marker() for line in lines}) == 3
-    # and in brightness none is so light that a grey print loses it (contrast 3:1 on white,
-    # Web Content Accessibility Guidelines 2.1, criterion 1.4.11)
-    for line in lines:
-        rgb = np.array(matplotlib.colors.to_rgb(line.get_color()))
-        linear = np.where(rgb <= 0.04045, rgb / 12.92, ((rgb + 0.055) / 1.055) ** 2.4)
-        assert 1.05 / (linear @ [0.2126, 0.7152, 0.0722] + 0.05) >= 3.0
+def through(front: FrontResult, units: Units = MILLIMETRES) -> Any:
+    section = section_of(front)
+    assert section is not None
+    return through_thickness(front, section, units)
 
 
-def test_a_closed_front_comes_back_to_its_start(drawn: list[Any]) -> None:
-    front = elliptic_front(1.0, 1.0, closed=True)
-    line = curves(chart(front, Units(), drawn))["$K_I$"]
+def lines(axes: Any) -> dict[str, Any]:
+    return {
+        line.get_label(): line for line in axes.lines if not str(line.get_label()).startswith("_")
+    }
+
+
+# --- along the front -------------------------------------------------------------------------
+
+
+def test_curves_are_the_K_of_the_table_by_every_method() -> None:
+    panels = along_front(BUSY, MILLIMETRES).axes
+    assert len(panels) == 2  # K_III is nought throughout
+    for k, axes in enumerate(panels):
+        found = lines(axes)
+        expected = {
+            "reported (interaction integral)": BUSY.K,
+            "closure": BUSY.methods["closure"].K,
+            "opening profile": BUSY.methods["opening"].K,
+            "Newman and Raju (1981)": BUSY.comparisons[0].K,
+        }
+        for name, K in expected.items():
+            assert np.array_equal(found[name].get_xdata(), BUSY.s_rel)
+            assert np.array_equal(found[name].get_ydata(), K[:, k], equal_nan=True)
+        widths = {name: found[name].get_linewidth() for name in expected}
+        assert max(widths, key=lambda name: widths[name]) == "reported (interaction integral)"
+
+
+def test_ring_band_is_the_range_of_the_compared_rings() -> None:
+    band = along_front(SURFACE, MILLIMETRES).axes[0].collections[0]
+    (path,) = band.get_paths()
+    rings = SURFACE.methods["interaction"].rings
+    assert rings is not None
+    assert path.vertices[:, 1].max() == rings.K[1:, :, 0].max()
+    assert path.vertices[:, 1].min() == rings.K[1:, :, 0].min()
+
+
+def contrast_on_white(color: Any) -> float:
+    """Web Content Accessibility Guidelines 2.1, criterion 1.4.11."""
+    rgb = np.array(matplotlib.colors.to_rgb(color))
+    linear = np.where(rgb <= 0.04045, rgb / 12.92, ((rgb + 0.055) / 1.055) ** 2.4)
+    return float(1.05 / (linear @ [0.2126, 0.7152, 0.0722] + 0.05))
+
+
+def steps(*factors: float) -> list[FrontResult]:
+    return [replace(SURFACE, step=f"step{x}", K=x * SURFACE.K) for x in factors]
+
+
+FIGURES: dict[str, Callable[[], Any]] = {
+    "along": lambda: along_front(BUSY, MILLIMETRES),
+    "no units": lambda: along_front(SURFACE, Units()),
+    "closed": lambda: along_front(elliptic_front(1.5, 1.0, closed=True), MILLIMETRES),
+    "corner": lambda: through(BUSY),
+    "surface": lambda: through(SURFACE),
+    "shallow": lambda: through(
+        elliptic_front(9.0, 0.9, closed=False, ends=("free surface", "free surface"))
+    ),
+    "through": lambda: through(through_front()),
+    "mix": lambda: mode_mix(through_front(), MILLIMETRES, STEEL),
+    "two steps": lambda: over_steps(steps(1, 0.5), MILLIMETRES),
+    "seven steps": lambda: over_steps(steps(*np.linspace(1, 2, 7)), MILLIMETRES),
+}
+
+
+@cache
+def drawn(name: str) -> Any:
+    """A chart, laid out."""
+    figure = FIGURES[name]()
+    figure.draw_without_rendering()
+    return figure
+
+
+SLOW = [pytest.param(name, marks=pytest.mark.slow) for name in ("no units", "closed", "shallow")]
+
+
+@pytest.mark.parametrize("name", ["along", "through", "mix", "two steps"])
+def test_curves_differ_without_colour(name: str) -> None:
+    figure = drawn(name)
+    for axes in figure.axes:
+        curves = [line for line in lines(axes).values() if line.get_linestyle() != "None"]
+        styles = {(str(line._unscaled_dash_pattern), line.get_marker()) for line in curves}
+        assert len(styles) == len(curves)
+        for line in curves:
+            assert contrast_on_white(line.get_color()) >= 3.0
+
+
+def words_of(figure: Any) -> Iterator[Any]:
+    """Every text that is drawn: also of ticks, second axes and legends."""
+    yield from figure.texts
+    for legend in figure.legends:
+        yield from legend.get_texts()
+    todo = list(figure.axes)
+    while todo:
+        axes = todo.pop()
+        todo += axes.child_axes
+        yield from axes.texts
+        yield from axes.get_legend().get_texts() if axes.get_legend() else ()
+        for axis in (axes.xaxis, axes.yaxis):
+            yield axis.label
+            low, high = sorted(axis.get_view_interval())
+            for tick in axis.get_major_ticks():  # those beyond the limits are not drawn
+                if low <= tick.get_loc() <= high:
+                    yield from (tick.label1, tick.label2)
+
+
+@pytest.mark.parametrize(
+    "name",
+    ["along", "corner", "surface", "through", "mix", "two steps", "seven steps", *SLOW],
+)
+def test_words_are_legible_inside_and_do_not_overlap(name: str) -> None:
+    figure = drawn(name)
+    renderer = figure._get_renderer()
+    words = [text for text in words_of(figure) if text.get_visible() and text.get_text().strip()]
+    # 6 points at 600 pixels over 8 inches is 6 px tall; 9 px are read with ease (common practice).
+    assert min(text.get_fontsize() for text in words) * 600 / 8 / 72 >= 9
+    boxes = [(text.get_text(), text.get_window_extent(renderer)) for text in words]
+    assert len(boxes) > 8
+    whole = figure.bbox
+    for i, (text, box) in enumerate(boxes):
+        assert whole.x0 <= box.x0 + 1 and box.x1 <= whole.x1 + 1, text
+        assert whole.y0 <= box.y0 + 1 and box.y1 <= whole.y1 + 1, text
+        for other, its_box in boxes[i + 1 :]:
+            assert not box.padded(-1).overlaps(its_box.padded(-1)), (text, other)
+
+
+@pytest.mark.parametrize("name", ["along", "two steps", "seven steps", "through"])
+def test_legends_cover_no_panel(name: str) -> None:
+    figure = drawn(name)
+    (legend,) = figure.legends
+    box = legend.get_window_extent()
+    assert figure.bbox.x0 <= box.x0 and box.x1 <= figure.bbox.x1
+    for axes in figure.axes:
+        assert not box.overlaps(axes.get_tightbbox())
+
+
+def test_a_closed_front_comes_back_to_its_start() -> None:
+    front = elliptic_front(1.5, 1.0, closed=True)
+    line = lines(along_front(front, Units()).axes[0])["reported (interaction integral)"]
     assert line.get_xdata()[-1] == 1.0
     assert line.get_ydata()[-1] == front.K[0, 0]
 
 
-def test_units_ends_and_caution_are_written(drawn: list[Any]) -> None:
-    front = elliptic_front(1.6, 1.2, closed=False, flags={0: "flagged"})
-    figure = chart(front, MILLIMETRES, drawn)
-    (axes,) = figure.axes
-    assert "MPa" in axes.get_ylabel()
-    assert "mm" in axes.get_ylabel()
-    assert "mm" in axes.get_xlabel()
-    words = {text.get_text() for text in axes.texts}
-    assert {"free surface", "symmetry plane"} <= words
+def test_units_ends_layer_and_caution_are_written() -> None:
+    figure = drawn("along")
+    first, *_, last = figure.axes
+    assert "MPa" in first.get_ylabel() and "mm" in first.get_ylabel()
+    assert "mm" in last.get_xlabel()
+    assert [text.get_text() for text in last.texts] == ["free surface", "free surface"]
     assert any("engineering aid" in text.get_text() for text in figure.texts)
-    assert "flagged" in {text.get_text() for text in axes.get_legend().get_texts()}
-    smallest = min(text.get_fontsize() for text in [*figure.texts, *axes.texts])
-    # 6 points at 600 pixels over 8 inches is 6 px tall: the least that is read (common practice).
-    assert smallest * 600 / 8 / 72 >= 9
+    entries = {text.get_text() for text in figure.legends[0].get_texts()}
+    assert {"flagged", "free-surface layer", "range over rings"} <= entries
+    assert "nought throughout" in figure.texts[1].get_text()
+    unnamed = along_front(SURFACE, Units())
+    assert "[" not in unnamed.axes[0].get_ylabel()
 
 
-def test_words_do_not_overlap(drawn: list[Any]) -> None:
-    front = elliptic_front(1.6, 1.2, closed=False, flags={0: "flagged"}, step="a step with a name")
-    figure = chart(front, MILLIMETRES, drawn)
-    (axes,) = figure.axes
-    words = [*figure.texts, *axes.texts, axes.title, axes.xaxis.label, axes.yaxis.label]
-    boxes = [text.get_window_extent() for text in words] + [axes.get_legend().get_window_extent()]
-    whole = figure.bbox
-    for i, box in enumerate(boxes):
-        assert whole.x0 <= box.x0 and box.x1 <= whole.x1
-        assert whole.y0 <= box.y0 and box.y1 <= whole.y1
-        assert not any(box.overlaps(other) for other in boxes[i + 1 :])
+def test_parametric_angle_stands_above_where_the_front_is_an_ellipse() -> None:
+    (angles,) = [
+        child
+        for child in drawn("along").axes[0].child_axes
+        if "angle" in child.xaxis.label.get_text()
+    ]
+    labels = [label.get_text() for label in angles.get_xticklabels()]
+    ticks = dict(zip(labels, angles.get_xticks(), strict=True))
+    assert list(ticks) == [f"{angle}\N{DEGREE SIGN}" for angle in range(0, 91, 15)]
+    # at the station whose angle on the ellipse is 45 degrees
+    angle = np.arctan2(BUSY.positions[:, 1] / 4, BUSY.positions[:, 0] / 6)
+    nearest = int(np.argmin(np.abs(angle - np.pi / 4)))
+    assert ticks["45\N{DEGREE SIGN}"] == pytest.approx(BUSY.s_rel[nearest], abs=0.01)
+    straight = along_front(through_front(), MILLIMETRES).axes[0].child_axes
+    assert not [child for child in straight if "angle" in child.xaxis.label.get_text()]
 
 
-def test_the_root_is_drawn() -> None:
+def test_scatter_of_a_small_mode_is_not_blown_up() -> None:
+    """A mode of 1 % of the largest K takes a tenth of its panel at the most."""
+    K = np.array(SURFACE.K)
+    K[:, 1] = 4 * np.cos(40 * SURFACE.s_rel)
+    front = replace(SURFACE, K=K)
+    low, high = along_front(front, MILLIMETRES).axes[1].get_ylim()
+    assert high - low >= 0.1 * np.abs(K).max()
+
+
+# --- over the depth --------------------------------------------------------------------------
+
+
+def test_depth_chart_shares_its_depth_with_the_section() -> None:
+    figure = drawn("surface")
+    section, chart = figure.axes
+    assert section.get_ylim() == chart.get_ylim()
+    assert section.get_ylim()[0] > section.get_ylim()[1]  # downwards
+    assert section.get_position().y0 == chart.get_position().y0
+    assert section.get_position().height == chart.get_position().height
+    down, up = (line for name, line in lines(chart).items() if name.startswith("$K_I$"))
+    front = elliptic_front(1.6, 1.2, closed=False)
+    joined = np.concatenate([down.get_xdata(), up.get_xdata()[1:]])
+    assert np.array_equal(joined, front.K[:, 0])
+    depth = np.concatenate([down.get_ydata(), up.get_ydata()[1:]])
+    assert depth == pytest.approx(front.positions[:, 1], abs=1e-12)
+
+
+def test_section_is_true_to_scale_or_says_how_far_it_is_not() -> None:
+    for name in ("corner", "surface", "through"):
+        figure = drawn(name)
+        axes = figure.axes[0]
+        box = axes.get_window_extent()
+        width = box.width / np.ptp(axes.get_xlim())
+        height = box.height / abs(np.ptp(axes.get_ylim()))
+        label = axes.get_xlabel()
+        if "narrower" in label:
+            said = float(label.split("drawn ")[1].split(" ")[0])
+            assert height / width == pytest.approx(said, rel=0.05)
+        else:
+            assert height / width == pytest.approx(1.0, abs=0.021)
+    assert "narrower" in drawn("surface").axes[0].get_xlabel()
+    assert "narrower" not in drawn("corner").axes[0].get_xlabel()
+
+
+# --- mode mix and steps ----------------------------------------------------------------------
+
+
+def test_mix_chart_shows_angles_and_a_split_that_sums_to_G() -> None:
+    front = through_front()
+    figure = mode_mix(front, MILLIMETRES, STEEL)
+    angles, ways, energy = figure.axes
+    psi = lines(angles)[r"$\psi$ = atan2($K_{II}$, $K_I$)"]
+    assert psi.get_ydata() == pytest.approx(np.degrees(np.arctan2(front.K[:, 1], front.K[:, 0])))
+    assert set(lines(ways)) == {"kink, MTS", "kink, 3D", "twist, 3D"}
+    assert lines(energy)["G, sum"].get_ydata() == pytest.approx(front.G)
+    assert "MPa mm" in energy.get_ylabel()
+    words = figure.texts[1].get_text().replace("\n", " ")
+    assert "Erdogan and Sih (1963)" in words and "Kullmer and Fulland (2002)" in words
+
+
+def test_stations_without_a_direction_are_counted() -> None:
+    front = through_front()
+    K = np.array(front.K)
+    K[:3, 0] = -400
+    figure = mode_mix(replace(front, K=K), MILLIMETRES, STEEL)
+    assert f"3 of {len(front)} stations have no direction" in figure.texts[1].get_text()
+    assert np.isnan(lines(figure.axes[1])["kink, 3D"].get_ydata()[:3]).all()
+
+
+def test_steps_are_a_family_from_light_to_dark() -> None:
+    figure = drawn("seven steps")
+    family = [line for line in figure.axes[0].lines if len(line.get_xdata()) == len(SURFACE)]
+    assert len(family) == 7
+    contrasts = [contrast_on_white(line.get_color()) for line in family]
+    assert contrasts == sorted(contrasts)
+    entries = [text.get_text() for text in figure.legends[0].get_texts()]
+    assert entries[:3] == [
+        "step 1 of 7: step1.0",
+        "step 4 of 7: step1.5",
+        "step 7 of 7: step2.0",
+    ]
+
+
+# --- files -----------------------------------------------------------------------------------
+
+
+def test_which_charts_an_evaluation_gets() -> None:
+    alone = set(charts_of(evaluation_of(SURFACE)))
+    assert alone == {"chart", "through_thickness", "mode_mix"}
+    assert "through_thickness" not in charts_of(evaluation_of(elliptic_front(1, 1, closed=True)))
+    two = set(charts_of(evaluation_of(SURFACE, replace(SURFACE, step="bending"))))
+    assert "steps" in two
+    assert {name for name in two if name.startswith("chart")} == {
+        "chart_front0_tension",
+        "chart_front0_bending",
+    }
+
+
+def test_png_is_1200_pixels_wide_and_not_blank() -> None:
+    picture = matplotlib.image.imread(io.BytesIO(png(along_front(SURFACE, MILLIMETRES))))
+    assert picture.shape[1] == 1200
+    blue = np.abs(picture[..., :3] - matplotlib.colors.to_rgb("#0072B2")).max(axis=-1) < 0.02
+    assert blue.sum() > 1000  # the reported curve
+
+
+def test_of_many_steps_the_worst_has_its_own_charts() -> None:
+    found = charts_of(evaluation_of(*steps(1, 1.1, 1.2, 1.5, 1.4, 1.3, 1.2)))
+    assert set(found) == {
+        "steps",
+        *(f"{kind}_front0_step1.5" for kind in ("chart", "through_thickness", "mode_mix")),
+    }
+
+
+@pytest.mark.slow
+def test_svg_is_a_picture_that_is_the_same_in_every_run() -> None:
+    first, second = (svg(along_front(SURFACE, MILLIMETRES)) for _ in range(2))
+    assert first == second
+    root = ElementTree.fromstring(first)
+    assert root.tag.endswith("svg")
+    assert len(root.findall(".//{http://www.w3.org/2000/svg}path")) > 30
+
+
+@pytest.mark.slow
+def test_both_formats_have_the_same_layout() -> None:
+    figure = along_front(BUSY, MILLIMETRES)
+    png(figure)
+    after = svg(figure)
+    assert after == svg(along_front(BUSY, MILLIMETRES))
+
+
+def test_names_from_files_are_shown_as_they_are() -> None:
     assert mathtext("MPa sqrt(mm)") == r"MPa $\sqrt{\mathrm{mm}}$"
+    assert plain_text("cost in $\nper $x") == r"cost in \$ per \$x"
+    assert plain_text("x" * 99).endswith("...")

@@ -3,6 +3,7 @@
 import errno
 import json
 import os
+import re
 from pathlib import Path
 from typing import Any, Never
 
@@ -78,13 +79,17 @@ def test_tables_alone(tmp_path: Path) -> None:
 @pytest.fixture
 def without_graphics(monkeypatch: pytest.MonkeyPatch) -> None:
     monkeypatch.setattr(folder_module, "why_no_pictures", lambda: "left out: apt-get install egl")
-    monkeypatch.setattr(folder_module, "chart_png", lambda *_: b"chart")
+    names = folder_module.charts_of
+    monkeypatch.setattr(folder_module, "charts_of", lambda e: dict.fromkeys(names(e), object))
+    monkeypatch.setattr(folder_module, "png", lambda _: b"png")
+    monkeypatch.setattr(folder_module, "svg", lambda _: b"svg")
 
 
 @pytest.mark.usefixtures("without_graphics")
 def test_without_graphics_everything_else_is_written_and_it_is_said(tmp_path: Path) -> None:
     written = write_results(evaluation_of(FRONT), SOLID, tmp_path)
-    assert written.files == ("points.csv", "front.vtp", "chart.png", "summary.json")
+    charts = [f"{name}.{kind}" for name in ("chart", "mode_mix") for kind in ("png", "svg")]
+    assert written.files == ("points.csv", "front.vtp", *charts, "skin.vtp", "summary.json")
     assert written.notes == ("left out: apt-get install egl",)
 
 
@@ -95,7 +100,8 @@ def test_charts_of_an_earlier_run_do_not_stay(tmp_path: Path) -> None:
     steps = ["a/b", "A b", "a:b"]  # three names that one file system may take for one
     fronts = [elliptic_front(1.6, 1.2, closed=False, step=step) for step in steps]
     first = write_results(evaluation_of(*fronts), SOLID, tmp_path)
-    charts = [name for name in first.files if name.startswith("chart")]
+    charts = [name for name in first.files if re.fullmatch("chart.*png", name)]
+    assert {"steps.png", "mode_mix_front0_a_b.svg"} <= set(first.files)
     assert charts == ["chart_front0_a_b.png", "chart_front0_A_b_1.png", "chart_front0_a_b_2.png"]
     second = write_results(evaluation_of(FRONT), SOLID, tmp_path)
     assert {path.name for path in tmp_path.iterdir()} == {*second.files, other.name}

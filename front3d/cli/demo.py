@@ -3,14 +3,14 @@
 import argparse
 from typing import TYPE_CHECKING
 
-from front3d.case import read_case
+from front3d.case import Case, read_case
 from front3d.cli.command import Command
 from front3d.cli.evaluate import add_output_flags, evaluate_case
 from front3d.cli.sample import write
 from front3d.cli.words import describe_evaluation, describe_written, table
 
 if TYPE_CHECKING:
-    from front3d.results import Evaluation, FrontResult
+    from front3d.results import Comparison, Evaluation, FrontResult
 
 
 SAMPLE = "surface-crack"
@@ -22,20 +22,36 @@ def add_flags(parser: argparse.ArgumentParser) -> None:
 
 
 def run(arguments: argparse.Namespace) -> int:
+    from front3d.samples import SAMPLES
+
     _, case = write(SAMPLE, "bricks", {}, arguments.out)
+    asked = comparisons(SAMPLES[SAMPLE].values({}))
     evaluation, written = evaluate_case(
-        read_case(case), arguments.out, pictures=not arguments.no_pictures
+        read_case(case).overridden_by(Case(compare=asked)),
+        arguments.out,
+        pictures=not arguments.no_pictures,
     )
+    flags = "".join(f" --compare {text}" for text in asked)
     lines = [
         *describe_evaluation(evaluation),
         "",
         *compare(evaluation),
         "",
         *describe_written(written),
-        f"again: front3d evaluate {case} --out {arguments.out}",
+        f"again: front3d evaluate {case} --out {arguments.out}{flags}",
     ]
     print("\n".join(lines))
     return 0
+
+
+def comparisons(values: dict[str, float]) -> tuple[str, ...]:
+    """The published solution as `--compare` takes it, for each step of the sample."""
+    sizes = {"a": "depth", "c": "half_length", "t": "thickness", "b": "half_width"}
+    crack = ",".join(f"{symbol}={values[name]:g}" for symbol, name in sizes.items())
+    return tuple(
+        f"newman-raju-surface:{crack},{load}={values[load]:g},step={load}"
+        for load in ("tension", "bending")
+    )
 
 
 def compare(evaluation: "Evaluation") -> list[str]:
@@ -44,39 +60,32 @@ def compare(evaluation: "Evaluation") -> list[str]:
     The free surface itself is left out: the equation is not meant for it, and no K exists there
     in the strict sense.
     """
-    from front3d.samples import SAMPLES
-
-    values = SAMPLES[SAMPLE].values({})
-    a, c = values["depth"], values["half_length"]
-    lines = [
-        "K_I beside Newman and Raju (1981), an equation fitted to finite elements and claimed",
-        f"within 5 % of them; a = {a:g}, c = {c:g}, t = {values['thickness']:g}; "
-        "90 degrees is the deepest point",
-    ]
+    lines = []
     for front in evaluation.fronts:
-        lines += [f"step {front.step}", *table(_rows(front, values))]
+        for published in front.comparisons:
+            lines.append(
+                f"step {front.step}: K_I beside {published.source}; 90 degrees is the deepest point"
+            )
+            lines += table(_rows(front, published))
     return lines
 
 
-def _rows(front: "FrontResult", values: dict[str, float]) -> list[dict[str, float | str]]:
+def _rows(front: "FrontResult", published: "Comparison") -> list[dict[str, float | str]]:
     import numpy as np
 
-    from front3d.handbook import surface_crack
-
-    a, c, t, b = (values[k] for k in ("depth", "half_length", "thickness", "half_width"))
-    x, y, _ = front.positions.T
-    phi = np.arctan2(np.maximum(y, 0.0) / a, x / c)
-    nearest = [int(np.argmin(np.abs(np.degrees(phi) - angle))) for angle in ANGLES]
-    published = surface_crack(phi, a, c, t, b, **{front.step: values[front.step]})
-    return [
-        {
-            "degrees": f"{np.degrees(phi[i]):.1f}",
-            "K_I": f"{front.K[i, 0]:.2f}",
-            "published": f"{published[i]:.2f}",
-            "difference": f"{100 * (front.K[i, 0] / published[i] - 1):+.2f} %",
-        }
-        for i in nearest
-    ]
+    rows: list[dict[str, float | str]] = []
+    for angle in ANGLES:
+        i = int(np.argmin(np.abs(published.angle - angle)))
+        found, expected = front.K[i, 0], published.K[i, 0]
+        rows.append(
+            {
+                "degrees": f"{published.angle[i]:.1f}",
+                "K_I": f"{found:.2f}",
+                "published": f"{expected:.2f}",
+                "difference": f"{100 * (found / expected - 1):+.2f} %",
+            }
+        )
+    return rows
 
 
 COMMAND = Command(

@@ -4,7 +4,7 @@ import argparse
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from front3d.case import Case
+from front3d.case import Case, as_toml
 from front3d.cli.command import Command
 from front3d.cli.flags import add_evaluation_flags, case_of
 from front3d.cli.progress import progress_bar
@@ -78,7 +78,13 @@ def evaluate_case(case: Case, out: Path, *, pictures: bool) -> "tuple[Evaluation
         evaluation = evaluate_solid(solid, material, case.options, case.units, progress)
         inputs = [case.result, *([case.source] if case.source else [])]
         written = write_results(
-            evaluation, solid, out, inputs=inputs, pictures=pictures, progress=progress
+            evaluation,
+            solid,
+            out,
+            inputs=inputs,
+            case_file=as_toml(case),
+            pictures=pictures,
+            progress=progress,
         )
     return evaluation, written
 

@@ -4,6 +4,7 @@ import argparse
 import re
 from collections.abc import Sequence
 from pathlib import Path
+from typing import Any
 
 from front3d.case import Case, read_case
 from front3d.errors import CaseError
@@ -45,6 +46,25 @@ def vector(text: str) -> Vector:
     return (x, y, z)
 
 
+class _Compare(argparse.Action):
+    """Collects the solutions asked for; `help` lists what there is, and ends the program."""
+
+    def __call__(
+        self,
+        parser: argparse.ArgumentParser,
+        namespace: argparse.Namespace,
+        values: Any,
+        option_string: str | None = None,
+    ) -> None:
+        if values == "help":
+            from front3d.handbook.catalogue import described
+
+            print("\n".join(described()))
+            parser.exit()
+        before = getattr(namespace, self.dest) or []
+        setattr(namespace, self.dest, [*before, values])
+
+
 def add_crack_flags(parser: argparse.ArgumentParser) -> None:
     """What decides which crack is found."""
     parser.add_argument(
@@ -76,6 +96,12 @@ def add_evaluation_flags(parser: argparse.ArgumentParser) -> None:
         "--face-pressure", type=float, metavar="P", help="pressure on the crack faces, + opens"
     )
     parser.add_argument(
+        "--surface-pressure",
+        type=float,
+        metavar="P",
+        help="pressure on the surface on which the front ends, + pushes",
+    )
+    parser.add_argument(
         "--rings", type=numbers, metavar="R1,R2,..", help="radii of the integration domains"
     )
     parser.add_argument(
@@ -96,6 +122,14 @@ def add_evaluation_flags(parser: argparse.ArgumentParser) -> None:
         help="apply this one beside the interaction integral: closure or opening (may be repeated; "
         "default: all that apply; interaction: no other)",
     )
+    parser.add_argument(
+        "--compare",
+        action=_Compare,
+        dest="compare",
+        metavar="SOLUTION:NAME=VALUE,..",
+        help="put a published solution beside K, e.g. penny:a=10,tension=100 (may be repeated); "
+        "--compare help lists the solutions with their arguments",
+    )
     parser.add_argument("--length-unit", dest="length", metavar="UNIT", help="e.g. mm")
     parser.add_argument("--stress-unit", dest="stress", metavar="UNIT", help="e.g. MPa")
 
@@ -112,20 +146,30 @@ def case_of(arguments: argparse.Namespace) -> Case:
         if name not in ("result", "source")
         and (value := getattr(arguments, name, None)) is not None
     }
-    for name in ("steps", "methods"):
+    for name in ("steps", "methods", "compare"):
         if name in said:
             said[name] = tuple(said[name])
     flags = Case(**said)
     try:
-        _ = flags.options, flags.units
+        _check(flags)
     except CaseError as error:
         arguments.parser.error(str(error))
     path = Path(arguments.result)
     if path.suffix.lower() == ".toml":
         case = read_case(path).overridden_by(flags)
         try:
-            _ = case.options, case.units
+            _check(case)
         except CaseError as error:
             raise CaseError(f"{path}: {error}") from None
         return case
     return Case(result=path).overridden_by(flags)
+
+
+def _check(case: Case) -> None:
+    """CaseError where an option is out of range or a solution is not asked for as it should be."""
+    _ = case.options, case.units
+    if case.compare:
+        from front3d.handbook.catalogue import parse
+
+        for text in case.compare:
+            parse(text)

@@ -8,9 +8,11 @@ from front3d.cli.command import Command
 from front3d.cli.demo import COMMAND as DEMO
 from front3d.cli.evaluate import COMMAND as EVALUATE
 from front3d.cli.inspect import COMMAND as INSPECT
+from front3d.cli.report import COMMAND as REPORT
 from front3d.cli.sample import COMMAND as SAMPLE
+from front3d.cli.verify import COMMAND as VERIFY
 
-COMMANDS: tuple[Command, ...] = (DEMO, EVALUATE, INSPECT, SAMPLE)
+COMMANDS: tuple[Command, ...] = (DEMO, EVALUATE, INSPECT, REPORT, SAMPLE, VERIFY)
 
 _DESCRIPTION = (
     "Stress intensity factors K_I, K_II, K_III along the crack fronts of a finite-element result. "

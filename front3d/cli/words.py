@@ -6,7 +6,7 @@ from typing import TYPE_CHECKING, Any
 
 if TYPE_CHECKING:
     from front3d.output.folder import Written
-    from front3d.results import Evaluation, FrontResult
+    from front3d.results import Comparison, Evaluation, FrontResult
 
 
 def number(value: float, digits: int = 4) -> str:
@@ -96,11 +96,39 @@ def _describe_front(front: "FrontResult", evaluation: "Evaluation") -> list[str]
     said += methods
     if said:
         lines.append(f"  {'; '.join(said)}")
+    notes: dict[str, None] = {}
+    for comparison in front.comparisons:
+        lines += describe_comparison(front, comparison)
+        notes |= dict.fromkeys(comparison.notes)
+    lines += [f"    note: {note}" for note in notes]
     flagged = sum(bool(flag) for flag in front.flags)
     if flagged:
         lines.append(f"  {flagged} of {len(front)} stations are flagged, see points.csv")
     lines += [f"  note: {note}" for note in front.notes]
     return [*lines, *(f"  warning: {warning}" for warning in front.warnings)]
+
+
+def describe_comparison(front: "FrontResult", comparison: "Comparison") -> list[str]:
+    """The solution, its source and claim; the worst deviation and its place."""
+    from math import isfinite
+
+    from front3d.output.deviation import deviation
+
+    found = deviation(front, comparison)
+    head = f"  beside {comparison.solution} ({comparison.source}; claimed: {comparison.claim}):"
+    if not found.judged:
+        return [head, "    no station can be compared"]
+    i = found.station
+    angle = comparison.angle[i]
+    where = f"phi = {angle:.0f} degrees" if isfinite(angle) else f"s/L {front.s_rel[i]:.3f}"
+    lines = [
+        head,
+        f"    worst {found.worst:+.2f} % of its largest K ({found.mode}, {where}), mean "
+        f"{found.mean:.2f} %, {found.judged} of {len(front)} stations",
+    ]
+    if found.average is not None:
+        lines.append(f"    root mean square over the whole front {found.average:+.2f} %")
+    return lines
 
 
 def describe_written(written: "Written") -> list[str]:

@@ -1,10 +1,11 @@
-"""Surface cracks in plates: fitted equations."""
+"""Surface and embedded cracks in plates: fitted equations."""
 
 import numpy as np
 from numpy.typing import ArrayLike
 
-from front3d.arrays import BoolArray, FloatArray
+from front3d.arrays import FloatArray
 from front3d.handbook.checks import floats, require, require_sizes
+from front3d.handbook.fitted import Aspect, bending_share, surface_polynomial, surface_rise
 
 
 def surface_crack(
@@ -39,52 +40,60 @@ def surface_crack(
     """
     phi, a, c, t, b, s_t, s_b = floats(phi, a, c, t, b, tension, bending)
     require_sizes(a=a, c=c, t=t, b=b)
-    aspect, depth = a / c, a / t
-    require(aspect <= 2, "a/c", aspect, "at most 2")
+    aspect, depth = Aspect.of(a, c), a / t
+    require(aspect.ratio <= 2, "a/c", aspect.ratio, "at most 2")
     require(depth < 1, "a/t", depth, "below 1")
-    limit = 1.25 * (aspect + 0.6)
-    require((aspect > 0.2) | (depth < limit), "a/t", depth, "below 1.25 (a/c + 0.6)")
+    limit = 1.25 * (aspect.ratio + 0.6)
+    require((aspect.ratio > 0.2) | (depth < limit), "a/t", depth, "below 1.25 (a/c + 0.6)")
     require(c < 0.5 * b, "c/b", c / b, "below 0.5")
     require((phi >= -1e-12) & (phi <= np.pi + 1e-12), "phi", phi, "0 to pi")
 
-    sine, shallow = np.clip(np.sin(phi), 0.0, 1.0), aspect <= 1
-    # Each branch gets a ratio at most 1, so that the other one stays finite.
-    flat = np.where(shallow, aspect, 1.0)
-    steep = np.where(shallow, 1.0, c / a)
-    q = 1 + 1.464 * np.where(shallow, flat, steep) ** 1.65
-    m1 = np.where(shallow, 1.13 - 0.09 * flat, np.sqrt(steep) * (1 + 0.04 * steep))
-    m2 = np.where(shallow, -0.54 + 0.89 / (0.2 + flat), 0.2 * steep**4)
-    m3 = np.where(shallow, 0.5 - 1 / (0.65 + flat) + 14 * (1 - flat) ** 24, -0.11 * steep**4)
-    g = 1 + (0.1 + 0.35 * steep * depth**2) * (1 - sine) ** 2
-    cosine2 = np.cos(phi) ** 2
-    ellipse = np.where(shallow, sine**2 + flat**2 * cosine2, cosine2 + steep**2 * sine**2) ** 0.25
+    sine = np.clip(np.sin(phi), 0.0, 1.0)
     width = 1 / np.sqrt(np.cos(np.pi * c / (2 * b) * np.sqrt(depth)))
-    factor = (m1 + m2 * depth**2 + m3 * depth**4) * g * ellipse * width
-    h = _bending(sine, depth, flat, steep, shallow)
-    return (s_t + h * s_b) * np.sqrt(np.pi * a / q) * factor
+    rise = surface_rise(aspect, depth, sine)
+    factor = surface_polynomial(aspect, depth) * rise * aspect.angular(phi) * width
+    h = bending_share(aspect, depth, sine, leading=0.55)
+    return (s_t + h * s_b) * np.sqrt(np.pi * a / aspect.shape_factor) * factor
 
 
-def _bending(
-    sine: FloatArray,
-    depth: FloatArray,
-    flat: FloatArray,
-    steep: FloatArray,
-    shallow: BoolArray,
+def embedded_crack(
+    phi: ArrayLike,
+    a: ArrayLike,
+    c: ArrayLike,
+    t: ArrayLike,
+    b: ArrayLike = np.inf,
+    tension: ArrayLike = 0.0,
 ) -> FloatArray:
-    """H: the bending stress that counts, over its outer-fibre value."""
-    power = 0.2 + np.where(shallow, flat, steep) + 0.6 * depth
-    surface = np.where(
-        shallow,
-        1 - (0.34 + 0.11 * flat) * depth,
-        1
-        - (0.04 + 0.41 * steep) * depth
-        + (0.55 - 1.93 * steep**0.75 + 1.38 * steep**1.5) * depth**2,
-    )
-    g1 = np.where(shallow, -1.22 - 0.12 * flat, -2.11 + 0.77 * steep)
-    g2 = np.where(
-        shallow,
-        0.55 - 1.05 * flat**0.75 + 0.47 * flat**1.5,
-        0.55 - 0.72 * steep**0.75 + 0.14 * steep**1.5,
-    )
-    deepest = 1 + g1 * depth + g2 * depth**2
-    return surface + (deepest - surface) * sine**power
+    """K_I = S sqrt(pi a/Q) F of an elliptical crack at mid-thickness of a plate.
+
+    Parameters
+    ----------
+    phi : parametric angle, radians, any: 0 on the axis along the width, pi/2 towards the faces
+    a, c : semi-axes along the thickness and along the width
+    t, b : half the thickness and half the width of the plate
+    tension : remote stress S
+
+    Range: c/b < 0.5, a/t < 1, and a/t < 1.25 (a/c + 0.6) where a/c <= 0.2.  Claimed within 3 % for
+    a/t < 0.8.  High-order finite elements made for this project differ by up to 2 % of the
+    largest K of the front for a/t <= 0.5 and 4.4 % at a/t = 0.8.
+
+    Source: Newman and Raju, NASA TM-83200 (1981), TM-85793 (1984).  From memory; the exact
+    ellipse is its limit.
+    """
+    phi, a, c, t, b, stress = floats(phi, a, c, t, b, tension)
+    require_sizes(a=a, c=c, t=t, b=b)
+    aspect, depth = Aspect.of(a, c), a / t
+    ratio = aspect.ratio
+    require(depth < 1, "a/t", depth, "below 1 (t is half the thickness)")
+    limit = 1.25 * (ratio + 0.6)
+    require((ratio > 0.2) | (depth < limit), "a/t", depth, "below 1.25 (a/c + 0.6)")
+    require(c < 0.5 * b, "c/b", c / b, "below 0.5")
+
+    m1 = np.sqrt(aspect.steep)
+    m2 = 0.05 / (0.11 + ratio**1.5)
+    m3 = 0.29 / (0.23 + ratio**1.5)
+    off_axis = np.abs(np.cos(phi)) / (1.0 + 4.0 * ratio)
+    g = 1.0 - depth**4 * np.sqrt(2.6 - 2.0 * depth) * off_axis
+    width = 1 / np.sqrt(np.cos(np.pi * c / (2 * b) * np.sqrt(depth)))
+    factor = (m1 + m2 * depth**2 + m3 * depth**4) * g * aspect.angular(phi) * width
+    return stress * np.sqrt(np.pi * a / aspect.shape_factor) * factor

@@ -16,6 +16,7 @@ from front3d.methods.context import FrontContext
 from front3d.methods.face_rules import PLAIN, graded_rule, touching_sides
 from front3d.methods.nodal_forces import N_MODES, PRESSED, Rule, cell_forces, face_forces
 from front3d.methods.surfaces import SurfaceTerm
+from front3d.methods.terms import CURVATURE, included
 from front3d.methods.tube import Tube
 
 CELL_RULE, FACE_RULE = 3, 8
@@ -43,7 +44,9 @@ class Assembly:
         )
         self._on_front = on_front_mask(context.front, context.model.same)
         self._curve = context.front.curve.arrays
-        self._elastic = (context.material.shear_modulus, context.material.poisson)
+        material = context.material
+        turn = 1.0 if included(CURVATURE) else 0.0
+        self._constants = (material.shear_modulus, material.poisson, turn)
         self.forces = np.zeros((len(moved), N_MODES, len(tube.nodes), 3))
 
     def add_cells(self) -> None:
@@ -57,7 +60,7 @@ class Assembly:
                 status = np.zeros(len(cells), np.int64)
                 cell_forces(
                     self._points, cells, *self._beside(cells), self._displacement, rule,
-                    self._curve, self._elastic, out, status,
+                    self._curve, self._constants, out, status,
                 )  # fmt: skip
                 if status.any():
                     bad = int(np.flatnonzero(status)[0])
@@ -84,7 +87,7 @@ class Assembly:
                 out = self._room(cells)
                 face_forces(
                     self._points, cells, *self._beside(cells), self._displacement, rule, tangents,
-                    term.kind, term.pressure, self._curve, self._elastic, out,
+                    term.kind, term.pressure, self._curve, self._constants, out,
                 )  # fmt: skip
                 self._sum(cells, out)
 

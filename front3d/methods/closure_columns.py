@@ -12,8 +12,17 @@ from front3d.arrays import FloatArray, IntArray
 from front3d.crack.facetable import FaceTable
 from front3d.crack.front import Front
 from front3d.methods.closure_forces import Ligament, face_nodes, mode_axes
-from front3d.methods.closure_formulas import mirrored_openings
+from front3d.methods.closure_formulas import (
+    QUARTER,
+    USUAL_RISE,
+    length_powers,
+    mirrored_openings,
+    rise,
+)
 from front3d.methods.context import FrontContext
+
+STRAIGHT = 0.9
+"""Smallest cosine of the turn between two edges behind the front that count as one line."""
 
 NOT_COUNTED = 2
 """Row of the nodes whose opening is zero once the crack is closed by one face."""
@@ -26,10 +35,12 @@ class Columns:
     Attributes
     ----------
     ahead, behind : (n_stations, 2) mid-side node (-1 if none) and far corner
+    beyond : (n_stations,) far corner of the next edge behind, -1 where there is none
     """
 
     ahead: IntArray
     behind: IntArray
+    beyond: IntArray
 
 
 def find_columns(context: FrontContext, ligament: Ligament) -> Columns | None:
@@ -45,7 +56,8 @@ def find_columns(context: FrontContext, ligament: Ligament) -> Columns | None:
         if columns is None:
             return None
         sides.append(columns)
-    return Columns(*sides)
+    ahead, behind = sides
+    return Columns(ahead, behind, _next_behind(context, ligament, behind))
 
 
 def _edges_across(context: FrontContext, ligament: Ligament, faces: FaceTable) -> IntArray | None:
@@ -64,6 +76,32 @@ def _edges_across(context: FrontContext, ligament: Ligament, faces: FaceTable) -
         return None
     row = np.argsort(start)[np.argsort(np.argsort(stations))]
     return leaving[row][:, [2, 1]]
+
+
+def _next_behind(context: FrontContext, ligament: Ligament, behind: IntArray) -> IntArray:
+    """(n_stations,) node at the end of the crack-face edge that goes straight on from the far
+    corner behind each station; -1 where none does.
+    """
+    entity, x = context.model.same.entity, context.solid.points
+    stations, far = context.front.corners, behind[:, 1]
+    ends = context.patch.upper.sides()[0].reshape(-1, 3)[:, :2]
+    both = np.concatenate([ends, ends[:, ::-1]])
+    passed = np.unique(entity[ligament.behind.corners])
+    both = both[np.isin(entity[both[:, 0]], entity[far]) & ~np.isin(entity[both[:, 1]], passed)]
+    start = entity[both[:, 0]]
+    order = np.argsort(start, kind="stable")
+    first = np.searchsorted(start[order], entity[far], "left")
+    last = np.searchsorted(start[order], entity[far], "right")
+    out = np.full(len(stations), -1)
+    for k in range(len(stations)):
+        candidates = both[order[first[k] : last[k]], 1]
+        if not len(candidates):
+            continue
+        on, off = x[candidates] - x[far[k]], x[far[k]] - x[stations[k]]
+        straight = on @ off / (np.linalg.norm(on, axis=1) * np.linalg.norm(off))
+        if straight.max() > STRAIGHT:
+            out[k] = candidates[np.argmax(straight)]
+    return out
 
 
 def rows_of_nodes(context: FrontContext, ligament: Ligament, columns: Columns) -> IntArray:
@@ -91,26 +129,66 @@ def column_openings(
     openings : (steps, n_stations, 2, 3) for rows 0 and 1, along the axes of the modes
     far : (steps, n_stations, 3) the opening itself at the far corner behind
     """
-    entity = context.model.same.entity
     place, axes = mode_axes(front, front.corner_s)
     n = len(front.corners)
+    at_far = _along_modes(context, columns.behind[:, 1], axes, jump)
+    at_middle = _along_modes(context, columns.behind[:, 0], axes, jump)
+    ahead, behind = (
+        [length_and_middle(context, place[k], nodes[k]) for k in range(n)]
+        for nodes in (columns.ahead, columns.behind)
+    )
+    within, over = _rises(context, columns, axes, jump, behind)
     openings = np.empty((len(jump), n, 2, 3))
-    fars = np.empty((len(jump), n, 3))
-    for station in range(n):
-        (length_a, middle_a), (length_b, middle_b) = (
-            length_and_middle(context, place[station], nodes[station])
-            for nodes in (columns.ahead, columns.behind)
-        )
-        at_far = jump[:, entity[columns.behind[station, 1]]] @ axes[station].T
-        at_middle = (
-            None
-            if middle_b is None
-            else jump[:, entity[columns.behind[station, 0]]] @ axes[station].T
-        )
-        first, second = mirrored_openings(at_middle, at_far, length_a, length_b, middle_a, middle_b)
-        openings[:, station, 0], openings[:, station, 1] = first, second
-        fars[:, station] = at_far
-    return openings, fars
+    for k, ((length_a, middle_a), (length_b, middle_b)) in enumerate(
+        zip(ahead, behind, strict=True)
+    ):
+        powers: FloatArray | float = 0.5
+        if middle_a is None or middle_a >= QUARTER:
+            order = 1 if middle_a is None else 2
+            powers = length_powers(order, length_a / length_b, within, over)
+        openings[:, k, 0], openings[:, k, 1] = mirrored_openings(
+            None if middle_b is None else at_middle[:, k],
+            at_far[:, k], length_a, length_b, middle_a, middle_b, powers,
+        )  # fmt: skip
+    return openings, at_far
+
+
+def _along_modes(
+    context: FrontContext, nodes: IntArray, axes: FloatArray, jump: FloatArray
+) -> FloatArray:
+    """(steps, n_stations, 3) openings at one node per station, along the axes of the modes."""
+    at = jump[:, context.model.same.entity[nodes]]
+    local: FloatArray = np.einsum("tnk,nik->tni", at, axes)
+    return local
+
+
+def _rises(
+    context: FrontContext,
+    columns: Columns,
+    axes: FloatArray,
+    jump: FloatArray,
+    behind: list[tuple[float, float | None]],
+) -> tuple[FloatArray, FloatArray]:
+    """(steps, 3) `rise` of the opening within the first cells behind, and over the first two."""
+    x, (middle, far), beyond = context.solid.points, columns.behind.T, columns.beyond
+    length = np.array([edge for edge, _ in behind])
+    at = {
+        name: _along_modes(context, nodes, axes, jump)
+        for name, nodes in (("middle", middle), ("far", far), ("beyond", beyond))
+    }
+    found = []
+    inner = np.array([1.0 if part is None else part for _, part in behind])
+    outer = 1.0 + np.linalg.norm(x[beyond] - x[far], axis=1) / length
+    for near, further, ratio, chosen, usual in (
+        ("middle", "far", 1.0 / inner, middle >= 0, USUAL_RISE[0]),
+        ("far", "beyond", outer, beyond >= 0, USUAL_RISE[1]),
+    ):
+        if not chosen.any():
+            found.append(np.broadcast_to(usual, (len(jump), 3)))
+            continue
+        pairs = at[near][:, chosen], at[further][:, chosen]
+        found.append(rise(*pairs, ratio[chosen], np.array(usual)))
+    return found[0], found[1]
 
 
 def length_and_middle(

@@ -44,7 +44,8 @@ def column_notes(context: FrontContext, columns: Columns) -> tuple[str, ...]:
         return ()
     return (
         f"closure: cells ahead of and behind the front differ in length by up to {ratio:.2g} "
-        "times; without quarter-points this is made up for only in part",
+        "times; without quarter-points the law that makes up for it leaves up to 2 % of K at a "
+        "ratio of 2",
     )
 
 

@@ -24,9 +24,9 @@ N_MODES = 4
 Rule = tuple[FloatArray, FloatArray, FloatArray]
 """Shape functions (q, nodes), their reference gradients (q, nodes, 3), and weights (q,)."""
 
-FREE, PRESSED, CUT = 0, 1, 2
-"""What is known of a face: no traction; a crack face under a given pressure; or nothing, so that
-its traction is taken from the stresses."""
+OUTER, PRESSED, CUT = 0, 1, 2
+"""What is known of a face: an outer surface under a given pressure or none; a crack face under a
+given pressure; or nothing, so that its traction is taken from the stresses."""
 
 
 @kernel
@@ -66,13 +66,17 @@ def _look(
     seed: float,
     side: int,
     curve: CurveArrays,
+    turn: float,
     place: FloatArray,
     frame: FloatArray,
     turning: FloatArray,
 ) -> tuple[float, float, float]:
-    """Frame of the front nearest to x; returns its arc length, and radius and angle of x in it."""
+    """Frame of the front nearest to x, its turning times `turn`; returns its arc length, and radius
+    and angle of x in it.
+    """
     s, _ = nearest(x, seed, curve)
     frame_at(s, curve, place, frame, turning)
+    turning *= turn
     x1, x2 = 0.0, 0.0
     for i in range(3):
         x1 += (x[i] - place[i]) * frame[0, i]
@@ -203,18 +207,18 @@ def cell_forces(
     displacement: FloatArray,
     rule: Rule,
     curve: CurveArrays,
-    elastic: tuple[float, float],
+    constants: tuple[float, float, float],
     out: FloatArray,
     status: IntArray,
 ) -> None:
     """Volume part of F for every cell.
 
     cells (n, nodes); side (n,) of the crack; seed (n,) arc length near each cell; displacement
-    (steps, points, 3); elastic: shear modulus and Poisson's ratio.  Fills out, (n, steps,
-    N_MODES, nodes, 3), and status, (n,): 0, or 1 + the Gauss point where the Jacobian is not
-    positive.
+    (steps, points, 3); constants: shear modulus, Poisson's ratio, and 1, or 0 to leave the turning
+    of the frame out.  Fills out, (n, steps, N_MODES, nodes, 3), and status, (n,): 0, or 1 + the
+    Gauss point where the Jacobian is not positive.
     """
-    shear, poisson = elastic
+    shear, poisson, turn = constants
     lame = 2.0 * shear * poisson / (1.0 - 2.0 * poisson)
     values, gradients, weights = rule
     for c in numba.prange(len(cells)):
@@ -233,7 +237,7 @@ def cell_forces(
             if not det > 0.0:
                 status[c] = 1 + g
                 break
-            s, r, angle = _look(x, s, side[c], curve, place, frame, turning)
+            s, r, angle = _look(x, s, side[c], curve, turn, place, frame, turning)
             auxiliary(
                 r, angle, turning, shear, poisson,
                 aux_gradient, aux_stress, divergence, incompatibility, work,
@@ -279,7 +283,7 @@ def face_forces(
     kind: int,
     pressure: float,
     curve: CurveArrays,
-    elastic: tuple[float, float],
+    constants: tuple[float, float, float],
     out: FloatArray,
 ) -> None:
     """Surface part of F for one face of every cell: - int P_kj n_j phi_n dA.
@@ -287,11 +291,12 @@ def face_forces(
     `cells` are the cells that own the faces, all by the same local face; the rule holds the cell's
     own shape functions at the face's Gauss points; tangents (q, 3, 2) is the derivative of the
     cell's reference coordinates along the face's own two.
-    On a FREE face the traction is zero, so sigma^aux_ij n_j u_i,k - (sigma : eps^aux) n_k is
-    left; on a PRESSED crack face the auxiliary traction is zero and t_i u^aux_i,k is left, with
-    t = - pressure n; on a CUT all of P_kj n_j counts.  Fills out, (n, steps, N_MODES, nodes, 3).
+    Where the traction is known, t = - pressure n, t_i u^aux_i,k is counted with it.  On an OUTER
+    face sigma^aux_ij n_j u_i,k - (sigma : eps^aux) n_k comes with it; on a PRESSED crack face
+    the auxiliary traction is zero, and q lies in the face.  On a CUT all of P_kj n_j counts.
+    Fills out, (n, steps, N_MODES, nodes, 3).
     """
-    shear, poisson = elastic
+    shear, poisson, turn = constants
     lame = 2.0 * shear * poisson / (1.0 - 2.0 * poisson)
     values, gradients, weights = rule
     for c in numba.prange(len(cells)):
@@ -308,7 +313,7 @@ def face_forces(
         s = seed[c]
         for g in range(len(weights)):
             _map(points, cells[c], values[g], gradients[g], x, jacobian, inverse)
-            s, r, angle = _look(x, s, side[c], curve, place, frame, turning)
+            s, r, angle = _look(x, s, side[c], curve, turn, place, frame, turning)
             auxiliary(
                 r, angle, turning, shear, poisson,
                 aux_gradient, aux_stress, divergence, incompatibility, work,
@@ -322,15 +327,15 @@ def face_forces(
                 energy = _hooke(H, lame, shear, stress)
                 for mode in range(N_MODES):
                     T[:] = 0.0
-                    if kind == PRESSED:
+                    if pressure != 0.0:
                         for k in range(3):
                             for i in range(3):
                                 moved = H[i, k] if mode == 3 else aux_gradient[mode, i, k]
                                 T[k] += pressure * area[i] * moved
-                    else:
+                    if kind != PRESSED:
                         mutual = energy if mode == 3 else _mutual_energy(aux_stress[mode], H)
                         for k in range(3):
-                            T[k] = mutual * area[k]
+                            T[k] += mutual * area[k]
                             for i in range(3):
                                 for j in range(3):
                                     if mode < 3:

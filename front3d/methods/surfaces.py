@@ -10,7 +10,8 @@ from front3d.crack.facetable import FaceTable, also_among, outer_faces
 from front3d.crack.front import SYMMETRY_PLANE
 from front3d.crack.patches import marked
 from front3d.methods.context import FrontContext
-from front3d.methods.nodal_forces import CUT, FREE, PRESSED
+from front3d.methods.nodal_forces import CUT, OUTER, PRESSED
+from front3d.methods.terms import FACE_LOAD, FREE_SURFACE, included
 from front3d.methods.tube import Tube
 
 _SAME_DIRECTION = 0.999
@@ -49,8 +50,9 @@ class Surroundings:
 def surroundings(context: FrontContext, tube: Tube) -> Surroundings:
     """Look at the outer faces inside the tube.
 
-    Surfaces on which the front ends are free of load; of others, beside the front, nothing is
-    known, and their traction comes from the stresses.
+    Surfaces on which the front ends bear the pressure of the options, which is none where nothing
+    is said; of others, beside the front, nothing is known, and their traction comes from the
+    stresses.
 
     Faces on a symmetry plane at an end give no term: for modes I and II the tractions on it do no
     work in the interaction, and for mode III the hats vanish there.
@@ -68,13 +70,16 @@ def surroundings(context: FrontContext, tube: Tube) -> Surroundings:
     rest = rest[~_on_planes(context, tube, rest, planes)]
     ends_here = _across_the_front(context, tube, rest)
     beside = rest[~ends_here]
+    options = context.options
     terms = [
-        SurfaceTerm(faces, kind)
-        for faces, kind in ((rest[ends_here], FREE), (beside, CUT))
-        if len(faces)
+        SurfaceTerm(rest[ends_here], OUTER, options.surface_pressure),
+        SurfaceTerm(beside, CUT),
     ]
-    if context.options.face_pressure:
-        terms.append(SurfaceTerm(outer[is_crack], PRESSED, context.options.face_pressure))
+    if options.face_pressure and included(FACE_LOAD):
+        terms.append(SurfaceTerm(outer[is_crack], PRESSED, options.face_pressure))
+    if not included(FREE_SURFACE):
+        terms = [term for term in terms if term.kind != OUTER]
+    terms = [term for term in terms if len(term.faces)]
     distance = tube.r[np.searchsorted(tube.nodes, beside.nodes)]
     normals = np.array([normal for normal, _ in planes]).reshape(-1, 3)
     return Surroundings(tuple(terms), float(distance.min(initial=np.inf)), normals)

@@ -1,6 +1,8 @@
 """Files that are written whole or not at all."""
 
 import os
+import re
+from collections.abc import Sequence
 from pathlib import Path
 
 from front3d.errors import Front3DError
@@ -48,6 +50,17 @@ def prepare_folder(folder: Path) -> Path:
     except OSError as error:
         raise WriteError(_explain(folder, error)) from error
     return folder
+
+
+def file_names(steps: Sequence[str]) -> dict[str, str]:
+    """Step names as parts of file names: letters, digits and .+- only, and none twice."""
+    names: dict[str, str] = {}
+    for number, step in enumerate(dict.fromkeys(steps)):
+        name = re.sub(r"[^\w.+-]+", "_", step)[:60].strip("_.") or f"step{number}"
+        # Compared without case: some file systems take "A.png" and "a.png" for one file.
+        taken = {other.lower() for other in names.values()}
+        names[step] = f"{name}_{number}" if name.lower() in taken else name
+    return names
 
 
 def _explain(path: Path, error: OSError) -> str:

@@ -4,15 +4,18 @@ import json
 import re
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
+from functools import cache
 from pathlib import Path
 
-from front3d.output.charts import chart_png
-from front3d.output.files import prepare_folder, write_whole
+from front3d.output.charts import KINDS, charts_of
+from front3d.output.charts.style import png, svg
+from front3d.output.files import file_names, prepare_folder, write_whole
 from front3d.output.rendering import why_no_pictures
 from front3d.output.scene import scene_png
+from front3d.output.skin import skin_vtp
 from front3d.output.summary import summary_json
 from front3d.output.tables import front_vtp, points_csv
-from front3d.results import Evaluation, FrontResult
+from front3d.results import Evaluation
 from front3d.solid import Solid
 
 Progress = Callable[[str, float], None]
@@ -33,12 +36,14 @@ def write_results(
     folder: Path,
     *,
     inputs: Sequence[Path] = (),
+    case_file: str = "",
     pictures: bool = True,
     progress: Progress | None = None,
 ) -> Written:
     """Write tables, charts and pictures of `evaluation`; `summary.json` last, as it lists them.
 
-    `inputs` are the files that were read, for their hashes. Pictures of an earlier run that this
+    `inputs` are the files that were read, for their hashes; `case_file` is the text of a case file
+    that repeats the evaluation. Pictures of an earlier run that this
     one does not write again are removed, so that no old picture stands beside new numbers.
     Raises WriteError; a file that is there is whole.
     """
@@ -51,6 +56,7 @@ def write_results(
     notes: list[str] = []
     if pictures and evaluation.fronts:
         makers |= _charts(evaluation)
+        makers["skin.vtp"] = lambda: skin_vtp(solid, evaluation.fronts)
         reason = why_no_pictures()
         if reason is None:
             makers |= _scenes(evaluation, solid)
@@ -63,29 +69,26 @@ def write_results(
     files = (*makers, "summary.json")
     for name in earlier - set(files):
         (folder / name).unlink(missing_ok=True)
-    write_whole(folder / "summary.json", summary_json(evaluation, inputs, files))
+    write_whole(folder / "summary.json", summary_json(evaluation, inputs, files, case_file))
     if progress is not None:
         progress("results written", 1.0)
     return Written(folder, files, tuple(notes))
 
 
 def _charts(evaluation: Evaluation) -> dict[str, Callable[[], bytes]]:
-    """`chart.png`, or one per front and step named after both."""
-    fronts = evaluation.fronts
-    names = _file_names([front.step for front in fronts])
-
-    def maker(front: FrontResult) -> Callable[[], bytes]:
-        return lambda: chart_png(front, evaluation.units)
-
-    if len(fronts) == 1:
-        return {"chart.png": maker(fronts[0])}
-    return {f"chart_front{f.front}_{names[f.step]}.png": maker(f) for f in fronts}
+    """Each chart as PNG and as SVG, drawn once."""
+    makers: dict[str, Callable[[], bytes]] = {}
+    for name, draw in charts_of(evaluation).items():
+        drawn = cache(draw)
+        makers[f"{name}.png"] = lambda drawn=drawn: png(drawn())  # type: ignore[misc]
+        makers[f"{name}.svg"] = lambda drawn=drawn: svg(drawn())  # type: ignore[misc]
+    return makers
 
 
 def _scenes(evaluation: Evaluation, solid: Solid) -> dict[str, Callable[[], bytes]]:
     """`scene.png`, or one per step."""
     steps = list(dict.fromkeys(front.step for front in evaluation.fronts))
-    names = _file_names(steps)
+    names = file_names(steps)
 
     def maker(step: str) -> Callable[[], bytes]:
         chosen = tuple(front for front in evaluation.fronts if front.step == step)
@@ -96,21 +99,11 @@ def _scenes(evaluation: Evaluation, solid: Solid) -> dict[str, Callable[[], byte
     return {f"scene_{names[step]}.png": maker(step) for step in steps}
 
 
-def _file_names(steps: Sequence[str]) -> dict[str, str]:
-    """Step names as parts of file names: letters, digits and .+- only, and none twice."""
-    names: dict[str, str] = {}
-    for number, step in enumerate(dict.fromkeys(steps)):
-        name = re.sub(r"[^\w.+-]+", "_", step)[:60].strip("_.") or f"step{number}"
-        # Compared without case: some file systems take "A.png" and "a.png" for one file.
-        taken = {other.lower() for other in names.values()}
-        names[step] = f"{name}_{number}" if name.lower() in taken else name
-    return names
-
-
 def _earlier_pictures(folder: Path) -> set[str]:
     """Pictures that an earlier run's summary says it wrote here."""
     try:
         files = json.loads((folder / "summary.json").read_text(encoding="utf-8"))["files"]
-        return {name for name in files if re.fullmatch(r"(chart|scene)[\w.+-]*\.png", name)}
+        kinds = "|".join((*KINDS, "scene"))
+        return {name for name in files if re.fullmatch(rf"({kinds})[\w.+-]*\.(png|svg)", name)}
     except (OSError, ValueError, KeyError, TypeError):
         return set()

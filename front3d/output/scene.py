@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 
 from front3d.arrays import FloatArray
-from front3d.output.charts import mathtext
+from front3d.output.charts.style import mathtext
 from front3d.output.rendering import choose_window
 from front3d.output.view import (
     Skin,
@@ -54,7 +54,7 @@ def scene_png(solid: Solid, fronts: tuple[FrontResult, ...], units: Units) -> by
     choose_window()
     from matplotlib.figure import Figure
 
-    solid, fronts = _near_the_origin(solid, fronts)
+    solid, fronts = near_the_origin(solid, fronts)
     parts = skin(solid, fronts)
     scale = colour_scale(fronts)
     positions = np.concatenate([front.positions for front in fronts])
@@ -63,7 +63,7 @@ def scene_png(solid: Solid, fronts: tuple[FrontResult, ...], units: Units) -> by
     box = (low, high)
     figure = Figure(figsize=(8.0, 6.0), dpi=150, facecolor="white")
     near = figure.add_axes((0.0, 0.1, 0.765, 0.765))
-    near.imshow(_render(_clipped(parts, box), fronts, scale, view, box))
+    near.imshow(_render(clipped(parts, box), fronts, scale, view, box))
     near.set_axis_off()
     _draw_axes(near, view)
     _mark_peak(near, fronts, scale, view, units)
@@ -81,7 +81,7 @@ def scene_png(solid: Solid, fronts: tuple[FrontResult, ...], units: Units) -> by
     return out.getvalue()
 
 
-def _near_the_origin(
+def near_the_origin(
     solid: Solid, fronts: tuple[FrontResult, ...]
 ) -> tuple[Solid, tuple[FrontResult, ...]]:
     """Both moved so that the fronts lie around the origin: graphics work in single precision, and
@@ -125,38 +125,47 @@ def _render(
 
     plotter: Any = pv.Plotter(off_screen=True, window_size=list(_SHAPE))
     try:
-        plotter.set_background("white")
         plotter.enable_anti_aliasing("ssaa")
         plotter.enable_depth_peeling(8)
-        if parts.outside.n_cells:
-            plotter.add_mesh(parts.outside, color=_BODY, opacity=0.22, lighting=True)
-            edges = parts.outside.extract_feature_edges(30, non_manifold_edges=False)
-            if edges.n_cells:
-                plotter.add_mesh(edges, color=_EDGE, line_width=2)
-        bounds = np.stack(box, axis=1).ravel()
-        plotter.add_mesh(pv.Box(bounds).extract_all_edges(), color=_EDGE, line_width=1, opacity=0.5)
-        if parts.crack.n_cells:
-            plotter.add_mesh(parts.crack, color=_CRACK, opacity=0.9, lighting=True)
-        for front in fronts:
-            plotter.add_mesh(
-                _tube(front, scale, 0.016 * view.half_height),
-                scalars="K",
-                cmap=_colours(),
-                clim=(scale.low, scale.high),
-                show_scalar_bar=False,
-                smooth_shading=True,
-                ambient=0.35,
-            )
-        plotter.enable_parallel_projection()
-        camera = plotter.camera
-        camera.focal_point = view.focus
-        camera.position = view.focus + 20 * view.half_height * view.towards
-        camera.up = view.up
-        camera.parallel_scale = 1.03 * view.half_height
-        plotter.reset_camera_clipping_range()
+        add_solid(plotter, parts, fronts, scale, view, box)
         return plotter.screenshot(None, return_img=True)
     finally:
         plotter.close()
+
+
+def add_solid(
+    plotter: Any, parts: Skin, fronts: tuple[FrontResult, ...], scale: Scale, view: View, box: Box
+) -> None:
+    """Body, crack faces and coloured fronts, seen from `view`."""
+    import pyvista as pv
+
+    plotter.set_background("white")
+    if parts.outside.n_cells:
+        plotter.add_mesh(parts.outside, color=_BODY, opacity=0.22, lighting=True)
+        edges = parts.outside.extract_feature_edges(30, non_manifold_edges=False)
+        if edges.n_cells:
+            plotter.add_mesh(edges, color=_EDGE, line_width=2)
+    bounds = np.stack(box, axis=1).ravel()
+    plotter.add_mesh(pv.Box(bounds).extract_all_edges(), color=_EDGE, line_width=1, opacity=0.5)
+    if parts.crack.n_cells:
+        plotter.add_mesh(parts.crack, color=_CRACK, opacity=0.9, lighting=True)
+    for front in fronts:
+        plotter.add_mesh(
+            _tube(front, scale, 0.016 * view.half_height),
+            scalars="K",
+            cmap=colours(),
+            clim=(scale.low, scale.high),
+            show_scalar_bar=False,
+            smooth_shading=True,
+            ambient=0.35,
+        )
+    plotter.enable_parallel_projection()
+    camera = plotter.camera
+    camera.focal_point = view.focus
+    camera.position = view.focus + 20 * view.half_height * view.towards
+    camera.up = view.up
+    camera.parallel_scale = 1.03 * view.half_height
+    plotter.reset_camera_clipping_range()
 
 
 def _tube(front: FrontResult, scale: Scale, radius: float) -> Any:
@@ -171,7 +180,8 @@ def _tube(front: FrontResult, scale: Scale, radius: float) -> Any:
     return line.tube(radius=radius, n_sides=24)
 
 
-def _clipped(parts: Skin, box: Box) -> Skin:
+def clipped(parts: Skin, box: Box) -> Skin:
+    """The outside cut to `box`, the crack whole."""
     if not parts.outside.n_cells:
         return parts
     margin = 1e-6 * np.linalg.norm(box[1] - box[0])
@@ -264,7 +274,7 @@ def _draw_scale(figure: "Figure", scale: Scale, units: Units) -> None:
     from matplotlib.colors import Normalize
 
     bar = figure.colorbar(
-        ScalarMappable(Normalize(scale.low, scale.high), _colours()),
+        ScalarMappable(Normalize(scale.low, scale.high), colours()),
         cax=figure.add_axes((0.83, 0.42, 0.028, 0.44)),
     )
     bar.ax.tick_params(labelsize=12.5)
@@ -285,7 +295,7 @@ def _draw_words(figure: "Figure", fronts: tuple[FrontResult, ...], scale: Scale)
     figure.text(0.5, 0.012, fill(CAUTION, 110), fontsize=9, color=_MUTED, ha="center", va="bottom")
 
 
-def _colours() -> Any:
+def colours() -> Any:
     """Dark is high: the peak stands out on a light body, in grey too."""
     from matplotlib import colormaps
     from matplotlib.colors import ListedColormap

@@ -15,8 +15,9 @@ import numpy as np
 
 from front3d import __version__
 from front3d.errors import ReadError
+from front3d.output.deviation import deviation
 from front3d.output.trust import agreement, rings_of
-from front3d.results import CAUTION, MODES, Evaluation, FrontResult
+from front3d.results import CAUTION, MODES, Comparison, Evaluation, FrontResult
 from front3d.units import Units
 
 LIBRARIES = ("numpy", "scipy", "numba", "meshio", "pyvista", "vtk", "matplotlib", "h5py")
@@ -24,10 +25,13 @@ LIBRARIES = ("numpy", "scipy", "numba", "meshio", "pyvista", "vtk", "matplotlib"
 _INDEX_SUFFIXES = {".pvd", ".pvtu", ".xdmf", ".xmf", ".xml"}
 
 
-def summary(evaluation: Evaluation, inputs: Iterable[Path], files: Sequence[str]) -> dict[str, Any]:
+def summary(
+    evaluation: Evaluation, inputs: Iterable[Path], files: Sequence[str], case_file: str = ""
+) -> dict[str, Any]:
     """The content of `summary.json`: plain data only.
 
-    `inputs` are the files that were read, `files` the names of the files written beside it.
+    `inputs` are the files that were read, `files` the names of the files written beside it,
+    `case_file` the text of a case file that repeats the evaluation.
     """
     units = evaluation.units
     return {
@@ -38,23 +42,25 @@ def summary(evaluation: Evaluation, inputs: Iterable[Path], files: Sequence[str]
             for given in inputs
             for path in (given, *companions(given))
         ],
+        "case_file": case_file,
         "material": {
             "young": evaluation.material.young,
             "poisson": evaluation.material.poisson,
         },
         "units": {"length": units.length, "stress": units.stress, "K": units.K_label},
         "options": plain(evaluation.options),
-        "versions": _versions(),
+        "versions": versions(),
         "fronts": [front_summary(front, units) for front in evaluation.fronts],
         "warnings": list(evaluation.warnings),
         "files": list(files),
     }
 
 
-def summary_json(evaluation: Evaluation, inputs: Iterable[Path], files: Sequence[str]) -> bytes:
-    text = json.dumps(
-        plain(summary(evaluation, inputs, files)), indent=2, allow_nan=False, ensure_ascii=False
-    )
+def summary_json(
+    evaluation: Evaluation, inputs: Iterable[Path], files: Sequence[str], case_file: str = ""
+) -> bytes:
+    content = plain(summary(evaluation, inputs, files, case_file))
+    text = json.dumps(content, indent=2, allow_nan=False, ensure_ascii=False)
     return (text + "\n").encode()
 
 
@@ -81,9 +87,40 @@ def front_summary(front: FrontResult, units: Units) -> dict[str, Any]:
         "methods": {name: method.variant for name, method in front.methods.items()},
         "K_from": {name: front.sources.count(name) for name in dict.fromkeys(front.sources)},
         "method_difference_over_largest_K": trust.methods,
+        "comparisons": [compared(front, one) for one in front.comparisons],
         "flagged_stations": sum(bool(flag) for flag in front.flags),
         "warnings": list(front.warnings),
         "notes": list(front.notes),
+    }
+
+
+def compared(front: FrontResult, comparison: Comparison) -> dict[str, Any]:
+    """A published solution: what it is, and how far K is from it at the stations judged."""
+    found = deviation(front, comparison)
+    worst = None
+    if found.judged:
+        i = found.station
+        worst = {
+            "percent": found.worst,
+            "mode": found.mode,
+            "station": i,
+            "phi_deg": float(comparison.angle[i]),
+            "position": front.positions[i].tolist(),
+        }
+    return {
+        "solution": comparison.solution,
+        "arguments": dict(comparison.arguments),
+        "source": comparison.source,
+        "claim": comparison.claim,
+        "deviation_of": "K less the solution, in per cent of the solution's largest K of the front",
+        "worst": worst,
+        "mean_percent": found.mean,
+        "mean_with_sign_percent": found.balance,
+        "average": comparison.average,
+        "average_percent": found.average,
+        "stations_judged": found.judged,
+        "stations_left_out": np.flatnonzero(~comparison.judged).tolist(),
+        "notes": list(comparison.notes),
     }
 
 
@@ -149,7 +186,7 @@ def _sha256(path: Path) -> str:
         ) from error
 
 
-def _versions() -> dict[str, str]:
+def versions() -> dict[str, str]:
     found = {"front3d": __version__, "python": platform.python_version()}
     for library in LIBRARIES:
         try:

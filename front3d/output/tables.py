@@ -8,8 +8,11 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
+from front3d.mixing import mix_columns
+from front3d.output.deviation import deviation
 from front3d.output.trust import rings_of
-from front3d.results import MODES, Evaluation, FrontResult
+from front3d.results import MODES, Evaluation, FrontResult, Rings
+from front3d.solid import Material
 from front3d.units import Units
 
 FIRST_COLUMNS = (
@@ -21,7 +24,7 @@ FIRST_COLUMNS = (
 Column = NDArray[Any]
 
 
-def front_columns(front: FrontResult, units: Units) -> dict[str, Column]:
+def front_columns(front: FrontResult, units: Units, material: Material) -> dict[str, Column]:
     """Every column of one front by name: FIRST_COLUMNS first, (n,) each, text or numbers."""
     n = len(front)
     columns: dict[str, Column] = {
@@ -48,20 +51,52 @@ def front_columns(front: FrontResult, units: Units) -> dict[str, Column]:
         spread = front.method_spread
         columns |= {f"{mode}_method_spread": spread[:, k] for k, mode in enumerate(MODES)}
         columns["K_from"] = np.array(front.sources, dtype=str)
+    columns |= _comparison_columns(front)
     columns["psi_deg"], columns["mode_III_deg"] = front.mode_angles.T
+    columns |= mix_columns(front.K, material)
     for i, vector in enumerate(("e1", "e2", "e3")):
         columns |= {f"{vector}{axis}": front.frames[:, i, j] for j, axis in enumerate("xyz")}
     if (factor := units.K_factor) is not None:
         columns |= {f"{mode}_MPa_sqrt_m": factor * front.K[:, k] for k, mode in enumerate(MODES)}
+    if rings is not None:
+        columns |= _ring_columns(rings)
+    return columns
+
+
+def _ring_columns(rings: Rings) -> dict[str, Column]:
+    """Each ring's radius, K and J, rings numbered from 1, the innermost."""
+    columns: dict[str, Column] = {}
+    for ring, (radius, K, J) in enumerate(zip(rings.radii, rings.K, rings.J, strict=True), 1):
+        columns[f"radius_ring_{ring}"] = radius
+        columns |= {f"{mode}_ring_{ring}": K[:, k] for k, mode in enumerate(MODES)}
+        columns[f"J_ring_{ring}"] = J
+    return columns
+
+
+def _comparison_columns(front: FrontResult) -> dict[str, Column]:
+    """The angle on the ellipse, then K of each published solution and the deviation from it."""
+    columns: dict[str, Column] = {}
+    angles = [c.angle for c in front.comparisons if np.isfinite(c.angle).any()]
+    if angles:
+        columns["phi_deg"] = angles[0]
+    for comparison in front.comparisons:
+        percent = deviation(front, comparison).percent
+        for k, mode in enumerate(MODES):
+            if np.isfinite(comparison.K[:, k]).any():
+                name = f"{mode}_{comparison.solution}"
+                columns[name] = comparison.K[:, k]
+                columns[f"{name}_deviation_pct"] = percent[:, k]
     return columns
 
 
 def all_columns(evaluation: Evaluation) -> dict[str, Column]:
     """The columns of all fronts and steps, one below the other.
 
-    A method that was applied to some fronts only has nan for the stations of the others.
+    A method that was applied to some fronts only, and a solution that suits some only, has nan for
+    the stations of the others.
     """
-    tables = [front_columns(front, evaluation.units) for front in evaluation.fronts]
+    units, material = evaluation.units, evaluation.material
+    tables = [front_columns(front, units, material) for front in evaluation.fronts]
     names = dict.fromkeys(name for table in tables for name in table)
     return {
         name: np.concatenate([t[name] if name in t else _absent(name, len(t["s"])) for t in tables])

@@ -1,6 +1,6 @@
 """Embedded models: parametric cracked solids, meshed, loaded and solved in the package."""
 
-from front3d.samples.building import SAMPLES, build, sample_spec
+from front3d.samples.building import SAMPLES, build, build_from, sample_spec
 from front3d.samples.cells import CELL_KINDS
 from front3d.samples.parts import WHOLE
 from front3d.samples.sample import Parameter, Sample, SampleSpec
@@ -14,6 +14,7 @@ __all__ = [
     "Sample",
     "SampleSpec",
     "build",
+    "build_from",
     "sample_spec",
     "write_sample",
 ]

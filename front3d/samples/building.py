@@ -7,15 +7,21 @@ import numpy as np
 
 from front3d.errors import CaseError
 from front3d.samples.cells import check_cells
+from front3d.samples.collinear_row import COLLINEAR_ROW
+from front3d.samples.compact import COMPACT_SPECIMEN
 from front3d.samples.corner_crack import CORNER_CRACK
 from front3d.samples.corner_crack_at_hole import CORNER_CRACK_AT_HOLE
+from front3d.samples.cylinder_crack import CYLINDER_CRACK
 from front3d.samples.elasticity import boundary_faces, traction_load
 from front3d.samples.embedded_ellipse import EMBEDDED_ELLIPSE
 from front3d.samples.parts import CRACK_AXIS, WHOLE, check_symmetry, part_axes, take_part
 from front3d.samples.penny import PENNY
+from front3d.samples.round_bar import ROUND_BAR
 from front3d.samples.sample import Sample, SampleSpec
+from front3d.samples.slanted_crack import SLANTED_CRACK
 from front3d.samples.solver import Progress, solve_unfolded
 from front3d.samples.surface_crack import SURFACE_CRACK
+from front3d.samples.through_crack import THROUGH_CRACK
 from front3d.solid import Material, Solid, Step
 
 SAMPLES: Mapping[str, SampleSpec] = MappingProxyType(
@@ -27,6 +33,12 @@ SAMPLES: Mapping[str, SampleSpec] = MappingProxyType(
             EMBEDDED_ELLIPSE,
             CORNER_CRACK,
             CORNER_CRACK_AT_HOLE,
+            THROUGH_CRACK,
+            COLLINEAR_ROW,
+            SLANTED_CRACK,
+            ROUND_BAR,
+            COMPACT_SPECIMEN,
+            CYLINDER_CRACK,
         )
     }
 )
@@ -53,7 +65,8 @@ def build(
     Parameters
     ----------
     name : a key of SAMPLES
-    cells : "bricks" (20 nodes, quarter-point wedges at the front), "tetra10" or "brick8"
+    cells : "bricks" (20 nodes, quarter-point wedges at the front), "tetra10", "brick8", "brick20"
+        (mid-side nodes in the middle at the front, too) or "tetra4"
     part : "full", or one of the sample's parts that end at symmetry planes
     progress : called with (stage, fraction of the stage)
     parameters : those of SAMPLES[name], in its units
@@ -63,7 +76,19 @@ def build(
     CaseError for a wrong name or parameter, or a load that a part cannot carry; MeshError or
     MethodError when the mesh cannot be solved.
     """
-    spec = sample_spec(name)
+    return build_from(sample_spec(name), cells=cells, part=part, progress=progress, **parameters)
+
+
+def build_from(
+    spec: SampleSpec,
+    *,
+    cells: str = "bricks",
+    part: str = WHOLE,
+    progress: Progress | None = None,
+    **parameters: float,
+) -> Sample:
+    """`build`, of a sample that need not be in SAMPLES."""
+    name = spec.name
     check_cells(cells)
     axes = part_axes(name, spec.parts, part)
     values = spec.values(parameters)
@@ -85,14 +110,17 @@ def build(
         ]
     )
     check_symmetry(name, model, axes, forces, [load.name for load in loads])
-    moved = solve_unfolded(model, material, forces, progress)
+    held = spec.held(values, model.part.points)
+    moved = solve_unfolded(model, material, forces, progress, held)
     solid, moved = take_part(model, axes, moved)
     steps = tuple(
         Step(load.name, u, float(k)) for k, (load, u) in enumerate(zip(loads, moved, strict=True))
     )
     solid = Solid(solid.points, solid.blocks, steps, source=f"sample {name}")
     about = _description(spec, part, cells, values)
-    return Sample(name, solid, material, about, _case(material, CRACK_AXIS in axes), values)
+    plane = {"crack_plane": "z=0"} if CRACK_AXIS in axes else {}
+    case = _case(material, {**spec.options(values), **plane})
+    return Sample(name, solid, material, about, case, values)
 
 
 def _description(spec: SampleSpec, part: str, cells: str, values: Mapping[str, float]) -> str:
@@ -101,9 +129,9 @@ def _description(spec: SampleSpec, part: str, cells: str, values: Mapping[str, f
     return f"{spec.description}; {kept}{cells}; {numbers}"
 
 
-def _case(material: Material, one_face: bool) -> dict[str, dict[str, object]]:
+def _case(material: Material, options: Mapping[str, object]) -> dict[str, Mapping[str, object]]:
     return {
         "material": {"young": material.young, "poisson": material.poisson},
         "units": {"length": "mm", "stress": "MPa"},
-        "options": {"crack_plane": "z=0"} if one_face else {},
+        "options": options,
     }

@@ -12,7 +12,7 @@ from front3d.samples.mirror import Plane, Unfolded, unfold
 from front3d.samples.tetrahedra import split
 from front3d.solid import CellBlock, Solid
 
-CellKind = Literal["bricks", "tetra10", "brick8"]
+CellKind = Literal["bricks", "tetra10", "brick8", "brick20", "tetra4"]
 CELL_KINDS: tuple[str, ...] = get_args(CellKind)
 
 
@@ -25,17 +25,28 @@ def check_cells(cells: str) -> None:
 def cut(lattice: Lattice, cells: str) -> list[CellBlock]:
     """Cells on the nodes of the lattice.
 
-    bricks: 20-node bricks and 15-node wedges; brick8: 8-node bricks and 6-node wedges;
-    tetra10: quadratic tetrahedra.
+    bricks and brick20: 20-node bricks and 15-node wedges (the quarter-points of the former are in
+    the lattice); brick8: 8-node bricks and 6-node wedges; tetra10 and tetra4: tetrahedra.
     """
     check_cells(cells)
-    if cells == "tetra10":
-        return [CellBlock("tetra10", split(lattice))]
-    brick, wedge = ("hexahedron20", "wedge15") if cells == "bricks" else ("hexahedron", "wedge")
+    if is_tetra(cells):
+        kind = "tetra10" if cells == "tetra10" else "tetra"
+        return [CellBlock(kind, split(lattice)[:, : len(ELEMENTS[kind].nodes)])]
+    brick, wedge = ("hexahedron", "wedge") if cells == "brick8" else ("hexahedron20", "wedge15")
     return [
         CellBlock(kind, nodes[:, : len(ELEMENTS[kind].nodes)])
         for kind, nodes in ((brick, lattice.bricks), (wedge, lattice.wedges))
     ]
+
+
+def is_tetra(cells: str) -> bool:
+    """Whether a kind of cells is cut into tetrahedra."""
+    return cells.startswith("tetra")
+
+
+def has_quarter_points(cells: str) -> bool:
+    """Whether mid-side nodes at the front stand at a quarter of their edges."""
+    return cells == "bricks"
 
 
 def cracked_solid(lattice: Lattice, axes: tuple[int, ...], cells: str, name: str) -> Unfolded:

@@ -2,6 +2,7 @@
 
 from math import ceil
 
+from front3d.samples.cells import has_quarter_points, is_tetra
 from front3d.samples.sheet import Density
 from front3d.samples.tube import Tube
 
@@ -26,8 +27,8 @@ def density(cells: str, refine: float, elongation: float, closed: bool) -> Densi
     elongation : larger over smaller semi-axis; a longer front gets more cells
     closed : the front is the whole ellipse; a shorter one affords more cells
     """
-    along, layers, growth, tube = (_TETRA if cells == "tetra10" else _BRICKS)[int(refine)]
+    along, layers, growth, tube = (_TETRA if is_tetra(cells) else _BRICKS)[int(refine)]
     along += ceil(0.5 * (elongation - 1.0)) + (0 if closed else 1)
-    if cells == "brick8":
+    if not has_quarter_points(cells):
         tube = Tube(tube.sectors, tube.rings, tube.power, quarter_points=False)
     return Density(along, layers, growth, tube)

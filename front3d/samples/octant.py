@@ -16,7 +16,10 @@ def octant(shape: Quarter, density: Density, *heights: float) -> Lattice:
     cross-section takes their place below.
     """
     levels, low = _levels(shape, density, heights)
-    blocks = [_drawn(p, levels[low if p.in_tube else 0 :]) for p in quarter_sheet(shape, density)]
+    blocks = [
+        _drawn(p, levels[low if p.in_tube else 0 :], p.inside == shape.outside)
+        for p in quarter_sheet(shape, density)
+    ]
     blocks += _tube_blocks(shape, density)
     return unite(blocks, 1e-9 * max(shape.width, shape.depth, *heights))
 
@@ -35,13 +38,13 @@ def _levels(shape: Quarter, density: Density, heights: tuple[float, ...]) -> tup
     return levels, len(inside) - 1
 
 
-def _drawn(patch: Patch, levels: FloatArray) -> Block:
+def _drawn(patch: Patch, levels: FloatArray, ligament: bool) -> Block:
     ni, nj, _ = patch.points.shape
     points = np.empty((ni, nj, len(levels), 3))
     points[..., :2] = patch.points[:, :, None]
     points[..., 2] = levels
     joined = np.zeros(points.shape[:3], dtype=bool)
-    if not patch.cracked and levels[0] == 0.0:
+    if ligament and levels[0] == 0.0:
         joined[:, :, 0] = True
     return Block(points, joined)
 
@@ -55,7 +58,7 @@ def _tube_blocks(shape: Quarter, density: Density) -> list[Block]:
         points[:, j, k, :2] = curve(shape.a, shape.c, angles, section[j, k, 0])
         points[:, j, k, 2] = section[j, k, 1]
     joined = np.zeros(points.shape[:3], dtype=bool)
-    joined[:, 0] = True  # the ray ahead of the front
+    joined[:, -1 if shape.outside else 0] = True  # the ray ahead of the front
     joined[:, :, 0] = True  # the front itself
     return [
         Block(points[:, :, :3], joined[:, :, :3], wedges=True),

@@ -5,6 +5,7 @@ from math import cos, radians, sin
 
 import numpy as np
 
+from front3d.arrays import BoolArray, FloatArray
 from front3d.samples.cells import cracked_solid
 from front3d.samples.fineness import density
 from front3d.samples.mirror import Unfolded
@@ -20,7 +21,6 @@ from front3d.samples.sample import (
     common_parameters,
     outside,
     required,
-    uniform,
 )
 from front3d.samples.sheet import Quarter
 
@@ -30,6 +30,7 @@ _PARAMETERS = {
     "tilt": Parameter(
         "angle between the load axis and the crack normal, turned towards x", 0, 0, 90, "degrees"
     ),
+    "face_pressure": Parameter("pressure on the crack faces", 0.0, -1e12, 1e12, "stress"),
     "body": Parameter(
         "radius and half-height of the cylinder (default 10 radii)", None, 1e-9, 1e10, "length"
     ),
@@ -52,11 +53,22 @@ def _mesh(values: Values, cells: str) -> Unfolded:
 
 
 def _loads(values: Values) -> tuple[Load, ...]:
-    tilt = radians(values["tilt"])
+    tilt, inside = radians(values["tilt"]), values["face_pressure"]
     axis = np.array([sin(tilt), 0.0, cos(tilt)])
     stress = values["tension"] * np.outer(axis, axis)
-    load = Load("tension", uniform(stress), outside)
-    return acting("penny", {"tension": (values["tension"], load)})
+
+    def traction(points: FloatArray, normals: FloatArray) -> FloatArray:
+        return np.where(points[:, 2:] == 0.0, -inside * normals, normals @ stress)
+
+    def loaded(faces: FloatArray) -> BoolArray:
+        return outside(faces) | (inside != 0.0)
+
+    load = Load("tension" if values["tension"] else "pressure", traction, loaded)
+    return acting("penny", {"tension": (abs(values["tension"]) + abs(inside), load)})
+
+
+def _options(values: Values) -> Mapping[str, object]:
+    return {"face_pressure": values["face_pressure"]} if values["face_pressure"] else {}
 
 
 PENNY = SampleSpec(
@@ -67,4 +79,5 @@ PENNY = SampleSpec(
     _mesh,
     _loads,
     PENNY_PARTS,
+    options=_options,
 )

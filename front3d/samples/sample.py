@@ -24,7 +24,8 @@ class Parameter:
     ----------
     default : its value; None when it follows from the others (`meaning` says how)
     low, high : the range allowed, both ends included
-    unit : "length", "stress", "degrees" or "" for a pure number
+    unit : "length", "stress", "force" (stress times squared length), "degrees" or "" for a pure
+        number
     whole : only whole numbers
     """
 
@@ -92,6 +93,16 @@ class Load:
     on: Callable[[FloatArray], BoolArray]
 
 
+def nothing_held(values: Values, points: FloatArray) -> BoolArray:
+    """No displacement is held, (n, 3)."""
+    return np.zeros(points.shape, dtype=bool)
+
+
+def no_options(values: Values) -> Mapping[str, object]:
+    """The defaults of an evaluation suit the sample."""
+    return {}
+
+
 @dataclass(frozen=True, slots=True)
 class SampleSpec:
     """An entry of the registry.
@@ -102,7 +113,10 @@ class SampleSpec:
     parameters : by name
     complete : fills the parameters whose default is None, and checks ratios between them
     mesh : (values, cells) -> solid without steps, and the part it is unfolded from
-    loads : values -> one or more loads, each in equilibrium
+    loads : values -> one or more loads, each in equilibrium or carried by what is held
+    held : (values, points of the part (n, 3)) -> (n, 3) components kept from moving, besides those
+        that symmetry holds
+    options : values -> the options that an evaluation of the sample needs
     parts : parts that the sample may be reduced to, beside the whole
     """
 
@@ -113,6 +127,8 @@ class SampleSpec:
     mesh: Callable[[Values, str], Unfolded]
     loads: Callable[[Values], tuple[Load, ...]]
     parts: Parts = field(default_factory=dict)
+    held: Callable[[Values, FloatArray], BoolArray] = nothing_held
+    options: Callable[[Values], Mapping[str, object]] = no_options
 
     def values(self, given: Mapping[str, float]) -> Values:
         """All parameters, checked; CaseError for an unknown name or a bad value."""

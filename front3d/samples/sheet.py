@@ -43,6 +43,7 @@ class Quarter:
     radius : half-width of the tube around the front
     width, depth : extent along x and y; of a cylinder, both are its radius
     round : the outer boundary is a circle
+    outside : the crack lies outside the ellipse, and the ligament inside
     """
 
     a: float
@@ -51,14 +52,15 @@ class Quarter:
     width: float
     depth: float
     round: bool = False
+    outside: bool = False
 
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Patch:
-    """(2I+1, 2J+1, 2) positions; `cracked` inside the front; `in_tube` next to it."""
+    """(2I+1, 2J+1, 2) positions; `inside` the front or not; `in_tube` next to it."""
 
     points: FloatArray
-    cracked: bool
+    inside: bool
     in_tube: bool = False
 
 
@@ -71,8 +73,8 @@ def quarter_sheet(shape: Quarter, density: Density) -> list[Patch]:
     half = len(side) - 1
     return [
         *_core(lines[:, 0], shape, density),
-        Patch(lines[:, : half + 1], cracked=True, in_tube=True),
-        Patch(lines[:, half:], cracked=False, in_tube=True),
+        Patch(lines[:, : half + 1], inside=True, in_tube=True),
+        Patch(lines[:, half:], inside=False, in_tube=True),
         *_outer(lines[:, -1], lines[:, -1] - lines[:, half], shape, density),
     ]
 
@@ -95,9 +97,9 @@ def _core(arc: FloatArray, shape: Quarter, density: Density) -> list[Patch]:
     part = grading.fractions(gap, first, layers)[:, :, None]
     wings = arc[:, None] + part * (rim - arc)[:, None]
     return [
-        Patch(core, cracked=True),
-        Patch(wings[: split + 1], cracked=True),
-        Patch(wings[split:], cracked=True),
+        Patch(core, inside=True),
+        Patch(wings[: split + 1], inside=True),
+        Patch(wings[split:], inside=True),
     ]
 
 
@@ -128,7 +130,7 @@ def _outer(arc: FloatArray, outward: FloatArray, shape: Quarter, density: Densit
     part = grading.fractions(shape.width - width, last, n)[0]
     far = np.repeat(columns[:, None], len(part), axis=1)
     far[:, :, 0] = width + part * (shape.width - width)
-    return [patch, Patch(far, cracked=False)]
+    return [patch, Patch(far, inside=False)]
 
 
 def _corner_index(arc: FloatArray, outward: FloatArray, width: float, depth: float) -> int:
@@ -147,7 +149,7 @@ def _blend(start: FloatArray, end: FloatArray, first: float, growth: float) -> P
     gap = np.linalg.norm(end - start, axis=1)
     cells = grading.count(float(gap.max()), first, growth)
     part = grading.fractions(gap, first, cells)[:, :, None]
-    return Patch(start[:, None] + part * (end - start)[:, None], cracked=False)
+    return Patch(start[:, None] + part * (end - start)[:, None], inside=False)
 
 
 def _tube_cell(shape: Quarter, density: Density) -> float:

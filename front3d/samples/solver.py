@@ -73,15 +73,22 @@ def solve(
 
 
 def solve_unfolded(
-    model: Unfolded, material: Material, loads: FloatArray, progress: Progress | None = None
+    model: Unfolded,
+    material: Material,
+    loads: FloatArray,
+    progress: Progress | None = None,
+    held: BoolArray | None = None,
 ) -> FloatArray:
     """Displacements of the whole solid, (n_loads, n_points, 3), by solving on its part once for
     each symmetry class of the nodal forces `loads`, (n_loads, n_points, 3).
+
+    `held`, (n_part, 3), marks components of the part kept at zero, and so those of its images.
     """
     out = np.zeros_like(loads)
     for group in load_classes(model, loads):
         acting = np.abs(group.loads).max(axis=(1, 2)) > 0.0
-        moved = solve(model.part, material, group.loads[acting], group.held, progress=progress)
+        fixed = group.held if held is None else group.held | held
+        moved = solve(model.part, material, group.loads[acting], fixed, progress=progress)
         out[acting] += unfolded_field(model, group.parity, moved)
     return out
 

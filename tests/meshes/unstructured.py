@@ -72,7 +72,7 @@ def embedded(a, c, size, front_cells, loads, reach):
 
 def surface(a_c, a_t, size, reach):
     """Semi-ellipse of depth a = 1 along y in a plate 0 < y < t, half-width and half-height 10 c:
-    the plate of tests/data/fe3d_surface.csv.  Bending: sigma_zz = 1 - 2 y/t at the ends.
+    the plate of handbook/tables/fe3d_surface.csv.  Bending: sigma_zz = 1 - 2 y/t at the ends.
     """
     a, c, t = 1.0, 1.0 / a_c, 1.0 / a_t
     wide = 10 * max(a, c)

@@ -1,4 +1,4 @@
-"""Tables kept in tests/data."""
+"""Tables kept beside the handbook."""
 
 import csv
 from pathlib import Path
@@ -6,7 +6,9 @@ from pathlib import Path
 import numpy as np
 from scipy.special import ellipe
 
-DATA = Path(__file__).parent.parent / "data"
+import front3d
+
+TABLES = Path(front3d.__file__).parent / "handbook" / "tables"
 
 
 def surface_crack(load, a_c, a_t):
@@ -15,7 +17,7 @@ def surface_crack(load, a_c, a_t):
     load : "tension" or "bending".  From fe3d_surface.csv: computed for this project, not a
     published value.
     """
-    with (DATA / "fe3d_surface.csv").open() as file:
+    with (TABLES / "fe3d_surface.csv").open() as file:
         rows = [
             (float(row["two_phi_over_pi"]) * np.pi / 2, float(row["F"]))
             for row in csv.DictReader(line for line in file if not line.startswith("#"))

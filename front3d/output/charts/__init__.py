@@ -1,0 +1,56 @@
+"""The charts, one kind a file; and which of them an evaluation gets, under which names."""
+
+from collections.abc import Callable
+from functools import partial
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from front3d.output.charts.along import along_front
+from front3d.output.charts.mix import mode_mix
+from front3d.output.charts.steps import over_steps, rows_of
+from front3d.output.charts.through import through_thickness
+from front3d.output.files import file_names
+from front3d.output.shape import section_of
+from front3d.results import Evaluation, FrontResult
+
+if TYPE_CHECKING:
+    from matplotlib.figure import Figure
+
+KINDS = ("chart", "through_thickness", "mode_mix", "steps")
+"""How the files of each kind begin."""
+
+
+MOST_STEPS = 6
+"""Steps up to which each has charts of its own; with more, only the one with the largest K has, and
+all share the chart of steps."""
+
+
+def charts_of(evaluation: Evaluation) -> dict[str, Callable[[], "Figure"]]:
+    """Makers of all charts by file name without suffix.
+
+    One front in one step gives plain names; otherwise front and step are part of them.
+    """
+    fronts, units, material = evaluation.fronts, evaluation.units, evaluation.material
+    names = file_names([front.step for front in fronts])
+    makers: dict[str, Callable[[], Figure]] = {}
+    rows = rows_of(fronts)
+    for front in fronts:
+        row = rows[front.front]
+        if len(row) > MOST_STEPS and front is not max(row, key=_largest):
+            continue
+        tail = "" if len(fronts) == 1 else f"_front{front.front}_{names[front.step]}"
+        makers[f"chart{tail}"] = partial(along_front, front, units)
+        section = section_of(front)
+        if section is not None:
+            makers[f"through_thickness{tail}"] = partial(through_thickness, front, section, units)
+        makers[f"mode_mix{tail}"] = partial(mode_mix, front, units, material)
+    for number, row in rows.items():
+        if len(row) > 1:
+            tail = "" if len(rows) == 1 else f"_front{number}"
+            makers[f"steps{tail}"] = partial(over_steps, row, units)
+    return makers
+
+
+def _largest(front: FrontResult) -> float:
+    return float(np.nanmax(np.abs(front.K), initial=0.0))
