@@ -55,6 +55,16 @@ class Step:
                 f"step {self.name}: found displacements of shape {self.displacement.shape}, "
                 "expected (points, 3)"
             )
+        _require_finite(self.displacement, f"step {self.name}: node", "displacement")
+
+
+def _require_finite(values: FloatArray, node: str, what: str) -> None:
+    bad = np.flatnonzero(~np.isfinite(values).all(axis=1))
+    if len(bad):
+        raise MeshError(
+            f"{node} {bad[0]} has the {what} {values[bad[0]]}, expected finite numbers "
+            f"({len(bad)} such nodes; nodes numbered from 0)"
+        )
 
 
 @dataclass(frozen=True, slots=True)
@@ -120,6 +130,7 @@ class Solid:
             raise MeshError(
                 f"{self.source}: found points of shape {self.points.shape}, expected (points, 3)"
             )
+        _require_finite(self.points, f"{self.source}: node", "coordinates")
         n_points = len(self.points)
         for block in self.blocks:
             outside = np.flatnonzero((block.nodes < 0) | (block.nodes >= n_points))

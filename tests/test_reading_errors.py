@@ -12,9 +12,10 @@ import numpy as np
 import pytest
 import pyvista as pv
 
-from front3d.errors import ReadError
+from front3d.errors import MeshError, ReadError
 from front3d.reading import FORMATS, load
 from front3d.reading.guard import vtk_library
+from front3d.solid import CellBlock, Solid, Step
 from tests.reading_models import cells, displacement, grid, mesh, mixed, write_exodus
 
 SUFFIXES = [form.suffixes[0] for form in FORMATS]
@@ -428,3 +429,15 @@ def test_output_of_the_libraries_is_restored(good, capfd, refuse, tmp_path):
     reader.SetFileName(str(tmp_path / "nothing.vtu"))
     reader.Update()
     assert "nothing.vtu" in capfd.readouterr().err
+
+
+@pytest.mark.parametrize("bad", [np.nan, -np.inf])
+def test_a_solid_built_by_hand_is_held_to_finite_numbers(bad):
+    points, nodes = cells("tetra")
+    u = displacement(points)
+    u[3, 1] = bad
+    with pytest.raises(MeshError, match=r"step 1: node 3 has the displacement .* finite"):
+        Step("1", u)
+    points[5, 0] = bad
+    with pytest.raises(MeshError, match=r"block: node 5 has the coordinates .* finite"):
+        Solid(points, (CellBlock("tetra", nodes),), source="block")
