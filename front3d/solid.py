@@ -55,16 +55,6 @@ class Step:
                 f"step {self.name}: found displacements of shape {self.displacement.shape}, "
                 "expected (points, 3)"
             )
-        _require_finite(self.displacement, f"step {self.name}: node", "displacement")
-
-
-def _require_finite(values: FloatArray, node: str, what: str) -> None:
-    bad = np.flatnonzero(~np.isfinite(values).all(axis=1))
-    if len(bad):
-        raise MeshError(
-            f"{node} {bad[0]} has the {what} {values[bad[0]]}, expected finite numbers "
-            f"({len(bad)} such nodes; nodes numbered from 0)"
-        )
 
 
 @dataclass(frozen=True, slots=True)
@@ -130,7 +120,6 @@ class Solid:
             raise MeshError(
                 f"{self.source}: found points of shape {self.points.shape}, expected (points, 3)"
             )
-        _require_finite(self.points, f"{self.source}: node", "coordinates")
         n_points = len(self.points)
         for block in self.blocks:
             outside = np.flatnonzero((block.nodes < 0) | (block.nodes >= n_points))
@@ -146,6 +135,26 @@ class Solid:
                 raise MeshError(
                     f"{self.source}: step {step.name} has {len(step.displacement)} displacements "
                     f"for {n_points} points"
+                )
+        self._require_finite()
+
+    def _require_finite(self) -> None:
+        """Nodes of no cell may hold anything: nobody reads them."""
+        values = {"": self.points} | {f"step {s.name}: ": s.displacement for s in self.steps}
+        bad = {where: ~np.isfinite(v).all(axis=1) for where, v in values.items()}
+        if not any(rows.any() for rows in bad.values()):
+            return
+        used = np.zeros(len(self.points), dtype=bool)
+        for block in self.blocks:
+            used[block.nodes.ravel()] = True
+        for where, rows in bad.items():
+            broken = np.flatnonzero(rows & used)
+            if len(broken):
+                what = "displacement" if where else "coordinates"
+                raise MeshError(
+                    f"{self.source}: {where}node {broken[0]} has the {what} "
+                    f"{values[where][broken[0]]}, expected finite numbers ({len(broken)} such "
+                    "nodes; nodes numbered from 0)"
                 )
 
     @property

@@ -434,10 +434,15 @@ def test_output_of_the_libraries_is_restored(good, capfd, refuse, tmp_path):
 @pytest.mark.parametrize("bad", [np.nan, -np.inf])
 def test_a_solid_built_by_hand_is_held_to_finite_numbers(bad):
     points, nodes = cells("tetra")
+    block = CellBlock("tetra", nodes[:2])
+    spare = int(nodes[2, 0])
     u = displacement(points)
-    u[3, 1] = bad
-    with pytest.raises(MeshError, match=r"step 1: node 3 has the displacement .* finite"):
-        Step("1", u)
-    points[5, 0] = bad
-    with pytest.raises(MeshError, match=r"block: node 5 has the coordinates .* finite"):
-        Solid(points, (CellBlock("tetra", nodes),), source="block")
+    u[spare] = points[spare] = bad  # no cell has this node
+    Solid(points, (block,), (Step("1", u),))
+    used = int(nodes[1, 2])
+    u[used, 1] = bad
+    with pytest.raises(MeshError, match=rf"b: step 1: node {used} has the displacement .* finite"):
+        Solid(points, (block,), (Step("1", u),), source="b")
+    points[used, 0] = bad
+    with pytest.raises(MeshError, match=rf"b: node {used} has the coordinates .* finite"):
+        Solid(points, (block,), source="b")
