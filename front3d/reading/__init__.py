@@ -12,6 +12,7 @@ from front3d.errors import Front3DError, ReadError
 from front3d.reading.fields import DisplacementFinder
 from front3d.reading.files import FORMATS, identify
 from front3d.reading.normalise import normalise_nodes
+from front3d.reading.pieces import join_pieces
 from front3d.reading.raw import RawModel
 from front3d.solid import CellBlock, Solid, Step
 
@@ -71,10 +72,12 @@ def _read(path: Path, reader: str, finder: DisplacementFinder) -> RawModel:
 
 def _solid(path: Path, raw: RawModel, finder: DisplacementFinder, need: bool) -> Solid:
     raw.check()
+    named = finder.steps(need)
+    for step in named:
+        _check_length(step, len(raw.points))
+    raw, named = join_pieces(raw, named)
     points = np.asarray(raw.points, dtype=np.float64)
-    used = np.zeros(len(points), dtype=bool)
-    for block in raw.blocks:
-        used[block.nodes.ravel()] = True
+    used = raw.used()
     notes = list(raw.notes) + raw.ignored_cells()
     points = _clean_points(points, used, notes)
     spacing = raw.point_spacing(used)
@@ -83,7 +86,6 @@ def _solid(path: Path, raw: RawModel, finder: DisplacementFinder, need: bool) ->
         nodes, mended = normalise_nodes(points, block, spacing)
         blocks.append(CellBlock(block.kind, nodes))
         notes += mended
-    named = finder.steps(need)
     steps = tuple(Step(s.name, _clean_displacement(s, used), s.time) for s in named)
     notes += finder.notes
     return Solid(points, tuple(blocks), steps, path.name, spacing, tuple(notes))
@@ -109,13 +111,16 @@ def _clean_points(points: np.ndarray, used: np.ndarray, notes: list[str]) -> np.
     return points
 
 
+def _check_length(step: Step, n_points: int) -> None:
+    if len(step.displacement) != n_points:
+        raise ReadError(
+            f"step {step.name}: found {len(step.displacement)} displacements for {n_points} "
+            "points, expected one per point; export them on the nodes"
+        )
+
+
 def _clean_displacement(step: Step, used: np.ndarray) -> np.ndarray:
     values = step.displacement
-    if len(values) != len(used):
-        raise ReadError(
-            f"step {step.name}: found {len(values)} displacements for {len(used)} points, "
-            "expected one per point; export them on the nodes"
-        )
     bad = ~np.isfinite(values).all(axis=1)
     broken = np.flatnonzero(bad & used)
     if len(broken):

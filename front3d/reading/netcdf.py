@@ -1,4 +1,4 @@
-"""How long a netCDF classic file ought to be, from its header.
+"""Whether a netCDF classic file is as long, and an Exodus file as complete, as its header says.
 
 The netCDF library fills what is missing from a file cut short with zeros, and may walk through a
 damaged header for long; a result file must not be read that way.  Source: the published grammar
@@ -12,19 +12,22 @@ from pathlib import Path
 from typing import BinaryIO
 
 from front3d.errors import ReadError
+from front3d.reading.guard import python_library
 
 _TYPE_SIZES = {1: 1, 2: 1, 3: 2, 4: 4, 5: 4, 6: 8, 7: 1, 8: 2, 9: 4, 10: 8, 11: 8}
 _DIMENSION, _VARIABLE, _ATTRIBUTE = 10, 11, 12
 
 
-def check_length(path: Path) -> None:
-    """Raise ReadError if a netCDF classic file is shorter than its header says, or damaged."""
+def check_exodus(path: Path) -> None:
+    """Raise ReadError if the file is shorter than its header says, or lacks parts of its mesh."""
     with path.open("rb") as file:
         found = os.fstat(file.fileno()).st_size
         if file.read(3) != b"CDF":
-            return  # netCDF-4 is HDF5, which checks itself
+            _check_netcdf4(path)
+            return
         try:
-            expected = _Header(file, found).expected_length()
+            header = _Header(file, found)
+            expected = header.expected_length()
         except (struct.error, IndexError, KeyError, ValueError):
             raise ReadError(
                 f"{path}: the header of this netCDF (Exodus) file is damaged or cut short; "
@@ -35,6 +38,42 @@ def check_length(path: Path) -> None:
             f"{path}: found {found} bytes, expected {expected} as its header says: the file is cut "
             "short; was it written to the end and transferred whole?"
         )
+    _check_parts(path, header.sizes, header.shapes)
+
+
+def _check_netcdf4(path: Path) -> None:
+    """The same for netCDF-4, which is HDF5: lengths are checked there, parts are not."""
+    import h5py
+
+    with python_library(path, "Exodus"), h5py.File(path, "r") as file:
+        found = {name: item for name, item in file.items() if isinstance(item, h5py.Dataset)}
+        sizes = {name: item.shape[0] for name, item in found.items() if item.ndim == 1}
+        shapes = {name: item.shape for name, item in found.items() if item.dtype.kind in "fiu"}
+        _check_parts(path, sizes, shapes)
+
+
+def _check_parts(path: Path, sizes: dict[str, int], shapes: dict[str, tuple[int, ...]]) -> None:
+    """The Exodus library walks into nothing where a block lacks a dimension or its list of nodes.
+
+    Names: Exodus II manual (Sandia, SAND92-2137).
+    """
+    nodes = sizes.get("num_nodes")
+    for block in range(1, sizes.get("num_el_blk", 0) + 1):
+        of_block = [sizes.get(f"{name}{block}") for name in ("num_el_in_blk", "num_nod_per_el")]
+        if of_block[0] == 0 or of_block[1] == 0:
+            continue
+        if shapes.get(f"connect{block}") != tuple(of_block):
+            raise ReadError(
+                f"{path}: found no whole list of cells of block {block} (connect{block}), expected "
+                "one: the file is damaged; transfer or export it again"
+            )
+    for name, shape in shapes.items():
+        if name.startswith(("coord", "vals_nod_var")) and name != "coor_names":
+            if nodes is not None and nodes not in shape:
+                raise ReadError(
+                    f"{path}: {name} has the shape {shape}, expected {nodes} nodes: the file is "
+                    "damaged; transfer or export it again"
+                )
 
 
 class _Header:
@@ -43,6 +82,8 @@ class _Header:
         version = file.read(1)[0]
         self.wide = {1: False, 2: False, 5: True}[version]
         self.far = version != 1
+        self.sizes: dict[str, int] = {}
+        self.shapes: dict[str, tuple[int, ...]] = {}
 
     def _integer(self, wide: bool) -> int:
         size, code = (8, ">q") if wide else (4, ">i")
@@ -66,6 +107,12 @@ class _Header:
         if self.file.tell() > self.length:
             raise ValueError(size)
 
+    def _name(self) -> str:
+        length = self._count()
+        name = self.file.read(length).decode("utf-8")
+        self.file.seek(-length % 4, os.SEEK_CUR)
+        return name
+
     def _attributes(self) -> None:
         for _ in range(self._list(_ATTRIBUTE)):
             self._skip(self._count())
@@ -76,13 +123,17 @@ class _Header:
         records = self._integer(self.wide)  # -1: the writer did not come back to fill it in
         dimensions = []
         for _ in range(self._list(_DIMENSION)):
-            self._skip(self._count())
-            dimensions.append(self._integer(self.wide))
+            name = self._name()
+            self.sizes[name] = self._integer(self.wide)
+            if not 0 <= self.sizes[name]:
+                raise ValueError(name)
+            dimensions.append(self.sizes[name])
         self._attributes()
         fixed_end, per_record = 0, []
         for _ in range(self._list(_VARIABLE)):
-            self._skip(self._count())
+            name = self._name()
             shape = [dimensions[self._count()] for _ in range(self._count())]
+            self.shapes[name] = tuple(shape)
             self._attributes()
             size = _TYPE_SIZES[self._integer(False)]
             self._integer(self.wide)  # the size, unreliable for large variables

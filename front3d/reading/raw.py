@@ -31,6 +31,8 @@ class RawModel:
     refused : solid cells of types that front3d does not have, by name
     single_if_exact : coordinates come in double precision whatever the file has, so take them for
         single precision where each of them is a single-precision number
+    pieces : (n,) the piece each point comes from; None if the model is one piece
+    global_ids : (n,) node numbers that hold across pieces, if the file has them
     """
 
     points: NDArray[Any]
@@ -39,6 +41,8 @@ class RawModel:
     refused: Counter[str] = field(default_factory=Counter)
     notes: list[str] = field(default_factory=list)
     single_if_exact: bool = False
+    pieces: IntArray | None = None
+    global_ids: IntArray | None = None
 
     def check(self) -> None:
         """Raise ReadError unless this is a solid of known elements."""
@@ -59,6 +63,10 @@ class RawModel:
                 f"found {found}, expected solid cells ({', '.join(ELEMENTS)}): two-dimensional "
                 "and shell models have no crack front; export the solid cells too"
             )
+        self.check_nodes()
+
+    def check_nodes(self) -> None:
+        """Raise ReadError if a cell refers to a point that is not there."""
         for block in self.blocks:
             outside = (block.nodes < 0) | (block.nodes >= len(self.points))
             if outside.any():
@@ -68,6 +76,13 @@ class RawModel:
                     f"{block.nodes[row, place]}, but the file has {len(self.points)} points "
                     "(numbered from 0); the file is damaged, or lacks mid-side nodes"
                 )
+
+    def used(self) -> BoolArray:
+        """(n,) which points a solid cell refers to."""
+        used = np.zeros(len(self.points), dtype=bool)
+        for block in self.blocks:
+            used[block.nodes.ravel()] = True
+        return used
 
     def ignored_cells(self) -> list[str]:
         return [f"{count} {name} cells ignored" for name, count in sorted(self.ignored.items())]
