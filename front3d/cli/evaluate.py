@@ -73,9 +73,11 @@ def evaluate_case(case: Case, out: Path, *, pictures: bool) -> "tuple[Evaluation
     with results_folder(out), progress_bar() as progress:
         if progress is not None:
             progress(f"reading {case.result.name}", 0.0)
-        solid = load(case.result, displacement=case.displacement)
+        solid = load(
+            case.result, displacement=case.displacement, displacement_file=case.displacement_file
+        )
         evaluation = evaluate_solid(solid, material, case.options, case.units, progress)
-        inputs = [case.result, *([case.source] if case.source else [])]
+        inputs = [p for p in (case.result, case.displacement_file, case.source) if p]
         written = write_results(
             evaluation,
             solid,

@@ -37,7 +37,9 @@ def read_msh(path: Path, finder: DisplacementFinder) -> RawModel:
             array[rows[numbers]] = values
         for (_, time), arrays in sorted(frames.items(), key=lambda item: item[0]):
             finder.offer(arrays, time)
-        return model(points, cells)
+        raw = model(points, cells)
+        raw.node_numbers = tags + 1
+        return raw
 
 
 def _sections(file: BinaryIO) -> tuple[Any, Any, Any, list[Any]]:

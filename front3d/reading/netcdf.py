@@ -15,6 +15,12 @@ from front3d.errors import ReadError
 from front3d.reading.guard import python_library
 
 _TYPE_SIZES = {1: 1, 2: 1, 3: 2, 4: 4, 5: 4, 6: 8, 7: 1, 8: 2, 9: 4, 10: 8, 11: 8}
+# Nodes of the Exodus element types, by how their names begin; None: any number.
+_NODES: dict[str, tuple[int, ...] | None] = {
+    "HEX": (8, 20, 27), "TET": (4, 10), "WED": (6, 15, 18), "PYR": (5, 13, 14), "SPH": (1,),
+    "CIR": (1,), "BAR": (2, 3), "BEA": (2, 3), "TRU": (2, 3), "EDG": (2, 3), "TRI": (3, 6, 7),
+    "QUA": (4, 8, 9), "SHE": (3, 4, 6, 8, 9), "NSI": None, "NFA": None,
+}  # fmt: skip
 _DIMENSION, _VARIABLE, _ATTRIBUTE = 10, 11, 12
 
 
@@ -38,7 +44,7 @@ def check_exodus(path: Path) -> None:
             f"{path}: found {found} bytes, expected {expected} as its header says: the file is cut "
             "short; was it written to the end and transferred whole?"
         )
-    _check_parts(path, header.sizes, header.shapes)
+    _check_parts(path, header.sizes, header.shapes, header.kinds)
 
 
 def _check_netcdf4(path: Path) -> None:
@@ -49,31 +55,46 @@ def _check_netcdf4(path: Path) -> None:
         found = {name: item for name, item in file.items() if isinstance(item, h5py.Dataset)}
         sizes = {name: item.shape[0] for name, item in found.items() if item.ndim == 1}
         shapes = {name: item.shape for name, item in found.items() if item.dtype.kind in "fiu"}
-        _check_parts(path, sizes, shapes)
+        kinds = {name: item.attrs.get("elem_type", b"") for name, item in found.items()}
+        text = {
+            n: k.decode("latin-1") if isinstance(k, bytes) else str(k) for n, k in kinds.items()
+        }
+        _check_parts(path, sizes, shapes, text)
 
 
-def _check_parts(path: Path, sizes: dict[str, int], shapes: dict[str, tuple[int, ...]]) -> None:
-    """The Exodus library walks into nothing where a block lacks a dimension or its list of nodes.
+def _check_parts(
+    path: Path, sizes: dict[str, int], shapes: dict[str, tuple[int, ...]], kinds: dict[str, str]
+) -> None:
+    """The Exodus library, and VTK after it, walk into nothing where a block lacks a dimension or
+    its list of nodes, or is of a type that they do not know.
 
     Names: Exodus II manual (Sandia, SAND92-2137).
     """
     nodes = sizes.get("num_nodes")
     for block in range(1, sizes.get("num_el_blk", 0) + 1):
-        of_block = [sizes.get(f"{name}{block}") for name in ("num_el_in_blk", "num_nod_per_el")]
-        if of_block[0] == 0 or of_block[1] == 0:
+        cells, width = (sizes.get(f"{n}{block}") for n in ("num_el_in_blk", "num_nod_per_el"))
+        name = f"connect{block}"
+        if cells == 0 or width == 0:
             continue
-        if shapes.get(f"connect{block}") != tuple(of_block):
+        if shapes.get(name) != (cells, width):
             raise ReadError(
-                f"{path}: found no whole list of cells of block {block} (connect{block}), expected "
+                f"{path}: found no whole list of cells of block {block} ({name}), expected "
                 "one: the file is damaged; transfer or export it again"
             )
+        kind = kinds.get(name, "").strip("\0 ")
+        allowed = _NODES.get(kind[:3].upper(), ())
+        if allowed is not None and width not in allowed:
+            raise ReadError(
+                f"{path}: found cells of the type {kind!r} with {width} nodes in block {block}, "
+                "expected one of the Exodus types with its number of nodes; export it again"
+            )
     for name, shape in shapes.items():
-        if name.startswith(("coord", "vals_nod_var")) and name != "coor_names":
-            if nodes is not None and nodes not in shape:
-                raise ReadError(
-                    f"{path}: {name} has the shape {shape}, expected {nodes} nodes: the file is "
-                    "damaged; transfer or export it again"
-                )
+        of_nodes = name.startswith(("coord", "vals_nod_var"))
+        if of_nodes and nodes is not None and nodes not in shape:
+            raise ReadError(
+                f"{path}: {name} has the shape {shape}, expected {nodes} nodes: the file is "
+                "damaged; transfer or export it again"
+            )
 
 
 class _Header:
@@ -84,6 +105,7 @@ class _Header:
         self.far = version != 1
         self.sizes: dict[str, int] = {}
         self.shapes: dict[str, tuple[int, ...]] = {}
+        self.kinds: dict[str, str] = {}
 
     def _integer(self, wide: bool) -> int:
         size, code = (8, ">q") if wide else (4, ">i")
@@ -113,11 +135,16 @@ class _Header:
         self.file.seek(-length % 4, os.SEEK_CUR)
         return name
 
-    def _attributes(self) -> None:
+    def _attributes(self, variable: str = "") -> None:
         for _ in range(self._list(_ATTRIBUTE)):
-            self._skip(self._count())
+            name = self._name()
             size = _TYPE_SIZES[self._integer(False)]
-            self._skip(self._count() * size)
+            length = self._count() * size
+            if name == "elem_type":
+                self.kinds[variable] = self.file.read(length).decode("latin-1")
+                self.file.seek(-length % 4, os.SEEK_CUR)
+            else:
+                self._skip(length)
 
     def expected_length(self) -> int:
         records = self._integer(self.wide)  # -1: the writer did not come back to fill it in
@@ -125,7 +152,7 @@ class _Header:
         for _ in range(self._list(_DIMENSION)):
             name = self._name()
             self.sizes[name] = self._integer(self.wide)
-            if not 0 <= self.sizes[name]:
+            if self.sizes[name] < 0:
                 raise ValueError(name)
             dimensions.append(self.sizes[name])
         self._attributes()
@@ -134,7 +161,7 @@ class _Header:
             name = self._name()
             shape = [dimensions[self._count()] for _ in range(self._count())]
             self.shapes[name] = tuple(shape)
-            self._attributes()
+            self._attributes(name)
             size = _TYPE_SIZES[self._integer(False)]
             self._integer(self.wide)  # the size, unreliable for large variables
             begin = self._integer(self.far)

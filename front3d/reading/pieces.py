@@ -9,7 +9,7 @@ from dataclasses import replace
 
 import numpy as np
 
-from front3d.arrays import FloatArray, IntArray
+from front3d.arrays import BoolArray, IntArray
 from front3d.errors import ReadError
 from front3d.reading.raw import RawBlock, RawModel, merged
 from front3d.solid import Step
@@ -83,7 +83,7 @@ def join_pieces(raw: RawModel, steps: list[Step]) -> tuple[RawModel, list[Step]]
     return joined, [Step(s.name, s.displacement[keep], s.time) for s in steps]
 
 
-def _by_numbers(raw: RawModel, used: FloatArray) -> IntArray | None:
+def _by_numbers(raw: RawModel, used: BoolArray) -> IntArray | None:
     """A name per point from the global numbers; None if they cannot be what they say."""
     if raw.global_ids is None or raw.pieces is None:
         return None
@@ -97,7 +97,7 @@ def _by_numbers(raw: RawModel, used: FloatArray) -> IntArray | None:
     return ids
 
 
-def _by_place(raw: RawModel, used: FloatArray, steps: list[Step]) -> IntArray:
+def _by_place(raw: RawModel, used: BoolArray, steps: list[Step]) -> IntArray:
     from scipy.sparse import coo_array
     from scipy.sparse.csgraph import connected_components
     from scipy.spatial import cKDTree
@@ -124,8 +124,7 @@ def _by_place(raw: RawModel, used: FloatArray, steps: list[Step]) -> IntArray:
         one = unlike <= limit
         ends = (first[one], second[one])
         graph = coo_array((np.ones(one.sum()), ends), shape=(len(used), len(used)))
-        _, names = connected_components(graph, directed=False)
-        names = names.astype(np.int64)
+        names = connected_components(graph, directed=False)[1].astype(np.int64)
         taken = np.stack([names[rows], raw.pieces[rows]])
         if len(np.unique(taken, axis=1).T) == len(rows):
             return names
@@ -136,7 +135,7 @@ def _by_place(raw: RawModel, used: FloatArray, steps: list[Step]) -> IntArray:
     )
 
 
-def _reach(raw: RawModel, used: FloatArray) -> float:
+def _reach(raw: RawModel, used: BoolArray) -> float:
     """Distance within which two nodes stand at one place."""
     points = raw.points[used]
     extent = float((points.max(axis=0) - points.min(axis=0)).max())

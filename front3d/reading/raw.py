@@ -33,6 +33,7 @@ class RawModel:
         single precision where each of them is a single-precision number
     pieces : (n,) the piece each point comes from; None if the model is one piece
     global_ids : (n,) node numbers that hold across pieces, if the file has them
+    node_numbers : (n,) the numbers of the nodes in the file, if it has any
     """
 
     points: NDArray[Any]
@@ -43,6 +44,7 @@ class RawModel:
     single_if_exact: bool = False
     pieces: IntArray | None = None
     global_ids: IntArray | None = None
+    node_numbers: IntArray | None = None
 
     def check(self) -> None:
         """Raise ReadError unless this is a solid of known elements."""

@@ -1,7 +1,7 @@
 """VTU, VTK legacy, and the files that name them: PVTU (pieces) and PVD (times, pieces)."""
 
 import xml.etree.ElementTree as ET
-from collections.abc import Callable
+from collections.abc import Callable, Mapping
 from pathlib import Path
 from typing import Any
 
@@ -53,7 +53,7 @@ def _load_pvtu(path: Path) -> list[Any]:
     return [grid for file in files for grid in _load_named(path, file, {"vtu": _load_vtu})]
 
 
-def _load_named(path: Path, file: str, loaders: dict[str, Callable[[Path], list[Any]]]) -> Any:
+def _load_named(path: Path, file: str, loaders: Mapping[str, Callable[[Path], list[Any]]]) -> Any:
     """Load a file that `path` names."""
     try:
         reader = identify(path.parent / file).reader
