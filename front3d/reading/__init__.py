@@ -84,6 +84,7 @@ def _solid(path: Path, raw: RawModel, named: list[Step], remarks: list[str]) -> 
     for step in named:
         _check_length(step, len(raw.points))
     raw, named = join_pieces(raw, named)
+    raw.check_cells()
     points = np.asarray(raw.points, dtype=np.float64)
     used = raw.used()
     notes = list(raw.notes) + raw.ignored_cells()

@@ -79,6 +79,33 @@ class RawModel:
                     "(numbered from 0); the file is damaged, or lacks mid-side nodes"
                 )
 
+    def check_cells(self) -> None:
+        """Raise ReadError if two cells have the same corners: inside, their faces look doubled."""
+        # Sums of random numbers do not depend on the order of the nodes.
+        name = np.random.default_rng(0).integers(0, 2**64, len(self.points), dtype=np.uint64)
+        names, owners = [], []
+        for k, block in enumerate(self.blocks):
+            corners = block.nodes[:, : ELEMENTS[block.kind].n_corners]
+            sums = name[corners[:, 0]]
+            for column in corners.T[1:]:
+                sums = sums + name[column]
+            names.append(sums)
+            owners.append(np.full(len(sums), k))
+        sums, owner = np.concatenate(names), np.concatenate(owners)
+        order = np.argsort(sums)
+        same = np.flatnonzero(sums[order][1:] == sums[order][:-1])
+        if not len(same):
+            return
+        # The sort need not be stable: name the pair that comes first.
+        one, other = min(sorted(order[k : k + 2].tolist()) for k in same)
+        kinds = [block.kind for block in self.blocks]
+        numbers = np.concatenate([block.numbers for block in self.blocks])
+        raise ReadError(
+            f"{kinds[owner[one]]} cell {numbers[one]} and {kinds[owner[other]]} cell "
+            f"{numbers[other]} have the same corners ({len(same)} such cells; numbers from 0), "
+            "expected every cell once; remove the copies, or pieces that overlap"
+        )
+
     def used(self) -> BoolArray:
         """(n,) which points a solid cell refers to."""
         used = np.zeros(len(self.points), dtype=bool)
