@@ -14,7 +14,8 @@ length = "mm"
 stress = "MPa"
 
 [options]
-crack_plane = "z=0"             # half model
+crack_plane = "z=0"             # half model, where it is not found
+symmetry_planes = ["x=0"]       # on which fronts end, where they are not found
 face_pressure = 0.0
 surface_pressure = 0.0          # where a front ends
 rings = [0.4, 0.6, 0.8]
@@ -53,6 +54,7 @@ class Case:
     length: str | None = None
     stress: str | None = None
     crack_plane: Plane | None = None
+    symmetry_planes: tuple[Plane, ...] | None = None
     face_pressure: float | None = None
     surface_pressure: float | None = None
     rings: tuple[float, ...] | None = None
@@ -78,6 +80,7 @@ class Case:
         """The options of the evaluation; CaseError where one is out of range."""
         return Options(
             crack_plane=self.crack_plane,
+            symmetry_planes=self.symmetry_planes or (),
             face_pressure=self.face_pressure or 0.0,
             surface_pressure=self.surface_pressure or 0.0,
             radii=self.rings,
@@ -208,6 +211,7 @@ _KEYS: Mapping[str, Any] = {
     "units": {"length": _text, "stress": _text},
     "options": {
         "crack_plane": _plane,
+        "symmetry_planes": _list_of(_plane, 'a list of planes such as ["x=0"]'),
         "face_pressure": _number,
         "surface_pressure": _number,
         "rings": _list_of(_number, "a list of radii such as [0.2, 0.4]"),

@@ -81,7 +81,15 @@ def add_crack_flags(parser: argparse.ArgumentParser) -> None:
         "--crack-plane",
         type=plane,
         metavar="PLANE",
-        help="symmetry plane that holds the crack of a half model, e.g. z=0",
+        help="symmetry plane that holds the crack of a half model, e.g. z=0, if not found",
+    )
+    parser.add_argument(
+        "--symmetry-plane",
+        type=plane,
+        action="append",
+        dest="symmetry_planes",
+        metavar="PLANE",
+        help="symmetry plane on which a front ends, if not found (may be repeated)",
     )
     parser.add_argument(
         "--up", type=vector, metavar="X,Y,Z", help="direction from lower to upper crack face"
@@ -153,7 +161,7 @@ def case_of(arguments: argparse.Namespace) -> Case:
         if name not in ("result", "source")
         and (value := getattr(arguments, name, None)) is not None
     }
-    for name in ("steps", "methods", "compare"):
+    for name in ("steps", "methods", "compare", "symmetry_planes"):
         if name in said:
             said[name] = tuple(said[name])
     flags = Case(**said)
