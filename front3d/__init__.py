@@ -23,11 +23,16 @@ if TYPE_CHECKING:
 __version__ = "0.1.0"
 
 
-def load(path: str | Path, *, displacement: str | None = None) -> Solid:
+def load(
+    path: str | Path,
+    *,
+    displacement: str | None = None,
+    displacement_file: str | Path | None = None,
+) -> Solid:
     """Read a finite-element result; see `front3d.reading.load`."""
     from front3d.reading import load
 
-    return load(path, displacement=displacement)
+    return load(path, displacement=displacement, displacement_file=displacement_file)
 
 
 def find_fronts(solid: Solid, **options: Any) -> CrackModel:

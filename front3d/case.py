@@ -3,6 +3,7 @@
 ```toml
 result = "bracket.vtu"          # relative to this file
 displacement = "U"              # where it is not found by its name
+displacement_file = "u.csv"     # a table of nodal displacements, relative to this file
 
 [material]
 young = 200e3
@@ -47,6 +48,7 @@ class Case:
 
     result: Path | None = None
     displacement: str | None = None
+    displacement_file: Path | None = None
     young: float | None = None
     poisson: float | None = None
     length: str | None = None
@@ -110,7 +112,9 @@ def read_case(path: Path) -> Case:
             f'{path.name}: found no result, expected a line such as result = "model.vtu" before '
             "the first section"
         )
-    values["result"] = path.parent / values["result"]
+    for key in ("result", "displacement_file"):
+        if key in values:
+            values[key] = path.parent / values[key]
     return Case(**values, source=path)
 
 
@@ -202,6 +206,7 @@ def _vector(value: Any) -> Vector:
 _KEYS: Mapping[str, Any] = {
     "result": _text,
     "displacement": _text,
+    "displacement_file": _text,
     "material": {"young": _number, "poisson": _number},
     "units": {"length": _text, "stress": _text},
     "options": {

@@ -71,6 +71,13 @@ def add_crack_flags(parser: argparse.ArgumentParser) -> None:
         "--displacement", metavar="NAME", help="point array of the displacement, if not found"
     )
     parser.add_argument(
+        "--displacement-file",
+        type=Path,
+        metavar="FILE",
+        help="table (CSV) of nodal displacements, for a mesh file that holds none; columns node or "
+        "x,y,z, then ux,uy,uz, and step where there are several",
+    )
+    parser.add_argument(
         "--crack-plane",
         type=plane,
         metavar="PLANE",

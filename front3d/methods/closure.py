@@ -38,7 +38,7 @@ from front3d.methods.closure_variant import column_notes, variant_name
 from front3d.methods.closure_weights import Tents, build_tents
 from front3d.methods.context import FrontContext
 from front3d.methods.hats import default_widths
-from front3d.methods.tube import project
+from front3d.methods.tube import layer_reaches, project
 from front3d.results import MethodResult
 
 DISAGREE = 0.01
@@ -55,7 +55,8 @@ def evaluate(context: FrontContext) -> list[MethodResult]:
     columns = find_columns(context, ligament)
     front, options = context.front, context.options
     if options.hat is None:
-        width = default_widths(front, columns is not None)
+        (reach,) = layer_reaches(context.solid, front, context.model.same, 1)
+        width = default_widths(front, columns is not None, reach)
     else:
         width = np.full(len(front.corners), options.hat)
     tents = build_tents(context, ligament, width)
