@@ -9,6 +9,7 @@ from front3d.crack.edges import FrontEdges, full_model_edges, half_model_edges, 
 from front3d.crack.ends import classify_ends
 from front3d.crack.front import Front, build_front
 from front3d.crack.half import find_half_patch
+from front3d.crack.notch import open_notch
 from front3d.crack.patches import Patch, find_patches
 from front3d.crack.pieces import (
     CORNER,
@@ -65,7 +66,7 @@ def find_cracks(solid: Solid, options: Options | None = None) -> CrackModel:
             "outer plane that is held along its normal in part, as the crack plane of a half model "
             "is (name it where it is held by springs: --crack-plane z=0); "
             "if the crack is modelled by a gap or by one merged surface, its faces must be split "
-            "into coincident faces first"
+            "into coincident faces first" + (f"; {gap}" if (gap := open_notch(solid, same)) else "")
         )
     if not chosen:
         raise CrackError(
