@@ -15,7 +15,7 @@ from front3d.output.charts.style import mathtext
 from front3d.output.scene.camera import View, pixels
 from front3d.output.scene.drawing import INK, Place
 from front3d.output.scene.geometry import arrow_tips, size_of, smooth_curve
-from front3d.output.scene.quantity import LABELS, SHORT, Scale, colours, unit_of, values_of
+from front3d.output.scene.quantity import LABELS, SHORT, Scale, colours, shown_value, unit_of
 from front3d.results import FrontResult
 from front3d.units import Units
 
@@ -42,9 +42,9 @@ def words_of(
     word: str, front: FrontResult, station: int, scale: Scale, units: Units, *, short: bool = False
 ) -> str:
     """The value of the quantity drawn at a station, on one line or more."""
-    value = values_of(front, scale.quantity, scale.words)[station]
     if scale.words:
         return f"{word}\n{front.flags[station] or scale.words[0]}".strip()
+    value = shown_value((front,), front, station, scale.quantity)
     unit = unit_of(scale.quantity, units)
     space = "" if scale.quantity == "psi" or not unit else " "
     number = f"{value:.3g}" if scale.quantity == "psi" else f"{value:.4g}"

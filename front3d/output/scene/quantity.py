@@ -82,12 +82,28 @@ def colour_scale(fronts: Sequence[FrontResult], quantity: str | None = None) -> 
         return Scale(quantity, -0.5, len(words) - 0.5, tuple(words))
     values = np.concatenate([values_of(front, quantity) for front in fronts])
     values = values[np.isfinite(values)]
+    values = np.where(np.abs(values) > _noise(fronts, quantity), values, 0.0)
     low, high = (float(values.min()), float(values.max())) if len(values) else (0.0, 0.0)
     largest = max(abs(low), abs(high))
+    if largest == 0.0 and quantity != "psi":
+        return Scale(quantity, -1.0, 1.0)  # nought stands in the middle
     short = (_LEAST_DEGREES if quantity == "psi" else _LEAST_SPAN * largest) - (high - low)
     if short > 0:  # the value of largest magnitude keeps the end of the scale
         low, high = (low - short, high) if high >= -low else (low, high + short)
     return Scale(quantity, low, high) if high > low else Scale(quantity, low, low + 1.0)
+
+
+def _noise(fronts: Sequence[FrontResult], quantity: str) -> float:
+    """Below this, a value is nought: a millionth of the largest K, or of a degree."""
+    if quantity not in MODES:
+        return 1e-6 if quantity == "psi" else 0.0
+    return 1e-6 * float(np.nanmax([np.nanmax(np.abs(f.K), initial=0.0) for f in fronts]))
+
+
+def shown_value(fronts: Sequence[FrontResult], front: FrontResult, i: int, quantity: str) -> float:
+    """The value at a station, nought where it is nought against those of all fronts."""
+    value = float(values_of(front, quantity)[i])
+    return 0.0 if abs(value) <= _noise(fronts, quantity) else value
 
 
 def colours(scale: Scale | None = None) -> Any:

@@ -40,7 +40,7 @@ from front3d.units import Units
 if TYPE_CHECKING:
     from matplotlib.figure import Figure
 
-RIBBON_WORDS = "ribbon: direction of growth by the maximum tangential stress (Erdogan and Sih 1963)"
+RIBBON_WORDS = "ribbon: growth by the maximum tangential stress (Erdogan and Sih 1963)"
 RING_WORDS = "circles: domains of the interaction integral"
 
 

@@ -10,6 +10,9 @@ from front3d.arrays import BoolArray, FloatArray, IntArray
 from front3d.results import FrontResult
 from front3d.solid import Solid
 
+_SKIRT = 0.25
+"""How far from the mouth the outside follows it, in diameters of the front."""
+
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Skin:
@@ -53,7 +56,7 @@ def skin(solid: Solid, fronts: tuple[FrontResult, ...]) -> Skin:
     points = np.asarray(surface.points, np.float64)
     crack = crack_faces(points, triangles, fronts)
     if moved:
-        faces = _Faces.of(points, triangles[crack], fronts)
+        faces = _Faces.of(points, triangles[crack], triangles[~crack], fronts)
         for name, displacement in moved.items():
             surface.point_data[name] = faces.opening(displacement).astype(np.float32)
     return Skin(as_surface(surface.extract_cells(~crack)), as_surface(surface.extract_cells(crack)))
@@ -137,16 +140,23 @@ class _Faces:
     sides : rows of the points of the upper and the lower face, without those of both
     opposite : per side, rows (m, 3) of the nearest points of the other, and their weights
     normal : (points, 3) of the crack at the nearest station
+    skirt : per side, rows (m,) of points of the outside, of the points of the crack's mouth that
+        they follow, and how far they do: without it, cells at the mouth would be turned over
     """
 
     points: int
     sides: tuple[IntArray, IntArray]
     opposite: tuple[tuple[IntArray, FloatArray], ...]
     normal: FloatArray
+    skirt: tuple[tuple[IntArray, IntArray, FloatArray], ...]
 
     @classmethod
     def of(
-        cls, points: FloatArray, triangles: IntArray, fronts: tuple[FrontResult, ...]
+        cls,
+        points: FloatArray,
+        triangles: IntArray,
+        outside: IntArray,
+        fronts: tuple[FrontResult, ...],
     ) -> "_Faces":
         from scipy.spatial import KDTree
 
@@ -171,7 +181,8 @@ class _Faces:
             weight = 1 / (distance + 1e-9 * size) ** 2
             opposite.append((other[nearest], weight / weight.sum(axis=1, keepdims=True)))
         sides = (np.setdiff1d(whole[0], both), np.setdiff1d(whole[1], both))
-        return cls(len(points), sides, tuple(opposite), e2)
+        skirt = _skirt(points, whole, np.unique(outside), e2, fronts)
+        return cls(len(points), sides, tuple(opposite), e2, skirt)
 
     def opening(self, displacement: FloatArray) -> FloatArray:
         """(points, 3) half of the displacement against the other face; of a half model, whose other
@@ -185,4 +196,32 @@ class _Faces:
             else:
                 normal = self.normal[rows]
                 out[rows] = np.einsum("ij,ij->i", own, normal)[:, None] * normal
+        for rows, lips, share in self.skirt:
+            out[rows] = share[:, None] * out[lips]
         return out
+
+
+def _skirt(
+    points: FloatArray,
+    faces: list[IntArray],
+    outside: IntArray,
+    e2: FloatArray,
+    fronts: tuple[FrontResult, ...],
+) -> tuple[tuple[IntArray, IntArray, FloatArray], ...]:
+    """Points of the outside near the mouth, less and less the farther they are from it."""
+    from scipy.spatial import KDTree
+
+    positions = np.concatenate([front.positions for front in fronts])
+    reach = _SKIRT * float(np.linalg.norm(np.ptp(positions, axis=0)))
+    others = np.setdiff1d(outside, np.concatenate(faces))
+    found = []
+    for face, sign in zip(faces, (1, -1), strict=True):
+        lips = np.intersect1d(face, outside)
+        if not len(lips) or not len(others):
+            continue
+        distance, nearest = KDTree(points[lips]).query(points[others])
+        lip = lips[nearest]
+        above = np.einsum("ij,ij->i", points[others] - points[lip], e2[lip]) * sign > 0
+        near = above & (distance < reach)
+        found.append((others[near], lip[near], 1 - distance[near] / reach))
+    return tuple(found)
