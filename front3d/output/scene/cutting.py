@@ -22,9 +22,10 @@ def cut_to_box(surface: Any, low: FloatArray, high: FloatArray) -> Any:
             table, triangles = _cut(table, triangles, sign * (table[:, axis] - limit))
     if not len(triangles):
         return pv.PolyData()
-    used, triangles = np.unique(triangles, return_inverse=True)
+    used, renamed = np.unique(triangles, return_inverse=True)
+    corners: Any = renamed.reshape(-1, 3)
     parts = np.split(table[used], np.cumsum(widths)[:-1], axis=1)
-    out = pv.PolyData.from_regular_faces(parts[0], triangles.reshape(-1, 3))
+    out = pv.PolyData.from_regular_faces(parts[0], corners)
     for name, part in zip(names, parts[1:], strict=True):
         out.point_data[name] = part.astype(np.float32)
     return out

@@ -110,13 +110,13 @@ def add_extras(
             strip = kink_ribbon(front, size)
             if strip is not None:
                 actors.append(plotter.add_mesh(strip, color=RIBBON, opacity=0.75, ambient=0.3))
-                rim = strip.extract_feature_edges(180, feature_edges=False)
+                rim = strip.extract_feature_edges(180, feature_edges=False, manifold_edges=False)
                 actors.append(plotter.add_mesh(rim, color=RIBBON, line_width=2))
     for number, station in extras.rings:
         for circle in ring_circles(fronts[number], station):
             line = pv.PolyData(circle, lines=np.r_[len(circle), np.arange(len(circle))])
             actors.append(plotter.add_mesh(line.tube(radius=0.6 * thin), color=RING, ambient=0.4))
     for number, station in extras.balls:
-        ball = pv.Sphere(0.032 * view.half_height, fronts[number].positions[station])
+        ball = pv.Sphere(radius=0.032 * view.half_height, center=fronts[number].positions[station])
         actors.append(plotter.add_mesh(ball, color=INK, smooth_shading=True, ambient=0.3))
     return actors

@@ -140,7 +140,7 @@ def kink_ribbon(front: FrontResult, size: float) -> Any | None:
     if not known.any():
         return None
     outer = np.nan_to_num(front.positions + _RIBBON * size * way)
-    quads = np.stack([before, after, after + n, before + n], axis=1)[known]
+    quads: Any = np.stack([before, after, after + n, before + n], axis=1)[known]
     return pv.PolyData.from_regular_faces(np.vstack([front.positions, outer]), quads)
 
 

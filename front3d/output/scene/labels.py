@@ -66,9 +66,10 @@ def draw_marks(
     view: View,
     shape: tuple[int, int] = SHAPE,
     grain: float = 1.0,
+    room: tuple[int, int] | None = None,
 ) -> list[Any]:
     """Boxes of words beside their stations, clear of the fronts and of each other; letters at the
-    tips of arrows.  The boxes, to be tested.
+    tips of arrows.  The boxes, to be tested.  `room` is what they may take of `shape`.
     """
     curves = [pixels(smooth_curve(front)[0], view, shape) for front in fronts]
     obstacles = [np.concatenate(curves)]
@@ -94,7 +95,7 @@ def draw_marks(
         x, y = pixels(fronts[number].positions[station], view, shape)
         half = half_box(mark.text, grain)
         middle = place_for_words(
-            np.array((x, y)), np.concatenate(obstacles), half, shape, taken, grain
+            np.array((x, y)), np.concatenate(obstacles), half, room or shape, taken, grain
         )
         taken.append((np.array(middle), half))
         boxes.append(
@@ -149,7 +150,9 @@ def _arrow(
 def half_box(text: str, grain: float = 1.0) -> FloatArray:
     """Half the width and height that a box of words takes, generously."""
     # A dollar sign and what stands in a command of mathematics take no room.
-    plain = text.replace("$", "").replace("\\sqrt", "").replace("\\mathrm", "").replace("\\psi", "p")
+    plain = (
+        text.replace("$", "").replace("\\sqrt", "").replace("\\mathrm", "").replace("\\psi", "p")
+    )
     lines = [line.replace("{", "").replace("}", "") for line in plain.split("\n")]
     width = max(map(len, lines)) * _LETTER
     return grain * (np.array([width, _LINE * len(lines)]) / 2 + _PAD)

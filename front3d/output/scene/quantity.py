@@ -94,9 +94,9 @@ def colour_scale(fronts: Sequence[FrontResult], quantity: str | None = None) -> 
 
 
 def _noise(fronts: Sequence[FrontResult], quantity: str) -> float:
-    """Below this, a value is nought: a millionth of the largest K, or of a degree."""
+    """Below this, a value is nought: a millionth of the largest K, or a thousandth of a degree."""
     if quantity not in MODES:
-        return 1e-6 if quantity == "psi" else 0.0
+        return 1e-3 if quantity == "psi" else 0.0
     return 1e-6 * float(np.nanmax([np.nanmax(np.abs(f.K), initial=0.0) for f in fronts]))
 
 
@@ -132,6 +132,8 @@ def extremes(fronts: Sequence[FrontResult], scale: Scale) -> list[tuple[str, int
         if ends:
             value, number, i = over(ends)
             found.append((abs(value), word, number, i))
+    if all(shown_value(fronts, fronts[n], i, scale.quantity) == 0 for _, _, n, i in found):
+        return []
     found.sort(key=lambda one: -one[0])
     if len(found) == 2:
         first, second = (values_of(fronts[n], scale.quantity)[i] for _, _, n, i in found)

@@ -10,7 +10,7 @@ from front3d.arrays import BoolArray, FloatArray, IntArray
 from front3d.results import FrontResult
 from front3d.solid import Solid
 
-_SKIRT = 0.25
+_SKIRT = 0.15
 """How far from the mouth the outside follows it, in diameters of the front."""
 
 
@@ -167,7 +167,7 @@ class _Faces:
         # The solid above the crack ends at its upper face: outwards is down there.
         is_upper = np.einsum("ij,ij->i", outwards, e2[triangles[:, 0]]) < 0
         whole = [np.unique(triangles[is_upper]), np.unique(triangles[~is_upper])]
-        both = np.intersect1d(*whole)
+        both = np.intersect1d(whole[0], whole[1])
         opposite = []
         for own, other in zip(whole, whole[::-1], strict=True):
             rows = np.setdiff1d(own, both)
@@ -175,7 +175,8 @@ class _Faces:
                 opposite.append((np.zeros((len(rows), 0), np.int64), np.zeros((len(rows), 0))))
                 continue
             k = min(3, len(other))
-            distance, nearest = KDTree(points[other]).query(points[rows], k=range(1, k + 1))
+            found = KDTree(points[other]).query(points[rows], k=range(1, k + 1))
+            distance, nearest = np.asarray(found[0]), np.asarray(found[1])
             size = float(np.linalg.norm(np.ptp(points[own], axis=0)))
             # Where meshes match, the twin's weight leaves nothing to the others.
             weight = 1 / (distance + 1e-9 * size) ** 2
@@ -219,8 +220,8 @@ def _skirt(
         lips = np.intersect1d(face, outside)
         if not len(lips) or not len(others):
             continue
-        distance, nearest = KDTree(points[lips]).query(points[others])
-        lip = lips[nearest]
+        away, nearest = KDTree(points[lips]).query(points[others])
+        distance, lip = np.asarray(away), lips[nearest]
         above = np.einsum("ij,ij->i", points[others] - points[lip], e2[lip]) * sign > 0
         near = above & (distance < reach)
         found.append((others[near], lip[near], 1 - distance[near] / reach))
