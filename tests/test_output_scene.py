@@ -94,10 +94,12 @@ def test_words_stand_clear_of_the_front_and_inside_the_panel() -> None:
     half = half_box("largest $K_I$\n386.8 MPa mm12\n12.23 MPa")
     for peak in circle[::10]:
         x, y = place_for_words(peak, circle, half)
-        # 3 lines of words of 13 points are about 300 x 150 pixels of the panel of 1040 x 780.
-        assert 150 <= x <= 890
-        assert 75 <= y <= 705
-        assert not ((np.abs(circle - (x, y)) < (150, 75)).all(axis=1)).any()
+        assert half[0] - 1 <= x <= 1041 - half[0]
+        assert half[1] - 1 <= y <= 781 - half[1]
+        assert not (np.abs(circle - (x, y)) < half).all(axis=1).any()
+        # A second box for the same place keeps off the first.
+        other = place_for_words(peak, circle, half, taken=[(np.array((x, y)), half)])
+        assert (np.abs(np.array(other) - (x, y)) >= 2 * half).any()
 
 
 def test_without_a_graphics_library_a_sentence_says_what_to_install(

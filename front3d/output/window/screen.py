@@ -194,9 +194,9 @@ class Window:
         style.AddObserver("CharEvent", lambda *_: None)  # else "w" would draw wires, "e" end it all
         interactor.AddObserver("KeyPressEvent", lambda *_: self.key(interactor.GetKeySym()))
         interactor.AddObserver("LeftButtonPressEvent", lambda *_: self._press(), 1.0)
-        interactor.AddObserver("LeftButtonReleaseEvent", lambda *_: self._release(), 1.0)
-        interactor.AddObserver("MouseMoveEvent", lambda *_: self._move(), 1.0)
-        style.AddObserver("EndInteractionEvent", lambda *_: self._turned())
+        # Between press and release the style alone hears of the mouse, and says so by these.
+        style.AddObserver("InteractionEvent", lambda *_: self._move())
+        style.AddObserver("EndInteractionEvent", lambda *_: self._release())
         self.plotter.ren_win.AddObserver("WindowResizeEvent", lambda *_: self._resized())
 
     def _mouse(self) -> tuple[int, int]:
@@ -217,14 +217,14 @@ class Window:
             self.do(asked(self.panel, x, (top + bottom) / 2, self.shown))
 
     def _release(self) -> None:
+        """After a click, or after the scene was turned or brought nearer."""
         pressed, self._pressed = self._pressed, None
         x, y = self._mouse()
         if pressed is not None and np.hypot(x - pressed[0], y - pressed[1]) <= _STILL:
             self.click(x, y)
-
-    def _turned(self) -> None:
-        self._words()
-        self.plotter.render()
+        elif pressed is None or pressed[0] < self._half()[0]:
+            self._words()
+            self.plotter.render()
 
     def _resized(self) -> None:
         if tuple(self.panel.image.shape[1::-1]) != self._half():
