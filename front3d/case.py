@@ -16,6 +16,7 @@ stress = "MPa"
 [options]
 crack_plane = "z=0"             # half model, where it is not found
 symmetry_planes = ["x=0"]       # on which fronts end, where they are not found
+expected_stress = 100.0         # K is checked against it, to a power of ten
 face_pressure = 0.0
 surface_pressure = 0.0          # where a front ends
 rings = [0.4, 0.6, 0.8]
@@ -55,6 +56,7 @@ class Case:
     stress: str | None = None
     crack_plane: Plane | None = None
     symmetry_planes: tuple[Plane, ...] | None = None
+    expected_stress: float | None = None
     face_pressure: float | None = None
     surface_pressure: float | None = None
     rings: tuple[float, ...] | None = None
@@ -81,6 +83,7 @@ class Case:
         return Options(
             crack_plane=self.crack_plane,
             symmetry_planes=self.symmetry_planes or (),
+            expected_stress=self.expected_stress,
             face_pressure=self.face_pressure or 0.0,
             surface_pressure=self.surface_pressure or 0.0,
             radii=self.rings,
@@ -211,6 +214,7 @@ _KEYS: Mapping[str, Any] = {
     "units": {"length": _text, "stress": _text},
     "options": {
         "crack_plane": _plane,
+        "expected_stress": _number,
         "symmetry_planes": _list_of(_plane, 'a list of planes such as ["x=0"]'),
         "face_pressure": _number,
         "surface_pressure": _number,

@@ -54,6 +54,7 @@ class Options:
     ----------
     crack_plane : symmetry plane that holds the crack, for a half model; None finds it by its
         displacements where there are no coincident faces
+    expected_stress : remote stress that K is checked against, to a power of ten; None does not
     symmetry_planes : planes on which fronts end by symmetry; others are found by displacements
     face_pressure : pressure on the crack faces, positive when it opens them
     surface_pressure : pressure on the surface on which a front ends, positive when it pushes
@@ -81,6 +82,7 @@ class Options:
     methods: tuple[str, ...] | None = None
     compare: tuple[str, ...] = ()
     symmetry_planes: tuple[Plane, ...] = ()
+    expected_stress: float | None = None
 
     @classmethod
     def from_words(cls, **words: Any) -> "Options":
@@ -116,5 +118,12 @@ class Options:
                 raise CaseError(
                     f"{name.replace('_', ' ')}: found {value}, expected a number in the stress unit"
                 )
+        if self.expected_stress is not None and not (
+            isfinite(self.expected_stress) and self.expected_stress != 0
+        ):
+            raise CaseError(
+                f"expected stress: found {self.expected_stress:g}, expected the remote stress in "
+                "the stress unit"
+            )
         if self.up is not None and not any(self.up):
             raise CaseError("up: found a zero vector, expected a direction such as 0,0,1")

@@ -21,6 +21,13 @@ from front3d.results import (
     MethodResult,
     energy_release_rate,
 )
+from front3d.sanity.cells import cell_warnings
+from front3d.sanity.displacements import (
+    constant_warnings,
+    displacement_warnings,
+    refuse_coordinates,
+)
+from front3d.sanity.faces import face_warnings, stress_warnings
 from front3d.solid import Material, Solid, Step
 from front3d.units import Units
 
@@ -54,6 +61,7 @@ def evaluate_solid(
     _check_methods(options)
     requests = tuple(parse(text) for text in options.compare)
     steps = _chosen_steps(solid, options)
+    refuse_coordinates(solid, steps)
     report("finding the crack", 0.0)
     model = find_cracks(solid, options)
     published, unlike = compare_fronts(requests, steps, _shapes(model), material.poisson)
@@ -85,6 +93,7 @@ def evaluate_solid(
         raise left_out[0][1]
     report("done", 1.0)
     warnings = _warnings(solid, model)
+    warnings += constant_warnings(material, units) + displacement_warnings(solid, steps, model)
     warnings += tuple(f"front {front} was left out: {reason}" for front, reason in left_out)
     return Evaluation(solid.source, material, units, tuple(results), asdict(options), warnings)
 
@@ -153,6 +162,8 @@ def _front_result(
     front, material = context.front, context.material
     positions, frames, _ = front.curve.frames(front.corner_s)
     evidence = weigh(front, context.cells, methods, material)
+    said, noted = face_warnings(context.solid, context.patch, step.displacement)
+    said += stress_warnings(context, evidence.K)
     return FrontResult(
         step=step.name,
         front=number,
@@ -167,11 +178,17 @@ def _front_result(
         flags=station_flags(front, methods, evidence),
         methods=methods,
         sources=evidence.source,
-        warnings=(*unmatched, *front_warnings(front, methods, evidence, material)),
+        warnings=(
+            *unmatched,
+            *front_warnings(front, methods, evidence, material),
+            *said,
+            *cell_warnings(context.cells, front.half),
+        ),
         notes=(
             *context.model.notes,
             *(f"{m.method}: {m.variant}" for m in methods.values() if m.variant),
             *refused,
+            *noted,
         ),
         comparisons=published,
     )

@@ -27,6 +27,7 @@ RANKS = [
     {"methods"},
     {"handbook"},
     {"evidence"},
+    {"sanity"},
     {"flags"},
     {"pipeline"},
     {"samples"},

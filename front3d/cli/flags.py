@@ -145,6 +145,12 @@ def add_evaluation_flags(parser: argparse.ArgumentParser) -> None:
         help="put a published solution beside K, e.g. penny:a=10,tension=100 (may be repeated); "
         "--compare help lists the solutions with their arguments",
     )
+    parser.add_argument(
+        "--expected-stress",
+        type=float,
+        metavar="S",
+        help="remote stress; says when K is a power of ten off what it would give",
+    )
     parser.add_argument("--length-unit", dest="length", metavar="UNIT", help="e.g. mm")
     parser.add_argument("--stress-unit", dest="stress", metavar="UNIT", help="e.g. MPa")
 

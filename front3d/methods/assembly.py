@@ -14,7 +14,7 @@ from front3d.elements import FACES, ElementType
 from front3d.errors import MeshError
 from front3d.methods.context import FrontContext
 from front3d.methods.face_rules import PLAIN, graded_rule, touching_sides
-from front3d.methods.nodal_forces import N_MODES, PRESSED, Rule, cell_forces, face_forces
+from front3d.methods.nodal_forces import BENT, N_MODES, PRESSED, Rule, cell_forces, face_forces
 from front3d.methods.surfaces import SurfaceTerm
 from front3d.methods.terms import CURVATURE, included
 from front3d.methods.tube import Tube
@@ -75,7 +75,7 @@ class Assembly:
         """Surface part of the faces of one term."""
         faces = term.faces
         how = np.full(len(faces), PLAIN)
-        if term.kind == PRESSED:
+        if term.kind in (PRESSED, BENT):
             how = touching_sides(faces, self._on_front)
         groups = np.stack([faces.block, faces.local, how], axis=1)
         for group in np.unique(groups, axis=0):

@@ -24,9 +24,10 @@ N_MODES = 4
 Rule = tuple[FloatArray, FloatArray, FloatArray]
 """Shape functions (q, nodes), their reference gradients (q, nodes, 3), and weights (q,)."""
 
-OUTER, PRESSED, CUT = 0, 1, 2
+OUTER, PRESSED, CUT, BENT = 0, 1, 2, 3
 """What is known of a face: an outer surface under a given pressure or none; a crack face under a
-given pressure; or nothing, so that its traction is taken from the stresses."""
+given pressure; nothing, so that its traction is taken from the stresses; or a crack face that
+leaves the plane of the front's frame, under a given pressure or none."""
 
 
 @kernel
@@ -292,8 +293,9 @@ def face_forces(
     own shape functions at the face's Gauss points; tangents (q, 3, 2) is the derivative of the
     cell's reference coordinates along the face's own two.
     Where the traction is known, t = - pressure n, t_i u^aux_i,k is counted with it.  On an OUTER
-    face sigma^aux_ij n_j u_i,k - (sigma : eps^aux) n_k comes with it; on a PRESSED crack face
-    the auxiliary traction is zero, and q lies in the face.  On a CUT all of P_kj n_j counts.
+    face and a BENT one sigma^aux_ij n_j u_i,k - (sigma : eps^aux) n_k comes with it; on a PRESSED
+    crack face the auxiliary traction is zero, and q lies in the face.  On a CUT all of P_kj n_j
+    counts.
     Fills out, (n, steps, N_MODES, nodes, 3).
     """
     shear, poisson, turn = constants
@@ -332,7 +334,7 @@ def face_forces(
                             for i in range(3):
                                 moved = H[i, k] if mode == 3 else aux_gradient[mode, i, k]
                                 T[k] += pressure * area[i] * moved
-                    if kind != PRESSED:
+                    if kind != PRESSED and not (kind == BENT and mode == 3):
                         mutual = energy if mode == 3 else _mutual_energy(aux_stress[mode], H)
                         for k in range(3):
                             T[k] += mutual * area[k]

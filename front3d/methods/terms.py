@@ -7,6 +7,7 @@ from collections.abc import Iterator
 from contextlib import contextmanager
 
 CURVATURE, FREE_SURFACE, FACE_LOAD = "curvature", "free surface", "face load"
+BENT_FACES = "bent faces"
 
 _left_out: set[str] = set()
 
