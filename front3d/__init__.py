@@ -12,6 +12,7 @@ from __future__ import annotations
 from typing import TYPE_CHECKING, Any
 
 if TYPE_CHECKING:
+    from collections.abc import Sequence
     from pathlib import Path
 
     from front3d.crack import CrackModel
@@ -23,11 +24,15 @@ if TYPE_CHECKING:
 __version__ = "0.1.0"
 
 
-def load(path: str | Path, *, displacement: str | None = None) -> Solid:
-    """Read a finite-element result; see `front3d.reading.load`."""
-    from front3d.reading import load
+def load(
+    path: str | Path, *more: str | Path, displacement: str | Sequence[str] | None = None
+) -> Solid:
+    """Read a finite-element result, or several of one mesh as its steps; see `front3d.reading.load`
+    and `front3d.reading.several.load_all`.
+    """
+    from front3d.reading.several import load_all
 
-    return load(path, displacement=displacement)
+    return load_all((path, *more), displacement=displacement)
 
 
 def find_fronts(solid: Solid, **options: Any) -> CrackModel:

@@ -6,6 +6,7 @@ from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from functools import cache
 from pathlib import Path
+from typing import Any
 
 from front3d.output.charts import KINDS, charts_of
 from front3d.output.charts.style import png, svg
@@ -17,6 +18,7 @@ from front3d.output.summary import summary_json
 from front3d.output.tables import front_vtp, points_csv
 from front3d.results import Evaluation
 from front3d.solid import Solid
+from front3d.steps import with_combinations
 
 Progress = Callable[[str, float], None]
 
@@ -56,6 +58,8 @@ def write_results(
     notes: list[str] = []
     if pictures and evaluation.fronts:
         makers |= _charts(evaluation)
+        combine: Any = evaluation.options.get("combine") or ()
+        solid = with_combinations(solid, combine)
         makers["skin.vtp"] = lambda: skin_vtp(solid, evaluation.fronts)
         reason = why_no_pictures()
         if reason is None:

@@ -4,6 +4,7 @@ Libraries for single formats are imported only when such a file is read, to keep
 """
 
 import os
+from collections.abc import Sequence
 from pathlib import Path
 
 import numpy as np
@@ -21,7 +22,7 @@ __all__ = ["FORMATS", "load"]
 def load(
     path: str | os.PathLike[str],
     *,
-    displacement: str | None = None,
+    displacement: str | Sequence[str] | None = None,
     need_displacement: bool = True,
 ) -> Solid:
     """Read a finite-element result.
@@ -30,7 +31,8 @@ def load(
     ----------
     path : a file of one of the formats in `FORMATS`; the suffix names the format
     displacement : name of the point array that holds the displacement, or three names of scalars
-        separated by commas; None finds it by usual names
+        separated by commas; several such names for several load cases, each a step of that name;
+        None finds it by usual names
     need_displacement : with False a file without displacements gives a solid without steps
 
     Returns
@@ -44,6 +46,8 @@ def load(
     """
     path = Path(path)
     form = identify(path)
+    if displacement is not None and not isinstance(displacement, str):
+        displacement = tuple(displacement) if len(displacement) > 1 else displacement[0]
     finder = DisplacementFinder(displacement)
     try:
         raw = _read(path, form.reader, finder)
