@@ -56,6 +56,7 @@ def evaluate_solid(
     requests = tuple(parse(text) for text in options.compare)
     chosen = choose(solid, options.steps, options.combine)
     steps = chosen.reported
+    timed = len({step.time for step in solid.steps}) > 1
     report("finding the crack", 0.0)
     model = find_cracks(solid, options)
     published, unlike = compare_fronts(requests, steps, _shapes(model), material.poisson)
@@ -82,7 +83,7 @@ def evaluate_solid(
                 beside = published.get((step.name, number), ())
                 unmatched = unlike.get((step.name, number), ())
                 results.append(
-                    _front_result(step, number, context, methods, beside, refused, unmatched)
+                    _front_result(step, timed, number, context, methods, beside, refused, unmatched)
                 )
             number += 1
     if not results:
@@ -133,6 +134,7 @@ def _check_methods(options: Options) -> None:
 
 def _front_result(
     step: Step,
+    timed: bool,
     number: int,
     context: FrontContext,
     methods: Mapping[str, MethodResult],
@@ -160,7 +162,7 @@ def _front_result(
         warnings=(*unmatched, *front_warnings(front, methods, evidence, material)),
         notes=(*(f"{m.method}: {m.variant}" for m in methods.values() if m.variant), *refused),
         comparisons=published,
-        time=step.time,
+        time=step.time if timed else float("nan"),
     )
 
 

@@ -11,6 +11,7 @@ from typing import Any
 from front3d.output.charts import KINDS, charts_of
 from front3d.output.charts.style import png, svg
 from front3d.output.files import file_names, prepare_folder, write_whole
+from front3d.output.history import steps_csv
 from front3d.output.rendering import why_no_pictures
 from front3d.output.scene import scene_png
 from front3d.output.skin import skin_vtp
@@ -55,6 +56,8 @@ def write_results(
         "points.csv": lambda: points_csv(evaluation),
         "front.vtp": lambda: front_vtp(evaluation),
     }
+    if len({front.step for front in evaluation.fronts}) > 1:
+        makers["steps.csv"] = lambda: steps_csv(evaluation)
     notes: list[str] = []
     if pictures and evaluation.fronts:
         makers |= _charts(evaluation)
