@@ -29,6 +29,7 @@ from front3d.sanity.displacements import (
 )
 from front3d.sanity.faces import face_warnings, stress_warnings
 from front3d.solid import Material, Solid, Step
+from front3d.steps import choose
 from front3d.units import Units
 
 Progress = Callable[[str, float], None]
@@ -60,19 +61,23 @@ def evaluate_solid(
     report = progress or _silent
     _check_methods(options)
     requests = tuple(parse(text) for text in options.compare)
-    steps = _chosen_steps(solid, options)
+    chosen = choose(solid, options.steps, options.combine)
+    steps = chosen.reported
+    timed = len({step.time for step in solid.steps}) > 1
     refuse_coordinates(solid, steps)
     report("finding the crack", 0.0)
     model = find_cracks(solid, options)
     published, unlike = compare_fronts(requests, steps, _shapes(model), material.poisson)
-    displacement = np.stack([step.displacement for step in steps])
+    displacement = np.stack([step.displacement for step in chosen.computed])
     results: list[FrontResult] = []
     left_out: list[tuple[int, Front3DError]] = []
     number = 0
     for patch, fronts in zip(model.patches, model.fronts, strict=True):
         for front in fronts:
             report(f"front {number + 1} of {model.n_fronts}", number / model.n_fronts)
-            context = FrontContext(solid, model, patch, front, material, options, displacement)
+            context = FrontContext(
+                solid, model, patch, front, material, options, displacement, chosen.rows
+            )
             try:
                 by_method, refused = _apply_methods(context)
             except (MethodError, MeshError) as reason:
@@ -86,7 +91,7 @@ def evaluate_solid(
                 beside = published.get((step.name, number), ())
                 unmatched = unlike.get((step.name, number), ())
                 results.append(
-                    _front_result(step, number, context, methods, beside, refused, unmatched)
+                    _front_result(step, timed, number, context, methods, beside, refused, unmatched)
                 )
             number += 1
     if not results:
@@ -100,20 +105,6 @@ def evaluate_solid(
 
 def _silent(stage: str, fraction: float) -> None:
     """Progress nobody asked for."""
-
-
-def _chosen_steps(solid: Solid, options: Options) -> list[Step]:
-    if not solid.steps:
-        raise CaseError(f"{solid.source}: holds no displacements, expected at least one step")
-    if options.steps is None:
-        return list(solid.steps)
-    by_name = {step.name: step for step in solid.steps}
-    missing = [name for name in options.steps if name not in by_name]
-    if missing:
-        raise CaseError(
-            f"{solid.source}: found no step {missing[0]!r}; the file has {', '.join(by_name)}"
-        )
-    return [by_name[name] for name in options.steps]
 
 
 def _shapes(model: CrackModel) -> list[FrontShape]:
@@ -152,6 +143,7 @@ def _check_methods(options: Options) -> None:
 
 def _front_result(
     step: Step,
+    timed: bool,
     number: int,
     context: FrontContext,
     methods: Mapping[str, MethodResult],
@@ -191,6 +183,7 @@ def _front_result(
             *noted,
         ),
         comparisons=published,
+        time=step.time if timed else float("nan"),
     )
 
 

@@ -146,6 +146,7 @@ class FrontResult:
     warnings : sentences for the reader, about the whole front
     notes : what the reader may want to know, nothing to worry about
     comparisons : published solutions asked for, at the same stations
+    time : of the step; NaN where the result has none, and for combinations of steps
     """
 
     step: str
@@ -164,6 +165,7 @@ class FrontResult:
     warnings: tuple[str, ...] = ()
     notes: tuple[str, ...] = ()
     comparisons: tuple[Comparison, ...] = ()
+    time: float = float("nan")
 
     def __post_init__(self) -> None:
         _freeze(self, ("s", "positions", "frames", "K", "G"))
