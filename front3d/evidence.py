@@ -43,6 +43,9 @@ From what was measured on models with known K and a usual fineness (tables in RE
 up; on linear tetrahedra no method is accurate.
 """
 
+NEARER = 0.25
+"""Gap of two methods over the gap to the third one, below which the third is the odd one out."""
+
 MAX_TURN = 20.0
 """Turn of the front from edge to edge, degrees, above which a mesh is called coarse: the opening
 was up to 10 % off on such meshes."""
@@ -150,13 +153,14 @@ def _verdict(
     suspect = ""
     if third is not None:
         limit = justified(cells, third)
-        with_reported = others.get((REPORTED, third), np.inf) <= limit
+        apart = others.get((REPORTED, third), np.inf)
         between = min(others.get(pair, np.inf) for pair in ((name, third), (third, name)))
-        with_name = between <= max(limit, justified(cells, name))
-        if with_reported and not with_name:
-            suspect, why = name, [f"{third} agrees with interaction", *against[name]]
-        elif with_name and not with_reported:
-            suspect, why = REPORTED, [f"{third} agrees with {name}", *against[REPORTED]]
+        to_reported = _nearness(apart, limit, between)
+        to_name = _nearness(between, max(limit, justified(cells, name)), apart)
+        if to_reported and not to_name:
+            suspect, why = name, [f"{third} {to_reported} interaction", *against[name]]
+        elif to_name and not to_reported:
+            suspect, why = REPORTED, [f"{third} {to_name} {name}", *against[REPORTED]]
             cause = cause or "as with a load on the crack faces not given, or of another sign"
     elif bool(against[REPORTED]) != bool(against[name]):
         suspect = REPORTED if against[REPORTED] else name
@@ -170,6 +174,13 @@ def _verdict(
         "no figure tells which is wrong; a load on the crack faces, a body force or a thermal "
         "strain that was not given moves them apart, too"
     )
+
+
+def _nearness(gap: float, limit: float, other: float) -> str:
+    """How near two methods are, `other` being the gap of one of them to the remaining method."""
+    if gap <= limit:
+        return "agrees with"
+    return "is much nearer to" if gap < NEARER * other else ""
 
 
 def _cause(methods: Mapping[str, MethodResult]) -> str:
