@@ -8,6 +8,7 @@ from typing import Any
 import matplotlib.image
 import numpy as np
 import pytest
+from matplotlib.backends.backend_agg import FigureCanvasAgg
 
 from front3d.output import rendering
 from front3d.output.scene import best_view, close_up, colour_scale, colours, scene_png, skin
@@ -186,7 +187,7 @@ def test_boxes_of_words_do_not_overlap_and_the_peak_is_dark(quantity: str) -> No
     look = Look(quantity, rings=True, ribbon=True)
     block, front = cracked_block(1.6, 1.2), with_flags(SURFACE)
     figure = scene_figure(block, (front,), MILLIMETRES, look)
-    figure.canvas.draw()
+    FigureCanvasAgg(figure).draw()
     panel, *others = figure.axes
     words = [text for text in panel.texts if text.get_bbox_patch() is not None]
     assert len(words) == (0 if quantity == "flag" else 2)

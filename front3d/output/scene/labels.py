@@ -90,7 +90,7 @@ def draw_marks(
             obstacles.append(start + np.linspace(0, 1.0, 20)[:, None] * way)
             corners = np.array([[-1, -1], [-1, 1], [1, -1], [1, 1]]) * 18 * grain
             obstacles.append(
-                np.tile((x, y) + corners, (3, 1))
+                np.tile(np.array((x, y)) + corners, (3, 1))
             )  # letters count for more than a curve
     taken: list[tuple[FloatArray, FloatArray]] = []
     boxes = []
