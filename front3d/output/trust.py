@@ -21,7 +21,8 @@ class Agreement:
     Attributes
     ----------
     rings : per mode the largest ring spread; None without rings
-    J_and_G : largest |J - G| where K is the integral's; None where it never is, and for sums of steps, which have no J
+    J_and_G : largest |J - G| where K is the integral's; None where it never is, and for sums of
+        steps, which have no J
     methods : per method, the largest difference of any mode from the reported K, over the stations
         where K comes from another one, this one gives a value, and no free surface is near;
         without such a station there is none
