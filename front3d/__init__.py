@@ -25,14 +25,17 @@ __version__ = "0.1.0"
 
 
 def load(
-    path: str | Path, *more: str | Path, displacement: str | Sequence[str] | None = None
+    path: str | Path,
+    *more: str | Path,
+    displacement: str | Sequence[str] | None = None,
+    displacement_file: str | Path | None = None,
 ) -> Solid:
     """Read a finite-element result, or several of one mesh as its steps; see `front3d.reading.load`
     and `front3d.reading.several.load_all`.
     """
     from front3d.reading.several import load_all
 
-    return load_all((path, *more), displacement=displacement)
+    return load_all((path, *more), displacement=displacement, displacement_file=displacement_file)
 
 
 def find_fronts(solid: Solid, **options: Any) -> CrackModel:

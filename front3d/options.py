@@ -39,6 +39,13 @@ class Plane:
         nx, ny, nz = (v / length for v in parts)
         return cls((nx, ny, nz), offset / length)
 
+    def __str__(self) -> str:
+        """As `parse` reads it."""
+        for name, value in zip("xyz", self.normal, strict=True):
+            if value == 1.0:
+                return f"{name}={self.offset:g}"
+        return ",".join(f"{v:.6g}" for v in self.normal) + f"={self.offset:g}"
+
 
 @dataclass(frozen=True, slots=True)
 class Options:
@@ -46,7 +53,9 @@ class Options:
 
     Attributes
     ----------
-    crack_plane : symmetry plane that holds the crack, for a half model
+    crack_plane : symmetry plane that holds the crack, for a half model; None finds it by its
+        displacements where there are no coincident faces
+    symmetry_planes : planes on which fronts end by symmetry; others are found by displacements
     face_pressure : pressure on the crack faces, positive when it opens them
     surface_pressure : pressure on the surface on which a front ends, positive when it pushes
     radii : outer radii of the rings; None takes them from the mesh
@@ -78,6 +87,7 @@ class Options:
     compare: tuple[str, ...] = ()
     combine: tuple[str, ...] = ()
     stations: tuple[float, ...] | None = None
+    symmetry_planes: tuple[Plane, ...] = ()
 
     @classmethod
     def from_words(cls, **words: Any) -> "Options":
@@ -88,6 +98,12 @@ class Options:
                 raise CaseError(f"unknown option {name!r}, expected one of {', '.join(known)}")
         if isinstance(plane := words.get("crack_plane"), str):
             words["crack_plane"] = Plane.parse(plane)
+        if isinstance(planes := words.get("symmetry_planes", ()), str):
+            planes = (planes,)
+        if planes:
+            words["symmetry_planes"] = tuple(
+                Plane.parse(p) if isinstance(p, str) else p for p in planes
+            )
         if isinstance(radius := words.get("radii"), int | float):
             words["radii"] = (float(radius),)
         if isinstance(place := words.get("stations"), int | float):

@@ -89,8 +89,8 @@ def openings(context: FrontContext) -> FloatArray:
     u, patch, entity = context.displacement, context.patch, context.model.same.entity
     upper, lower = patch.pairs.T
     out = np.zeros_like(u)
-    if context.options.crack_plane is not None and patch.half:
-        normal = np.asarray(context.options.crack_plane.normal)
+    if patch.plane is not None:
+        normal = np.asarray(patch.plane.normal)
         out[:, entity[upper]] = 2.0 * (u[:, upper] @ normal)[..., None] * normal
     else:
         out[:, entity[upper]] = u[:, upper] - u[:, lower]

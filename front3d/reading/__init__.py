@@ -12,7 +12,9 @@ import numpy as np
 from front3d.errors import Front3DError, ReadError
 from front3d.reading.fields import DisplacementFinder
 from front3d.reading.files import FORMATS, identify
+from front3d.reading.nodal_csv import read_nodal_csv
 from front3d.reading.normalise import normalise_nodes
+from front3d.reading.pieces import join_pieces
 from front3d.reading.raw import RawModel
 from front3d.solid import CellBlock, Solid, Step
 
@@ -23,6 +25,7 @@ def load(
     path: str | os.PathLike[str],
     *,
     displacement: str | Sequence[str] | None = None,
+    displacement_file: str | os.PathLike[str] | None = None,
     need_displacement: bool = True,
 ) -> Solid:
     """Read a finite-element result.
@@ -33,6 +36,8 @@ def load(
     displacement : name of the point array that holds the displacement, or three names of scalars
         separated by commas; several such names for several load cases, each a step of that name;
         None finds it by usual names
+    displacement_file : table of nodal displacements (see front3d.reading.nodal_csv) to take in
+        place of those in the file
     need_displacement : with False a file without displacements gives a solid without steps
 
     Returns
@@ -48,12 +53,24 @@ def load(
     form = identify(path)
     if displacement is not None and not isinstance(displacement, str):
         displacement = tuple(displacement) if len(displacement) > 1 else displacement[0]
-    finder = DisplacementFinder(displacement)
+    if displacement_file is not None and isinstance(displacement, tuple):
+        raise ReadError(
+            f"{displacement_file}: found {len(displacement)} names of displacements for a table, "
+            "expected one; its column step tells load cases apart"
+        )
+    column = displacement if isinstance(displacement, str) else None
+    finder = DisplacementFinder(displacement if displacement_file is None else None)
     try:
         raw = _read(path, form.reader, finder)
         # Absurd coordinates overflow in the checks and are refused by them.
         with np.errstate(over="ignore", invalid="ignore"):
-            return _solid(path, raw, finder, need_displacement)
+            raw.check()
+            if displacement_file is None:
+                named = finder.steps(need_displacement)
+            else:
+                named = read_nodal_csv(Path(displacement_file), raw, column)
+                finder.notes = [f"displacements taken from {Path(displacement_file).name}"]
+            return _solid(path, raw, named, finder.notes)
     except Front3DError as error:
         said = str(error)
         raise ReadError(said if said.startswith(str(path)) else f"{path}: {said}") from error
@@ -73,12 +90,13 @@ def _read(path: Path, reader: str, finder: DisplacementFinder) -> RawModel:
     return vtk_family.READERS[reader](path, finder)
 
 
-def _solid(path: Path, raw: RawModel, finder: DisplacementFinder, need: bool) -> Solid:
-    raw.check()
+def _solid(path: Path, raw: RawModel, named: list[Step], remarks: list[str]) -> Solid:
+    for step in named:
+        _check_length(step, len(raw.points))
+    raw, named = join_pieces(raw, named)
+    raw.check_cells()
     points = np.asarray(raw.points, dtype=np.float64)
-    used = np.zeros(len(points), dtype=bool)
-    for block in raw.blocks:
-        used[block.nodes.ravel()] = True
+    used = raw.used()
     notes = list(raw.notes) + raw.ignored_cells()
     points = _clean_points(points, used, notes)
     spacing = raw.point_spacing(used)
@@ -87,9 +105,8 @@ def _solid(path: Path, raw: RawModel, finder: DisplacementFinder, need: bool) ->
         nodes, mended = normalise_nodes(points, block, spacing)
         blocks.append(CellBlock(block.kind, nodes))
         notes += mended
-    named = finder.steps(need)
     steps = tuple(Step(s.name, _clean_displacement(s, used), s.time) for s in named)
-    notes += finder.notes
+    notes += remarks
     return Solid(points, tuple(blocks), steps, path.name, spacing, tuple(notes))
 
 
@@ -113,13 +130,16 @@ def _clean_points(points: np.ndarray, used: np.ndarray, notes: list[str]) -> np.
     return points
 
 
+def _check_length(step: Step, n_points: int) -> None:
+    if len(step.displacement) != n_points:
+        raise ReadError(
+            f"step {step.name}: found {len(step.displacement)} displacements for {n_points} "
+            "points, expected one per point; export them on the nodes"
+        )
+
+
 def _clean_displacement(step: Step, used: np.ndarray) -> np.ndarray:
     values = step.displacement
-    if len(values) != len(used):
-        raise ReadError(
-            f"step {step.name}: found {len(values)} displacements for {len(used)} points, "
-            "expected one per point; export them on the nodes"
-        )
     bad = ~np.isfinite(values).all(axis=1)
     broken = np.flatnonzero(bad & used)
     if len(broken):
