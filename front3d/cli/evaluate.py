@@ -74,12 +74,10 @@ def evaluate_case(case: Case, out: Path, *, pictures: bool) -> "tuple[Evaluation
         if progress is not None:
             progress(f"reading {case.result.name}", 0.0)
         solid = load_all(
-            case.results,
-            displacement=case.displacement,
-            displacement_file=case.displacement_file,
+            case.results, displacement=case.displacement, displacement_file=case.displacement_file
         )
         evaluation = evaluate_solid(solid, material, case.options, case.units, progress)
-        inputs = [*case.results, *(p for p in (case.displacement_file, case.source) if p)]
+        inputs = [p for p in (*case.results, case.displacement_file, case.source) if p]
         written = write_results(
             evaluation,
             solid,

@@ -53,12 +53,12 @@ def load(
     form = identify(path)
     if displacement is not None and not isinstance(displacement, str):
         displacement = tuple(displacement) if len(displacement) > 1 else displacement[0]
-    in_table = displacement if isinstance(displacement, str) else None
     if displacement_file is not None and isinstance(displacement, tuple):
         raise ReadError(
-            f"{displacement_file}: found {len(displacement)} names of displacements, expected one; "
-            "several load cases in a table are told apart by its column step"
+            f"{displacement_file}: found {len(displacement)} names of displacements for a table, "
+            "expected one; its column step tells load cases apart"
         )
+    column = displacement if isinstance(displacement, str) else None
     finder = DisplacementFinder(displacement if displacement_file is None else None)
     try:
         raw = _read(path, form.reader, finder)
@@ -68,7 +68,7 @@ def load(
             if displacement_file is None:
                 named = finder.steps(need_displacement)
             else:
-                named = read_nodal_csv(Path(displacement_file), raw, in_table)
+                named = read_nodal_csv(Path(displacement_file), raw, column)
                 finder.notes = [f"displacements taken from {Path(displacement_file).name}"]
             return _solid(path, raw, named, finder.notes)
     except Front3DError as error:
