@@ -210,7 +210,7 @@ stress = "MPa"
 [options]
 up = [0, 1, 0]
 face_pressure = 0.0
-rings = [30.0, 50.0, 70.0]
+rings = [80.0, 90.0]
 hat = 2
 methods = ["closure"]
 unopened = false
