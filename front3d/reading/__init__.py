@@ -20,6 +20,10 @@ from front3d.solid import CellBlock, Solid, Step
 
 __all__ = ["FORMATS", "load"]
 
+# Displacement in parts of the solid's size.  A unit load on a soft material may give much, so this
+# only keeps away what overflows.
+_ABSURD = 1e30
+
 
 def load(
     path: str | os.PathLike[str],
@@ -105,7 +109,8 @@ def _solid(path: Path, raw: RawModel, named: list[Step], remarks: list[str]) -> 
         nodes, mended = normalise_nodes(points, block, spacing)
         blocks.append(CellBlock(block.kind, nodes))
         notes += mended
-    steps = tuple(Step(s.name, _clean_displacement(s, used), s.time) for s in named)
+    extent = float(np.ptp(points[used], axis=0).max())
+    steps = tuple(Step(s.name, _clean_displacement(s, used, extent), s.time) for s in named)
     notes += remarks
     return Solid(points, tuple(blocks), steps, path.name, spacing, tuple(notes))
 
@@ -138,7 +143,7 @@ def _check_length(step: Step, n_points: int) -> None:
         )
 
 
-def _clean_displacement(step: Step, used: np.ndarray) -> np.ndarray:
+def _clean_displacement(step: Step, used: np.ndarray, extent: float) -> np.ndarray:
     values = step.displacement
     bad = ~np.isfinite(values).all(axis=1)
     broken = np.flatnonzero(bad & used)
@@ -148,6 +153,13 @@ def _clean_displacement(step: Step, used: np.ndarray) -> np.ndarray:
             f"step {step.name}: node {node} has the displacement {values[node]}, expected finite "
             f"numbers ({len(broken)} such nodes; nodes numbered from 0); was the result written "
             "for every node of the solid?"
+        )
+    largest = np.abs(values[used]).max(axis=1)
+    if (largest > _ABSURD * extent).any():
+        node = int(np.flatnonzero(used)[np.argmax(largest)])
+        raise ReadError(
+            f"step {step.name}: node {node} has the displacement {values[node]} in a solid of size "
+            f"{extent:.3g} (nodes numbered from 0): no result has this; the file is damaged"
         )
     if bad.any():
         values = values.copy()
