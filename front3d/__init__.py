@@ -12,6 +12,7 @@ from __future__ import annotations
 from typing import TYPE_CHECKING, Any
 
 if TYPE_CHECKING:
+    from collections.abc import Sequence
     from pathlib import Path
 
     from front3d.crack import CrackModel
@@ -25,14 +26,16 @@ __version__ = "0.1.0"
 
 def load(
     path: str | Path,
-    *,
-    displacement: str | None = None,
+    *more: str | Path,
+    displacement: str | Sequence[str] | None = None,
     displacement_file: str | Path | None = None,
 ) -> Solid:
-    """Read a finite-element result; see `front3d.reading.load`."""
-    from front3d.reading import load
+    """Read a finite-element result, or several of one mesh as its steps; see `front3d.reading.load`
+    and `front3d.reading.several.load_all`.
+    """
+    from front3d.reading.several import load_all
 
-    return load(path, displacement=displacement, displacement_file=displacement_file)
+    return load_all((path, *more), displacement=displacement, displacement_file=displacement_file)
 
 
 def find_fronts(solid: Solid, **options: Any) -> CrackModel:

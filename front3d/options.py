@@ -4,6 +4,7 @@ from dataclasses import dataclass, fields
 from math import isfinite
 from typing import Any
 
+from front3d.combination import parse_all
 from front3d.errors import CaseError
 
 Vector = tuple[float, float, float]
@@ -66,6 +67,10 @@ class Options:
     up : direction that decides which of the two faces is the upper one; None takes the dominant
         coordinate axis of the crack normal
     steps : names of the steps to evaluate; None takes all
+    combine : linear combinations of steps, each a further step, as front3d.combination reads them,
+        such as "both = 1.2*pressure + 0.8*thermal"
+    stations : places along a front, in parts of its length, whose K is put against the steps; None
+        takes its ends, its middle and where K is largest
     unopened : evaluate coincident faces that never part in any step, too
     methods : the methods beside the interaction integral, which is always applied; None takes all
         that apply
@@ -87,6 +92,8 @@ class Options:
     expected_stress: float | None = None
     front_nodes: tuple[int, ...] = ()
     front_line: tuple[Vector, ...] = ()
+    combine: tuple[str, ...] = ()
+    stations: tuple[float, ...] | None = None
 
     @classmethod
     def from_words(cls, **words: Any) -> "Options":
@@ -105,12 +112,21 @@ class Options:
             )
         if isinstance(radius := words.get("radii"), int | float):
             words["radii"] = (float(radius),)
-        for name in ("steps", "methods", "compare"):
+        if isinstance(place := words.get("stations"), int | float):
+            words["stations"] = (float(place),)
+        for name in ("steps", "methods", "compare", "combine"):
             if isinstance(words.get(name), str):
                 words[name] = (words[name],)
         return cls(**words)
 
     def __post_init__(self) -> None:
+        parse_all(tuple(self.combine))
+        if self.stations is not None and (
+            not self.stations or any(not 0.0 <= place <= 1.0 for place in self.stations)
+        ):
+            raise CaseError(
+                f"stations: found {self.stations}, expected parts of the front's length from 0 to 1"
+            )
         if self.radii is not None and (
             not self.radii or any(not (isfinite(r) and r > 0) for r in self.radii)
         ):

@@ -29,6 +29,7 @@ from front3d.sanity.displacements import (
 )
 from front3d.sanity.faces import face_warnings, stress_warnings
 from front3d.solid import Material, Solid, Step
+from front3d.steps import choose
 from front3d.units import Units
 
 Progress = Callable[[str, float], None]
@@ -60,19 +61,23 @@ def evaluate_solid(
     report = progress or _silent
     _check_methods(options)
     requests = tuple(parse(text) for text in options.compare)
-    steps = _chosen_steps(solid, options)
+    chosen = choose(solid, options.steps, options.combine)
+    steps = chosen.reported
+    timed = len({step.time for step in solid.steps}) > 1
     refuse_coordinates(solid, steps)
     report("finding the crack", 0.0)
     model = find_cracks(solid, options)
     published, unlike = compare_fronts(requests, steps, _shapes(model), material.poisson)
-    displacement = np.stack([step.displacement for step in steps])
+    displacement = np.stack([step.displacement for step in chosen.computed])
     results: list[FrontResult] = []
     left_out: list[tuple[int, Front3DError]] = []
     number = 0
     for patch, fronts in zip(model.patches, model.fronts, strict=True):
         for front in fronts:
             report(f"front {number + 1} of {model.n_fronts}", number / model.n_fronts)
-            context = FrontContext(solid, model, patch, front, material, options, displacement)
+            context = FrontContext(
+                solid, model, patch, front, material, options, displacement, chosen.rows
+            )
             try:
                 by_method, refused = _apply_methods(context)
             except (MethodError, MeshError) as reason:
@@ -83,10 +88,11 @@ def evaluate_solid(
                 continue
             for index, step in enumerate(steps):
                 methods = {name: found[index] for name, found in by_method.items()}
+                _require_finite(step, number, methods[REPORTED])
                 beside = published.get((step.name, number), ())
                 unmatched = unlike.get((step.name, number), ())
                 results.append(
-                    _front_result(step, number, context, methods, beside, refused, unmatched)
+                    _front_result(step, timed, number, context, methods, beside, refused, unmatched)
                 )
             number += 1
     if not results:
@@ -100,20 +106,6 @@ def evaluate_solid(
 
 def _silent(stage: str, fraction: float) -> None:
     """Progress nobody asked for."""
-
-
-def _chosen_steps(solid: Solid, options: Options) -> list[Step]:
-    if not solid.steps:
-        raise CaseError(f"{solid.source}: holds no displacements, expected at least one step")
-    if options.steps is None:
-        return list(solid.steps)
-    by_name = {step.name: step for step in solid.steps}
-    missing = [name for name in options.steps if name not in by_name]
-    if missing:
-        raise CaseError(
-            f"{solid.source}: found no step {missing[0]!r}; the file has {', '.join(by_name)}"
-        )
-    return [by_name[name] for name in options.steps]
 
 
 def _shapes(model: CrackModel) -> list[FrontShape]:
@@ -143,6 +135,16 @@ def _apply_methods(context: FrontContext) -> tuple[dict[str, list[MethodResult]]
     return by_method, tuple(refused)
 
 
+def _require_finite(step: Step, number: int, result: MethodResult) -> None:
+    """No comparison of K notices what is not a number."""
+    bad = np.flatnonzero(~np.isfinite(result.K).all(axis=1))
+    if len(bad):
+        raise MethodError(
+            f"step {step.name}, front {number}: K is not finite at {len(bad)} of {len(result.K)} "
+            "stations; the displacements or the coordinates at the front are not those of a result"
+        )
+
+
 def _check_methods(options: Options) -> None:
     unknown = [name for name in options.methods or () if name not in METHODS]
     if unknown:
@@ -151,6 +153,7 @@ def _check_methods(options: Options) -> None:
 
 def _front_result(
     step: Step,
+    timed: bool,
     number: int,
     context: FrontContext,
     methods: Mapping[str, MethodResult],
@@ -195,6 +198,7 @@ def _front_result(
             *noted,
         ),
         comparisons=published,
+        time=step.time if timed else float("nan"),
     )
 
 

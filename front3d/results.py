@@ -156,6 +156,7 @@ class FrontResult:
     warnings : sentences for the reader, about the whole front
     notes : what the reader may want to know, nothing to worry about
     comparisons : published solutions asked for, at the same stations
+    time : of the step; NaN where the result has none, and for combinations of steps
     """
 
     step: str
@@ -174,6 +175,7 @@ class FrontResult:
     warnings: tuple[str, ...] = ()
     notes: tuple[str, ...] = ()
     comparisons: tuple[Comparison, ...] = ()
+    time: float = float("nan")
 
     def __post_init__(self) -> None:
         _freeze(self, ("s", "positions", "frames", "K", "G"))
@@ -233,18 +235,19 @@ def energy_release_rate(K: FloatArray, material: Material) -> FloatArray:
 def free_surface_layer(s: FloatArray, length: float, ends: tuple[str, ...]) -> BoolArray:
     """(n,) the stations at which a free surface, where no K exists, is felt.
 
-    Within three stations or 5 % of the front's length of such an end: common practice, and where
-    the methods were seen to part.
+    Within three stations (a quarter of a short front) or 5 % of the front's length of such an end:
+    common practice, and where the methods were seen to part.
 
     Parameters
     ----------
     s : (n,) arc lengths of the stations; length : of the front; ends : what its ends lie on
     """
     number = np.arange(len(s))
+    few = min(3, max(1, len(s) // 4))
     layer = np.zeros(len(s), bool)
     for end, stations, distance in zip(ends, (number, number[::-1]), (s, length - s), strict=False):
         if end == FREE_SURFACE:
-            layer |= (distance < 0.05 * length) | (stations < 3)
+            layer |= (distance < 0.05 * length) | (stations < few)
     return layer
 
 

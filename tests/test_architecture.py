@@ -15,8 +15,10 @@ RANKS = [
     # Each module of front3d imports only from lines above its own, or from its own package.
     {"errors"},
     {"arrays"},
+    {"combination"},
     {"elements", "units", "options"},
     {"solid"},
+    {"steps"},
     {"jit"},
     {"reading"},
     {"crack"},

@@ -51,7 +51,8 @@ UNBALANCED = 0.05
 def evaluate(context: FrontContext) -> list[MethodResult]:
     """K of one front, one result per step; MethodError where no faces go on ahead."""
     ligament = find_ligament(context)
-    forces, imbalance = closing_forces(context, ligament)
+    # Combined before they are multiplied: the work is no sum of the work in the steps.
+    forces, imbalance = (context.combined(f) for f in closing_forces(context, ligament))
     columns = find_columns(context, ligament)
     front, options = context.front, context.options
     if options.hat is None:
@@ -60,7 +61,7 @@ def evaluate(context: FrontContext) -> list[MethodResult]:
     else:
         width = np.full(len(front.corners), options.hat)
     tents = build_tents(context, ligament, width)
-    jump = openings(context)
+    jump = context.combined(openings(context))
     about: tuple[str, ...] = ()
     if columns is not None:
         work, opening = _work_in_columns(context, ligament, columns, tents, forces, jump)
@@ -75,7 +76,11 @@ def evaluate(context: FrontContext) -> list[MethodResult]:
     variant = variant_name(context, ligament, columns)
     return [
         MethodResult(
-            "closure", K[step], variant=variant, notes=_notes(about, G[step], uneven[step])
+            "closure",
+            K[step],
+            {"closure_unbalance": np.full(len(K[step]), uneven[step])},
+            variant=variant,
+            notes=_notes(about, G[step], uneven[step]),
         )
         for step in range(len(K))
     ]
@@ -198,7 +203,8 @@ def _notes(about: tuple[str, ...], G: FloatArray, uneven: float) -> tuple[str, .
     if uneven > UNBALANCED:
         notes.append(
             f"closure: the cells above and below the front leave {100 * uneven:.0f} % of the "
-            "closing force unbalanced: body force, or a result computed by another rule of "
-            "integration; it is shared between them by volume"
+            "closing force unbalanced, as with a Poisson's ratio other than that of the analysis, "
+            "a body force or thermal strain that was not given, or another rule of integration; "
+            "it is shared between them by volume"
         )
     return tuple(notes)

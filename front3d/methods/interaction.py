@@ -52,7 +52,9 @@ def evaluate(context: FrontContext) -> list[MethodResult]:
     if front.half:  # the half that is not modelled gives the same again, and only mode I exists
         value *= 2.0
         value[:, :, 1:3] = 0.0
-    return [_result(value[:, step], radii, hats, (*notes, *more)) for step in range(value.shape[1])]
+    value = np.moveaxis(value, 1, 0)
+    K, J = context.combined(value[:, :, :3]), context.combined_squares(value[:, :, 3])
+    return [_result(*found, radii, hats, (*notes, *more)) for found in zip(K, J, strict=True)]
 
 
 def _integrals(
@@ -97,11 +99,10 @@ def _clear_of_surfaces(
 
 
 def _result(
-    value: FloatArray, radii: FloatArray, hats: Hats, notes: tuple[str, ...]
+    K: FloatArray, J: FloatArray, radii: FloatArray, hats: Hats, notes: tuple[str, ...]
 ) -> MethodResult:
-    """Result of one step from (rings, modes, stations)."""
-    K = np.moveaxis(value[:, :3], 1, 2)
-    J = value[:, 3]
+    """Result of one step from K, (rings, modes, stations), and J, (rings, stations)."""
+    K = np.moveaxis(K, 1, 2)
     rings = Rings(radii, K, J)
     if len(radii) < 2:
         notes = (*notes, "a single ring: nothing says how K depends on its radius")

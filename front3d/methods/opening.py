@@ -64,8 +64,9 @@ def evaluate(context: FrontContext) -> list[MethodResult]:
     fit, count = _equations(context, chosen, cell, reach)
     scale = _scale(context.material)
     variant = _variant(cell, reach)
-    steps = range(context.displacement.shape[0])
-    return [_result(fit.solve(chosen.jump[:, k] * scale), count, variant) for k in steps]
+    # The fit is not linear in the opening, so openings are combined, not K.
+    jump = context.combined(np.moveaxis(chosen.jump, 1, 0)) * scale
+    return [_result(fit.solve(one), count, variant) for one in jump]
 
 
 def _equations(

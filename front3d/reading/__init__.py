@@ -4,6 +4,7 @@ Libraries for single formats are imported only when such a file is read, to keep
 """
 
 import os
+from collections.abc import Sequence
 from pathlib import Path
 
 import numpy as np
@@ -19,11 +20,15 @@ from front3d.solid import CellBlock, Solid, Step
 
 __all__ = ["FORMATS", "load"]
 
+# Displacement in parts of the solid's size.  A unit load on a soft material may give much, so this
+# only keeps away what overflows.
+_ABSURD = 1e30
+
 
 def load(
     path: str | os.PathLike[str],
     *,
-    displacement: str | None = None,
+    displacement: str | Sequence[str] | None = None,
     displacement_file: str | os.PathLike[str] | None = None,
     need_displacement: bool = True,
 ) -> Solid:
@@ -33,7 +38,8 @@ def load(
     ----------
     path : a file of one of the formats in `FORMATS`; the suffix names the format
     displacement : name of the point array that holds the displacement, or three names of scalars
-        separated by commas; None finds it by usual names
+        separated by commas; several such names for several load cases, each a step of that name;
+        None finds it by usual names
     displacement_file : table of nodal displacements (see front3d.reading.nodal_csv) to take in
         place of those in the file
     need_displacement : with False a file without displacements gives a solid without steps
@@ -49,6 +55,14 @@ def load(
     """
     path = Path(path)
     form = identify(path)
+    if displacement is not None and not isinstance(displacement, str):
+        displacement = tuple(displacement) if len(displacement) > 1 else displacement[0]
+    if displacement_file is not None and isinstance(displacement, tuple):
+        raise ReadError(
+            f"{displacement_file}: found {len(displacement)} names of displacements for a table, "
+            "expected one; its column step tells load cases apart"
+        )
+    column = displacement if isinstance(displacement, str) else None
     finder = DisplacementFinder(displacement if displacement_file is None else None)
     try:
         raw = _read(path, form.reader, finder)
@@ -58,7 +72,7 @@ def load(
             if displacement_file is None:
                 named = finder.steps(need_displacement)
             else:
-                named = read_nodal_csv(Path(displacement_file), raw, displacement)
+                named = read_nodal_csv(Path(displacement_file), raw, column)
                 finder.notes = [f"displacements taken from {Path(displacement_file).name}"]
             return _solid(path, raw, named, finder.notes)
     except Front3DError as error:
@@ -95,7 +109,8 @@ def _solid(path: Path, raw: RawModel, named: list[Step], remarks: list[str]) -> 
         nodes, mended = normalise_nodes(points, block, spacing)
         blocks.append(CellBlock(block.kind, nodes))
         notes += mended
-    steps = tuple(Step(s.name, _clean_displacement(s, used), s.time) for s in named)
+    extent = float(np.ptp(points[used], axis=0).max())
+    steps = tuple(Step(s.name, _clean_displacement(s, used, extent), s.time) for s in named)
     notes += remarks
     return Solid(points, tuple(blocks), steps, path.name, spacing, tuple(notes))
 
@@ -128,7 +143,7 @@ def _check_length(step: Step, n_points: int) -> None:
         )
 
 
-def _clean_displacement(step: Step, used: np.ndarray) -> np.ndarray:
+def _clean_displacement(step: Step, used: np.ndarray, extent: float) -> np.ndarray:
     values = step.displacement
     bad = ~np.isfinite(values).all(axis=1)
     broken = np.flatnonzero(bad & used)
@@ -138,6 +153,13 @@ def _clean_displacement(step: Step, used: np.ndarray) -> np.ndarray:
             f"step {step.name}: node {node} has the displacement {values[node]}, expected finite "
             f"numbers ({len(broken)} such nodes; nodes numbered from 0); was the result written "
             "for every node of the solid?"
+        )
+    largest = np.abs(values[used]).max(axis=1)
+    if (largest > _ABSURD * extent).any():
+        node = int(np.flatnonzero(used)[np.argmax(largest)])
+        raise ReadError(
+            f"step {step.name}: node {node} has the displacement {values[node]} in a solid of size "
+            f"{extent:.3g} (nodes numbered from 0): no result has this; the file is damaged"
         )
     if bad.any():
         values = values.copy()

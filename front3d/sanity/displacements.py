@@ -1,5 +1,7 @@
 """Displacements that cannot be those of a small deformation, and constants of no known solid."""
 
+from collections.abc import Sequence
+
 import numpy as np
 
 from front3d.arrays import FloatArray
@@ -23,7 +25,7 @@ POISSON_RANGE = (0.0, 0.49)
 """Auxetic solids and nearly incompressible ones exist, but are rare in cracked parts."""
 
 
-def refuse_coordinates(solid: Solid, steps: list[Step]) -> None:
+def refuse_coordinates(solid: Solid, steps: Sequence[Step]) -> None:
     """CaseError where the displacements of a step are the deformed positions.
 
     Positions have a gradient of one, strains of 100 per cent, whatever the deformation.
@@ -52,7 +54,9 @@ def mean_gradient(x: FloatArray, u: FloatArray) -> FloatArray:
     return gradient
 
 
-def displacement_warnings(solid: Solid, steps: list[Step], model: CrackModel) -> tuple[str, ...]:
+def displacement_warnings(
+    solid: Solid, steps: Sequence[Step], model: CrackModel
+) -> tuple[str, ...]:
     """Large rotation or strain around a crack, in any step."""
     said = []
     for number, patch in enumerate(model.patches):
