@@ -12,6 +12,7 @@ from __future__ import annotations
 from typing import TYPE_CHECKING, Any
 
 if TYPE_CHECKING:
+    from collections.abc import Sequence
     from pathlib import Path
 
     from front3d.crack import CrackModel
@@ -23,11 +24,13 @@ if TYPE_CHECKING:
 __version__ = "0.1.0"
 
 
-def load(path: str | Path, *, displacement: str | None = None) -> Solid:
+def load(
+    path: str | Path, *, displacement: str | None = None, arrays: Sequence[str] = ()
+) -> Solid:
     """Read a finite-element result; see `front3d.reading.load`."""
     from front3d.reading import load
 
-    return load(path, displacement=displacement)
+    return load(path, displacement=displacement, arrays=arrays)
 
 
 def find_fronts(solid: Solid, **options: Any) -> CrackModel:
@@ -57,7 +60,8 @@ def evaluate(
     young, poisson : elastic constants, Young's modulus in the stress unit of the model
     units : names of the model's units, for reports
     progress : called with a stage and the fraction done
-    options : fields of `front3d.options.Options`, such as face_pressure=10.0
+    options : fields of `front3d.options.Options` and `front3d.loads.Loads`, such as
+        face_pressure=10.0, temperature="T"; arrays that they name are kept by load(arrays=...)
     """
     from front3d.options import Options
     from front3d.pipeline import evaluate_solid

@@ -4,12 +4,13 @@ Libraries for single formats are imported only when such a file is read, to keep
 """
 
 import os
+from collections.abc import Sequence
 from pathlib import Path
 
 import numpy as np
 
 from front3d.errors import Front3DError, ReadError
-from front3d.reading.fields import DisplacementFinder
+from front3d.reading.fields import DisplacementFinder, Kept
 from front3d.reading.files import FORMATS, identify
 from front3d.reading.normalise import normalise_nodes
 from front3d.reading.raw import RawModel
@@ -22,6 +23,7 @@ def load(
     path: str | os.PathLike[str],
     *,
     displacement: str | None = None,
+    arrays: Sequence[str] = (),
     need_displacement: bool = True,
 ) -> Solid:
     """Read a finite-element result.
@@ -31,6 +33,7 @@ def load(
     path : a file of one of the formats in `FORMATS`; the suffix names the format
     displacement : name of the point array that holds the displacement, or three names of scalars
         separated by commas; None finds it by usual names
+    arrays : names of further arrays, by point or by cell, to keep in the steps
     need_displacement : with False a file without displacements gives a solid without steps
 
     Returns
@@ -44,7 +47,7 @@ def load(
     """
     path = Path(path)
     form = identify(path)
-    finder = DisplacementFinder(displacement)
+    finder = DisplacementFinder(displacement, tuple(arrays))
     try:
         raw = _read(path, form.reader, finder)
         # Absurd coordinates overflow in the checks and are refused by them.
@@ -84,9 +87,22 @@ def _solid(path: Path, raw: RawModel, finder: DisplacementFinder, need: bool) ->
         blocks.append(CellBlock(block.kind, nodes))
         notes += mended
     named = finder.steps(need)
-    steps = tuple(Step(s.name, _clean_displacement(s, used), s.time) for s in named)
+    steps = tuple(
+        Step(s.name, _clean_displacement(s, used), s.time, kept.points, _by_block(kept, raw))
+        for s, kept in zip(named, finder.kept(), strict=False)
+    )
     notes += finder.notes
-    return Solid(points, tuple(blocks), steps, path.name, spacing, tuple(notes))
+    return Solid(points, tuple(blocks), steps, path.name, spacing, tuple(notes), raw.groups)
+
+
+def _by_block(kept: Kept, raw: RawModel) -> dict[str, tuple[np.ndarray, ...]]:
+    """Cell arrays, one array per block; those without a value for every cell are left out."""
+    largest = max(int(block.numbers.max(initial=-1)) for block in raw.blocks)
+    return {
+        name: tuple(values[block.numbers] for block in raw.blocks)
+        for name, values in kept.cells.items()
+        if len(values) > largest
+    }
 
 
 def _clean_points(points: np.ndarray, used: np.ndarray, notes: list[str]) -> np.ndarray:

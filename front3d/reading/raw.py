@@ -31,6 +31,7 @@ class RawModel:
     refused : solid cells of types that front3d does not have, by name
     single_if_exact : coordinates come in double precision whatever the file has, so take them for
         single precision where each of them is a single-precision number
+    groups : numbers of the named groups of cells
     """
 
     points: NDArray[Any]
@@ -39,6 +40,7 @@ class RawModel:
     refused: Counter[str] = field(default_factory=Counter)
     notes: list[str] = field(default_factory=list)
     single_if_exact: bool = False
+    groups: dict[str, int] = field(default_factory=dict)
 
     def check(self) -> None:
         """Raise ReadError unless this is a solid of known elements."""

@@ -15,7 +15,14 @@ from front3d.reading.guard import python_library, vtk_library
 from front3d.reading.legacy import check_tail
 from front3d.reading.netcdf import check_length
 from front3d.reading.raw import RawModel
-from front3d.reading.vtk_grid import has_solid, point_arrays, time_of, to_grid, to_model
+from front3d.reading.vtk_grid import (
+    cell_arrays,
+    has_solid,
+    point_arrays,
+    time_of,
+    to_grid,
+    to_model,
+)
 
 
 def _load_vtu(path: Path) -> Any:
@@ -48,7 +55,7 @@ def _read_single(load: Callable[[Path], Any]) -> Callable[[Path, DisplacementFin
     def read(path: Path, finder: DisplacementFinder) -> RawModel:
         grid = load(path)
         model = to_model(grid, path)
-        finder.offer(point_arrays(grid), time_of(grid))
+        finder.offer(point_arrays(grid), time_of(grid), cell_arrays(grid))
         return model
 
     return read
@@ -70,7 +77,7 @@ class _Series:
                 f"{self.path}: the mesh at time {time} differs from the first one, expected the "
                 "same undeformed mesh at every time; export without remeshing or deformed points"
             )
-        self.finder.offer(point_arrays(grid), time)
+        self.finder.offer(point_arrays(grid), time, cell_arrays(grid))
 
     def result(self) -> RawModel:
         if self.model is None:
@@ -124,8 +131,9 @@ def _read_exodus(path: Path, finder: DisplacementFinder) -> RawModel:
         reader.ApplyDisplacementsOff()
         reader.SetSqueezePoints(False)
         nodal = vtkExodusIIReader.NODAL
-        for k in range(reader.GetNumberOfObjectArrays(nodal)):
-            reader.SetObjectArrayStatus(nodal, reader.GetObjectArrayName(nodal, k), 1)
+        for sort in (nodal, vtkExodusIIReader.ELEM_BLOCK):
+            for k in range(reader.GetNumberOfObjectArrays(sort)):
+                reader.SetObjectArrayStatus(sort, reader.GetObjectArrayName(sort, k), 1)
         times: list[float | None] = [*_times(reader)] or [None]
         for time in times:
             if time is None:
@@ -168,6 +176,10 @@ def _united(data: Any) -> Any:
     for grid in reversed(grids):
         for name in grid.point_data:
             whole.point_data[name] = grid.point_data[name]
+    for name in set.intersection(*(set(grid.cell_data) for grid in grids)):
+        parts = [np.asarray(grid.cell_data[name]) for grid in grids]
+        if len({part.shape[1:] for part in parts}) == 1:
+            whole.cell_data[name] = np.concatenate(parts)
     return whole
 
 

@@ -106,6 +106,11 @@ def point_arrays(grid: Any) -> dict[str, NDArray[Any]]:
     return {name: np.asarray(data[name]) for name in data if data[name].dtype.kind in "fiu"}
 
 
+def cell_arrays(grid: Any) -> dict[str, NDArray[Any]]:
+    data = grid.cell_data
+    return {name: np.asarray(data[name]) for name in data if data[name].dtype.kind in "fiu"}
+
+
 def time_of(grid: Any) -> float | None:
     values = grid.field_data.get("TimeValue", [])
     return float(values[0]) if len(values) == 1 else None
