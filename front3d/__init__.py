@@ -24,9 +24,7 @@ if TYPE_CHECKING:
 __version__ = "0.1.0"
 
 
-def load(
-    path: str | Path, *, displacement: str | None = None, arrays: Sequence[str] = ()
-) -> Solid:
+def load(path: str | Path, *, displacement: str | None = None, arrays: Sequence[str] = ()) -> Solid:
     """Read a finite-element result; see `front3d.reading.load`."""
     from front3d.reading import load
 
@@ -47,8 +45,8 @@ def find_fronts(solid: Solid, **options: Any) -> CrackModel:
 def evaluate(
     solid: Solid,
     *,
-    young: float,
-    poisson: float,
+    young: float | None = None,
+    poisson: float | None = None,
     units: Units | None = None,
     progress: Progress | None = None,
     **options: Any,
@@ -57,7 +55,8 @@ def evaluate(
 
     Parameters
     ----------
-    young, poisson : elastic constants, Young's modulus in the stress unit of the model
+    young, poisson : elastic constants, Young's modulus in the stress unit of the model; left out
+        where a table or regions are given
     units : names of the model's units, for reports
     progress : called with a stage and the fraction done
     options : fields of `front3d.options.Options` and `front3d.loads.Loads`, such as
@@ -68,4 +67,5 @@ def evaluate(
     from front3d.solid import Material
 
     chosen = Options.from_words(**options)
-    return evaluate_solid(solid, Material(young, poisson), chosen, units, progress)
+    material = None if young is None or poisson is None else Material(young, poisson)
+    return evaluate_solid(solid, material, chosen, units, progress)

@@ -3,8 +3,9 @@
 Everything is in the model's own consistent units.  Arrays are named, and stand in the result file.
 """
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, fields
+from itertools import pairwise
 from math import isfinite
 from typing import Any
 
@@ -12,6 +13,29 @@ from front3d.errors import CaseError
 
 Vector = tuple[float, float, float]
 Row = tuple[float, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Region:
+    """Material of the cells whose number (or physical group by name) is `region`.
+
+    `expansion` and `density` stand in place of those of `Loads`.
+    """
+
+    region: str | float
+    young: float
+    poisson: float
+    expansion: float | tuple[Row, ...] | None = None
+    density: float | None = None
+
+    def __post_init__(self) -> None:
+        if not isinstance(self.region, str):
+            _number("region", self.region)
+        _elastic("region", _number("young", self.young), _number("poisson", self.poisson))
+        if self.expansion is not None:
+            object.__setattr__(self, "expansion", _expansion(self.expansion))
+        if self.density is not None and _number("density", self.density) < 0:
+            raise CaseError(f"density: found {self.density:g}, expected zero or more")
 
 
 @dataclass(frozen=True, slots=True)
@@ -38,6 +62,8 @@ class Loads:
         that is there without strain
     initial_strain : likewise, tensor components: the strain that is there without stress
     elastic_table : rows (temperature, Young's modulus, Poisson's ratio), in place of the constants
+    regions : the materials of a solid of several
+    region_array : cell array of the numbers of the regions; None: the physical groups of the file
     """
 
     face_array: str | None = None
@@ -55,6 +81,8 @@ class Loads:
     initial_stress: str | None = None
     initial_strain: str | None = None
     elastic_table: tuple[Row, ...] | None = None
+    regions: tuple[Region, ...] = ()
+    region_array: str | None = None
 
     def __post_init__(self) -> None:
         for name in _VECTORS:
@@ -75,25 +103,19 @@ class Loads:
             if not found:
                 raise CaseError("face polynomial: found no coefficients, expected c0, c1, ...")
             object.__setattr__(self, "face_polynomial", found)
+        regions = tuple(r if isinstance(r, Region) else _region(r) for r in self.regions)
+        object.__setattr__(self, "regions", regions)
         self._check_tables()
         self._check_partners()
 
     def _check_tables(self) -> None:
         if self.expansion is not None:
-            if isinstance(self.expansion, int | float):
-                expansion: Any = _number("expansion", self.expansion)
-            else:
-                expansion = _table("expansion", self.expansion, ("temperature", "coefficient"))
-            object.__setattr__(self, "expansion", expansion)
+            object.__setattr__(self, "expansion", _expansion(self.expansion))
         if self.elastic_table is not None:
             names = ("temperature", "Young's modulus", "Poisson's ratio")
             table = _table("elastic_table", self.elastic_table, names)
             for _, young, poisson in table:
-                if not (young > 0 and -1.0 < poisson < 0.5):
-                    raise CaseError(
-                        f"elastic table: found E = {young:g}, nu = {poisson:g}, expected a "
-                        "positive modulus and a ratio above -1 and below 0.5"
-                    )
+                _elastic("elastic table", young, poisson)
             object.__setattr__(self, "elastic_table", table)
 
     def _check_partners(self) -> None:
@@ -107,15 +129,24 @@ class Loads:
             ("rotation_axis", "rotation"),
             ("expansion", "temperature"),
             ("elastic_table", "temperature"),
+            ("region_array", "regions"),
         ):
-            if getattr(self, name) is not None and getattr(self, partner) is None:
+            if getattr(self, name) is not None and getattr(self, partner) in (None, ()):
+                if partner == "density" and any(r.density is not None for r in self.regions):
+                    continue
                 if name == "face_polynomial" and len(self.face_polynomial or ()) == 1:
                     continue
                 raise CaseError(f"found {_words(name)} without {_words(partner)}, expected both")
-        if self.temperature and self.expansion is None and self.elastic_table is None:
+        depends = (self.expansion, self.elastic_table, *(r.expansion for r in self.regions))
+        if self.temperature and not any(value is not None for value in depends):
             raise CaseError(
                 "found a temperature that nothing depends on, expected an expansion or an elastic "
                 "table"
+            )
+        if self.elastic_table and self.regions:
+            raise CaseError(
+                "found an elastic table and regions, expected one of them: a table for each region "
+                "is not supported"
             )
         if self.density and self.gravity is None and self.rotation is None:
             raise CaseError("found a density alone, expected gravity or rotation")
@@ -124,7 +155,8 @@ class Loads:
     def arrays(self) -> tuple[str, ...]:
         """Names of the arrays that the result file must hold."""
         named = (self.face_array, self.temperature, self.initial_stress, self.initial_strain)
-        return tuple(dict.fromkeys(name for name in named if name))
+        regions = (self.region_array or PHYSICAL_GROUP,) if self.regions else ()
+        return tuple(dict.fromkeys(name for name in (*named, *regions) if name))
 
     @property
     def on_faces(self) -> bool:
@@ -144,6 +176,9 @@ class Loads:
         return tuple(field.name for field in fields(cls))
 
 
+PHYSICAL_GROUP = "physical group"
+"""Name of the cell array with the numbers of the groups that a file names itself."""
+
 _VECTORS = ("depth_direction", "depth_from", "gravity", "rotation_axis", "rotation_point")
 
 
@@ -155,6 +190,31 @@ def _number(name: str, value: Any) -> float:
     if isinstance(value, bool) or not isinstance(value, int | float) or not isfinite(value):
         raise CaseError(f"{_words(name)}: found {value!r}, expected a number")
     return float(value)
+
+
+def _elastic(where: str, young: float, poisson: float) -> None:
+    if not (young > 0 and -1.0 < poisson < 0.5):
+        raise CaseError(
+            f"{where}: found E = {young:g}, nu = {poisson:g}, expected a positive modulus and a "
+            "ratio above -1 and below 0.5"
+        )
+
+
+def _expansion(value: Any) -> float | tuple[Row, ...]:
+    if isinstance(value, int | float):
+        return _number("expansion", value)
+    return _table("expansion", value, ("temperature", "coefficient"))
+
+
+def _region(value: Any) -> Region:
+    """From a mapping, as a case file has it."""
+    known = [field.name for field in fields(Region)]
+    if not isinstance(value, Mapping) or not {*known[:3]} <= {*value} <= {*known}:
+        raise CaseError(
+            f"regions: found {value!r}, expected region, young and poisson, and if need be "
+            "expansion and density"
+        )
+    return Region(**value)
 
 
 def _row(value: Any) -> tuple[Any, ...]:
@@ -174,6 +234,6 @@ def _table(name: str, rows: Any, columns: tuple[str, ...]) -> tuple[Row, ...]:
     table = tuple(tuple(_number(name, v) for v in _row(row)) for row in rows)
     if not table or any(len(row) != len(columns) for row in table):
         raise CaseError(f"{_words(name)}: expected rows of {', '.join(columns)}")
-    if any(b[0] <= a[0] for a, b in zip(table, table[1:], strict=False)):
+    if any(b[0] <= a[0] for a, b in pairwise(table)):
         raise CaseError(f"{_words(name)}: expected rows in order of rising temperature")
     return table

@@ -11,10 +11,6 @@ from front3d.elements import ElementType, element_type
 from front3d.errors import CaseError, MeshError
 
 
-PHYSICAL_GROUP = "physical group"
-"""Name of the cell array with the numbers of the groups that a file names itself."""
-
-
 @dataclass(frozen=True, slots=True, eq=False)
 class CellBlock:
     """Cells of one element type.
@@ -115,6 +111,33 @@ class Material:
     def plane_strain_modulus(self) -> float:
         """E' = E / (1 - nu^2)."""
         return self.young / (1.0 - self.poisson**2)
+
+    def at(self, station: int) -> "Material":
+        """The constants at a station, which are the same at all."""
+        return self
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class LocalMaterial:
+    """Young's modulus and Poisson's ratio, (n,), at each station of a front."""
+
+    young: FloatArray
+    poisson: FloatArray
+
+    @property
+    def shear_modulus(self) -> FloatArray:
+        return self.young / (2.0 * (1.0 + self.poisson))
+
+    @property
+    def plane_strain_modulus(self) -> FloatArray:
+        return self.young / (1.0 - self.poisson**2)
+
+    def at(self, station: int) -> Material:
+        return Material(float(self.young[station]), float(self.poisson[station]))
+
+
+Constants = Material | LocalMaterial
+"""The constants along a front: the same everywhere, or its own at each station."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)

@@ -31,7 +31,7 @@ def add_output_flags(parser: argparse.ArgumentParser) -> None:
 
 def run(arguments: argparse.Namespace) -> int:
     case = case_of(arguments)
-    if case.source is None:
+    if case.source is None and not case.own_constants:
         for flag in ("young", "poisson"):
             if getattr(case, flag) is None:
                 arguments.parser.error(
@@ -58,7 +58,10 @@ def _check_constants(arguments: argparse.Namespace) -> None:
 
 def evaluate_case(case: Case, out: Path, *, pictures: bool) -> "tuple[Evaluation, Written]":
     """Read, evaluate and write what was found into the folder `out`."""
-    if case.result is None or case.young is None or case.poisson is None:
+    material = None
+    if case.result is None or (
+        not case.own_constants and (case.young is None or case.poisson is None)
+    ):
         raise CaseError(
             f"{case.source}: found no elastic constants, expected young and poisson in the section "
             "[material], or --young and --poisson"
@@ -69,12 +72,13 @@ def evaluate_case(case: Case, out: Path, *, pictures: bool) -> "tuple[Evaluation
     from front3d.reading import load
     from front3d.solid import Material
 
-    material = Material(case.young, case.poisson)
+    if case.young is not None and case.poisson is not None:
+        material = Material(case.young, case.poisson)
     prepare_folder(out)
     with progress_bar() as progress:
         if progress is not None:
             progress(f"reading {case.result.name}", 0.0)
-        solid = load(case.result, displacement=case.displacement)
+        solid = load(case.result, displacement=case.displacement, arrays=case.loads.arrays)
         evaluation = evaluate_solid(solid, material, case.options, case.units, progress)
         inputs = [case.result, *([case.source] if case.source else [])]
         written = write_results(

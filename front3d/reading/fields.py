@@ -80,9 +80,7 @@ class DisplacementFinder:
     _without: int = 0
     _loose: Kept = field(default_factory=Kept)
 
-    def offer(
-        self, arrays: Arrays, time: float | None = None, cells: Arrays | None = None
-    ) -> None:
+    def offer(self, arrays: Arrays, time: float | None = None, cells: Arrays | None = None) -> None:
         """Take the displacements out of the point arrays of one frame, (n,) or (n, components),
         and the arrays to keep out of them and of the cell arrays.
         """

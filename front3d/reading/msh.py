@@ -12,11 +12,11 @@ import numpy as np
 from numpy.typing import NDArray
 
 from front3d.errors import ReadError
+from front3d.loads import PHYSICAL_GROUP
 from front3d.reading.fields import DisplacementFinder
 from front3d.reading.guard import python_library
 from front3d.reading.meshio_family import mend_meshio, model
 from front3d.reading.raw import RawModel
-from front3d.solid import PHYSICAL_GROUP
 
 
 def read_msh(path: Path, finder: DisplacementFinder) -> RawModel:
