@@ -24,11 +24,17 @@ if TYPE_CHECKING:
 __version__ = "0.1.0"
 
 
-def load(path: str | Path, *, displacement: str | None = None, arrays: Sequence[str] = ()) -> Solid:
+def load(
+    path: str | Path,
+    *,
+    displacement: str | None = None,
+    arrays: Sequence[str] = (),
+    displacement_file: str | Path | None = None,
+) -> Solid:
     """Read a finite-element result; see `front3d.reading.load`."""
     from front3d.reading import load
 
-    return load(path, displacement=displacement, arrays=arrays)
+    return load(path, displacement=displacement, arrays=arrays, displacement_file=displacement_file)
 
 
 def find_fronts(solid: Solid, **options: Any) -> CrackModel:

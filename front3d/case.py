@@ -3,6 +3,7 @@
 ```toml
 result = "bracket.vtu"          # relative to this file
 displacement = "U"              # where it is not found by its name
+displacement_file = "u.csv"     # a table of nodal displacements, relative to this file
 
 [material]
 young = 200e3
@@ -13,7 +14,8 @@ length = "mm"
 stress = "MPa"
 
 [options]
-crack_plane = "z=0"             # half model
+crack_plane = "z=0"             # half model, where it is not found
+symmetry_planes = ["x=0"]       # on which fronts end, where they are not found
 face_pressure = 0.0
 surface_pressure = 0.0          # where a front ends
 rings = [0.4, 0.6, 0.8]
@@ -70,11 +72,13 @@ class Case:
 
     result: Path | None = None
     displacement: str | None = None
+    displacement_file: Path | None = None
     young: float | None = None
     poisson: float | None = None
     length: str | None = None
     stress: str | None = None
     crack_plane: Plane | None = None
+    symmetry_planes: tuple[Plane, ...] | None = None
     face_pressure: float | None = None
     surface_pressure: float | None = None
     rings: tuple[float, ...] | None = None
@@ -117,6 +121,7 @@ class Case:
         """The options of the evaluation; CaseError where one is out of range."""
         return Options(
             crack_plane=self.crack_plane,
+            symmetry_planes=self.symmetry_planes or (),
             face_pressure=self.face_pressure or 0.0,
             surface_pressure=self.surface_pressure or 0.0,
             loads=self.loads,
@@ -160,7 +165,9 @@ def read_case(path: Path) -> Case:
             f'{path.name}: found no result, expected a line such as result = "model.vtu" before '
             "the first section"
         )
-    values["result"] = path.parent / values["result"]
+    for key in ("result", "displacement_file"):
+        if key in values:
+            values[key] = path.parent / values[key]
     return Case(**values, source=path)
 
 
@@ -281,10 +288,12 @@ def _rows(value: Any) -> tuple[Row, ...]:
 _KEYS: Mapping[str, Any] = {
     "result": _text,
     "displacement": _text,
+    "displacement_file": _text,
     "material": {"young": _number, "poisson": _number},
     "units": {"length": _text, "stress": _text},
     "options": {
         "crack_plane": _plane,
+        "symmetry_planes": _list_of(_plane, 'a list of planes such as ["x=0"]'),
         "face_pressure": _number,
         "surface_pressure": _number,
         "rings": _list_of(_number, "a list of radii such as [0.2, 0.4]"),

@@ -37,6 +37,13 @@ class Plane:
         nx, ny, nz = (v / length for v in parts)
         return cls((nx, ny, nz), offset / length)
 
+    def __str__(self) -> str:
+        """As `parse` reads it."""
+        for name, value in zip("xyz", self.normal, strict=True):
+            if value == 1.0:
+                return f"{name}={self.offset:g}"
+        return ",".join(f"{v:.6g}" for v in self.normal) + f"={self.offset:g}"
+
 
 @dataclass(frozen=True, slots=True)
 class Options:
@@ -44,7 +51,9 @@ class Options:
 
     Attributes
     ----------
-    crack_plane : symmetry plane that holds the crack, for a half model
+    crack_plane : symmetry plane that holds the crack, for a half model; None finds it by its
+        displacements where there are no coincident faces
+    symmetry_planes : planes on which fronts end by symmetry; others are found by displacements
     face_pressure : pressure on the crack faces, positive when it opens them
     surface_pressure : pressure on the surface on which a front ends, positive when it pushes
     loads : what acts besides: on the crack faces, in the volume, by temperature
@@ -72,6 +81,7 @@ class Options:
     unopened: bool = False
     methods: tuple[str, ...] | None = None
     compare: tuple[str, ...] = ()
+    symmetry_planes: tuple[Plane, ...] = ()
 
     @classmethod
     def from_words(cls, **words: Any) -> "Options":
@@ -88,6 +98,12 @@ class Options:
             words["loads"] = Loads(**loads)
         if isinstance(plane := words.get("crack_plane"), str):
             words["crack_plane"] = Plane.parse(plane)
+        if isinstance(planes := words.get("symmetry_planes", ()), str):
+            planes = (planes,)
+        if planes:
+            words["symmetry_planes"] = tuple(
+                Plane.parse(p) if isinstance(p, str) else p for p in planes
+            )
         if isinstance(radius := words.get("radii"), int | float):
             words["radii"] = (float(radius),)
         for name in ("steps", "methods", "compare"):

@@ -182,7 +182,11 @@ def _front_result(
         methods=methods,
         sources=evidence.source,
         warnings=(*unmatched, *front_warnings(front, methods, evidence, material)),
-        notes=(*(f"{m.method}: {m.variant}" for m in methods.values() if m.variant), *refused),
+        notes=(
+            *context.model.notes,
+            *(f"{m.method}: {m.variant}" for m in methods.values() if m.variant),
+            *refused,
+        ),
         comparisons=published,
     )
 

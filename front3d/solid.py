@@ -193,6 +193,26 @@ class Solid:
                         f"{self.source}: step {step.name} does not have one value of {name!r} for "
                         "every cell of every block"
                     )
+        self._require_finite()
+
+    def _require_finite(self) -> None:
+        """Nodes of no cell may hold anything: nobody reads them."""
+        values = {"": self.points} | {f"step {s.name}: ": s.displacement for s in self.steps}
+        bad = {where: ~np.isfinite(v).all(axis=1) for where, v in values.items()}
+        if not any(rows.any() for rows in bad.values()):
+            return
+        used = np.zeros(len(self.points), dtype=bool)
+        for block in self.blocks:
+            used[block.nodes.ravel()] = True
+        for where, rows in bad.items():
+            broken = np.flatnonzero(rows & used)
+            if len(broken):
+                what = "displacement" if where else "coordinates"
+                raise MeshError(
+                    f"{self.source}: {where}node {broken[0]} has the {what} "
+                    f"{values[where][broken[0]]}, expected finite numbers ({len(broken)} such "
+                    "nodes; nodes numbered from 0)"
+                )
 
     @property
     def n_cells(self) -> int:

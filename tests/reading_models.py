@@ -117,6 +117,23 @@ EXODUS = {
 }
 
 
+def write_ensight(path, data):
+    """EnSight Gold ("C Binary") by VTK's own writer; `path` is that of the case file."""
+    from vtkmodules.vtkIOParallel import vtkEnSightWriter
+
+    data = data.copy()
+    if "BlockId" not in data.cell_data:  # the number of the part
+        data.cell_data["BlockId"] = np.ones(data.n_cells, dtype=np.int32)
+    writer = vtkEnSightWriter()
+    writer.SetInputData(data)
+    writer.SetFileName(str(path.with_suffix("")))
+    writer.SetPath(str(path.parent))
+    writer.SetBaseName(path.stem)
+    writer.Write()
+    writer.WriteCaseFile(1)
+    path.with_name(f"{path.stem}.0.case").replace(path)
+
+
 def write_exodus(path, points, blocks, steps, real="f8"):
     """The Exodus II layout (netCDF names as in its manual)."""
     with netCDF4.Dataset(path, "w", format="NETCDF3_64BIT_OFFSET") as file:

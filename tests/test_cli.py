@@ -213,6 +213,7 @@ def test_a_missing_or_broken_file_is_1(call: Call, tmp_path: Path) -> None:
         assert (code, said) == (1, "")
         assert path.name in complained
         assert "Traceback" not in complained
+        assert not (tmp_path / "out").exists()
 
 
 def test_a_place_that_cannot_be_written_is_said_before_the_work(

@@ -99,6 +99,17 @@ def test_a_wave_around_a_closed_front_is_only_damped():
 def test_default_hats_are_wide_on_straight_fronts_and_narrow_where_the_front_turns():
     _, line = front_of(straight("tetra10", 2, along=12, length=LENGTH))
     _, circle = front_of(curved("tetra10", 2, around=24))
-    np.testing.assert_array_equal(default_widths(line, structured=True), 1.0)
-    np.testing.assert_array_equal(default_widths(line, structured=False), 3.0)
-    np.testing.assert_array_equal(default_widths(circle, structured=False), 1.0)
+    edge = np.full(len(line.corners), LENGTH / 12)
+    np.testing.assert_array_equal(default_widths(line, structured=True, reach=edge), 1.0)
+    np.testing.assert_array_equal(default_widths(line, structured=False, reach=edge), 3.0)
+    around = np.full(len(circle.corners), circle.length / 24)
+    np.testing.assert_array_equal(default_widths(circle, structured=False, reach=around), 1.0)
+
+
+def test_default_hats_are_no_wider_than_three_cells_across_the_front():
+    """Cells drawn long along a front would blunt a K that changes over their length."""
+    _, line = front_of(straight("tetra10", 2, along=12, length=LENGTH))
+    edge = LENGTH / 12
+    for reach, width in ((edge / 2, 1.5), (edge / 10, 1.0)):
+        reaches = np.full(len(line.corners), reach)
+        np.testing.assert_allclose(default_widths(line, structured=False, reach=reaches), width)

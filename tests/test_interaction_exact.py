@@ -13,6 +13,8 @@ from front3d.elements import ELEMENTS
 from tests.meshes.structured import ALL_KINDS, curved, impose, straight
 from tests.reference import exact
 
+ONE = {"methods": "interaction"}  # the others have tests of their own
+
 YOUNG, POISSON = 200e3, 0.3
 ELASTIC = exact.Elastic.from_young(YOUNG, POISSON)
 QUARTER_POINT = ("quarter_wedge", "quarter_collapsed")
@@ -32,7 +34,13 @@ def straight_errors(kind, n):
         field = exact.near_tip(ELASTIC, K, TURNED, (3.0, -2.0, 5.0))
         solid = impose(solid, mesh.side, field, name)
     result = front3d.evaluate(
-        solid, young=YOUNG, poisson=POISSON, radii=(0.75, 0.9), hat=1.0, up=tuple(up)
+        solid,
+        young=YOUNG,
+        poisson=POISSON,
+        methods="interaction",
+        radii=(0.75, 0.9),
+        hat=1.0,
+        up=tuple(up),
     )
     middle = len(result.fronts[0]) // 2
     found = [f.methods["interaction"].rings.K[:, middle] for f in result.fronts]
@@ -57,7 +65,9 @@ def penny(kind, n, straight_edges=False):
         ("torsion", exact.penny_torsion(ELASTIC, 1.0)),
     ):
         solid = impose(solid, mesh.side, field, name)
-    result = front3d.evaluate(solid, young=YOUNG, poisson=POISSON, radii=(0.3, 0.36), hat=1.0)
+    result = front3d.evaluate(
+        solid, young=YOUNG, poisson=POISSON, **ONE, radii=(0.3, 0.36), hat=1.0
+    )
     x, y, _ = result.fronts[0].positions.T
     angle = np.arctan2(y, x)
     unit = np.sqrt(1 / np.pi)
@@ -151,7 +161,7 @@ def test_modes_superpose():
     for name, field in zip("ab", fields, strict=True):
         solid = impose(solid, mesh.side, field, name)
     solid = impose(solid, mesh.side, exact.sum_of(*fields), "a + b")
-    a, b, both = (f.K for f in front3d.evaluate(solid, young=YOUNG, poisson=POISSON).fronts)
+    a, b, both = (f.K for f in front3d.evaluate(solid, young=YOUNG, poisson=POISSON, **ONE).fronts)
     np.testing.assert_allclose(both, a + b, atol=1e-12 * np.abs(both).max())
 
 
@@ -173,12 +183,17 @@ def test_internal_pressure_equals_remote_tension(kind, allowed):
 
     solid = impose(mesh.solid, mesh.side, pressed)
     front = front3d.evaluate(
-        solid, young=YOUNG, poisson=POISSON, radii=(0.3, 0.36), face_pressure=1.0
+        solid,
+        young=YOUNG,
+        poisson=POISSON,
+        methods="interaction",
+        radii=(0.3, 0.36),
+        face_pressure=1.0,
     ).fronts[0]
     rings = front.methods["interaction"].rings
     expected = 2 * np.sqrt(1 / np.pi)  # Sneddon (1946)
     np.testing.assert_allclose(rings.K[..., 0], expected, rtol=allowed)
     if kind == "quarter_wedge":
         np.testing.assert_allclose(rings.J, expected**2 * (1 - POISSON**2) / YOUNG, rtol=1e-2)
-    without = front3d.evaluate(solid, young=YOUNG, poisson=POISSON).fronts[0]
+    without = front3d.evaluate(solid, young=YOUNG, poisson=POISSON, **ONE).fronts[0]
     assert without.methods["interaction"].K[:, 0].max() < 0.9 * expected

@@ -19,13 +19,17 @@ from front3d.solid import Material
 from tests.meshes.row import row_of_cracks
 from tests.reference.tables import TABLES
 
+ONE = {"methods": "interaction"}  # the others have tests of their own
+
 DATA = Path(__file__).parent / "data"
 
 
 @cache
 def stored(name, **options):
     """Fronts by step of a stored model, with the tool's own defaults."""
-    result = front3d.evaluate(front3d.load(DATA / f"{name}.vtu"), young=1.0, poisson=0.3, **options)
+    result = front3d.evaluate(
+        front3d.load(DATA / f"{name}.vtu"), young=1.0, poisson=0.3, **ONE, **options
+    )
     return {front.step: front for front in result.fronts}
 
 
@@ -33,8 +37,9 @@ def stored(name, **options):
 def sampled(name, cells="bricks", **parameters):
     sample = build(name, cells=cells, **parameters)
     result = front3d.evaluate(
-        sample.solid, young=sample.material.young, poisson=sample.material.poisson
-    )
+        sample.solid, young=sample.material.young, poisson=sample.material.poisson,
+        **ONE,
+    )  # fmt: skip
     return {front.step: front for front in result.fronts}
 
 
@@ -101,7 +106,7 @@ def test_a_row_of_collinear_cracks_on_bricks():
     20-node bricks without quarter-points; measured: 0.1 % low at every station.
     """
     solid = row_of_cracks(Material(1.0, 0.3), a=1.0, b=2.0)
-    fronts = front3d.evaluate(solid, young=1.0, poisson=0.3).fronts
+    fronts = front3d.evaluate(solid, young=1.0, poisson=0.3, **ONE).fronts
     assert len(fronts) == 2
     K = rows.collinear_row(1.0, 1.0, 2.0)
     for front in fronts:
@@ -125,7 +130,7 @@ def test_a_loaded_surface_beside_the_front_does_not_spoil_the_rings(b, first, al
     """
     solid = row_of_cracks(Material(1.0, 0.3), a=1.0, b=b, h=5.0, first=first)
     K = rows.collinear_row(1.0, 1.0, b)
-    for front in front3d.evaluate(solid, young=1.0, poisson=0.3).fronts:
+    for front in front3d.evaluate(solid, young=1.0, poisson=0.3, **ONE).fronts:
         assert np.abs(front.K[:, 0] / K - 1).max() < allowed
         assert np.ptp(front.methods["interaction"].rings.K[..., 0], axis=0).max() < 0.001 * K
 
@@ -137,7 +142,7 @@ def test_a_row_of_collinear_cracks_on_tetrahedra():
     """
     solid = front3d.load(DATA / "row.vtu")
     K = rows.collinear_row(1.0, 1.0, 2.0)
-    for front in front3d.evaluate(solid, young=1.0, poisson=0.3).fronts:
+    for front in front3d.evaluate(solid, young=1.0, poisson=0.3, **ONE).fronts:
         error = front.K[:, 0] / K - 1
         assert front.ends == ("symmetry plane", "symmetry plane")
         assert abs(error.mean()) < 0.003

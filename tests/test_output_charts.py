@@ -133,10 +133,16 @@ def drawn(name: str) -> Any:
     return figure
 
 
-SLOW = [pytest.param(name, marks=pytest.mark.slow) for name in ("no units", "closed", "shallow")]
+QUICK = ("along", "corner")
 
 
-@pytest.mark.parametrize("name", ["along", "through", "mix", "two steps"])
+def some(*names: str) -> list[Any]:
+    """Names of charts as parameters: to draw each takes a while, so only two are tested quickly."""
+    slow = pytest.mark.slow
+    return [n if n in QUICK else pytest.param(n, marks=slow) for n in names]
+
+
+@pytest.mark.parametrize("name", some("along", "through", "mix", "two steps"))
 def test_curves_differ_without_colour(name: str) -> None:
     figure = drawn(name)
     for axes in figure.axes:
@@ -166,10 +172,7 @@ def words_of(figure: Any) -> Iterator[Any]:
                     yield from (tick.label1, tick.label2)
 
 
-@pytest.mark.parametrize(
-    "name",
-    ["along", "corner", "surface", "through", "mix", "two steps", "seven steps", *SLOW],
-)
+@pytest.mark.parametrize("name", some(*FIGURES))
 def test_words_are_legible_inside_and_do_not_overlap(name: str) -> None:
     figure = drawn(name)
     renderer = figure._get_renderer()
@@ -186,7 +189,7 @@ def test_words_are_legible_inside_and_do_not_overlap(name: str) -> None:
             assert not box.padded(-1).overlaps(its_box.padded(-1)), (text, other)
 
 
-@pytest.mark.parametrize("name", ["along", "two steps", "seven steps", "through"])
+@pytest.mark.parametrize("name", some("along", "two steps", "seven steps", "through"))
 def test_legends_cover_no_panel(name: str) -> None:
     figure = drawn(name)
     (legend,) = figure.legends
@@ -262,7 +265,7 @@ def test_depth_chart_shares_its_depth_with_the_section() -> None:
 
 
 def test_section_is_true_to_scale_or_says_how_far_it_is_not() -> None:
-    for name in ("corner", "surface", "through"):
+    for name in ("corner", "surface"):
         figure = drawn(name)
         axes = figure.axes[0]
         box = axes.get_window_extent()
@@ -303,6 +306,7 @@ def test_stations_without_a_direction_are_counted() -> None:
     assert np.isnan(lines(figure.axes[1])["kink, 3D"].get_ydata()[:3]).all()
 
 
+@pytest.mark.slow
 def test_steps_are_a_family_from_light_to_dark() -> None:
     figure = drawn("seven steps")
     family = [line for line in figure.axes[0].lines if len(line.get_xdata()) == len(SURFACE)]
@@ -333,7 +337,7 @@ def test_which_charts_an_evaluation_gets() -> None:
 
 
 def test_png_is_1200_pixels_wide_and_not_blank() -> None:
-    picture = matplotlib.image.imread(io.BytesIO(png(along_front(SURFACE, MILLIMETRES))))
+    picture = matplotlib.image.imread(io.BytesIO(png(drawn("along"))))
     assert picture.shape[1] == 1200
     blue = np.abs(picture[..., :3] - matplotlib.colors.to_rgb("#0072B2")).max(axis=-1) < 0.02
     assert blue.sum() > 1000  # the reported curve

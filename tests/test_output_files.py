@@ -10,7 +10,7 @@ from typing import Any, Never
 import pytest
 
 from front3d.output import folder as folder_module
-from front3d.output.files import WriteError, prepare_folder, write_whole
+from front3d.output.files import WriteError, prepare_folder, results_folder, write_whole
 from front3d.output.folder import write_results
 from tests.output_models import cracked_block, elliptic_front, evaluation_of
 
@@ -47,6 +47,43 @@ def test_an_interrupt_leaves_nothing_half_written(
     with pytest.raises(KeyboardInterrupt):
         write_whole(tmp_path / "points.csv", b"new")
     assert list(tmp_path.iterdir()) == []
+
+
+def test_a_disk_that_fills_up_midway_leaves_the_earlier_results(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """Tables of two runs never stand side by side: either all are new or all are old."""
+    write_results(evaluation_of(FRONT), SOLID, tmp_path, pictures=False)
+    before = {path.name: path.read_bytes() for path in tmp_path.iterdir()}
+    real, calls = os.fsync, []
+
+    def third_fails(number: int) -> None:
+        calls.append(number)
+        if len(calls) == 3:
+            raise OSError(errno.ENOSPC, os.strerror(errno.ENOSPC))
+        real(number)
+
+    monkeypatch.setattr(os, "fsync", third_fails)
+    other = elliptic_front(1.7, 1.3, closed=False)
+    with pytest.raises(WriteError, match="no space left"):
+        write_results(evaluation_of(other), SOLID, tmp_path, pictures=False)
+    assert {path.name: path.read_bytes() for path in tmp_path.iterdir()} == before
+
+
+@pytest.mark.parametrize("error", [WriteError("no"), KeyboardInterrupt()])
+def test_a_folder_made_for_nothing_goes_again(tmp_path: Path, error: BaseException) -> None:
+    (tmp_path / "a").mkdir()
+    with pytest.raises(type(error)), results_folder(tmp_path / "a" / "b" / "c") as folder:
+        assert folder.is_dir()
+        raise error
+    assert list((tmp_path / "a").iterdir()) == []
+    with pytest.raises(type(error)), results_folder(tmp_path / "b" / "c") as folder:
+        (folder / "kept").touch()
+        raise error
+    assert (tmp_path / "b" / "c" / "kept").exists()
+    with results_folder(tmp_path / "d"):
+        pass
+    assert (tmp_path / "d").is_dir()
 
 
 def test_permissions_are_those_of_any_new_file(tmp_path: Path) -> None:

@@ -12,12 +12,14 @@ import numpy as np
 import pytest
 import pyvista as pv
 
-from front3d.errors import ReadError
+from front3d.errors import MeshError, ReadError
 from front3d.reading import FORMATS, load
 from front3d.reading.guard import vtk_library
-from tests.reading_models import cells, displacement, grid, mesh, mixed, write_exodus
+from front3d.solid import CellBlock, Solid, Step
+from tests.reading_models import cells, displacement, grid, mesh, mixed, write_ensight, write_exodus
 
 SUFFIXES = [form.suffixes[0] for form in FORMATS]
+WHOLE = [suffix for suffix in SUFFIXES if suffix not in (".pvd", ".pvtu", ".case")]
 
 
 @pytest.fixture
@@ -44,11 +46,16 @@ def write(path, points, blocks, **arrays):
     suffix = path.suffix
     if suffix in (".vtu", ".vtk", ".vtkhdf"):
         grid(points, blocks, **arrays).save(path)
-    elif suffix == ".pvd":
+    elif suffix == ".case":
+        write_ensight(path, grid(points, blocks, **arrays))
+    elif suffix in (".pvd", ".pvtu"):
         grid(points, blocks, **arrays).save(path.with_suffix(".vtu"))
         name = path.with_suffix(".vtu").name
         path.write_text(
-            '<VTKFile type="Collection"><Collection><DataSet timestep="0" part="0" '
+            f'<VTKFile type="PUnstructuredGrid"><PUnstructuredGrid><Piece Source="{name}"/>'
+            "</PUnstructuredGrid></VTKFile>"
+            if suffix == ".pvtu"
+            else '<VTKFile type="Collection"><Collection><DataSet timestep="0" part="0" '
             f'file="{name}"/></Collection></VTKFile>'
         )
     elif suffix == ".e":
@@ -116,7 +123,7 @@ def test_binary_noise(tmp_path, refuse, suffix):
     refuse(path, "unrecognised data", "export it again")
 
 
-@pytest.mark.parametrize("suffix", [s for s in SUFFIXES if s != ".pvd"])
+@pytest.mark.parametrize("suffix", WHOLE)
 def test_noise_behind_a_good_beginning(good, refuse, suffix):
     path = good(suffix)
     head = path.read_bytes()[: 60 if suffix == ".msh" else 200]
@@ -158,7 +165,7 @@ def assert_truncation_is_noticed(path, capfd):
     assert capfd.readouterr() == ("", "")
 
 
-@pytest.mark.parametrize("suffix", [s for s in SUFFIXES if s != ".pvd"])
+@pytest.mark.parametrize("suffix", WHOLE)
 def test_truncated_file(good, capfd, suffix):
     assert_truncation_is_noticed(good(suffix), capfd)
 
@@ -361,15 +368,6 @@ def test_a_mesh_that_changes_with_time(tmp_path, refuse):
     refuse(path, "the mesh at time 1.0 differs")
 
 
-def test_parts_with_doubled_nodes(tmp_path, refuse):
-    points, nodes = cells("tetra10")
-    grid(points, {"tetra10": nodes}, u=displacement(points)).save(tmp_path / "p.vtu")
-    entries = "".join(f'<DataSet timestep="1" part="{k}" file="p.vtu"/>' for k in range(2))
-    path = tmp_path / "a.pvd"
-    path.write_text(f'<VTKFile type="Collection"><Collection>{entries}</Collection></VTKFile>')
-    refuse(path, "2 parts", "merge")
-
-
 # ----------------------------------------------------------------------------- the numbers
 
 
@@ -428,3 +426,20 @@ def test_output_of_the_libraries_is_restored(good, capfd, refuse, tmp_path):
     reader.SetFileName(str(tmp_path / "nothing.vtu"))
     reader.Update()
     assert "nothing.vtu" in capfd.readouterr().err
+
+
+@pytest.mark.parametrize("bad", [np.nan, -np.inf])
+def test_a_solid_built_by_hand_is_held_to_finite_numbers(bad):
+    points, nodes = cells("tetra")
+    block = CellBlock("tetra", nodes[:2])
+    spare = int(nodes[2, 0])
+    u = displacement(points)
+    u[spare] = points[spare] = bad  # no cell has this node
+    Solid(points, (block,), (Step("1", u),))
+    used = int(nodes[1, 2])
+    u[used, 1] = bad
+    with pytest.raises(MeshError, match=rf"b: step 1: node {used} has the displacement .* finite"):
+        Solid(points, (block,), (Step("1", u),), source="b")
+    points[used, 0] = bad
+    with pytest.raises(MeshError, match=rf"b: node {used} has the coordinates .* finite"):
+        Solid(points, (block,), source="b")

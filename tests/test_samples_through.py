@@ -15,7 +15,7 @@ from front3d.samples import SAMPLES, build
 from tests.test_samples_mesh import jacobian_ratio
 
 NAMES = ("through-crack", "collinear-row", "slanted-crack")
-ALLOWED = {"bricks": 0.01, "tetra10": 0.015}
+ALLOWED = {"bricks": 0.001, "tetra10": 0.0035}
 
 
 @cache
@@ -107,7 +107,8 @@ def test_plane_strain_plates_by_the_published_formulas(cells: str) -> None:
             assert deviation < ALLOWED[cells], x
         (front,) = fronts("through-crack", cells, crack=a, width=b, edge=1)
         deviation = np.abs(front.K[:, 0] / edge_crack(100.0, a, b) - 1).max()
-        assert deviation < ALLOWED[cells], x  # of which up to 0.6 % are the formula's
+        # Up to 0.6 % are the formula's: so far from it are the bricks.
+        assert deviation < {"bricks": 0.0065, "tetra10": 0.015}[cells], x
 
 
 @pytest.mark.slow
@@ -118,8 +119,8 @@ def test_free_sides_lie_between_plane_strain_and_plane_stress() -> None:
     # the middle.
     K = float(centre_crack(100.0, 10.0, 50.0))
     ratios = []
-    for thickness in (1.0, 5.0, 15.0):
-        front, _ = fronts("through-crack", thickness=thickness, free_sides=1)
+    for thickness in (5.0, 15.0, 40.0):
+        front, _ = fronts("through-crack", thickness=thickness, free_sides=1, refine=0)
         ratios.append(200e3 * average(front, front.G) / K**2)
         mean = average(front, front.K[:, 0])
         middle = front.K[len(front.s) // 2, 0]
@@ -128,4 +129,4 @@ def test_free_sides_lie_between_plane_strain_and_plane_stress() -> None:
             assert front.K[:, 0].max() < 1.001 * middle and middle > mean
         assert front.ends == ("free surface", "free surface")
     assert 1.0 > ratios[0] > ratios[1] > ratios[2] > 0.91
-    assert ratios[0] == pytest.approx(1.0, abs=0.01)
+    assert ratios[0] == pytest.approx(1.0, abs=0.015)

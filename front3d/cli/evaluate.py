@@ -66,7 +66,7 @@ def evaluate_case(case: Case, out: Path, *, pictures: bool) -> "tuple[Evaluation
             f"{case.source}: found no elastic constants, expected young and poisson in the section "
             "[material], or --young and --poisson"
         )
-    from front3d.output.files import prepare_folder
+    from front3d.output.files import results_folder
     from front3d.output.folder import write_results
     from front3d.pipeline import evaluate_solid
     from front3d.reading import load
@@ -74,13 +74,17 @@ def evaluate_case(case: Case, out: Path, *, pictures: bool) -> "tuple[Evaluation
 
     if case.young is not None and case.poisson is not None:
         material = Material(case.young, case.poisson)
-    prepare_folder(out)
-    with progress_bar() as progress:
+    with results_folder(out), progress_bar() as progress:
         if progress is not None:
             progress(f"reading {case.result.name}", 0.0)
-        solid = load(case.result, displacement=case.displacement, arrays=case.loads.arrays)
+        solid = load(
+            case.result,
+            displacement=case.displacement,
+            arrays=case.loads.arrays,
+            displacement_file=case.displacement_file,
+        )
         evaluation = evaluate_solid(solid, material, case.options, case.units, progress)
-        inputs = [case.result, *([case.source] if case.source else [])]
+        inputs = [p for p in (case.result, case.displacement_file, case.source) if p]
         written = write_results(
             evaluation,
             solid,

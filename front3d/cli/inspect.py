@@ -24,7 +24,12 @@ def run(arguments: argparse.Namespace) -> int:
     from front3d.crack import describe
     from front3d.reading import load
 
-    solid = load(case.result, displacement=case.displacement, need_displacement=False)
+    solid = load(
+        case.result,
+        displacement=case.displacement,
+        displacement_file=case.displacement_file,
+        need_displacement=False,
+    )
     print("\n".join(describe_solid(solid)), flush=True)
     print("\n".join(describe_cracks(describe(solid, case.options))))
     return 0

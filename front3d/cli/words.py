@@ -9,6 +9,10 @@ if TYPE_CHECKING:
     from front3d.results import Comparison, Evaluation, FrontResult
 
 
+NOUGHT = 1e-4
+"""A K below this part of the front's largest one is not written out."""
+
+
 def number(value: float, digits: int = 4) -> str:
     return f"{value:.{digits}g}"
 
@@ -75,6 +79,9 @@ def _describe_front(front: "FrontResult", evaluation: "Evaluation") -> list[str]
             lines.append(f"  {mode:<6}no value at any station")
             continue
         i = int(np.nanargmax(np.abs(values)))
+        if abs(values[i]) < NOUGHT * np.nanmax(np.abs(front.K)):
+            lines.append(f"  {mode:<6}none (below {percent(NOUGHT)} of the largest K)")
+            continue
         other = ""
         if units.K_factor is not None:
             other = f" ({number(values[i] * units.K_factor)} MPa sqrt(m))"

@@ -22,11 +22,14 @@ def describe(solid: Solid, options: Options | None = None) -> dict[str, list[Row
         for number, group in enumerate(model.fronts)
         for front in group
     ]
-    return {
+    found: dict[str, list[Row]] = {
         "cracks": [_patch(patch) for patch in model.patches],
         "fronts": fronts,
         "coincident_faces_left_alone": [_patch(patch) for patch in model.unopened],
     }
+    if model.notes:
+        found["notes"] = [{"note": note} for note in model.notes]
+    return found
 
 
 def _patch(patch: Patch) -> Row:

@@ -9,6 +9,7 @@ from front3d.crack.coincidence import Coincidence
 from front3d.crack.facetable import FaceTable, also_among, outer_faces
 from front3d.crack.front import FREE_SURFACE, SYMMETRY_PLANE, Front
 from front3d.crack.patches import Patch, marked
+from front3d.options import Plane
 from front3d.solid import Solid
 
 _PLANE_TOLERANCE = 1e-3
@@ -18,12 +19,20 @@ _STILL = 1e-5
 """Largest normal displacement, in local spreads of displacement, of a symmetry plane."""
 
 
-def classify_ends(solid: Solid, front: Front, patch: Patch, same: Coincidence) -> Front:
-    """The front with its ends named."""
+def classify_ends(
+    solid: Solid,
+    front: Front,
+    patch: Patch,
+    same: Coincidence,
+    named: tuple[Plane, ...] = (),
+) -> Front:
+    """The front with its ends named; `named` are symmetry planes that the user gave."""
     if front.closed:
         return front
     ends = tuple(
-        SYMMETRY_PLANE if _on_symmetry_plane(solid, front, node, patch, same) else FREE_SURFACE
+        SYMMETRY_PLANE
+        if _on_symmetry_plane(solid, front, node, patch, same, named)
+        else FREE_SURFACE
         for node in (front.edges[0, 0], front.edges[-1, 1])
     )
     return dataclasses.replace(front, ends=ends)
@@ -46,7 +55,12 @@ def end_faces(solid: Solid, front: Front, node: int, patch: Patch, same: Coincid
 
 
 def _on_symmetry_plane(
-    solid: Solid, front: Front, node: int, patch: Patch, same: Coincidence
+    solid: Solid,
+    front: Front,
+    node: int,
+    patch: Patch,
+    same: Coincidence,
+    named: tuple[Plane, ...],
 ) -> bool:
     """Whether the faces around an end node are flat and never move along their normal.
 
@@ -54,7 +68,7 @@ def _on_symmetry_plane(
     move by the same amount while the neighbourhood deforms.
     """
     faces = end_faces(solid, front, node, patch, same)
-    if not len(faces) or not solid.steps:
+    if not len(faces):
         return False
     area = faces.area_vectors(solid.points)
     normal = area.sum(axis=0)
@@ -63,6 +77,12 @@ def _on_symmetry_plane(
     x = solid.points[nodes]
     size = float(np.ptp(x, axis=0).max())
     if float(np.abs((x - x[0]) @ normal).max()) > _PLANE_TOLERANCE * size:
+        return False
+    for plane in named:
+        off = np.abs(x @ np.asarray(plane.normal) - plane.offset).max()
+        if off <= _PLANE_TOLERANCE * size:
+            return True
+    if not solid.steps:
         return False
     around = np.unique(
         np.concatenate(

@@ -15,7 +15,7 @@ from front3d.crack.coincidence import Coincidence
 from front3d.crack.facetable import FaceTable, multiplicity, outer_faces, set_keys
 from front3d.errors import CrackError
 from front3d.loads import Vector
-from front3d.options import Options
+from front3d.options import Options, Plane
 from front3d.solid import Solid
 
 
@@ -31,6 +31,7 @@ class Patch:
     opening : largest distance between paired nodes in any step (in a half model: twice the
         largest displacement normal to the plane)
     opens : whether the sides part or slide at all
+    plane : the symmetry plane that holds the crack of a half model
     """
 
     upper: FaceTable
@@ -38,6 +39,7 @@ class Patch:
     pairs: IntArray
     opening: float
     opens: bool
+    plane: Plane | None = None
 
     @property
     def half(self) -> bool:
@@ -46,11 +48,6 @@ class Patch:
 
 NEGLIGIBLE_OPENING = 1e-6
 """Sides that move by less than this times the spread of displacements do not part."""
-
-
-STILL = 1e-3
-"""Nodes of a half model's plane that move by less than this times the largest are held: supports
-by penalty give a little, and even the first node behind a front opens by several per cent."""
 
 
 def find_patches(solid: Solid, same: Coincidence, options: Options) -> tuple[Patch, ...]:
@@ -173,61 +170,6 @@ def _node_pairs(upper: FaceTable, lower: FaceTable, same: Coincidence) -> IntArr
     _, i, j = np.intersect1d(same.place[above], same.place[below], return_indices=True)
     split = same.entity[above[i]] != same.entity[below[j]]
     return np.stack([above[i][split], below[j][split]], axis=1)
-
-
-def find_half_patch(solid: Solid, same: Coincidence, options: Options) -> tuple[Patch, FaceTable]:
-    """The crack faces of a half model on the named symmetry plane, and the ligament's faces.
-
-    The ligament is where the displacement normal to the plane is zero in every step; a face with
-    any node that moves belongs to the crack.  Faces decide, not nodes: mid-side nodes of straight
-    edges lie inside a curved front.
-    """
-    plane = options.crack_plane
-    assert plane is not None
-    normal = np.asarray(plane.normal)
-    distance = solid.points @ normal - plane.offset
-    reach = float(np.ptp(solid.points, axis=0).max()) * 1e-6 + 2.0 * solid.point_spacing
-    on_plane = np.abs(distance) <= reach
-    free = outer_faces(solid, same.entity, on_plane)
-    free = free[np.asarray(on_plane[free.nodes].all(axis=1))]
-    where = f"{solid.source}: the plane {_plane_text(normal, plane.offset)}"
-    if not len(free):
-        low, high = distance.min(), distance.max()
-        raise CrackError(
-            f"{where} holds no outer face; along its normal the model reaches from "
-            f"{plane.offset + low:g} to {plane.offset + high:g}"
-        )
-    if not solid.steps:
-        raise CrackError(f"{where}: a half model's crack is found by its displacements; found none")
-    moves = np.zeros(len(solid.points), bool)
-    opening = 0.0
-    members = np.unique(free.nodes)
-    for step in solid.steps:
-        across = step.displacement[members] @ normal
-        largest = float(np.abs(across).max())
-        opening = max(opening, 2.0 * largest)
-        moves[members] |= np.abs(across) > STILL * largest
-    moving_face = np.asarray(moves[free.nodes].any(axis=1))
-    if not moving_face.any() or moving_face.all():
-        state = "moves" if moving_face.all() else "stays in place"
-        raise CrackError(
-            f"{where} is no symmetry plane with a crack: all of it {state}; expected zero normal "
-            "displacement on the ligament only"
-        )
-    crack = free[moving_face]
-    pairs = np.unique(crack.nodes)
-    pairs = pairs[moves[pairs]]
-    return (
-        Patch(crack, None, np.stack([pairs, pairs], axis=1), opening, True),
-        free[~moving_face],
-    )
-
-
-def _plane_text(normal: FloatArray, offset: float) -> str:
-    for axis, name in enumerate("xyz"):
-        if normal[axis] == 1.0:
-            return f"{name}={offset:g}"
-    return ",".join(f"{v:g}" for v in normal) + f"={offset:g}"
 
 
 def marked(n_points: int, nodes: IntArray) -> BoolArray:

@@ -39,7 +39,7 @@ from front3d.methods.closure_weights import Tents, build_tents
 from front3d.methods.context import FrontContext
 from front3d.methods.hats import default_widths
 from front3d.methods.loading import station_constants
-from front3d.methods.tube import project
+from front3d.methods.tube import layer_reaches, project
 from front3d.results import MethodResult
 
 DISAGREE = 0.01
@@ -56,7 +56,8 @@ def evaluate(context: FrontContext) -> list[MethodResult]:
     columns = find_columns(context, ligament)
     front, options = context.front, context.options
     if options.hat is None:
-        width = default_widths(front, columns is not None)
+        (reach,) = layer_reaches(context.solid, front, context.model.same, 1)
+        width = default_widths(front, columns is not None, reach)
     else:
         width = np.full(len(front.corners), options.hat)
     tents = build_tents(context, ligament, width)
@@ -88,8 +89,8 @@ def openings(context: FrontContext) -> FloatArray:
     u, patch, entity = context.displacement, context.patch, context.model.same.entity
     upper, lower = patch.pairs.T
     out = np.zeros_like(u)
-    if context.options.crack_plane is not None and patch.half:
-        normal = np.asarray(context.options.crack_plane.normal)
+    if patch.plane is not None:
+        normal = np.asarray(patch.plane.normal)
         out[:, entity[upper]] = 2.0 * (u[:, upper] @ normal)[..., None] * normal
     else:
         out[:, entity[upper]] = u[:, upper] - u[:, lower]

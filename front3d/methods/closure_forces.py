@@ -286,7 +286,7 @@ def face_forces(context: FrontContext, faces: FaceTable, ahead: bool = False) ->
         size = np.linalg.norm(normal, axis=2, keepdims=True)
         pressure = face_pressure(context, np.einsum("qn,fni->fqi", shape, x))
         for step, total in zip(context.steps, out, strict=True):
-            array = array_load(context, step, kind, nodes, shape, ahead)
+            array = array_load(context, step, nodes, shape, ahead)
             acting = size * array[..., 1:] - (pressure + array[..., 0])[..., None] * normal
             share = np.einsum("qn,fqi,q->fni", shape, acting, weights)
             np.add.at(total, entity[nodes], share)

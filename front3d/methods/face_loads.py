@@ -5,7 +5,6 @@ from scipy.spatial import cKDTree
 
 from front3d.arrays import BoolArray, FloatArray, IntArray, frozen_floats
 from front3d.crack.front import on_front_mask
-from front3d.elements import FACES
 from front3d.methods.context import FrontContext
 from front3d.methods.named import at_cells, at_nodes
 from front3d.solid import Step
@@ -37,13 +36,12 @@ def gauss_load(
     if name is None:
         return frozen_floats(out)
     # On a face only its own nodes count, and the others may be without a value.
-    kind, own_nodes = solid.blocks[block].element.faces[local]
-    on_face = list(own_nodes)
+    on_face = list(solid.blocks[block].element.faces[local][1])
     by_step = []
     for step in context.steps:
         own = at_cells(solid, step, name, block, cells, (1, 3))
         if own is None:
-            at = _at_face_nodes(context, step, name, kind, members[:, on_face])
+            at = _at_face_nodes(context, step, name, members[:, on_face])
             there = np.einsum("qn,fnk->fqk", values[:, on_face], at)
         else:
             there = np.broadcast_to(own[:, None], (len(cells), len(values), own.shape[1]))
@@ -68,13 +66,12 @@ def split_load(values: FloatArray) -> FloatArray:
 def array_load(
     context: FrontContext,
     step: Step,
-    kind: str,
     nodes: IntArray,
     values: FloatArray,
     ahead: bool,
 ) -> FloatArray:
-    """(n, q, 4) pressure and traction that an array gives at Gauss points of faces of one kind
-    with these nodes, (n, m), and shape functions, (q, m).
+    """(n, q, 4) pressure and traction that an array gives at Gauss points of faces with these
+    nodes, (n, m), and shape functions, (q, m).
 
     Ahead of the front: the value of the nearest node of the upper face.
     """
@@ -86,13 +83,11 @@ def array_load(
         _, nearest = cKDTree(solid.points[upper]).query(solid.points[nodes])
         at = at_nodes(solid, step, name, upper, (1, 3))[nearest]
     else:
-        at = _at_face_nodes(context, step, name, kind, nodes)
+        at = _at_face_nodes(context, step, name, nodes)
     return split_load(np.einsum("qn,fnk->fqk", values, at))
 
 
-def _at_face_nodes(
-    context: FrontContext, step: Step, name: str, kind: str, nodes: IntArray
-) -> FloatArray:
+def _at_face_nodes(context: FrontContext, step: Step, name: str, nodes: IntArray) -> FloatArray:
     """(n, m, components) of an array at the nodes of faces of one kind.
 
     The nodes of the front belong to both faces, whose tractions differ: there the traction is
@@ -105,18 +100,19 @@ def _at_face_nodes(
     for pattern in np.unique(shared, axis=0):
         if pattern.any() and not pattern.all():
             rows = (shared == pattern).all(axis=1)
-            carried = np.einsum("mn,fnk->fmk", _carrying(kind, pattern), at[rows][:, ~pattern])
-            at[np.ix_(rows, pattern)] = carried
+            x = context.solid.points[nodes[rows]]
+            at[np.ix_(rows, pattern)] = _carried(x, at[rows], pattern)
     return at
 
 
-def _carrying(kind: str, missing: BoolArray) -> FloatArray:
-    """Values at the missing nodes of a face from those at the others, by the plane nearest to
-    them.
+def _carried(x: FloatArray, values: FloatArray, missing: BoolArray) -> FloatArray:
+    """Values at the missing nodes of faces with nodes at x, (n, m, 3), from (n, m, components): by
+    the linear function nearest to those at the others.
     """
-    place = FACES[kind].nodes
-    known = place[~missing]
-    centre = known.mean(axis=0)
-    basis = np.column_stack([np.ones(len(place)), place - centre])
-    matrix: FloatArray = basis[missing] @ np.linalg.pinv(basis[~missing])
-    return matrix
+    known = x[:, ~missing]
+    centre = known.mean(axis=1, keepdims=True)
+    size = np.abs(known - centre).max(axis=(1, 2), keepdims=True)
+    basis = np.concatenate([np.ones((*x.shape[:2], 1)), (x - centre) / size], axis=2)
+    # Faces are nearly flat: what little they bend must not tell a slope across them.
+    solve = np.linalg.pinv(basis[:, ~missing], rcond=0.05)
+    return np.asarray(basis[:, missing] @ (solve @ values[:, ~missing]), dtype=np.float64)

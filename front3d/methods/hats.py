@@ -18,6 +18,9 @@ from front3d.solid import Solid
 WIDEST_ANGLE = 0.19
 """Angle in radians through which the front may turn within the half-width of a default hat."""
 
+WIDEST_CELLS = 3.0
+"""Half-width of a default hat in cells across the front."""
+
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Hats:
@@ -79,7 +82,7 @@ def build_hats(solid: Solid, front: Front, width: FloatArray) -> Hats:
     return Hats(front, width, level, tilt)
 
 
-def default_widths(front: Front, structured: bool) -> FloatArray:
+def default_widths(front: Front, structured: bool, reach: FloatArray) -> FloatArray:
     """One edge where bricks and wedges surround the front, up to three where tetrahedra do.
 
     On a structured ring the integral does not scatter, and a wider hat would only blunt K.  On
@@ -87,14 +90,22 @@ def default_widths(front: Front, structured: bool) -> FloatArray:
     square of the angle that the front turns through for a K that varies as the cosine of it:
     WIDEST_ANGLE keeps that below 0.3 %.  Measured on a penny with 105 edges: the standard
     deviation of K_I was 0.64 % with one edge, 0.26 % with two, 0.16 % with three and 0.10 %
-    with four.
+    with four.  Cells that are long along the front and short across it get a hat of no more than
+    three of the latter: there K changes within a cell, and scatters less.
+
+    Parameters
+    ----------
+    structured : only bricks and wedges touch the front
+    reach : (n_stations,) how far the cells that touch the front reach from it
     """
     n = len(front.corners)
     if structured:
         return np.ones(n)
     _, _, turning = front.curve.frames(front.corner_s)
     turn = np.linalg.norm(turning[:, :2], axis=1) * front.length / len(front.edges)
-    return np.clip(WIDEST_ANGLE / np.maximum(turn, 1e-12), 1.0, 3.0)
+    by_turn = WIDEST_ANGLE / np.maximum(turn, 1e-12)
+    by_size = WIDEST_CELLS * reach * len(front.edges) / front.length
+    return np.clip(np.minimum(by_turn, by_size), 1.0, 3.0)
 
 
 def _cut_stations(front: Front, width: FloatArray) -> IntArray:

@@ -47,7 +47,7 @@ def evaluate(context: FrontContext) -> list[MethodResult]:
     for term in around.terms:
         assembly.add_faces(term)
     if options.hat is None:
-        width = default_widths(front, structured)
+        width = default_widths(front, structured, reaches[0])
     else:
         width = np.full(len(front.corners), options.hat)
     hats = build_hats(solid, front, width)

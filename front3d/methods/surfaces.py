@@ -126,8 +126,8 @@ def _symmetry_planes(context: FrontContext) -> list[tuple[FloatArray, FloatArray
             there = end_faces(solid, front, int(node), context.patch, context.model.same)
             normal = there.area_vectors(solid.points).sum(axis=0)
             planes.append((normal / np.linalg.norm(normal), solid.points[node]))
-    if context.options.crack_plane is not None:
-        normal = np.asarray(context.options.crack_plane.normal)
+    if context.patch.plane is not None:
+        normal = np.asarray(context.patch.plane.normal)
         planes.append((normal, solid.points[front.corners[0]]))
     return planes
 

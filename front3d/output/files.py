@@ -2,7 +2,8 @@
 
 import os
 import re
-from collections.abc import Sequence
+from collections.abc import Callable, Iterator, Sequence
+from contextlib import ExitStack, contextmanager
 from pathlib import Path
 
 from front3d.errors import Front3DError
@@ -18,20 +19,54 @@ def write_whole(path: Path, content: bytes) -> Path:
     The bytes go to a file beside the target, which then takes its name in one step; when that
     fails (a full disk, no permission) the unfinished file is removed and WriteError is raised.
     """
-    # Not tempfile: its files are readable by their owner only, and would stay so.
-    part = path.with_name(f".{path.name}.{os.getpid()}.part")
-    try:
-        try:
-            with part.open("xb") as stream:
-                stream.write(content)
-                stream.flush()
-                os.fsync(stream.fileno())
-            part.replace(path)
-        finally:
-            part.unlink(missing_ok=True)
-    except OSError as error:
-        raise WriteError(_explain(path, error)) from error
+    with whole_set() as write:
+        write(path, content)
     return path
+
+
+@contextmanager
+def whole_set() -> Iterator[Callable[[Path, bytes], None]]:
+    """Gives a function that writes files, which take their names together when all are written.
+
+    Where one cannot be written, and where the block ends with any error, none of them appears.
+    """
+    parts: dict[Path, Path] = {}
+    with ExitStack() as stack:
+
+        def write(path: Path, content: bytes) -> None:
+            # Not tempfile: its files are readable by their owner only, and would stay so.
+            part = path.with_name(f".{path.name}.{os.getpid()}.part")
+            try:
+                with part.open("xb") as stream:
+                    stack.callback(part.unlink, missing_ok=True)
+                    stream.write(content)
+                    stream.flush()
+                    os.fsync(stream.fileno())
+            except OSError as error:
+                raise WriteError(_explain(path, error)) from error
+            parts[path] = part
+
+        yield write
+        for path, part in parts.items():
+            try:
+                part.replace(path)
+            except OSError as error:
+                raise WriteError(_explain(path, error)) from error
+
+
+@contextmanager
+def results_folder(folder: Path) -> Iterator[Path]:
+    """`prepare_folder`; when the work ends with an error, the folders it made go again."""
+    made = [f for f in (folder, *folder.parents) if not f.exists()]
+    try:
+        yield prepare_folder(folder)
+    except BaseException:
+        for path in made:
+            try:
+                path.rmdir()  # fails, as it should, where something stands in it by now
+            except OSError:
+                break
+        raise
 
 
 def prepare_folder(folder: Path) -> Path:

@@ -9,7 +9,7 @@ from pathlib import Path
 
 from front3d.output.charts import KINDS, charts_of
 from front3d.output.charts.style import png, svg
-from front3d.output.files import file_names, prepare_folder, write_whole
+from front3d.output.files import file_names, prepare_folder, whole_set
 from front3d.output.rendering import why_no_pictures
 from front3d.output.scene import scene_png
 from front3d.output.skin import skin_vtp
@@ -40,12 +40,12 @@ def write_results(
     pictures: bool = True,
     progress: Progress | None = None,
 ) -> Written:
-    """Write tables, charts and pictures of `evaluation`; `summary.json` last, as it lists them.
+    """Write tables, charts and pictures of `evaluation`, and `summary.json`, which lists them.
 
     `inputs` are the files that were read, for their hashes; `case_file` is the text of a case file
     that repeats the evaluation. Pictures of an earlier run that this
     one does not write again are removed, so that no old picture stands beside new numbers.
-    Raises WriteError; a file that is there is whole.
+    Raises WriteError; then every file is what it was before.
     """
     prepare_folder(folder)
     earlier = _earlier_pictures(folder)
@@ -62,14 +62,15 @@ def write_results(
             makers |= _scenes(evaluation, solid)
         else:
             notes.append(reason)
-    for done, (name, make) in enumerate(makers.items()):
-        if progress is not None:
-            progress(f"writing {name}", done / len(makers))
-        write_whole(folder / name, make())
     files = (*makers, "summary.json")
+    with whole_set() as write:
+        for done, (name, make) in enumerate(makers.items()):
+            if progress is not None:
+                progress(f"writing {name}", done / len(makers))
+            write(folder / name, make())
+        write(folder / "summary.json", summary_json(evaluation, inputs, files, case_file))
     for name in earlier - set(files):
         (folder / name).unlink(missing_ok=True)
-    write_whole(folder / "summary.json", summary_json(evaluation, inputs, files, case_file))
     if progress is not None:
         progress("results written", 1.0)
     return Written(folder, files, tuple(notes))

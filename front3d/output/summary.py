@@ -22,7 +22,7 @@ from front3d.units import Units
 
 LIBRARIES = ("numpy", "scipy", "numba", "meshio", "pyvista", "vtk", "matplotlib", "h5py")
 
-_INDEX_SUFFIXES = {".pvd", ".pvtu", ".xdmf", ".xmf", ".xml"}
+_INDEX_SUFFIXES = {".pvd", ".pvtu", ".xdmf", ".xmf", ".xml", ".case", ".encas"}
 
 
 def summary(
@@ -148,7 +148,7 @@ def _station(front: FrontResult, i: int, value: float, units: Units) -> dict[str
 
 
 def companions(path: Path) -> list[Path]:
-    """The files that an index file (.pvd, .pvtu, .xdmf) names, as far as they exist.
+    """The files that an index file (.pvd, .pvtu, .xdmf, .case) names, as far as they exist.
 
     The numbers stand in them, so a hash of the index alone would not tell two results apart.
     """
@@ -157,7 +157,15 @@ def companions(path: Path) -> list[Path]:
     text = path.read_text(encoding="utf-8", errors="replace")
     names = re.findall(r"""(?:file|Source)\s*=\s*["']([^"']+)["']""", text)
     names += re.findall(r"([^\s<>:\"']+\.(?:h5|hdf5|hdf|bin)):/", text)
-    return [file for name in dict.fromkeys(names) if (file := path.parent / name).is_file()]
+    if path.suffix.lower() in (".case", ".encas"):
+        names += re.findall(r"^[\w ]+:.*?(\S+)[ \t]*$", text, re.MULTILINE)
+    files = [
+        file
+        for name in dict.fromkeys(names)
+        for file in (sorted(path.parent.glob(name)) if "*" in name else [path.parent / name])
+        if file.is_file()
+    ]
+    return files + [inner for file in files for inner in companions(file)]
 
 
 def plain(value: Any) -> Any:

@@ -22,8 +22,8 @@ class Agreement:
     rings : per mode the largest ring spread; None without rings
     J_and_G : largest |J - G|; None without rings
     methods : per method, the largest difference of any mode from the reported K, over the stations
-        where that method gives a value and no free surface is near; the method that is reported
-        everywhere is left out
+        where that method gives a value and no free surface is near; without such a station, and
+        for the method that is reported everywhere, there is none
     """
 
     rings: dict[str, float] | None
@@ -36,11 +36,12 @@ def agreement(front: FrontResult) -> Agreement:
     scale = _largest(front.K)
     rings = rings_of(front)
     inside = ~free_surface_layer(front.s, front.length, front.ends)
-    methods = {
+    differences = {
         name: _largest((result.K - front.K)[inside]) / scale
         for name, result in front.methods.items()
         if set(front.sources) != {name}
     }
+    methods = {name: value for name, value in differences.items() if np.isfinite(value)}
     if rings is None:
         return Agreement(None, None, methods)
     spread = rings.spread

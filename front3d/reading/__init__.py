@@ -5,14 +5,17 @@ Libraries for single formats are imported only when such a file is read, to keep
 
 import os
 from collections.abc import Sequence
+from dataclasses import replace
 from pathlib import Path
 
 import numpy as np
 
 from front3d.errors import Front3DError, ReadError
-from front3d.reading.fields import DisplacementFinder, Kept
+from front3d.reading.fields import Arrays, DisplacementFinder
 from front3d.reading.files import FORMATS, identify
+from front3d.reading.nodal_csv import read_nodal_csv
 from front3d.reading.normalise import normalise_nodes
+from front3d.reading.pieces import join_pieces
 from front3d.reading.raw import RawModel
 from front3d.solid import CellBlock, Solid, Step
 
@@ -24,6 +27,7 @@ def load(
     *,
     displacement: str | None = None,
     arrays: Sequence[str] = (),
+    displacement_file: str | os.PathLike[str] | None = None,
     need_displacement: bool = True,
 ) -> Solid:
     """Read a finite-element result.
@@ -34,6 +38,8 @@ def load(
     displacement : name of the point array that holds the displacement, or three names of scalars
         separated by commas; None finds it by usual names
     arrays : names of further arrays, by point or by cell, to keep in the steps
+    displacement_file : table of nodal displacements (see front3d.reading.nodal_csv) to take in
+        place of those in the file
     need_displacement : with False a file without displacements gives a solid without steps
 
     Returns
@@ -47,12 +53,23 @@ def load(
     """
     path = Path(path)
     form = identify(path)
-    finder = DisplacementFinder(displacement, tuple(arrays))
+    finder = DisplacementFinder(displacement if displacement_file is None else None, tuple(arrays))
     try:
         raw = _read(path, form.reader, finder)
         # Absurd coordinates overflow in the checks and are refused by them.
         with np.errstate(over="ignore", invalid="ignore"):
-            return _solid(path, raw, finder, need_displacement)
+            raw.check()
+            if displacement_file is None:
+                named = finder.steps(need_displacement)
+            else:
+                named = read_nodal_csv(Path(displacement_file), raw, displacement)
+                finder.notes = [f"displacements taken from {Path(displacement_file).name}"]
+            kept = finder.kept(len(named))
+            named = [
+                replace(step, point_arrays=of_step.points)
+                for step, of_step in zip(named, kept, strict=True)
+            ]
+            return _solid(path, raw, named, [k.cells for k in kept], finder.notes)
     except Front3DError as error:
         said = str(error)
         raise ReadError(said if said.startswith(str(path)) else f"{path}: {said}") from error
@@ -72,12 +89,15 @@ def _read(path: Path, reader: str, finder: DisplacementFinder) -> RawModel:
     return vtk_family.READERS[reader](path, finder)
 
 
-def _solid(path: Path, raw: RawModel, finder: DisplacementFinder, need: bool) -> Solid:
-    raw.check()
+def _solid(
+    path: Path, raw: RawModel, named: list[Step], cells: list[Arrays], remarks: list[str]
+) -> Solid:
+    for step in named:
+        _check_length(step, len(raw.points))
+    raw, named = join_pieces(raw, named)
+    raw.check_cells()
     points = np.asarray(raw.points, dtype=np.float64)
-    used = np.zeros(len(points), dtype=bool)
-    for block in raw.blocks:
-        used[block.nodes.ravel()] = True
+    used = raw.used()
     notes = list(raw.notes) + raw.ignored_cells()
     points = _clean_points(points, used, notes)
     spacing = raw.point_spacing(used)
@@ -86,21 +106,20 @@ def _solid(path: Path, raw: RawModel, finder: DisplacementFinder, need: bool) ->
         nodes, mended = normalise_nodes(points, block, spacing)
         blocks.append(CellBlock(block.kind, nodes))
         notes += mended
-    named = finder.steps(need)
     steps = tuple(
-        Step(s.name, _clean_displacement(s, used), s.time, kept.points, _by_block(kept, raw))
-        for s, kept in zip(named, finder.kept(), strict=False)
+        Step(s.name, _clean_displacement(s, used), s.time, s.point_arrays, _by_block(arrays, raw))
+        for s, arrays in zip(named, cells, strict=True)
     )
-    notes += finder.notes
+    notes += remarks
     return Solid(points, tuple(blocks), steps, path.name, spacing, tuple(notes), raw.groups)
 
 
-def _by_block(kept: Kept, raw: RawModel) -> dict[str, tuple[np.ndarray, ...]]:
+def _by_block(arrays: Arrays, raw: RawModel) -> dict[str, tuple[np.ndarray, ...]]:
     """Cell arrays, one array per block; those without a value for every cell are left out."""
     largest = max(int(block.numbers.max(initial=-1)) for block in raw.blocks)
     return {
         name: tuple(values[block.numbers] for block in raw.blocks)
-        for name, values in kept.cells.items()
+        for name, values in arrays.items()
         if len(values) > largest
     }
 
@@ -125,13 +144,16 @@ def _clean_points(points: np.ndarray, used: np.ndarray, notes: list[str]) -> np.
     return points
 
 
+def _check_length(step: Step, n_points: int) -> None:
+    if len(step.displacement) != n_points:
+        raise ReadError(
+            f"step {step.name}: found {len(step.displacement)} displacements for {n_points} "
+            "points, expected one per point; export them on the nodes"
+        )
+
+
 def _clean_displacement(step: Step, used: np.ndarray) -> np.ndarray:
     values = step.displacement
-    if len(values) != len(used):
-        raise ReadError(
-            f"step {step.name}: found {len(values)} displacements for {len(used)} points, "
-            "expected one per point; export them on the nodes"
-        )
     bad = ~np.isfinite(values).all(axis=1)
     broken = np.flatnonzero(bad & used)
     if len(broken):

@@ -17,7 +17,7 @@ from front3d.solid import Step
 
 Arrays = Mapping[str, NDArray[Any]]
 
-# In order of preference, as `_plain` writes them.
+# In order of preference, as `plain_name` writes them.
 _BASES = (
     "displacement", "displacements", "displacement_vector", "nodal_displacement",
     "nodal_displacements", "node_displacement", "total_displacement", "displacement_field",
@@ -35,7 +35,8 @@ _COMPONENTS = (("x", "y", "z"), ("1", "2", "3"), ("0", "1", "2"))
 _HOW = "choose it by name (displacement=NAME), three scalars by NAME_X,NAME_Y,NAME_Z"
 
 
-def _plain(name: str) -> str:
+def plain_name(name: str) -> str:
+    """A name in small letters and digits, joined by underscores."""
     return re.sub(r"[^a-z0-9]+", "_", name.lower()).strip("_")
 
 
@@ -94,9 +95,14 @@ class DisplacementFinder:
             self._loose = self._loose.with_missing(kept)
         self._found += [_Found(case, _vectors(case, v), time, kept) for case, v in taken.items()]
 
-    def kept(self) -> list[Kept]:
-        """The arrays kept for each step."""
-        return [found.kept.with_missing(self._loose) for found in self._found]
+    def kept(self, count: int) -> list[Kept]:
+        """The arrays kept for each of `count` steps; where these come from elsewhere, those of
+        the first frame serve them all.
+        """
+        by_step = [found.kept.with_missing(self._loose) for found in self._found]
+        if len(by_step) != count:
+            return [by_step[0] if by_step else self._loose] * count
+        return by_step
 
     def steps(self, needed: bool) -> list[Step]:
         """The steps found, with distinct names; ReadError if one is needed and there is none."""
@@ -146,11 +152,11 @@ class DisplacementFinder:
         array = _pick(arrays, wanted)
         if array is not None:
             return {"": array}
-        return _scalars(arrays, (_plain(wanted),)) or _cases(arrays, (_plain(wanted),))
+        return _scalars(arrays, (plain_name(wanted),)) or _cases(arrays, (plain_name(wanted),))
 
     def _usual(self, arrays: Arrays) -> dict[str, NDArray[Any]]:
         by_name = {
-            _plain(name): name for name in reversed(list(arrays)) if _width(arrays[name]) > 1
+            plain_name(name): name for name in reversed(list(arrays)) if _width(arrays[name]) > 1
         }
         exact = [by_name[base] for base in _BASES if base in by_name]
         others = _cases(arrays, _BASES)
@@ -189,7 +195,7 @@ def _cases(arrays: Arrays, bases: tuple[str, ...]) -> dict[str, NDArray[Any]]:
         if len(base) > 3:
             patterns.append(rf"(.+)_{base}")
         for name, array in arrays.items():
-            plain = _plain(name)
+            plain = plain_name(name)
             match = next((m for p in patterns if (m := re.fullmatch(p, plain))), None)
             if match is None or _width(array) == 1 or plain in _BASES:
                 continue
@@ -204,7 +210,7 @@ def _cases(arrays: Arrays, bases: tuple[str, ...]) -> dict[str, NDArray[Any]]:
 
 def _scalars(arrays: Arrays, bases: tuple[str, ...]) -> dict[str, NDArray[Any]]:
     """Three scalars of one base name, such as u_x, u_y, u_z or UX, UY, UZ."""
-    scalars = {_plain(name): array for name, array in arrays.items() if _width(array) == 1}
+    scalars = {plain_name(name): array for name, array in arrays.items() if _width(array) == 1}
     for base in bases:
         for letters in _COMPONENTS:
             for joint in ("_", "", f"_{base}", f"_{base}_"):

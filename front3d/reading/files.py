@@ -25,8 +25,10 @@ FORMATS: tuple[Format, ...] = (
     Format("VTU", (".vtu",), "vtu", ("VTU",)),
     Format("VTK legacy", (".vtk",), "vtk", ("VTK legacy",)),
     Format("VTKHDF", (".vtkhdf", ".hdf"), "vtkhdf", ("VTKHDF",)),
+    Format("PVTU", (".pvtu",), "pvtu", ("PVTU",)),
     Format("PVD", (".pvd",), "pvd", ("PVD",)),
     Format("Exodus", (".e", ".ex2", ".exo", ".exii", ".exodus"), "exodus", ("Exodus", "netCDF")),
+    Format("EnSight Gold", (".case", ".encas"), "ensight", ("EnSight",)),
     Format("MSH", (".msh",), "msh", ("MSH",)),
     Format("XDMF", (".xdmf", ".xmf"), "xdmf", ("XDMF",)),
     Format("MED", (".med", ".rmed"), "med", ("MED",)),
@@ -99,11 +101,14 @@ def _content(path: Path, head: bytes) -> str:
         return "VTK legacy"
     if text.startswith(("$MeshFormat", "$Comments")):
         return "MSH"
+    if re.search(r"^\s*FORMAT\s*\n\s*type:\s*ensight", text, re.MULTILINE):
+        return "EnSight"
     if "<Xdmf" in text:
         return "XDMF"
     found = re.search(r"<VTKFile\b[^>]*\btype\s*=\s*[\"'](\w+)", text)
     if found:
         known = {"UnstructuredGrid": "VTU", "Collection": "PVD"}
+        known["PUnstructuredGrid"] = "PVTU"
         return known.get(found[1], f"a VTK file of type {found[1]}")
     return ""
 

@@ -1,20 +1,89 @@
-"""Whether a VTK legacy file in ASCII holds its last array whole.
+"""Whether a VTK legacy file holds what it claims, before VTK makes room for it.
 
-VTK reports nothing when such a file ends inside an array of numbers: the rest of the array is
-whatever stood in memory.  Only the last array can be cut short, so only its numbers are counted.
+VTK trusts the counts, and the lengths in the list of cells, and walks beyond its memory where they
+are wrong.  It reports nothing, either, when a file in ASCII ends inside an array of numbers: the
+rest of the array is whatever stood in memory.  Only the last array can be cut short, so
+only its numbers are counted.
 """
 
 import mmap
 import re
 from pathlib import Path
+from typing import Any
 
 import numpy as np
+from numpy.typing import NDArray
 
 from front3d.errors import ReadError
 
 _DECLARATIONS = re.compile(rb"^(?!nan\b|inf\b)[A-Za-z_][^\n]*", re.MULTILINE | re.IGNORECASE)
 # Numbers per point or cell after a line that begins with one of these words.
 _PER_ENTITY = {"VECTORS": 3, "NORMALS": 3, "TENSORS": 9, "TENSORS6": 6}
+
+
+_COUNTS = re.compile(
+    rb"^(POINTS|CELLS|CELL_TYPES|POINT_DATA|CELL_DATA)[ \t]+(\S+)[ \t]*(\S*)[^\n]*\n", re.MULTILINE
+)
+
+
+def check_legacy(path: Path) -> None:
+    """Raise ReadError if the file is cut short, or its counts or list of cells cannot be true."""
+    try:
+        _check_structure(path)
+    except (ValueError, IndexError):
+        raise ReadError(
+            f"{path}: found counts in it that make no sense, expected whole lists of points and "
+            "cells: the file is damaged; transfer or export it again"
+        ) from None
+    check_tail(path)
+
+
+def _check_structure(path: Path) -> None:
+    with path.open("rb") as file, mmap.mmap(file.fileno(), 0, access=mmap.ACCESS_READ) as text:
+        lines = text[:1024].split(b"\n")
+        version = re.search(rb"Version\s+(\d+)", lines[0])
+        ascii_ = len(lines) > 2 and lines[2].strip().upper() == b"ASCII"
+        counts: dict[str, int] = {}
+        for found in _COUNTS.finditer(text):
+            word, n = found[1].decode(), int(found[2])
+            # Two bytes or more for each number.
+            if not 0 <= n * (6 if word == "POINTS" else 1) <= len(text):
+                raise ValueError
+            if counts.setdefault(word, n) != n:
+                raise ValueError
+            if word == "CELLS":
+                after = text[found.end() : found.end() + 7].upper() == b"OFFSETS"
+                if version is None or after != (int(version[1]) >= 5):
+                    raise ValueError
+                if not 0 <= int(found[3]) <= len(text):
+                    raise ValueError
+                if not after:
+                    _walk_cells(_integers(text, found.end(), int(found[3]), ascii_), n)
+        for one, other in (("POINTS", "POINT_DATA"), ("CELL_TYPES", "CELL_DATA")):
+            if one in counts and counts.get(other, counts[one]) != counts[one]:
+                raise ValueError
+
+
+def _integers(text: mmap.mmap, start: int, count: int, ascii_: bool) -> NDArray[Any]:
+    if not ascii_:
+        return np.frombuffer(text[start : start + 4 * count], ">i4", count)
+    # No number of a sound file takes more than twenty characters.
+    words = text[start : start + 20 * count].split(maxsplit=count)[:count]
+    return np.array(words, dtype=np.int64)
+
+
+def _walk_cells(numbers: NDArray[Any], cells: int) -> None:
+    """Walk over "length, nodes, length, nodes, ..", run by run of equal lengths."""
+    place = done = 0
+    while place < len(numbers):
+        length = int(numbers[place])
+        if length < 0:
+            raise ValueError
+        run = numbers[place :: length + 1] == length
+        many = len(run) if run.all() else int(run.argmin())
+        place, done = place + many * (length + 1), done + many
+    if place != len(numbers) or done != cells:
+        raise ValueError
 
 
 def check_tail(path: Path) -> None:

@@ -1,4 +1,4 @@
-"""MSH 2.2, 4.0 and 4.1: meshio's parsers of the sections, joined by a loop of our own.
+"""MSH 2.2 and 4.1: meshio's parsers of the sections, joined by a loop of our own.
 
 meshio's own loop keeps only the last time of a field, drops the times, and trusts node data to
 stand in the order of the nodes; here every `$NodeData` section is placed by its node numbers.
@@ -39,12 +39,13 @@ def read_msh(path: Path, finder: DisplacementFinder) -> RawModel:
         for (_, time), arrays in sorted(frames.items(), key=lambda item: item[0]):
             finder.offer(arrays, time, {PHYSICAL_GROUP: groups})
         raw = model(points, cells)
+        raw.node_numbers = tags + 1
         raw.groups.update(names)
         return raw
 
 
 def _sections(file: BinaryIO) -> tuple[Any, Any, Any, list[Any], Any, dict[str, int]]:
-    from meshio.gmsh import _gmsh22, _gmsh40, _gmsh41, common
+    from meshio.gmsh import _gmsh22, _gmsh41, common
 
     version, ascii_, size = _header(file)
     points: Any = np.empty((0, 3))
@@ -66,14 +67,11 @@ def _sections(file: BinaryIO) -> tuple[Any, Any, Any, list[Any], Any, dict[str, 
             data.append(_node_data(file, ascii_))
         elif section == "Entities" and version == "4.1":
             physical, bounding = _gmsh41._read_entities(file, ascii_, size)
-        elif section == "Entities" and version == "4.0":
-            physical = _gmsh40._read_entities(file, ascii_)
         elif section == "Nodes":
             if version == "4.1":
                 points, tags, _ = _gmsh41._read_nodes(file, ascii_, size)
             else:
-                reader = _gmsh40 if version == "4.0" else _gmsh22
-                points, tags = reader._read_nodes(file, ascii_)
+                points, tags = _gmsh22._read_nodes(file, ascii_)
             # Only the parser of 4.1 counts from 0.
             tags = np.asarray(tags).astype(np.int64) - (version != "4.1")
         elif section == "Elements":
@@ -92,16 +90,13 @@ def _elements(
     """Cells, (type, nodes) a block, and the number of the physical group of every cell, 0 where it
     belongs to none.
     """
-    from meshio.gmsh import _gmsh22, _gmsh40, _gmsh41
+    from meshio.gmsh import _gmsh22, _gmsh41
 
     if version == "2.2":
         cells: list[tuple[str, Any]] = []
-        _, found = _gmsh22._read_cells(file, cells, tags + 1, ascii_)
-        return cells, _groups_by_type(cells, found.get("gmsh:physical", {}))
-    if version == "4.0":
-        blocks, found = _gmsh40._read_elements(file, tags + 1, physical, ascii_)
-    else:
-        blocks, found, _ = _gmsh41._read_elements(file, tags, physical, bounding, ascii_, size, {})
+        _, by_type = _gmsh22._read_cells(file, cells, tags + 1, ascii_)
+        return cells, _groups_by_type(cells, by_type.get("gmsh:physical", {}))
+    blocks, found, _ = _gmsh41._read_elements(file, tags, physical, bounding, ascii_, size, {})
     cells = [(block.type, block.data) for block in blocks]
     parts = found.get("gmsh:physical", [])
     if [len(part) for part in parts] != [len(nodes) for _, nodes in cells]:
@@ -136,7 +131,7 @@ def _header(file: BinaryIO) -> tuple[str, bool, int]:
         version, size, ascii_ = main._read_header(file)
     except (struct.error, IndexError, ValueError):
         raise ReadError("the $MeshFormat section is damaged") from None
-    known = {"2": "2.2", "2.1": "2.2", "2.2": "2.2", "4.0": "4.0", "4": "4.1", "4.1": "4.1"}
+    known = {"2": "2.2", "2.1": "2.2", "2.2": "2.2", "4.1": "4.1"}
     if version not in known:
         raise ReadError(f"found version {version}, expected 2.2 or 4.1; export it anew as one")
     return known[version], ascii_, size

@@ -32,6 +32,9 @@ class RawModel:
     single_if_exact : coordinates come in double precision whatever the file has, so take them for
         single precision where each of them is a single-precision number
     groups : numbers of the named groups of cells
+    pieces : (n,) the piece each point comes from; None if the model is one piece
+    global_ids : (n,) node numbers that hold across pieces, if the file has them
+    node_numbers : (n,) the numbers of the nodes in the file, if it has any
     """
 
     points: NDArray[Any]
@@ -41,6 +44,9 @@ class RawModel:
     notes: list[str] = field(default_factory=list)
     single_if_exact: bool = False
     groups: dict[str, int] = field(default_factory=dict)
+    pieces: IntArray | None = None
+    global_ids: IntArray | None = None
+    node_numbers: IntArray | None = None
 
     def check(self) -> None:
         """Raise ReadError unless this is a solid of known elements."""
@@ -61,6 +67,10 @@ class RawModel:
                 f"found {found}, expected solid cells ({', '.join(ELEMENTS)}): two-dimensional "
                 "and shell models have no crack front; export the solid cells too"
             )
+        self.check_nodes()
+
+    def check_nodes(self) -> None:
+        """Raise ReadError if a cell refers to a point that is not there."""
         for block in self.blocks:
             outside = (block.nodes < 0) | (block.nodes >= len(self.points))
             if outside.any():
@@ -70,6 +80,40 @@ class RawModel:
                     f"{block.nodes[row, place]}, but the file has {len(self.points)} points "
                     "(numbered from 0); the file is damaged, or lacks mid-side nodes"
                 )
+
+    def check_cells(self) -> None:
+        """Raise ReadError if two cells have the same corners: inside, their faces look doubled."""
+        # Sums of random numbers do not depend on the order of the nodes.
+        name = np.random.default_rng(0).integers(0, 2**64, len(self.points), dtype=np.uint64)
+        names, owners = [], []
+        for k, block in enumerate(self.blocks):
+            corners = block.nodes[:, : ELEMENTS[block.kind].n_corners]
+            sums = name[corners[:, 0]]
+            for column in corners.T[1:]:
+                sums = sums + name[column]
+            names.append(sums)
+            owners.append(np.full(len(sums), k))
+        sums, owner = np.concatenate(names), np.concatenate(owners)
+        order = np.argsort(sums)
+        same = np.flatnonzero(sums[order][1:] == sums[order][:-1])
+        if not len(same):
+            return
+        # The sort need not be stable: name the pair that comes first.
+        one, other = min(sorted(order[k : k + 2].tolist()) for k in same)
+        kinds = [block.kind for block in self.blocks]
+        numbers = np.concatenate([block.numbers for block in self.blocks])
+        raise ReadError(
+            f"{kinds[owner[one]]} cell {numbers[one]} and {kinds[owner[other]]} cell "
+            f"{numbers[other]} have the same corners ({len(same)} such cells; numbers from 0), "
+            "expected every cell once; remove the copies, or pieces that overlap"
+        )
+
+    def used(self) -> BoolArray:
+        """(n,) which points a solid cell refers to."""
+        used = np.zeros(len(self.points), dtype=bool)
+        for block in self.blocks:
+            used[block.nodes.ravel()] = True
+        return used
 
     def ignored_cells(self) -> list[str]:
         return [f"{count} {name} cells ignored" for name, count in sorted(self.ignored.items())]

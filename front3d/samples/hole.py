@@ -13,6 +13,7 @@ import numpy as np
 
 from front3d.arrays import FloatArray
 from front3d.samples.lattice import Lattice
+from front3d.samples.tetrahedra import diagonals_straightened
 
 
 @dataclass(frozen=True, slots=True)
@@ -60,6 +61,7 @@ class Hole:
             gap = self._rectangle(z) - self._circles(np.full_like(z, self.half_width), z)
             out[:, ::2] += (x / (self.half_width - self.radius))[:, None] * gap
         out[z == self.heights[-1], 0] = 0.0  # exactly in the plane of symmetry
+        out = diagonals_straightened(replace(block, points=out), z > self.straight)
         return replace(block, points=out + 0.0)
 
     def _share(self, z: FloatArray) -> FloatArray:

@@ -11,7 +11,7 @@ from functools import cache
 
 import numpy as np
 
-from front3d.arrays import IntArray
+from front3d.arrays import BoolArray, FloatArray, IntArray
 from front3d.elements import ELEMENTS
 from front3d.samples.lattice import Lattice
 
@@ -22,6 +22,43 @@ def split(lattice: Lattice) -> IntArray:
     """Tetrahedra, (n, 10), of a part, from both kinds of its cells."""
     parts = [_split_cells(lattice.bricks, "hexahedron20"), _split_cells(lattice.wedges, "wedge15")]
     return np.concatenate(parts)
+
+
+def diagonals_straightened(lattice: Lattice, which: BoolArray) -> FloatArray:
+    """Points of a lattice, with those face and body centres among the nodes `which` moved to suit
+    the diagonals that `split` cuts along.
+
+    The mid-side node of a diagonal is the centre of its face or brick, which in a trapezoid is not
+    the middle of the diagonal.  Tetrahedra with edges bent by that do not hold quadratic
+    displacements, and where they are large are far too stiff in bending.  What the centre is off
+    the mean of all corners, by a curved surface, is kept.  Around the front centres should stay:
+    there displacements go with the mesh lines.
+    """
+    points = lattice.points.copy()
+    for cells, kind in ((lattice.bricks, "hexahedron20"), (lattice.wedges, "wedge15")):
+        element = ELEMENTS[kind]
+        every = tuple(range(element.n_corners))
+        groups = [tuple(n for n in face if n < element.n_corners) for _, face in element.faces]
+        groups = [corners for corners in groups if len(corners) == 4]
+        for corners in [*groups, every] if kind == "hexahedron20" else groups:
+            nodes = cells[:, corners]
+            opposite = _opposite(kind, corners)
+            start = np.argmin(nodes, axis=1)
+            row = np.arange(len(nodes))
+            middle = lattice.points[np.stack([nodes[row, start], nodes[row, opposite[start]]])]
+            centre = cells[:, _middle(kind)[frozenset((corners[0], corners[opposite[0]]))]]
+            rise = lattice.points[centre] - lattice.points[nodes].mean(axis=1)
+            chosen = which[centre]
+            points[centre[chosen]] = (middle.mean(axis=0) + rise)[chosen]
+    return points
+
+
+def _opposite(kind: str, corners: tuple[int, ...]) -> IntArray:
+    """For each corner of a quadrilateral or a brick, which of `corners` is the farthest."""
+    places = ELEMENTS[kind].nodes[list(corners)]
+    gap = np.linalg.norm(places[:, None] - places, axis=2)
+    out: IntArray = np.argmax(gap, axis=1).astype(np.int64)
+    return out
 
 
 def _split_cells(cells: IntArray, kind: str) -> IntArray:

@@ -95,80 +95,71 @@ def _bars() -> Iterator[Case]:
         run = Run("round-bar", cells, parameters={"tension": 0.0}, compare=(twist,))
         yield _case("round bar, torsion", source, run, limit, quick=cells == "bricks")
     run = Run("round-bar", parameters={"torsion": 0.0}, compare=(pull,))
-    yield _case("round bar, tension", source, run, 3.0)
+    low = f"{source}; 1.7 % low here by axisymmetric finite elements made for front3d"
+    yield _case("round bar, tension", low, run, 3.0)
     centre = "centre-crack:a={crack},b={width},tension={tension}"
     source = f"{PUBLISHED}: Tada, Paris and Irwin (1985), claimed within 0.1 %"
     run = Run("through-crack", compare=(centre,))
     yield _case("through crack in a plate, plane strain", source, run, 1.0, quick=True)
 
 
+_SURFACE, _CORNER = "surface-crack", "corner-crack"
+_SIZES = {
+    _SURFACE: "a={depth},c={half_length},t={thickness}",
+    _CORNER: "a={depth},c={length},t={thickness},depth=y",
+}
+_WIDTH = {_SURFACE: "b={half_width}", _CORNER: "b={width}"}
+_PARTS = {_SURFACE: "quarter", _CORNER: "upper"}
+
+
+def _plate(sample: str, aspect: float, deep: float, *texts: str, **more: float) -> Run:
+    """A crack in a plate, c = 10, beside solutions that take its sizes."""
+    along = "half_length" if sample == _SURFACE else "length"
+    sizes = {"depth": 10.0 * aspect, along: 10.0, "thickness": 10.0 * aspect / deep, **more}
+    return Run(sample, "bricks", _PARTS[sample], sizes, texts)
+
+
+def _shape(sample: str, aspect: float, deep: float) -> str:
+    return f"{sample.replace('-', ' ')}, a/c {aspect:g}, a/t {deep:g}"
+
+
 def _tables() -> Iterator[Case]:
     """Values computed for this project by another program of high order."""
     source = f"{COMPUTED}: high-order finite elements"
+    for sample, deepest in ((_SURFACE, 0.8), (_CORNER, 0.5)):
+        table = f"computed-{sample.removesuffix('-crack')}:{_SIZES[sample]}"
+        texts = [f"{table},{load}={{{load}}},step={load}" for load in ("tension", "bending")]
+        for aspect, deep in product((0.4, 1.0), (0.2, deepest)):
+            quick = (sample, aspect, deep) == (_SURFACE, 1.0, 0.2)
+            run = _plate(sample, aspect, deep, *texts)
+            yield _case(_shape(sample, aspect, deep), source, run, 1.5, quick=quick)
     for aspect, deep in product((0.4, 1.0), (0.2, 0.8)):
-        plate = {"depth": 10.0 * aspect, "half_length": 10.0, "thickness": 10.0 * aspect / deep}
-        texts = tuple(
-            f"computed-surface:a={{depth}},c={{half_length}},t={{thickness}},{load}={{{load}}},"
-            f"step={load}"
-            for load in ("tension", "bending")
-        )
-        name = f"surface crack, a/c {aspect:g}, a/t {deep:g}"
-        quick = (aspect, deep) == (1.0, 0.2)
-        run = Run("surface-crack", "bricks", "quarter", plate, texts)
-        yield _case(name, source, run, 1.5, quick=quick)
-    for aspect, deep in product((0.4, 1.0), (0.2, 0.5)):
-        plate = {"depth": 10.0 * aspect, "length": 10.0, "thickness": 10.0 * aspect / deep}
-        texts = tuple(
-            f"computed-corner:a={{depth}},c={{length}},t={{thickness}},{load}={{{load}}},"
-            f"step={load}"
-            for load in ("tension", "bending")
-        )
-        name = f"corner crack, a/c {aspect:g}, a/t {deep:g}"
-        yield _case(name, source, Run("corner-crack", "bricks", "upper", plate, texts), 1.5)
-    for aspect, deep in product((0.4, 1.0), (0.2, 0.8)):
-        plate = {"semi_x": 10.0, "semi_y": 10.0 * aspect, "thickness": 20.0 * aspect / deep}
         half = 10.0 * aspect / deep
-        text = f"computed-embedded:a={{semi_y}},c={{semi_x}},t={half!r},tension={{tension}}"
-        name = f"embedded ellipse in a plate, a/c {aspect:g}, a/t {deep:g}"
-        run = Run("embedded-ellipse", "bricks", "eighth", plate, (text,))
-        yield _case(name, source, run, 1.5)
+        sizes = {"semi_x": 10.0, "semi_y": 10.0 * aspect, "thickness": 2.0 * half}
+        text = f"computed-embedded:a={{semi_y}},c={{semi_x}},t={half!r},depth=y,tension={{tension}}"
+        run = Run("embedded-ellipse", "bricks", "eighth", sizes, (text,))
+        yield _case(_shape("embedded ellipse in a plate", aspect, deep), source, run, 1.5)
     for aspect, deep in product((0.5, 1.0), (0.2, 0.5)):
-        plate = {
-            "depth": 10.0 * aspect, "length": 10.0, "thickness": 10.0 * aspect / deep,
-            "hole_radius": 10.0 * aspect / deep, "cylinder": 1.0, "bending": 0.0,
-        }  # fmt: skip
-        text = "computed-hole:a={depth},c={length},t={thickness},r={hole_radius},tension={tension}"
-        name = f"corner cracks at a hole, a/c {aspect:g}, a/t {deep:g}"
-        run = Run("corner-crack-at-hole", "bricks", "quarter", plate, (text,))
-        yield _case(name, source, run, 1.5)
+        t = 10.0 * aspect / deep
+        sizes = {"depth": 10.0 * aspect, "length": 10.0, "thickness": t, "hole_radius": t}
+        text = "computed-hole:a={depth},c={length},t={thickness},r={hole_radius},depth=y,"
+        run = Run(
+            "corner-crack-at-hole", "bricks", "quarter", {**sizes, "cylinder": 1.0, "bending": 0.0},
+            (text + "tension={tension}",),
+        )  # fmt: skip
+        yield _case(_shape("corner cracks at a hole", aspect, deep), source, run, 1.5)
 
 
 def _equations() -> Iterator[Case]:
     """Newman and Raju, where their equations are known to hold."""
-    for aspect, deep in product((0.4, 1.0), (0.2, 0.6)):
-        plate = {
-            "depth": 10.0 * aspect, "half_length": 10.0, "thickness": 10.0 * aspect / deep,
-            "bending": 0.0,
-        }  # fmt: skip
-        text = (
-            "newman-raju-surface:a={depth},c={half_length},t={thickness},b={half_width},"
-            "tension={tension}"
-        )
-        source = f"{PUBLISHED}: Newman and Raju (1981), claimed within 5 %"
-        run = Run("surface-crack", "bricks", "quarter", plate, (text,))
-        yield _case(
-            f"surface crack, a/c {aspect:g}, a/t {deep:g}, equation", source, run, 4.0,
-            quick=(aspect, deep) == (0.4, 0.6),
-        )  # fmt: skip
-    for aspect, deep in product((0.4, 1.0), (0.2, 0.5)):
-        plate = {
-            "depth": 10.0 * aspect, "length": 10.0, "thickness": 10.0 * aspect / deep,
-            "bending": 0.0,
-        }  # fmt: skip
-        text = "newman-raju-corner:a={depth},c={length},t={thickness},b={width},tension={tension}"
-        source = f"{PUBLISHED}: Newman and Raju (1984), claimed within 5 %, from memory"
-        run = Run("corner-crack", "bricks", "upper", plate, (text,))
-        yield _case(f"corner crack, a/c {aspect:g}, a/t {deep:g}, equation", source, run, 4.0)
+    for sample, deepest, year in ((_SURFACE, 0.6, "(1981)"), (_CORNER, 0.5, "(1984), from memory")):
+        source = f"{PUBLISHED}: Newman and Raju {year}, claimed within 5 %"
+        equation = f"newman-raju-{sample.removesuffix('-crack')}:{_SIZES[sample]},{_WIDTH[sample]}"
+        for aspect, deep in product((0.4, 1.0), (0.2, deepest)):
+            run = _plate(sample, aspect, deep, equation + ",tension={tension}", bending=0.0)
+            name = f"{_shape(sample, aspect, deep)}, equation"
+            quick = (sample, aspect, deep) == (_SURFACE, 0.4, 0.6)
+            yield _case(name, source, run, 4.0, quick=quick)
 
 
 def _laws() -> Iterator[Case]:

@@ -4,7 +4,8 @@ from pathlib import Path
 
 from front3d.output.charts import charts_of
 from front3d.output.charts.style import svg
-from front3d.output.report import parts
+from front3d.output.report.answer import answer, heading, question
+from front3d.output.report.checks import checks, mix
 from front3d.output.report.page import (
     Markup,
     figure,
@@ -15,6 +16,7 @@ from front3d.output.report.page import (
     svg_image,
     tag,
 )
+from front3d.output.report.repeat import end, inputs, stations
 from front3d.output.report.scene import turnable
 from front3d.output.saved import Saved
 
@@ -31,15 +33,15 @@ def report_html(saved: Saved) -> tuple[bytes, tuple[str, ...]]:
     scene, notes = _scene(saved)
     body = join(
         [
-            parts.heading(saved),
-            parts.answer(saved),
-            parts.question(saved),
+            heading(saved),
+            answer(saved),
+            question(saved),
             scene,
             _charts(saved),
-            parts.checks(saved),
-            parts.stations(saved),
-            parts.inputs(saved),
-            parts.end(),
+            checks(saved),
+            stations(saved),
+            inputs(saved),
+            end(),
         ]
     )
     return page(f"front3d: {saved.evaluation.source}", body).encode(), notes
@@ -50,7 +52,7 @@ def _charts(saved: Saved) -> Markup:
     for i, (name, draw) in enumerate(charts_of(saved.evaluation).items()):
         caption = next(words for kind, words in CAPTIONS.items() if name.startswith(kind))
         drawings.append(figure(svg_image(svg(draw()), i, caption), caption))
-    return section("Charts", *drawings, parts.mix(saved), name="charts")
+    return section("Charts", *drawings, mix(saved), name="charts")
 
 
 def _scene(saved: Saved) -> tuple[Markup, tuple[str, ...]]:

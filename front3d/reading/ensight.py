@@ -1,0 +1,125 @@
+"""Whether the files of an EnSight Gold case are there, and long enough for what they claim.
+
+Layout: the published description of the EnSight Gold format ("C Binary" and ASCII).
+"""
+
+import re
+from pathlib import Path
+
+import numpy as np
+
+from front3d.errors import ReadError
+
+_WIDTHS = {"point": 1, "bar2": 2, "bar3": 3, "tria3": 3, "tria6": 6, "quad4": 4, "quad8": 8}
+_WIDTHS |= {"tetra4": 4, "tetra10": 10, "pyramid5": 5, "pyramid13": 13}
+_WIDTHS |= {"penta6": 6, "penta15": 15, "hexa8": 8, "hexa20": 20}
+_COUNTED = "|".join(["coordinates", *(f"(?:g_)?{kind}" for kind in _WIDTHS)])
+
+
+def check_case(path: Path) -> None:
+    """Raise ReadError if the case file is no EnSight Gold, or names files that cannot be read."""
+    text = path.read_text(encoding="latin-1")
+    if not re.search(r"^\s*type:\s*ensight\s+gold\b", text, re.MULTILINE):
+        raise ReadError(f"{path}: found no line 'type: ensight gold', expected EnSight Gold")
+    if re.search(r"^\s*model:.*change_coords_only", text, re.MULTILINE):
+        raise ReadError(
+            f"{path}: found a mesh that moves with time, expected the undeformed mesh; export it so"
+        )
+    named = re.findall(r"^\s*(model|\w+ per (?:measured )?\w+):(.*)$", text, re.MULTILINE)
+    if not any(what == "model" for what, _ in named):
+        raise ReadError(f"{path}: names no geometry file (model: ...), expected one")
+    for what, words in named:
+        name = words.split()[-1:] if what != "model" else _model_name(words)
+        if not name:
+            raise ReadError(f"{path}: found the line {what}: without a file name")
+        pattern = name[0].strip('"')
+        files = sorted(path.parent.glob(pattern.replace("*", "?"))) if pattern else []
+        if not files:
+            raise ReadError(f"{path}: names {pattern}, which is not there; transfer it too")
+        for file in files:
+            _check_length(path, file, geometry=what == "model")
+
+
+def _model_name(words: str) -> list[str]:
+    """The file name after optional time set and file set numbers."""
+    return [word for word in words.split() if not word.isdigit()][:1]
+
+
+def _check_length(case: Path, file: Path, geometry: bool) -> None:
+    try:
+        data = np.memmap(file, mode="r") if file.stat().st_size else np.empty(0, np.uint8)
+    except OSError as error:
+        raise ReadError(f"{case}: names {file.name}, which cannot be read: {error}") from None
+    head = bytes(data[:80])
+    try:
+        if not len(data):
+            raise ValueError
+        if head.startswith(b"C Binary"):
+            _walk(data)
+        elif geometry:
+            _check_claims(bytes(data))
+    except (ValueError, IndexError, UnicodeDecodeError):
+        raise ReadError(
+            f"{case}: {file.name} is damaged or cut short, expected as many numbers as it claims; "
+            "transfer or export it again"
+        ) from None
+
+
+def _check_claims(text: bytes) -> None:
+    """Counts in an ASCII geometry cannot be larger than the file is long."""
+    for found in re.findall(rf"^\s*(?:{_COUNTED})\s*\n\s*(\S+)".encode(), text, re.MULTILINE):
+        if not 0 <= int(found) <= len(text):
+            raise ValueError
+
+
+def _walk(data: np.ndarray) -> None:
+    """Walk over a binary geometry file, whose first part says how long everything is."""
+    place = 0
+
+    def line() -> str:
+        nonlocal place
+        place += 80
+        if place > len(data):
+            raise ValueError
+        return bytes(data[place - 80 : place]).split(b"\0")[0].decode("ascii").strip()
+
+    def count() -> int:
+        nonlocal place
+        place += 4
+        n = int(np.frombuffer(bytes(data[place - 4 : place]), order)[0])
+        if not 0 <= n <= len(data):
+            raise ValueError
+        return n
+
+    def skip(numbers: int) -> None:
+        nonlocal place
+        place += 4 * numbers
+        if place > len(data):
+            raise ValueError
+
+    order = "<i4"
+    line()
+    line(), line()
+    ids = [line().endswith(("given", "ignore")) for _ in range(2)]
+    word = line()
+    if word == "extents":
+        skip(6)
+        word = line()
+    # Part numbers are small in the order of bytes that the file has.
+    if not 0 <= int(np.frombuffer(bytes(data[place : place + 4]), "<i4")[0]) < 65536:
+        order = ">i4"
+    while word == "part":
+        count()
+        line()
+        word = line()
+        if word != "coordinates":
+            return  # structured: left to the reader
+        n = count()
+        skip(n * (3 + ids[0]))
+        word = line() if place < len(data) else ""
+        while word.removeprefix("g_") in _WIDTHS:
+            n = count()
+            skip(n * (_WIDTHS[word.removeprefix("g_")] + ids[1]))
+            word = line() if place < len(data) else ""
+    if word and word != "END TIME STEP":
+        raise ValueError
