@@ -12,6 +12,7 @@ import numpy as np
 import pytest
 
 import front3d
+import front3d.errors
 from front3d.methods.terms import BODY_FORCE, FACE_LOAD, GRADIENT, without
 from front3d.solid import Step
 from tests.meshes.structured import straight
@@ -130,8 +131,8 @@ TERM = {by_body_force: BODY_FORCE}
 def test_loads_leave_k_as_it_is_on_every_ring(carry, kind):
     solid, loads = carry(block(kind))
     found, energy = rings(solid, **loads)
-    np.testing.assert_allclose(found, np.broadcast_to(K, found.shape), atol=0.004)
-    assert np.ptp(found, axis=0).max() < 0.004
+    allowed = 5e-4 if "quarter" in kind else 0.004
+    np.testing.assert_allclose(found, np.broadcast_to(K, found.shape), atol=allowed)
     # Without quarter-points J of the near-tip field alone changes by 0.5 % over these rings.
     np.testing.assert_allclose(energy, 1.0, atol=0.002 if "quarter" in kind else 0.01)
 
@@ -150,3 +151,120 @@ def test_without_the_tractions_on_the_faces_k_is_off(carry):
     with without(FACE_LOAD):
         found, _ = rings(solid, **loads)
     assert np.abs(found - K).max() > 0.02
+
+
+GRADE = 0.4
+
+
+def graded():
+    """Mode III in a solid whose modulus varies across the front, and K_III = 1 exactly.
+
+    With mu = mu0 f^2 and w = g / f the antiplane equation div(mu grad w) = 0 is f lap g = g lap f:
+    it holds for f = 1 + GRADE x1 and the harmonic near-tip g, whose faces stay free because f does
+    not change across them (own derivation; substitution is the check).
+    """
+    mesh = block()
+    x = mesh.solid.points
+    u = exact.near_tip(ELASTIC, (0.0, 0.0, 1.0))(x, mesh.side) / (1 + GRADE * x[:, :1])
+    step = Step("graded", u, 0.0, {"T": x[:, 0]})
+    table = [(t, YOUNG * (1 + GRADE * t) ** 2, POISSON) for t in np.linspace(-1, 1, 401)]
+    return replace(mesh.solid, steps=(step,)), {"temperature": "T", "elastic_table": table}
+
+
+def graded_rings():
+    solid, loads = graded()
+    front = front3d.evaluate(solid, radii=RADII, hat=1.0, up=(0, 1, 0), **loads).fronts[0]
+    middle = len(front) // 2
+    rings = front.methods["interaction"].rings
+    return rings.K[:, middle], rings.J[:, middle] / front.G[middle]
+
+
+def test_a_modulus_that_varies_with_temperature():
+    found, energy = graded_rings()
+    np.testing.assert_allclose(found, [[0.0, 0.0, 1.0]] * 3, atol=1e-3)
+    np.testing.assert_allclose(energy, 1.0, atol=2e-3)
+
+
+def test_without_the_gradient_of_the_modulus_k_depends_on_the_radius():
+    with without(GRADIENT):
+        found, _ = graded_rings()
+    assert np.ptp(found[:, 2]) > 0.03
+
+
+def test_temperatures_beyond_the_table_are_refused():
+    solid, loads = graded()
+    loads["elastic_table"] = loads["elastic_table"][100:300]
+    with pytest.raises(front3d.errors.MethodError, match=r"expected -0\.5 to"):
+        front3d.evaluate(solid, radii=RADII, hat=1.0, up=(0, 1, 0), **loads)
+
+
+def test_cell_data_of_a_linear_initial_stress():
+    """Values at the cells' centres, carried to the nodes, in place of values at the nodes.
+
+    Around the front, cells of 0.1 hold the variation within a cell: K within half a per cent.
+    """
+    mesh = block()
+    solid, _ = by_initial_stress(mesh)
+    parts = tuple(
+        -six(smooth_stress(mesh.solid.points[cells.nodes].mean(axis=1))) for cells in solid.blocks
+    )
+    step = replace(solid.steps[0], point_arrays={}, cell_arrays={"S": parts})
+    step = replace(step, point_arrays={"traction": 0.0 * solid.points})
+    found, _ = rings(replace(solid, steps=(step,)), initial_stress="S")
+    np.testing.assert_allclose(found, np.broadcast_to(K, found.shape), atol=0.005)
+
+
+REGION = {"region_array": "part", "regions": [{"region": 1, "young": YOUNG, "poisson": POISSON}]}
+
+
+def in_parts(numbers, radii=None, **more):
+    """Evaluation of the near-tip field, the number of each cell by its centre."""
+    mesh = block("hexahedron20")
+    x = mesh.solid.points
+    parts = tuple(numbers(x[cells.nodes].mean(axis=1)) for cells in mesh.solid.blocks)
+    u = exact.near_tip(ELASTIC, K)(x, mesh.side)
+    solid = replace(mesh.solid, steps=(Step("1", u, 0.0, {}, {"part": parts}),))
+    return front3d.evaluate(solid, radii=radii, hat=1.0, up=(0, 1, 0), **{**REGION, **more})
+
+
+def test_rings_stay_inside_the_material_of_the_front():
+    """The other material begins 0.75 from the front; Young's modulus comes from the region."""
+    result = in_parts(lambda x: 1 + (np.abs(x[:, 0]) > 0.75))
+    front = result.fronts[0]
+    assert front.methods["interaction"].rings.radii.max() <= 0.75
+    np.testing.assert_allclose(front.K[len(front) // 2], K, atol=0.005)
+
+
+def test_rings_given_into_another_material_are_refused():
+    with pytest.raises(front3d.errors.MethodError, match=r"another material begins 0\.75"):
+        in_parts(lambda x: 1 + (np.abs(x[:, 0]) > 0.75), radii=(0.5, 0.9))
+
+
+@pytest.mark.parametrize("axis", [0, 1, 2])
+def test_a_front_along_or_through_a_change_of_material_is_refused(axis):
+    with pytest.raises(front3d.errors.MethodError, match="along or through a change of material"):
+        in_parts(lambda x: 1 + (x[:, axis] > (0.5 if axis == 2 else 0.0)))
+
+
+def test_a_region_without_a_material_is_refused():
+    with pytest.raises(front3d.errors.CaseError, match="region 3, for which no material"):
+        in_parts(lambda x: 3 + 0 * x[:, 0])
+
+
+@pytest.mark.parametrize(
+    ("loads", "said"),
+    [
+        ({"temperature": "warmth", "expansion": 1e-5}, "no array 'warmth'"),
+        ({"temperature": "T"}, "nothing depends on"),
+        ({"gravity": (0, 0, 1)}, "gravity without density"),
+        ({"density": 1.0, "rotation": 2.0}, "rotation without rotation axis"),
+        ({"face_polynomial": (1.0, 2.0)}, "face polynomial without depth direction"),
+        ({"temperature": "T", "elastic_table": [(0, 1.0, 0.7)]}, "nu = 0.7"),
+        ({"temperature": "T", "expansion": [(1, 1e-5), (0, 2e-5)]}, "rising temperature"),
+        ({"initial_stress": "traction"}, "has 3 components, expected 6 or 9"),
+    ],
+)
+def test_what_is_wrong_with_a_load_is_said(loads, said):
+    solid, _ = by_body_force(block("hexahedron20"))
+    with pytest.raises(front3d.errors.Front3DError, match=said):
+        front3d.evaluate(solid, young=YOUNG, poisson=POISSON, radii=RADII, hat=1.0, **loads)

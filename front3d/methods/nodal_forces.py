@@ -147,7 +147,10 @@ def cell_forces(
                 eshelby(stress, H, stress, H, energy, P)
                 T[:] = 0.0
                 if len(state):
-                    configurational(H, H, H, 0.5, here, slope, initial, T)
+                    for i in range(3):
+                        for j in range(3):
+                            raw[i, j] = 0.5 * (H[i, j] + H[j, i])
+                    configurational(raw, H, H, 0.5, here, slope, initial, T)
                 spread(
                     P, T, weights[g] * det, frame, local, values[g], gradients[g],
                     pull, out[c, step, 3],

@@ -137,7 +137,9 @@ def configurational(
     initial: FloatArray,
     T: FloatArray,
 ) -> None:
-    """Subtract strain : (sigma*_,k + part C_,k : eps) + b_i gradient_ik from T."""
+    """Subtract strain : (sigma*_,k + part C_,k : eps) + b_i gradient_ik from T; the strain is
+    symmetric.
+    """
     trace, own, both = 0.0, 0.0, 0.0
     for i in range(3):
         trace += displacement_gradient[i, i]
