@@ -15,7 +15,7 @@ from front3d.errors import MeshError
 from front3d.methods.context import FrontContext
 from front3d.methods.face_loads import gauss_load
 from front3d.methods.face_rules import PLAIN, graded_rule, touching_sides
-from front3d.methods.loading import nodal_state
+from front3d.methods.loading import free_extension, nodal_state
 from front3d.methods.nodal_forces import N_MODES, PRESSED, Rule, cell_forces, face_forces
 from front3d.methods.surfaces import SurfaceTerm
 from front3d.methods.terms import CURVATURE, FACE_LOAD, GRADIENT, included
@@ -33,16 +33,20 @@ class Assembly:
     """Sums forces, (steps, N_MODES, tube nodes, 3), of a front's tube.
 
     Nodes are numbered within the tube, and the best rigid motion that the symmetry planes allow is
-    taken off the displacements, so that K does not depend on it even through rounding and
-    quadrature.
+    taken off the displacements, and so is the mean thermal extension, so that K does not depend on
+    it even through rounding and quadrature.
     """
 
     def __init__(self, context: FrontContext, tube: Tube, symmetry_normals: FloatArray) -> None:
         self._context, self._solid, self._tube = context, context.solid, tube
         self._points = frozen_floats(context.solid.points[tube.nodes])
         moved = context.displacement[:, tube.nodes]
+        free = free_extension(context, tube.nodes)
         self._displacement = frozen_floats(
-            [_without_rigid_motion(self._points, u, symmetry_normals) for u in moved]
+            [
+                _without_rigid_motion(self._points, u - even * self._points, symmetry_normals)
+                for u, even in zip(moved, free, strict=True)
+            ]
         )
         self._on_front = on_front_mask(context.front, context.model.same)
         self._curve = context.front.curve.arrays
@@ -50,7 +54,7 @@ class Assembly:
         turn = 1.0 if included(CURVATURE) else 0.0
         gradient = 1.0 if included(GRADIENT) else 0.0
         self._constants = (material.shear_modulus, material.poisson, turn, gradient)
-        self._state = nodal_state(context, tube.nodes, tube.s)
+        self._state = nodal_state(context, tube.nodes, tube.s, free)
         self.forces = np.zeros((len(moved), N_MODES, len(tube.nodes), 3))
 
     def add_cells(self) -> None:

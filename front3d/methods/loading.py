@@ -15,24 +15,31 @@ from front3d.solid import Constants, LocalMaterial, Step
 _SYMMETRIC = ((0, 0), (1, 1), (2, 2), (0, 1), (1, 2), (0, 2))
 
 
-def nodal_state(context: FrontContext, nodes: IntArray, s: FloatArray) -> FloatArray:
+def nodal_state(
+    context: FrontContext, nodes: IntArray, s: FloatArray, free: FloatArray | None = None
+) -> FloatArray:
     """(steps, len(nodes), N_COLUMNS), see `state_kernels`; empty where nothing acts or varies.
 
-    `s` is the arc length of the front's point nearest to each node.
+    `s` is the arc length of the front's point nearest to each node; `free`, (steps,), an even
+    extension that the displacements were freed of, and that thermal strain is counted from.
     """
     loads = context.loads
     if not loads.in_volume:
         return frozen_floats(np.zeros((0, 0, N_COLUMNS)))
     force = body_force(context, nodes) if included(BODY_FORCE) else 0.0
     out = np.zeros((len(context.steps), len(nodes), N_COLUMNS))
-    for step, here in zip(context.steps, out, strict=True):
+    if free is None:
+        free = np.zeros(len(out))
+    for step, here, counted_from in zip(context.steps, out, free, strict=True):
         T = None
         if loads.temperature is not None:
             T = at_nodes(context.solid, step, loads.temperature, nodes, (1,))[:, 0]
         young, poisson = _elastic(context, T)
         here[:, LAME] = young * poisson / ((1.0 + poisson) * (1.0 - 2.0 * poisson))
         here[:, SHEAR] = young / (2.0 * (1.0 + poisson))
-        here[:, INITIAL:BODY] = _initial_stress(context, step, nodes, T, here)
+        here[:, INITIAL:BODY] = _initial_stress(
+            context, step, nodes, _thermal_strain(context, T) - counted_from, here
+        )
         here[:, BODY:RATIO] = force
         here[:, RATIO] = context.material.poisson
         if loads.elastic_table is not None:
@@ -96,8 +103,33 @@ def _look_up(context: FrontContext, table: tuple[Row, ...], column: int, T: Floa
     return np.interp(T, known, [row[column] for row in table])
 
 
+def free_extension(context: FrontContext, nodes: IntArray) -> FloatArray:
+    """(steps,) mean thermal strain at nodes.
+
+    A solid that extends evenly by it has no stress, and K does not depend on it: taken off the
+    displacements it does not do so through rounding and quadrature either.
+    """
+    out = np.zeros(len(context.displacement))
+    name = context.loads.temperature
+    if name is not None and context.loads.expansion is not None:
+        for k, step in enumerate(context.steps):
+            T = at_nodes(context.solid, step, name, nodes, (1,))[:, 0]
+            out[k] = np.mean(_thermal_strain(context, T))
+    return out
+
+
+def _thermal_strain(context: FrontContext, T: FloatArray | None) -> FloatArray:
+    loads = context.loads
+    if T is None or loads.expansion is None:
+        return np.zeros(())
+    rise = T - loads.reference_temperature
+    if isinstance(loads.expansion, float):
+        return loads.expansion * rise
+    return _look_up(context, loads.expansion, 1, T) * rise
+
+
 def _initial_stress(
-    context: FrontContext, step: Step, nodes: IntArray, T: FloatArray | None, state: FloatArray
+    context: FrontContext, step: Step, nodes: IntArray, thermal: FloatArray, state: FloatArray
 ) -> FloatArray:
     """(len(nodes), 6): given stress, less C : (thermal and given strain)."""
     loads, solid = context.loads, context.solid
@@ -107,13 +139,7 @@ def _initial_stress(
         stress += _six(at_nodes(solid, step, loads.initial_stress, nodes, (6, 9)))
     if loads.initial_strain is not None:
         strain += _six(at_nodes(solid, step, loads.initial_strain, nodes, (6, 9)))
-    if T is not None and loads.expansion is not None:
-        coefficient: FloatArray | float
-        if isinstance(loads.expansion, float):
-            coefficient = loads.expansion
-        else:
-            coefficient = _look_up(context, loads.expansion, 1, T)
-        strain[:, :3] += (coefficient * (T - loads.reference_temperature))[:, None]
+    strain[:, :3] += thermal[..., None]
     stress -= 2.0 * state[:, SHEAR, None] * strain
     stress[:, :3] -= (state[:, LAME] * strain[:, :3].sum(axis=1))[:, None]
     return stress

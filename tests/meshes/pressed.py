@@ -12,8 +12,10 @@ import numpy as np
 
 from front3d.elements import ELEMENTS
 from front3d.samples.cells import cracked_solid
-from front3d.samples.elasticity import boundary_faces, traction_load
+from front3d.samples.direct import direct_solver
+from front3d.samples.elasticity import _sum_blocks, boundary_faces, traction_load
 from front3d.samples.fineness import density
+from front3d.samples.mirror import load_classes, unfolded_field
 from front3d.samples.octant import octant
 from front3d.samples.sheet import Quarter
 from front3d.samples.solver import solve_unfolded
@@ -37,9 +39,8 @@ class Acting:
 
 def model(cells):
     shape = Quarter(1.0, 1.0, radius=0.25, width=BODY, depth=BODY, round=True)
-    return cracked_solid(
-        octant(shape, density(cells, 1, 1.0, closed=True), BODY), (0, 1), cells, ""
-    )
+    fine = density(cells, 1, 1.0, closed=True)
+    return cracked_solid(octant(shape, fine, BODY), (0, 1), cells, "cylinder")
 
 
 def solved(cells, acting: dict[str, Acting]) -> Solid:
@@ -85,3 +86,44 @@ def nodal_forces(solid, load):
             f -= np.einsum("cqij,cqnj,cq->cni", stress, gradient, volume)
         np.add.at(out, block.nodes, f)
     return out
+
+
+def graded(cells, young, poisson) -> Solid:
+    """The cylinder with constants that vary, functions of positions, under pressure on the faces.
+
+    The temperature T of the step is the distance from the axis.
+    """
+    unfolded = model(cells)
+    solid, part = unfolded.solid, unfolded.part
+    load = nodal_forces(solid, Acting(pressure=lambda x: 1.0 + 0 * x[:, 0]))
+    (group,) = load_classes(unfolded, load[None])
+    fixed = group.held.copy()
+    fixed[np.abs(part.points[:, 2]) > BODY * (1 - 1e-9), 2] = True
+    solve = direct_solver(_stiffness(part, young, poisson), fixed.ravel())
+    moved = solve(np.where(fixed, 0.0, group.loads[0]).ravel()).reshape(-1, 3)
+    u = unfolded_field(unfolded, group.parity, moved)
+    T = np.hypot(solid.points[:, 0], solid.points[:, 1])
+    return replace(solid, steps=(Step("pressure", u, 0.0, {"T": T}),))
+
+
+def _stiffness(solid, young, poisson):
+    """Int B^T C B with C at each Gauss point."""
+    n = len(solid.points)
+    keys, values = [], []
+    for block in solid.blocks:
+        xi, weights = ELEMENTS[block.kind].quadrature(3)
+        reference, shape = block.element.gradients(xi), block.element.values(xi)
+        for nodes in np.array_split(block.nodes, len(block.nodes) // 500 + 1):
+            x = solid.points[nodes]
+            jacobian = np.einsum("cni,qnd->cqid", x, reference)
+            gradient = np.matmul(reference[None], np.linalg.inv(jacobian))
+            at = np.einsum("qn,cni->cqi", shape, x)
+            E, nu = young(at), poisson(at)
+            volume = np.linalg.det(jacobian) * weights
+            lame, mu = volume * E * nu / ((1 + nu) * (1 - 2 * nu)), volume * E / (2 * (1 + nu))
+            first = np.einsum("cqai,cqbj,cq->cabij", gradient, gradient, lame, optimize=True)
+            shear = np.einsum("cqaj,cqbi,cq->cabij", gradient, gradient, mu, optimize=True)
+            even = np.einsum("cabii->cab", shear)[..., None, None] * np.eye(3)
+            keys.append((nodes[:, :, None] * n + nodes[:, None, :]).ravel())
+            values.append((first + shear + even).reshape(-1, 9))
+    return _sum_blocks(np.concatenate(keys), np.concatenate(values), n)
