@@ -26,15 +26,22 @@ __version__ = "0.1.0"
 
 def load(
     path: str | Path,
-    *,
-    displacement: str | None = None,
+    *more: str | Path,
+    displacement: str | Sequence[str] | None = None,
     arrays: Sequence[str] = (),
     displacement_file: str | Path | None = None,
 ) -> Solid:
-    """Read a finite-element result; see `front3d.reading.load`."""
-    from front3d.reading import load
+    """Read a finite-element result, or several of one mesh as its steps; see `front3d.reading.load`
+    and `front3d.reading.several.load_all`.
+    """
+    from front3d.reading.several import load_all
 
-    return load(path, displacement=displacement, arrays=arrays, displacement_file=displacement_file)
+    return load_all(
+        (path, *more),
+        displacement=displacement,
+        arrays=arrays,
+        displacement_file=displacement_file,
+    )
 
 
 def find_fronts(solid: Solid, **options: Any) -> CrackModel:

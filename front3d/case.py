@@ -1,8 +1,8 @@
 """The case file: an evaluation written down in TOML, so that it can be repeated.
 
 ```toml
-result = "bracket.vtu"          # relative to this file
-displacement = "U"              # where it is not found by its name
+result = "bracket.vtu"          # relative to this file; a list where steps stand in several files
+displacement = "U"              # where it is not found by its name; a list for several load cases
 displacement_file = "u.csv"     # a table of nodal displacements, relative to this file
 
 [material]
@@ -16,6 +16,7 @@ stress = "MPa"
 [options]
 crack_plane = "z=0"             # half model, where it is not found
 symmetry_planes = ["x=0"]       # on which fronts end, where they are not found
+expected_stress = 100.0         # K is checked against it, to a power of ten
 face_pressure = 0.0
 surface_pressure = 0.0          # where a front ends
 rings = [0.4, 0.6, 0.8]
@@ -24,6 +25,8 @@ up = [0, 0, 1]
 steps = ["tension"]
 methods = ["closure"]
 compare = ["penny:a=10,tension=100"]
+combine = ["both = 1.2*pressure + 0.8*thermal"]
+stations = [0, 0.5, 1]
 unopened = false
 
 [load]                          # what acts besides, all optional
@@ -57,6 +60,7 @@ from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field, fields, replace
 from difflib import get_close_matches
 from math import isfinite
+from os.path import relpath
 from pathlib import Path
 from typing import Any
 
@@ -71,7 +75,8 @@ class Case:
     """What a case file or the flags of a command say; None where they say nothing."""
 
     result: Path | None = None
-    displacement: str | None = None
+    more: tuple[Path, ...] | None = None  # further files with steps of the same mesh
+    displacement: str | tuple[str, ...] | None = None
     displacement_file: Path | None = None
     young: float | None = None
     poisson: float | None = None
@@ -79,6 +84,7 @@ class Case:
     stress: str | None = None
     crack_plane: Plane | None = None
     symmetry_planes: tuple[Plane, ...] | None = None
+    expected_stress: float | None = None
     face_pressure: float | None = None
     surface_pressure: float | None = None
     rings: tuple[float, ...] | None = None
@@ -87,6 +93,8 @@ class Case:
     steps: tuple[str, ...] | None = None
     methods: tuple[str, ...] | None = None
     compare: tuple[str, ...] | None = None
+    combine: tuple[str, ...] | None = None
+    stations: tuple[float, ...] | None = None
     unopened: bool | None = None
     face_array: str | None = None
     face_polynomial: tuple[float, ...] | None = None
@@ -122,6 +130,7 @@ class Case:
         return Options(
             crack_plane=self.crack_plane,
             symmetry_planes=self.symmetry_planes or (),
+            expected_stress=self.expected_stress,
             face_pressure=self.face_pressure or 0.0,
             surface_pressure=self.surface_pressure or 0.0,
             loads=self.loads,
@@ -132,6 +141,8 @@ class Case:
             unopened=bool(self.unopened),
             methods=self.methods,
             compare=self.compare or (),
+            combine=self.combine or (),
+            stations=self.stations,
         )
 
     @property
@@ -144,6 +155,11 @@ class Case:
     def own_constants(self) -> bool:
         """Whether a table or regions hold the elastic constants."""
         return bool(self.elastic_table or self.regions)
+
+    @property
+    def results(self) -> tuple[Path, ...]:
+        """All result files; empty where none is named."""
+        return () if self.result is None else (self.result, *(self.more or ()))
 
     @property
     def units(self) -> Units:
@@ -165,9 +181,12 @@ def read_case(path: Path) -> Case:
             f'{path.name}: found no result, expected a line such as result = "model.vtu" before '
             "the first section"
         )
-    for key in ("result", "displacement_file"):
-        if key in values:
-            values[key] = path.parent / values[key]
+    first, *more = (path.parent / name for name in _several(values["result"]))
+    values["result"] = first
+    if more:
+        values["more"] = tuple(more)
+    if "displacement_file" in values:
+        values["displacement_file"] = path.parent / values["displacement_file"]
     return Case(**values, source=path)
 
 
@@ -182,7 +201,10 @@ def as_toml(case: Case) -> str:
                 sections += ["", f"[{key}]", *filter(None, said)]
         else:
             value = getattr(case, key)
-            lines += filter(None, [_line(key, value.name if isinstance(value, Path) else value)])
+            if key == "result":
+                names = tuple(relpath(path, case.results[0].parent) for path in case.results)
+                value = names if case.more else next(iter(names), None)
+            lines += filter(None, [_line(key, value)])
     return "\n".join([*lines, *sections]) + "\n"
 
 
@@ -216,6 +238,15 @@ def _text(value: Any) -> str:
     if not isinstance(value, str) or not value:
         raise _WrongError('a text such as "name"')
     return value
+
+
+def _text_or_texts(value: Any) -> str | tuple[str, ...]:
+    what = 'a text such as "name", or a list of them'
+    return tuple(_list_of(_text, what)(value)) if isinstance(value, list) else _text(value)
+
+
+def _several(value: str | tuple[str, ...]) -> tuple[str, ...]:
+    return (value,) if isinstance(value, str) else value
 
 
 def _number(value: Any) -> float:
@@ -286,13 +317,14 @@ def _rows(value: Any) -> tuple[Row, ...]:
 
 
 _KEYS: Mapping[str, Any] = {
-    "result": _text,
-    "displacement": _text,
+    "result": _text_or_texts,
+    "displacement": _text_or_texts,
     "displacement_file": _text,
     "material": {"young": _number, "poisson": _number},
     "units": {"length": _text, "stress": _text},
     "options": {
         "crack_plane": _plane,
+        "expected_stress": _number,
         "symmetry_planes": _list_of(_plane, 'a list of planes such as ["x=0"]'),
         "face_pressure": _number,
         "surface_pressure": _number,
@@ -302,6 +334,8 @@ _KEYS: Mapping[str, Any] = {
         "steps": _list_of(_text, 'a list of step names such as ["step 1"]'),
         "methods": _list_of(_text, 'a list of method names such as ["closure"]'),
         "compare": _list_of(_text, 'a list of texts such as ["penny:a=10,tension=100"]'),
+        "combine": _list_of(_text, 'a list of texts such as ["both = 1.2*pressure + thermal"]'),
+        "stations": _list_of(_number, "a list of parts of the length such as [0, 0.5, 1]"),
         "unopened": _boolean,
     },
     "load": {

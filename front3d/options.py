@@ -4,6 +4,7 @@ from dataclasses import dataclass, field, fields
 from math import isfinite
 from typing import Any
 
+from front3d.combination import parse_all
 from front3d.errors import CaseError
 from front3d.loads import Loads, Vector
 
@@ -53,6 +54,7 @@ class Options:
     ----------
     crack_plane : symmetry plane that holds the crack, for a half model; None finds it by its
         displacements where there are no coincident faces
+    expected_stress : remote stress that K is checked against, to a power of ten; None does not
     symmetry_planes : planes on which fronts end by symmetry; others are found by displacements
     face_pressure : pressure on the crack faces, positive when it opens them
     surface_pressure : pressure on the surface on which a front ends, positive when it pushes
@@ -63,6 +65,10 @@ class Options:
     up : direction that decides which of the two faces is the upper one; None takes the dominant
         coordinate axis of the crack normal
     steps : names of the steps to evaluate; None takes all
+    combine : linear combinations of steps, each a further step, as front3d.combination reads them,
+        such as "both = 1.2*pressure + 0.8*thermal"
+    stations : places along a front, in parts of its length, whose K is put against the steps; None
+        takes its ends, its middle and where K is largest
     unopened : evaluate coincident faces that never part in any step, too
     methods : the methods beside the interaction integral, which is always applied; None takes all
         that apply
@@ -82,6 +88,9 @@ class Options:
     methods: tuple[str, ...] | None = None
     compare: tuple[str, ...] = ()
     symmetry_planes: tuple[Plane, ...] = ()
+    expected_stress: float | None = None
+    combine: tuple[str, ...] = ()
+    stations: tuple[float, ...] | None = None
 
     @classmethod
     def from_words(cls, **words: Any) -> "Options":
@@ -106,12 +115,21 @@ class Options:
             )
         if isinstance(radius := words.get("radii"), int | float):
             words["radii"] = (float(radius),)
-        for name in ("steps", "methods", "compare"):
+        if isinstance(place := words.get("stations"), int | float):
+            words["stations"] = (float(place),)
+        for name in ("steps", "methods", "compare", "combine"):
             if isinstance(words.get(name), str):
                 words[name] = (words[name],)
         return cls(**words)
 
     def __post_init__(self) -> None:
+        parse_all(tuple(self.combine))
+        if self.stations is not None and (
+            not self.stations or any(not 0.0 <= place <= 1.0 for place in self.stations)
+        ):
+            raise CaseError(
+                f"stations: found {self.stations}, expected parts of the front's length from 0 to 1"
+            )
         if self.radii is not None and (
             not self.radii or any(not (isfinite(r) and r > 0) for r in self.radii)
         ):
@@ -123,5 +141,12 @@ class Options:
                 raise CaseError(
                     f"{name.replace('_', ' ')}: found {value}, expected a number in the stress unit"
                 )
+        if self.expected_stress is not None and not (
+            isfinite(self.expected_stress) and self.expected_stress != 0
+        ):
+            raise CaseError(
+                f"expected stress: found {self.expected_stress:g}, expected the remote stress in "
+                "the stress unit"
+            )
         if self.up is not None and not any(self.up):
             raise CaseError("up: found a zero vector, expected a direction such as 0,0,1")

@@ -23,7 +23,15 @@ from front3d.results import (
     MethodResult,
     energy_release_rate,
 )
+from front3d.sanity.cells import cell_warnings
+from front3d.sanity.displacements import (
+    constant_warnings,
+    displacement_warnings,
+    refuse_coordinates,
+)
+from front3d.sanity.faces import face_warnings, stress_warnings
 from front3d.solid import Constants, Material, Solid, Step
+from front3d.steps import choose
 from front3d.units import Units
 
 Progress = Callable[[str, float], None]
@@ -56,12 +64,20 @@ def evaluate_solid(
     report = progress or _silent
     _check_methods(options)
     requests = tuple(parse(text) for text in options.compare)
-    steps = _chosen_steps(solid, options)
+    chosen = choose(solid, options.steps, options.combine)
+    steps = chosen.reported
+    timed = len({step.time for step in solid.steps}) > 1
+    refuse_coordinates(solid, steps)
     report("finding the crack", 0.0)
     model = find_cracks(solid, options)
+    if options.combine and options.loads.elastic_table:
+        raise CaseError(
+            "found combinations of steps with constants by temperature, expected one of them: K is "
+            "not linear in steps whose constants differ"
+        )
     reported = nominal(material, options.loads)
     published, unlike = compare_fronts(requests, steps, _shapes(model), reported.poisson)
-    displacement = np.stack([step.displacement for step in steps])
+    displacement = np.stack([step.displacement for step in chosen.computed])
     results: list[FrontResult] = []
     left_out: list[tuple[int, Front3DError]] = []
     number = 0
@@ -69,11 +85,13 @@ def evaluate_solid(
         for front in fronts:
             report(f"front {number + 1} of {model.n_fronts}", number / model.n_fronts)
             try:
-                own, loads = material_of_front(solid, model, front, material, options.loads, steps)
-                foreign = foreign_cells(solid, model, front, loads, steps[0])
+                own, loads = material_of_front(
+                    solid, model, front, material, options.loads, chosen.computed
+                )
+                foreign = foreign_cells(solid, model, front, loads, chosen.computed[0])
                 context = FrontContext(
-                    solid, model, patch, front, own, options, displacement, tuple(steps),
-                    loads, foreign,
+                    solid, model, patch, front, own, options, displacement, chosen.rows,
+                    chosen.computed, loads, foreign,
                 )  # fmt: skip
                 by_method, refused = _apply_methods(context)
                 constants = station_constants(context)
@@ -89,7 +107,15 @@ def evaluate_solid(
                 unmatched = unlike.get((step.name, number), ())
                 results.append(
                     _front_result(
-                        step, number, context, constants[index], methods, beside, refused, unmatched
+                        step,
+                        timed,
+                        number,
+                        context,
+                        constants[index],
+                        methods,
+                        beside,
+                        refused,
+                        unmatched,
                     )
                 )
             number += 1
@@ -97,26 +123,13 @@ def evaluate_solid(
         raise left_out[0][1]
     report("done", 1.0)
     warnings = _warnings(solid, model)
+    warnings += constant_warnings(reported, units) + displacement_warnings(solid, steps, model)
     warnings += tuple(f"front {front} was left out: {reason}" for front, reason in left_out)
     return Evaluation(solid.source, reported, units, tuple(results), asdict(options), warnings)
 
 
 def _silent(stage: str, fraction: float) -> None:
     """Progress nobody asked for."""
-
-
-def _chosen_steps(solid: Solid, options: Options) -> list[Step]:
-    if not solid.steps:
-        raise CaseError(f"{solid.source}: holds no displacements, expected at least one step")
-    if options.steps is None:
-        return list(solid.steps)
-    by_name = {step.name: step for step in solid.steps}
-    missing = [name for name in options.steps if name not in by_name]
-    if missing:
-        raise CaseError(
-            f"{solid.source}: found no step {missing[0]!r}; the file has {', '.join(by_name)}"
-        )
-    return [by_name[name] for name in options.steps]
 
 
 def _shapes(model: CrackModel) -> list[FrontShape]:
@@ -155,6 +168,7 @@ def _check_methods(options: Options) -> None:
 
 def _front_result(
     step: Step,
+    timed: bool,
     number: int,
     context: FrontContext,
     material: Constants,
@@ -166,6 +180,8 @@ def _front_result(
     front = context.front
     positions, frames, _ = front.curve.frames(front.corner_s)
     evidence = weigh(front, context.cells, methods, material)
+    said, noted = face_warnings(context.solid, context.patch, step.displacement)
+    said += stress_warnings(context, evidence.K)
     return FrontResult(
         step=step.name,
         front=number,
@@ -181,13 +197,20 @@ def _front_result(
         flags=station_flags(front, methods, evidence),
         methods=methods,
         sources=evidence.source,
-        warnings=(*unmatched, *front_warnings(front, methods, evidence, material)),
+        warnings=(
+            *unmatched,
+            *front_warnings(front, methods, evidence, material),
+            *said,
+            *cell_warnings(context.cells, front.half),
+        ),
         notes=(
             *context.model.notes,
             *(f"{m.method}: {m.variant}" for m in methods.values() if m.variant),
             *refused,
+            *noted,
         ),
         comparisons=published,
+        time=step.time if timed else float("nan"),
     )
 
 

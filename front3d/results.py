@@ -147,6 +147,7 @@ class FrontResult:
     notes : what the reader may want to know, nothing to worry about
     comparisons : published solutions asked for, at the same stations
     material : the constants along the front; None where they are those of the whole evaluation
+    time : of the step; NaN where the result has none, and for combinations of steps
     """
 
     step: str
@@ -166,6 +167,7 @@ class FrontResult:
     notes: tuple[str, ...] = ()
     comparisons: tuple[Comparison, ...] = ()
     material: Constants | None = None
+    time: float = float("nan")
 
     def __post_init__(self) -> None:
         _freeze(self, ("s", "positions", "frames", "K", "G"))

@@ -268,3 +268,25 @@ def test_what_is_wrong_with_a_load_is_said(loads, said):
     solid, _ = by_body_force(block("hexahedron20"))
     with pytest.raises(front3d.errors.Front3DError, match=said):
         front3d.evaluate(solid, young=YOUNG, poisson=POISSON, radii=RADII, hat=1.0, **loads)
+
+
+def test_a_combination_of_steps_combines_their_loads():
+    """Each step has its own temperatures and tractions; "cold" is all of them without a crack's
+    field, so 2 hot - cold has twice the K.
+    """
+    mesh = block("hexahedron20")
+    solid, loads = by_temperature(mesh)
+    hot = solid.steps[0]
+    u = hot.displacement - exact.near_tip(ELASTIC, K)(mesh.solid.points, mesh.side)
+    steps = (replace(hot, name="hot"), replace(hot, name="cold", displacement=u))
+    front = front3d.evaluate(
+        replace(solid, steps=steps), young=YOUNG, poisson=POISSON, radii=RADII, hat=1.0,
+        up=(0, 1, 0), face_array="traction", methods=("interaction",), steps="hot",
+        combine="both = 2*hot - cold", **loads,
+    ).fronts[1]  # fmt: skip
+    np.testing.assert_allclose(front.K[len(front) // 2], 2 * K, atol=0.008)
+    with pytest.raises(front3d.errors.CaseError, match="constants by temperature"):
+        front3d.evaluate(
+            replace(solid, steps=steps), temperature="T", elastic_table=[(0, 1.0, 0.3)],
+            combine="both = 2*hot - cold",
+        )  # fmt: skip

@@ -14,6 +14,7 @@ import pytest
 from front3d.output.charts import charts_of
 from front3d.output.charts.along import along_front
 from front3d.output.charts.mix import mode_mix
+from front3d.output.charts.stations import at_stations
 from front3d.output.charts.steps import over_steps
 from front3d.output.charts.style import mathtext, plain_text, png, svg
 from front3d.output.charts.through import through_thickness
@@ -109,6 +110,12 @@ def steps(*factors: float) -> list[FrontResult]:
     return [replace(SURFACE, step=f"step{x}", K=x * SURFACE.K) for x in factors]
 
 
+def in_time(*factors: float) -> list[FrontResult]:
+    """Steps with times, and a combination, which has none."""
+    timed = [replace(f, time=10.0 * k) for k, f in enumerate(steps(*factors))]
+    return [*timed, replace(SURFACE, step="sum", K=3 * SURFACE.K)]
+
+
 FIGURES: dict[str, Callable[[], Any]] = {
     "along": lambda: along_front(BUSY, MILLIMETRES),
     "no units": lambda: along_front(SURFACE, Units()),
@@ -122,6 +129,12 @@ FIGURES: dict[str, Callable[[], Any]] = {
     "mix": lambda: mode_mix(through_front(), MILLIMETRES, STEEL),
     "two steps": lambda: over_steps(steps(1, 0.5), MILLIMETRES),
     "seven steps": lambda: over_steps(steps(*np.linspace(1, 2, 7)), MILLIMETRES),
+    "load cases": lambda: at_stations(
+        [replace(f, step=f"a long name of load case {f.step}") for f in steps(1, 0.5, -0.3)],
+        [0, 7, 20, 40],
+        MILLIMETRES,
+    ),
+    "times": lambda: at_stations(in_time(1, 1.5, 0.2, 0.9), [0, 20], MILLIMETRES),
 }
 
 
@@ -189,7 +202,9 @@ def test_words_are_legible_inside_and_do_not_overlap(name: str) -> None:
             assert not box.padded(-1).overlaps(its_box.padded(-1)), (text, other)
 
 
-@pytest.mark.parametrize("name", some("along", "two steps", "seven steps", "through"))
+@pytest.mark.parametrize(
+    "name", some("along", "two steps", "seven steps", "load cases", "times", "through")
+)
 def test_legends_cover_no_panel(name: str) -> None:
     figure = drawn(name)
     (legend,) = figure.legends
@@ -324,6 +339,18 @@ def test_steps_are_a_family_from_light_to_dark() -> None:
 # --- files -----------------------------------------------------------------------------------
 
 
+def test_stations_stand_against_time_or_against_load_cases_without_order() -> None:
+    times, cases = drawn("times"), drawn("load cases")
+    (curve,) = (c for label, c in lines(times.axes[0]).items() if label.startswith("s/L 0.500"))
+    expected = [factor * SURFACE.K[20, 0] for factor in (1, 1.5, 0.2, 0.9)]
+    np.testing.assert_allclose(curve.get_xdata(), [0, 10, 20, 30])  # the combination is left out
+    np.testing.assert_allclose(curve.get_ydata(), expected)
+    assert any("combinations have no time: 1" in text.get_text() for text in times.texts)
+    for points in lines(cases.axes[0]).values():
+        assert points.get_linestyle() == "None"
+        assert len(points.get_xdata()) == 3
+
+
 def test_which_charts_an_evaluation_gets() -> None:
     alone = set(charts_of(evaluation_of(SURFACE)))
     assert alone == {"chart", "through_thickness", "mode_mix"}
@@ -347,6 +374,7 @@ def test_of_many_steps_the_worst_has_its_own_charts() -> None:
     found = charts_of(evaluation_of(*steps(1, 1.1, 1.2, 1.5, 1.4, 1.3, 1.2)))
     assert set(found) == {
         "steps",
+        "stations",
         *(f"{kind}_front0_step1.5" for kind in ("chart", "through_thickness", "mode_mix")),
     }
 

@@ -10,8 +10,13 @@ import numpy as np
 import pytest
 
 from front3d.output import rendering
-from front3d.output.scene import close_up, colour_scale, place_for_words, scene_png
-from front3d.output.view import best_view, skin
+from front3d.output.scene import best_view, close_up, colour_scale, colours, scene_png, skin
+from front3d.output.scene.camera import box_corners, pixels
+from front3d.output.scene.cutting import cut_to_box
+from front3d.output.scene.geometry import opened, opening_factor, tube
+from front3d.output.scene.labels import half_box, place_for_words
+from front3d.output.scene.quantity import QUANTITIES, values_of
+from front3d.output.scene.still import Look, scene_figure
 from front3d.results import FrontResult
 from tests.output_models import MILLIMETRES, cracked_block, elliptic_front
 
@@ -72,7 +77,8 @@ def test_scatter_does_not_fill_the_colour_scale() -> None:
     K[:, 0] = 100.0 + 0.1 * np.cos(np.arange(len(K)))
     scale = colour_scale((with_K(EMBEDDED, K),))
     assert scale.high - scale.low >= 10.0
-    assert scale.low < 99.9 < 100.1 < scale.high
+    assert scale.low < 99.9
+    assert scale.high == K[:, 0].max()  # the peak has the last colour
 
 
 def test_a_front_under_shear_shows_the_mode_that_counts() -> None:
@@ -85,12 +91,15 @@ def test_a_front_under_shear_shows_the_mode_that_counts() -> None:
 def test_words_stand_clear_of_the_front_and_inside_the_panel() -> None:
     angle = np.linspace(0, 2 * np.pi, 200)
     circle = np.stack([520 + 300 * np.cos(angle), 390 + 180 * np.sin(angle)], axis=1)
+    half = half_box("largest $K_I$\n386.8 MPa mm12\n12.23 MPa")
     for peak in circle[::10]:
-        x, y = place_for_words(peak, circle, lines=3)
-        # 3 lines of words of 13 points are about 300 x 150 pixels of the panel of 1040 x 780.
-        assert 150 <= x <= 890
-        assert 75 <= y <= 705
-        assert not ((np.abs(circle - (x, y)) < (150, 75)).all(axis=1)).any()
+        x, y = place_for_words(peak, circle, half)
+        assert half[0] - 1 <= x <= 1041 - half[0]
+        assert half[1] - 1 <= y <= 781 - half[1]
+        assert not (np.abs(circle - (x, y)) < half).all(axis=1).any()
+        # A second box for the same place keeps off the first.
+        other = place_for_words(peak, circle, half, taken=[(np.array((x, y)), half)])
+        assert (np.abs(np.array(other) - (x, y)) >= 2 * half).any()
 
 
 def test_without_a_graphics_library_a_sentence_says_what_to_install(
@@ -113,6 +122,91 @@ def test_importing_the_output_draws_nothing() -> None:
     code = "import sys, front3d.output.folder; print({'matplotlib', 'pyvista'} & set(sys.modules))"
     ran = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=True)
     assert ran.stdout.strip() == "set()"
+
+
+def test_the_faces_open_by_half_the_jump_each_and_the_front_stays() -> None:
+    # The block's upper points at z = 0 are moved by 1e-3 against the lower ones.
+    parts = skin(cracked_block(1.6, 1.2), (SURFACE,))
+    half = np.asarray(parts.crack.point_data["opening_0"])
+    moved = np.abs(half[:, 2]) > 1e-9
+    assert np.abs(half[moved, 2]) == pytest.approx(5e-4)
+    assert set(np.sign(half[moved, 2])) == {-1.0, 1.0}
+    assert np.abs(half[:, :2]).max() < 1e-12
+    # The outside goes with the mouth, and does not move far from it.
+    outside = np.asarray(parts.outside.point_data["opening_0"])
+    mouth = np.abs(outside[:, 2]) > 4.99e-4
+    assert mouth.any()
+    assert np.abs(np.asarray(parts.outside.points)[mouth][:, 2]).max() < 1e-9
+    assert np.abs(outside[np.abs(parts.outside.points[:, 2]) > 1.0]).max() == 0.0
+    assert opened(parts, 0, 200.0).crack.bounds[5] == pytest.approx(0.1, rel=1e-5)
+    assert opening_factor(1e-3, 4.0) == 200.0  # 1, 2, 5 times 10^n, 0.12 of the size at most
+    assert opening_factor(0.0, 4.0) == 0.0
+
+
+def test_a_box_cuts_a_surface_and_leaves_coincident_points_apart() -> None:
+    import pyvista as pv
+
+    sheet: Any = pv.Plane(i_size=4, j_size=4, i_resolution=5, j_resolution=3).triangulate()
+    sheet.point_data["value"] = np.stack([sheet.points[:, 0]] * 3, axis=1)
+    both = pv.merge([sheet, sheet], merge_points=False)
+    cut = cut_to_box(both, np.array([-0.7, -1.1, -1]), np.array([1.3, 0.9, 1]))
+    assert cut.area == pytest.approx(2 * 2.0 * 2.0)
+    assert cut.bounds[:4] == pytest.approx((-0.7, 1.3, -1.1, 0.9))
+    assert cut.point_data["value"][:, 0] == pytest.approx(cut.points[:, 0], abs=1e-6)
+    assert len(cut.split_bodies()) == 2
+
+
+@pytest.mark.parametrize("quantity", QUANTITIES)
+def test_the_largest_value_has_the_last_colour(quantity: str) -> None:
+    front = with_flags(SURFACE)
+    scale = colour_scale((front,), quantity)
+    drawn = tube(front, scale, 0.02)
+    values = values_of(front, quantity, scale.words)
+    end = 0.5 if scale.words else 0.0
+    assert scale.high == pytest.approx(values.max() + end)
+    assert drawn["value"].max() == pytest.approx(values.max())
+    assert drawn["value"].min() == pytest.approx(values.min())
+
+
+def test_the_colours_grow_darker_with_the_value() -> None:
+    # So that a grey print, and a reader who is blind to colours, sees the same order.
+    grey = colours()(np.linspace(0, 1, 50))[:, :3] @ (0.2126, 0.7152, 0.0722)
+    assert (np.diff(grey) < 0).all()
+
+
+def with_flags(front: FrontResult) -> FrontResult:
+    fields = {name: getattr(front, name) for name in front.__slots__}
+    flags = ("free surface", *[""] * (len(front) - 2), "free surface")
+    return FrontResult(**fields | {"flags": flags})
+
+
+@pytest.mark.slow
+@pytest.mark.parametrize("quantity", ["K_I", "psi", "flag"])
+def test_boxes_of_words_do_not_overlap_and_the_peak_is_dark(quantity: str) -> None:
+    look = Look(quantity, rings=True, ribbon=True)
+    block, front = cracked_block(1.6, 1.2), with_flags(SURFACE)
+    figure = scene_figure(block, (front,), MILLIMETRES, look)
+    figure.canvas.draw()
+    panel, *others = figure.axes
+    words = [text for text in panel.texts if text.get_bbox_patch() is not None]
+    assert len(words) == (0 if quantity == "flag" else 2)
+    boxes = [text.get_bbox_patch().get_window_extent() for text in words]
+    boxes += [axes.get_tightbbox() for axes in others] + [
+        t.get_window_extent() for t in figure.texts
+    ]
+    for i, box in enumerate(boxes):
+        assert figure.bbox.containsx(box.x0) and figure.bbox.containsx(box.x1)
+        assert figure.bbox.containsy(box.y0) and figure.bbox.containsy(box.y1)
+        assert not any(box.overlaps(other) for other in boxes[i + 1 :])
+    if quantity == "K_I":
+        # At the largest K the tube has the last colour, dark violet, as lit: blue over green.
+        image = panel.images[0].get_array()
+        positions = front.positions - front.positions.mean(axis=0)
+        low, high = close_up(positions, block.points - front.positions.mean(axis=0))
+        view = best_view(front, box_corners(low, high))
+        x, y = pixels(positions[len(front) // 2 - 3], view, (1040, 780)).astype(int)
+        dark = image[y - 4 : y + 5, x - 4 : x + 5].reshape(-1, 3).astype(int)
+        assert ((dark[:, 2] - dark[:, 1] > 40) & (dark.max(axis=1) < 170)).any()
 
 
 @pytest.mark.slow

@@ -6,7 +6,7 @@ from typing import TYPE_CHECKING
 
 from front3d.case import Case, as_toml
 from front3d.cli.command import Command
-from front3d.cli.flags import add_evaluation_flags, case_of
+from front3d.cli.flags import add_evaluation_flags, add_result, case_of
 from front3d.cli.progress import progress_bar
 from front3d.cli.words import describe_evaluation, describe_written
 from front3d.errors import CaseError
@@ -17,7 +17,7 @@ if TYPE_CHECKING:
 
 
 def add_flags(parser: argparse.ArgumentParser) -> None:
-    parser.add_argument("result", metavar="RESULT|CASE", help="result file, or TOML case file")
+    add_result(parser)
     add_evaluation_flags(parser)
     add_output_flags(parser)
 
@@ -69,7 +69,7 @@ def evaluate_case(case: Case, out: Path, *, pictures: bool) -> "tuple[Evaluation
     from front3d.output.files import results_folder
     from front3d.output.folder import write_results
     from front3d.pipeline import evaluate_solid
-    from front3d.reading import load
+    from front3d.reading.several import load_all
     from front3d.solid import Material
 
     if case.young is not None and case.poisson is not None:
@@ -77,14 +77,14 @@ def evaluate_case(case: Case, out: Path, *, pictures: bool) -> "tuple[Evaluation
     with results_folder(out), progress_bar() as progress:
         if progress is not None:
             progress(f"reading {case.result.name}", 0.0)
-        solid = load(
-            case.result,
+        solid = load_all(
+            case.results,
             displacement=case.displacement,
             arrays=case.loads.arrays,
             displacement_file=case.displacement_file,
         )
         evaluation = evaluate_solid(solid, material, case.options, case.units, progress)
-        inputs = [p for p in (case.result, case.displacement_file, case.source) if p]
+        inputs = [*case.results, *(p for p in (case.displacement_file, case.source) if p)]
         written = write_results(
             evaluation,
             solid,

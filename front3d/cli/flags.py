@@ -66,10 +66,23 @@ class _Compare(argparse.Action):
         setattr(namespace, self.dest, [*before, values])
 
 
+def add_result(parser: argparse.ArgumentParser) -> None:
+    """The files a command is about."""
+    parser.add_argument(
+        "result",
+        nargs="+",
+        metavar="RESULT|CASE",
+        help="result file, or several of one mesh, each a step or more; or a TOML case file",
+    )
+
+
 def add_crack_flags(parser: argparse.ArgumentParser) -> None:
     """What decides which crack is found."""
     parser.add_argument(
-        "--displacement", metavar="NAME", help="point array of the displacement, if not found"
+        "--displacement",
+        action="append",
+        metavar="NAME",
+        help="point array of the displacement, if not found (repeated: a load case for each)",
     )
     parser.add_argument(
         "--displacement-file",
@@ -132,6 +145,19 @@ def add_evaluation_flags(parser: argparse.ArgumentParser) -> None:
         help="evaluate this step only (may be repeated)",
     )
     parser.add_argument(
+        "--combine",
+        action="append",
+        metavar="TEXT",
+        help="a further step, as a sum of others, e.g. 'both = 1.2*pressure + 0.8*thermal' (may be "
+        "repeated)",
+    )
+    parser.add_argument(
+        "--stations",
+        type=numbers,
+        metavar="S1,S2,..",
+        help="places along the front, in parts of its length, whose K is put against the steps",
+    )
+    parser.add_argument(
         "--method",
         action="append",
         dest="methods",
@@ -146,6 +172,12 @@ def add_evaluation_flags(parser: argparse.ArgumentParser) -> None:
         metavar="SOLUTION:NAME=VALUE,..",
         help="put a published solution beside K, e.g. penny:a=10,tension=100 (may be repeated); "
         "--compare help lists the solutions with their arguments",
+    )
+    parser.add_argument(
+        "--expected-stress",
+        type=float,
+        metavar="S",
+        help="remote stress; says when K is a power of ten off what it would give",
     )
     parser.add_argument("--length-unit", dest="length", metavar="UNIT", help="e.g. mm")
     parser.add_argument("--stress-unit", dest="stress", metavar="UNIT", help="e.g. MPa")
@@ -185,15 +217,20 @@ def case_of(arguments: argparse.Namespace) -> Case:
         if name not in ("result", "source")
         and (value := getattr(arguments, name, None)) is not None
     }
-    for name in ("steps", "methods", "compare", "symmetry_planes"):
+    for name in ("steps", "methods", "compare", "combine", "symmetry_planes"):
         if name in said:
             said[name] = tuple(said[name])
+    if "displacement" in said:
+        first, *others = said["displacement"]
+        said["displacement"] = (first, *others) if others else first
     flags = Case(**said)
     try:
         _check(flags)
     except CaseError as error:
         arguments.parser.error(str(error))
-    path = Path(arguments.result)
+    path, *more = (Path(name) for name in arguments.result)
+    if more and any(p.suffix.lower() == ".toml" for p in (path, *more)):
+        arguments.parser.error("found a case file among several files, expected it alone")
     if path.suffix.lower() == ".toml":
         case = read_case(path).overridden_by(flags)
         try:
@@ -201,7 +238,7 @@ def case_of(arguments: argparse.Namespace) -> Case:
         except CaseError as error:
             raise CaseError(f"{path}: {error}") from None
         return case
-    return Case(result=path).overridden_by(flags)
+    return Case(result=path, more=tuple(more) or None).overridden_by(flags)
 
 
 def _check(case: Case) -> None:

@@ -6,7 +6,7 @@ from collections.abc import Mapping, Sequence
 from typing import TYPE_CHECKING
 
 from front3d.cli.command import Command
-from front3d.cli.flags import add_crack_flags, case_of
+from front3d.cli.flags import add_crack_flags, add_result, case_of
 from front3d.cli.words import table
 
 if TYPE_CHECKING:
@@ -14,7 +14,7 @@ if TYPE_CHECKING:
 
 
 def add_flags(parser: argparse.ArgumentParser) -> None:
-    parser.add_argument("result", metavar="RESULT|CASE", help="result file, or TOML case file")
+    add_result(parser)
     add_crack_flags(parser)
 
 
@@ -22,10 +22,10 @@ def run(arguments: argparse.Namespace) -> int:
     case = case_of(arguments)
     assert case.result is not None
     from front3d.crack import describe
-    from front3d.reading import load
+    from front3d.reading.several import load_all
 
-    solid = load(
-        case.result,
+    solid = load_all(
+        case.results,
         displacement=case.displacement,
         displacement_file=case.displacement_file,
         need_displacement=False,

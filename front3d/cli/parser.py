@@ -11,8 +11,9 @@ from front3d.cli.inspect import COMMAND as INSPECT
 from front3d.cli.report import COMMAND as REPORT
 from front3d.cli.sample import COMMAND as SAMPLE
 from front3d.cli.verify import COMMAND as VERIFY
+from front3d.cli.view import COMMAND as VIEW
 
-COMMANDS: tuple[Command, ...] = (DEMO, EVALUATE, INSPECT, REPORT, SAMPLE, VERIFY)
+COMMANDS: tuple[Command, ...] = (DEMO, EVALUATE, INSPECT, REPORT, SAMPLE, VERIFY, VIEW)
 
 _DESCRIPTION = (
     "Stress intensity factors K_I, K_II, K_III along the crack fronts of a finite-element result. "

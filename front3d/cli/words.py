@@ -92,11 +92,12 @@ def _describe_front(front: "FrontResult", evaluation: "Evaluation") -> list[str]
         )
     trust = agreement(front)
     said = []
-    if trust.rings is not None and trust.J_and_G is not None:
+    if trust.rings is not None:
         spread = max(trust.rings.values())
         if np.isfinite(spread):
             said.append(f"rings agree within {percent(spread)} of the largest K")
-        said.append(f"J and G within {percent(trust.J_and_G)} of the largest G")
+        if trust.J_and_G is not None:
+            said.append(f"J and G within {percent(trust.J_and_G)} of the largest G")
     methods = [f"{name} within {percent(value)}" for name, value in trust.methods.items()]
     if methods and "free surface" in front.ends:
         methods[-1] += " (away from free surfaces)"

@@ -13,6 +13,9 @@ from front3d.solid import Solid
 QUARTER = 0.375
 """A mid-side node nearer to the front than this part of its edge is a quarter-point."""
 
+QUARTERS, MIDDLES = (0.2, 0.3), (0.4, 0.6)
+"""Where quarter-points and middle nodes may stand: curved edges shift them a little."""
+
 
 @dataclass(frozen=True, slots=True)
 class FrontCells:
@@ -28,6 +31,11 @@ class FrontCells:
     smallest_angle : smallest angle between the straight sides of a face of these cells, degrees
     worst : the type and number (in its block) of the cell that has it
     turn : largest angle between neighbouring edges of the front, degrees
+    n_middles : number of mid-side nodes on edges that leave the front, counted cell by cell
+    astray : how many of them stand where the others do not: the others are all at about a quarter
+        or all at about the middle
+    astray_range : the smallest and the largest part of their edges at which these stand
+    off_chord : largest distance of a mid-side node from the straight line of its edge, in edges
     """
 
     kinds: tuple[str, ...]
@@ -38,6 +46,10 @@ class FrontCells:
     smallest_angle: float
     worst: tuple[str, int]
     turn: float
+    n_middles: int = 0
+    astray: int = 0
+    astray_range: tuple[float, float] = (0.0, 0.0)
+    off_chord: float = 0.0
 
 
 def cells_of_front(solid: Solid, front: Front, same: Coincidence) -> FrontCells:
@@ -46,6 +58,7 @@ def cells_of_front(solid: Solid, front: Front, same: Coincidence) -> FrontCells:
     kinds: set[str] = set()
     smallest, worst = 180.0, ("", -1)
     middles: list[FloatArray] = []
+    bows: list[FloatArray] = []
     ends = np.sort(same.entity[front.edges[:, :2]], axis=1)
     around = np.zeros(len(ends), np.int64)
     for block in solid.blocks:
@@ -58,19 +71,28 @@ def cells_of_front(solid: Solid, front: Front, same: Coincidence) -> FrontCells:
         k = int(np.argmin(angles))
         if angles[k] < smallest:
             smallest, worst = float(angles[k]), (block.kind, int(touching[k]))
-        middles.append(_middles(solid.points, nodes, block.element, on_front))
+        share, bow = _middles(solid, nodes, block.element, on_front)
+        middles.append(share)
+        bows.append(bow)
         around += _around(same.entity[nodes], block.element, ends)
     elements = [b.element for b in solid.blocks if b.kind in kinds]
-    parts = np.concatenate(middles)
+    parts, bow = np.concatenate(middles), np.concatenate(bows)
+    quarter_points = bool(len(parts)) and float(np.median(parts)) < QUARTER
+    low, high = QUARTERS if quarter_points else MIDDLES
+    astray = parts[(parts < low) | (parts > high)]
     return FrontCells(
         kinds=tuple(sorted(kinds)),
         structured={e.family for e in elements} <= {"hexahedron", "wedge"},
         quadratic=all(e.quadratic for e in elements),
-        quarter_points=bool(len(parts)) and float(np.median(parts)) < QUARTER,
+        quarter_points=quarter_points,
         fewest=int(around.min()),
         smallest_angle=smallest,
         worst=worst,
         turn=_turn(front, solid.points),
+        n_middles=len(parts),
+        astray=len(astray),
+        astray_range=(float(astray.min()), float(astray.max())) if len(astray) else (0.0, 0.0),
+        off_chord=float(bow.max(initial=0.0)),
     )
 
 
@@ -90,19 +112,25 @@ def _smallest_angles(points: FloatArray, nodes: IntArray, element: ElementType) 
 
 
 def _middles(
-    points: FloatArray, nodes: IntArray, element: ElementType, on_front: BoolArray
-) -> FloatArray:
-    """Where on the edges that leave the front their mid-side nodes stand, 0 at the front."""
+    solid: Solid, nodes: IntArray, element: ElementType, on_front: BoolArray
+) -> tuple[FloatArray, FloatArray]:
+    """Where on the edges that leave the front their mid-side nodes stand, 0 at the front; and how
+    far off the straight line of the edge, in edges.
+    """
+    points = solid.points
     if element.edges.shape[1] < 3:
-        return np.empty(0)
+        return np.empty(0), np.empty(0)
     first, second, middle = (nodes[:, element.edges[:, k]].ravel() for k in range(3))
     turned = on_front[second]
     first, second = np.where(turned, second, first), np.where(turned, first, second)
     leaving = on_front[first] & ~on_front[second]
     first, second, middle = first[leaving], second[leaving], middle[leaving]
-    length = np.linalg.norm(points[second] - points[first], axis=1)
-    share: FloatArray = np.linalg.norm(points[middle] - points[first], axis=1) / length
-    return share
+    edge, part = points[second] - points[first], points[middle] - points[first]
+    length = np.linalg.norm(edge, axis=1)
+    share: FloatArray = np.linalg.norm(part, axis=1) / length
+    off = np.linalg.norm(np.cross(edge, part), axis=1) / length
+    bow: FloatArray = np.maximum(off - 4.0 * solid.point_spacing, 0.0) / length
+    return share, bow
 
 
 def _around(entity: IntArray, element: ElementType, ends: IntArray) -> IntArray:

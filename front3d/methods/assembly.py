@@ -13,10 +13,10 @@ from front3d.crack.front import on_front_mask
 from front3d.elements import FACES, ElementType
 from front3d.errors import MeshError
 from front3d.methods.context import FrontContext
-from front3d.methods.face_loads import gauss_load
+from front3d.methods.face_loads import gauss_load, loaded_faces
 from front3d.methods.face_rules import PLAIN, graded_rule, touching_sides
 from front3d.methods.loading import free_extension, nodal_state
-from front3d.methods.nodal_forces import N_MODES, PRESSED, Rule, cell_forces, face_forces
+from front3d.methods.nodal_forces import BENT, N_MODES, PRESSED, Rule, cell_forces, face_forces
 from front3d.methods.surfaces import SurfaceTerm
 from front3d.methods.terms import CURVATURE, FACE_LOAD, GRADIENT, included
 from front3d.methods.tube import Tube
@@ -83,7 +83,7 @@ class Assembly:
         """Surface part of the faces of one term."""
         faces = term.faces
         how = np.full(len(faces), PLAIN)
-        if term.kind == PRESSED:
+        if term.kind in (PRESSED, BENT):
             how = touching_sides(faces, self._on_front)
         groups = np.stack([faces.block, faces.local, how], axis=1)
         for group in np.unique(groups, axis=0):
@@ -104,7 +104,9 @@ class Assembly:
         self, term: SurfaceTerm, block: int, local: int, cells: IntArray, values: FloatArray
     ) -> FloatArray:
         """(cells, 1 or steps, q, 4) pressure and traction on faces, or an empty array."""
-        if term.kind == PRESSED and included(FACE_LOAD):
+        if term.kind in (PRESSED, BENT):
+            if not (included(FACE_LOAD) and loaded_faces(self._context)):
+                return frozen_floats(np.zeros((0, 0, 0, 4)))
             return gauss_load(self._context, block, local, cells, values)
         if not term.pressure:
             return frozen_floats(np.zeros((0, 0, 0, 4)))

@@ -52,7 +52,8 @@ UNBALANCED = 0.05
 def evaluate(context: FrontContext) -> list[MethodResult]:
     """K of one front, one result per step; MethodError where no faces go on ahead."""
     ligament = find_ligament(context)
-    forces, imbalance = closing_forces(context, ligament)
+    # Combined before they are multiplied: the work is no sum of the work in the steps.
+    forces, imbalance = (context.combined(f) for f in closing_forces(context, ligament))
     columns = find_columns(context, ligament)
     front, options = context.front, context.options
     if options.hat is None:
@@ -61,7 +62,7 @@ def evaluate(context: FrontContext) -> list[MethodResult]:
     else:
         width = np.full(len(front.corners), options.hat)
     tents = build_tents(context, ligament, width)
-    jump = openings(context)
+    jump = context.combined(openings(context))
     about: tuple[str, ...] = ()
     if columns is not None:
         work, opening = _work_in_columns(context, ligament, columns, tents, forces, jump)

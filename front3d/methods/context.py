@@ -2,6 +2,8 @@
 
 from dataclasses import dataclass, field
 
+import numpy as np
+
 from front3d.arrays import BoolArray, FloatArray, frozen_floats
 from front3d.crack import CrackModel, Front, Patch
 from front3d.crack.cells import FrontCells, cells_of_front
@@ -19,8 +21,9 @@ class FrontContext:
     solid, model : the result, and the cracks found in it
     patch, front : the crack surface and the front on it
     material, options : elastic constants at the front, and the user's choices
-    displacement : (n_steps, n_points, 3) of the steps to evaluate
-    steps : the steps themselves, whose arrays loads refer to; by default all of the solid
+    displacement : (n_steps, n_points, 3) of the steps to compute
+    rows : (n_results, n_steps) factors by which results combine steps; None: a result per step
+    steps : the steps to compute, whose arrays loads refer to; by default all of the solid
     loads : those of the options, with what belongs to the front's own material; by default they
     foreign : per block, the cells of another material; by default there are none
     cells : what surrounds the front
@@ -33,6 +36,7 @@ class FrontContext:
     material: Material
     options: Options
     displacement: FloatArray
+    rows: FloatArray | None = None
     steps: tuple[Step, ...] = ()
     loads: Loads = field(default_factory=Loads)
     foreign: tuple[BoolArray, ...] = ()
@@ -46,3 +50,24 @@ class FrontContext:
         if self.loads == Loads():
             object.__setattr__(self, "loads", self.options.loads)
         object.__setattr__(self, "displacement", frozen_floats(self.displacement))
+
+    def combined(self, values: FloatArray) -> FloatArray:
+        """(n_results, ...) combinations of a quantity, (n_steps, ...), that is linear in the loads.
+
+        Everything linear is computed once per step and combined here, loads and all.
+        """
+        if self.rows is None:
+            return values
+        total: FloatArray = np.tensordot(self.rows, values, axes=1)
+        return total
+
+    def combined_squares(self, values: FloatArray) -> FloatArray:
+        """(n_results, ...) of a quantity, (n_steps, ...), that goes with the square of the loads:
+        NaN where steps are added, since it does not follow from theirs.
+        """
+        if self.rows is None:
+            return values
+        alone = (self.rows != 0.0).sum(axis=1) == 1
+        total: FloatArray = np.tensordot(self.rows**2, values, axes=1)
+        total[~alone] = np.nan
+        return total

@@ -52,21 +52,24 @@ def evaluate(context: FrontContext) -> list[MethodResult]:
         width = np.full(len(front.corners), options.hat)
     hats = build_hats(solid, front, width)
     integrals = _integrals(assembly.forces, tube, hats, reaches[0], radii)
-    value = integrals * np.stack([_factors(context, at) for at in station_constants(context)])
+    value = np.moveaxis(integrals, 1, 0)
     if front.half:  # the half that is not modelled gives the same again, and only mode I exists
         value *= 2.0
         value[:, :, 1:3] = 0.0
-    return [_result(value[:, step], radii, hats, (*notes, *more)) for step in range(value.shape[1])]
+    J = context.combined_squares(value[:, :, 3])
+    factors = np.stack([_factors(context, here) for here in station_constants(context)])
+    K = context.combined(value[:, :, :3]) * factors[:, None]
+    return [_result(*found, radii, hats, (*notes, *more)) for found in zip(K, J, strict=True)]
 
 
 def _factors(context: FrontContext, here: Constants) -> FloatArray:
-    """(modes, n_stations) K over integral: E'/2 and mu.
+    """(3, n_stations) K over integral: E'/2 and mu.
 
     The auxiliary displacements have one shear modulus all along the front, and so K too.
     """
     shear = context.material.shear_modulus
     half = np.broadcast_to(shear / (1.0 - here.poisson), (len(context.front.corners),))
-    return np.stack([half, half, np.full_like(half, shear), np.ones_like(half)])
+    return np.stack([half, half, np.full_like(half, shear)])
 
 
 def _integrals(
@@ -130,11 +133,10 @@ def _in_one_material(
 
 
 def _result(
-    value: FloatArray, radii: FloatArray, hats: Hats, notes: tuple[str, ...]
+    K: FloatArray, J: FloatArray, radii: FloatArray, hats: Hats, notes: tuple[str, ...]
 ) -> MethodResult:
-    """Result of one step from (rings, modes, stations)."""
-    K = np.moveaxis(value[:, :3], 1, 2)
-    J = value[:, 3]
+    """Result of one step from K, (rings, modes, stations), and J, (rings, stations)."""
+    K = np.moveaxis(K, 1, 2)
     rings = Rings(radii, K, J)
     if len(radii) < 2:
         notes = (*notes, "a single ring: nothing says how K depends on its radius")

@@ -49,9 +49,10 @@ def nodal_state(
 
 
 def station_constants(context: FrontContext) -> tuple[Constants, ...]:
-    """The constants along the front in each step."""
+    """The constants along the front in each result; by temperature no steps are combined."""
     if context.loads.elastic_table is None:
-        return (context.material,) * len(context.displacement)
+        count = len(context.displacement) if context.rows is None else len(context.rows)
+        return (context.material,) * count
     return tuple(local_material(context, step) for step in context.steps)
 
 

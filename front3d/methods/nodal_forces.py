@@ -51,9 +51,10 @@ N_MODES = 4
 Rule = tuple[FloatArray, FloatArray, FloatArray]
 """Shape functions (q, nodes), their reference gradients (q, nodes, 3), and weights (q,)."""
 
-OUTER, PRESSED, CUT = 0, 1, 2
+OUTER, PRESSED, CUT, BENT = 0, 1, 2, 3
 """What is known of a face: an outer surface under a given load or none; a crack face under a
-given load; or nothing, so that its traction is taken from the stresses."""
+given load; nothing, so that its traction is taken from the stresses; or a crack face that leaves
+the plane of the front's frame, under a given load or none."""
 
 
 @parallel_kernel
@@ -179,10 +180,10 @@ def face_forces(
     own shape functions at the face's Gauss points; tangents (q, 3, 2) is the derivative of the
     cell's reference coordinates along the face's own two.
     load, (n, 1 or steps, q, 4) or empty, is pressure and traction: t = traction - pressure n.
-    Where the traction is known, t_i u^aux_i,k is counted with it.  On an OUTER
-    face sigma^aux_ij n_j u_i,k - (sigma : eps^aux) n_k comes with it; on a PRESSED crack face
-    the auxiliary traction is zero but for what a ratio that varies brings, and q lies in the face.
-    On a CUT all of P_kj n_j counts.
+    Where the traction is known, t_i u^aux_i,k is counted with it.  On an OUTER face and a BENT one
+    sigma^aux_ij n_j u_i,k - (sigma : eps^aux) n_k comes with it; on a PRESSED crack face the
+    auxiliary traction is zero but for what a ratio that varies brings, and q lies in the face.  On
+    a CUT all of P_kj n_j counts.
     Fills out, (n, steps, N_MODES, nodes, 3).
     """
     shear, poisson, turn, weight = constants
@@ -246,7 +247,7 @@ def face_forces(
                             if kind == PRESSED and mode < 3:
                                 trace = aux_gradient[mode, 0, 0] + aux_gradient[mode, 1, 1]
                                 T[k] -= more * trace * area[i] * H[i, k]
-                    if kind != PRESSED:
+                    if kind != PRESSED and not (kind == BENT and mode == 3):
                         mutual = energy
                         if mode < 3:
                             mutual = product(aux_stress[mode], H)

@@ -64,12 +64,13 @@ def evaluate(context: FrontContext) -> list[MethodResult]:
     chosen = Pairs(pairs.s[near], d[near], pairs.other[near], pairs.jump[near])
     fit, count = _equations(context, chosen, cell, reach)
     variant = _variant(cell, reach)
+    # The fit is not linear in the opening, so openings are combined, not K.
+    jump = context.combined(np.moveaxis(chosen.jump, 1, 0))
     results = []
-    for k, here in enumerate(station_constants(context)):
+    for one, here in zip(jump, station_constants(context), strict=True):
         # Fitted with the constants of the first station, then each station with its own.
         first = _scale(here.at(0))
-        fitted = fit.solve(chosen.jump[:, k] * first)
-        results.append(_result(fitted, count, variant, _scale(here) / first))
+        results.append(_result(fit.solve(one * first), count, variant, _scale(here) / first))
     return results
 
 

@@ -12,13 +12,16 @@ from front3d.crack.patches import marked
 from front3d.methods.context import FrontContext
 from front3d.methods.face_loads import loaded_faces
 from front3d.methods.loading import varying_ratio
-from front3d.methods.nodal_forces import CUT, OUTER, PRESSED
-from front3d.methods.terms import FACE_LOAD, FREE_SURFACE, included
+from front3d.methods.nodal_forces import BENT, CUT, OUTER, PRESSED
+from front3d.methods.terms import BENT_FACES, FACE_LOAD, FREE_SURFACE, included
 from front3d.methods.tube import Tube
 
 _SAME_DIRECTION = 0.999
 """Cosine between normals above which a face lies in a symmetry plane."""
 
+
+_PLANE = 1e-4
+"""Distance from the plane of the frame, in ring radii, of faces that are bent."""
 
 _ENDS = 0.5
 """Cosine between a face's normal and the front above which the front ends on the face."""
@@ -81,8 +84,11 @@ def surroundings(context: FrontContext, tube: Tube) -> Surroundings:
         SurfaceTerm(rest[ends_here], OUTER, options.surface_pressure),
         SurfaceTerm(beside, CUT),
     ]
-    if (loaded_faces(context) and included(FACE_LOAD)) or varying_ratio(context.loads):
-        terms.append(SurfaceTerm(outer[is_crack], PRESSED))
+    crack, pressed = outer[is_crack], loaded_faces(context) and included(FACE_LOAD)
+    if _bent(context, tube, crack) and included(BENT_FACES):
+        terms.append(SurfaceTerm(crack, BENT))
+    elif pressed or varying_ratio(context.loads):
+        terms.append(SurfaceTerm(crack, PRESSED))
     if not included(FREE_SURFACE):
         terms = [term for term in terms if term.kind != OUTER]
     terms = [term for term in terms if len(term.faces)]
@@ -104,6 +110,20 @@ def _same_material(context: FrontContext, tube: Tube) -> float:
         return float("inf")
     nodes = np.unique(np.concatenate(foreign))
     return float(tube.r[np.searchsorted(tube.nodes, nodes)].min(initial=np.inf))
+
+
+def _bent(context: FrontContext, tube: Tube, crack: FaceTable) -> bool:
+    """Whether the crack faces leave the planes of the front's frames, as those of a cap do.
+
+    The auxiliary field is that of a plane crack: on bent faces its traction is not zero, and q is
+    not along them.  Both grow with the distance from the front as fast as the field falls, so they
+    add a part of K that is the ring's radius over the radius of the faces.
+    """
+    nodes = np.unique(crack.nodes)
+    rows = np.searchsorted(tube.nodes, nodes)
+    place, frame, _ = context.front.curve.frames(tube.s[rows])
+    off = np.einsum("nk,nk->n", context.solid.points[nodes] - place, frame[:, 1])
+    return bool((np.abs(off) > _PLANE * tube.r.max()).any())
 
 
 def _across_the_front(context: FrontContext, tube: Tube, faces: FaceTable) -> BoolArray:

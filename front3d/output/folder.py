@@ -6,10 +6,12 @@ from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from functools import cache
 from pathlib import Path
+from typing import Any
 
 from front3d.output.charts import KINDS, charts_of
 from front3d.output.charts.style import png, svg
 from front3d.output.files import file_names, prepare_folder, whole_set
+from front3d.output.history import steps_csv
 from front3d.output.rendering import why_no_pictures
 from front3d.output.scene import scene_png
 from front3d.output.skin import skin_vtp
@@ -17,6 +19,7 @@ from front3d.output.summary import summary_json
 from front3d.output.tables import front_vtp, points_csv
 from front3d.results import Evaluation
 from front3d.solid import Solid
+from front3d.steps import with_combinations
 
 Progress = Callable[[str, float], None]
 
@@ -53,9 +56,13 @@ def write_results(
         "points.csv": lambda: points_csv(evaluation),
         "front.vtp": lambda: front_vtp(evaluation),
     }
+    if len({front.step for front in evaluation.fronts}) > 1:
+        makers["steps.csv"] = lambda: steps_csv(evaluation)
     notes: list[str] = []
     if pictures and evaluation.fronts:
         makers |= _charts(evaluation)
+        combine: Any = evaluation.options.get("combine") or ()
+        solid = with_combinations(solid, combine)
         makers["skin.vtp"] = lambda: skin_vtp(solid, evaluation.fronts)
         reason = why_no_pictures()
         if reason is None:

@@ -143,6 +143,7 @@ def _front(about: Mapping[str, Any], rows: Rows, folder: Path) -> FrontResult:
             warnings=tuple(about["warnings"]),
             notes=tuple(about["notes"]),
             comparisons=tuple(_comparison(c, rows) for c in about.get("comparisons", ())),
+            time=float("nan") if about.get("time") is None else float(about["time"]),
         )
     except Front3DError as error:
         raise ReadError(f"{folder}: {error}") from error

@@ -1,12 +1,15 @@
-"""`skin.vtp`: the boundary of the solid around its cracks, for pictures that are made later."""
+"""`skin.vtp`: the boundary of the solid around its cracks, for pictures that are made later.
+
+Written with the results, so that a picture needs neither the result file nor the time to read it;
+the crack's opening in every step is part of it.
+"""
 
 from pathlib import Path
 from typing import Any
 
 import numpy as np
 
-from front3d.output.scene import Box, clipped, close_up
-from front3d.output.view import Skin, as_surface, skin
+from front3d.output.scene import Box, Skin, as_surface, clipped, close_up, skin
 from front3d.results import FrontResult
 from front3d.solid import Solid
 
@@ -29,6 +32,9 @@ def skin_vtp(solid: Solid, fronts: tuple[FrontResult, ...]) -> bytes:
     for number, surface in enumerate((parts.outside, parts.crack)):
         if surface.n_cells:
             piece = pv.PolyData(surface.points, surface.faces)
+            for name in surface.point_data:
+                if name.startswith("opening_"):
+                    piece.point_data[name] = surface.point_data[name]
             piece.cell_data[PART] = np.full(piece.n_cells, number, dtype=np.uint8)
             pieces.append(piece)
     writer = vtkXMLPolyDataWriter()

@@ -70,6 +70,7 @@ def front_summary(front: FrontResult, units: Units) -> dict[str, Any]:
     rings = rings_of(front)
     return {
         "step": front.step,
+        "time": front.time,
         "front": front.front,
         "stations": len(front),
         "closed": front.closed,

@@ -20,7 +20,7 @@ class Agreement:
     Attributes
     ----------
     rings : per mode the largest ring spread; None without rings
-    J_and_G : largest |J - G|; None without rings
+    J_and_G : largest |J - G|; None without rings, and for sums of steps, which have no J
     methods : per method, the largest difference of any mode from the reported K, over the stations
         where that method gives a value and no free surface is near; without such a station, and
         for the method that is reported everywhere, there is none
@@ -45,9 +45,10 @@ def agreement(front: FrontResult) -> Agreement:
     if rings is None:
         return Agreement(None, None, methods)
     spread = rings.spread
+    apart = _largest(rings.J[rings.compared].mean(axis=0) - front.G) / _largest(front.G)
     return Agreement(
         {mode: _largest(spread[:, k]) / scale for k, mode in enumerate(MODES)},
-        _largest(rings.J[rings.compared].mean(axis=0) - front.G) / _largest(front.G),
+        apart if np.isfinite(apart) else None,
         methods,
     )
 

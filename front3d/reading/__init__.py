@@ -25,7 +25,7 @@ __all__ = ["FORMATS", "load"]
 def load(
     path: str | os.PathLike[str],
     *,
-    displacement: str | None = None,
+    displacement: str | Sequence[str] | None = None,
     arrays: Sequence[str] = (),
     displacement_file: str | os.PathLike[str] | None = None,
     need_displacement: bool = True,
@@ -36,7 +36,8 @@ def load(
     ----------
     path : a file of one of the formats in `FORMATS`; the suffix names the format
     displacement : name of the point array that holds the displacement, or three names of scalars
-        separated by commas; None finds it by usual names
+        separated by commas; several such names for several load cases, each a step of that name;
+        None finds it by usual names
     arrays : names of further arrays, by point or by cell, to keep in the steps
     displacement_file : table of nodal displacements (see front3d.reading.nodal_csv) to take in
         place of those in the file
@@ -53,6 +54,14 @@ def load(
     """
     path = Path(path)
     form = identify(path)
+    if displacement is not None and not isinstance(displacement, str):
+        displacement = tuple(displacement) if len(displacement) > 1 else displacement[0]
+    in_table = displacement if isinstance(displacement, str) else None
+    if displacement_file is not None and isinstance(displacement, tuple):
+        raise ReadError(
+            f"{displacement_file}: found {len(displacement)} names of displacements, expected one; "
+            "several load cases in a table are told apart by its column step"
+        )
     finder = DisplacementFinder(displacement if displacement_file is None else None, tuple(arrays))
     try:
         raw = _read(path, form.reader, finder)
@@ -62,7 +71,7 @@ def load(
             if displacement_file is None:
                 named = finder.steps(need_displacement)
             else:
-                named = read_nodal_csv(Path(displacement_file), raw, displacement)
+                named = read_nodal_csv(Path(displacement_file), raw, in_table)
                 finder.notes = [f"displacements taken from {Path(displacement_file).name}"]
             kept = finder.kept(len(named))
             named = [

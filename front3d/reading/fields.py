@@ -72,7 +72,7 @@ class DisplacementFinder:
     no displacement may hold them: then they serve every frame that lacks them.
     """
 
-    wanted: str | None = None
+    wanted: str | tuple[str, ...] | None = None
     keep: tuple[str, ...] = ()
     notes: list[str] = field(default_factory=list)
     _found: list[_Found] = field(default_factory=list)
@@ -87,7 +87,7 @@ class DisplacementFinder:
         """
         arrays = {name: a for name, a in arrays.items() if a.dtype.kind in "fiu" and a.ndim >= 1}
         self._seen |= {name: _width(array) for name, array in arrays.items()}
-        taken = self._named(arrays) if self.wanted else self._usual(arrays)
+        taken = self._chosen(arrays)
         self._frames += 1
         self._without += not taken
         kept = Kept(_numbers(arrays, self.keep), _numbers(cells or {}, self.keep))
@@ -127,11 +127,13 @@ class DisplacementFinder:
             for name, found in zip(names, self._found, strict=True)
         ]
 
-    def _missing(self) -> str:
+    def _missing(self, names: tuple[str, ...] = ()) -> str:
         listing = ", ".join(
             f"{name} ({width} component{'s' * (width > 1)})" for name, width in self._seen.items()
         )
-        wanted = f"named {self.wanted!r}" if self.wanted else "of a usual name"
+        if self.wanted and not names:
+            names = (self.wanted,) if isinstance(self.wanted, str) else self.wanted
+        wanted = f"named {' or '.join(map(repr, names))}" if names else "of a usual name"
         return (
             f"no displacement {wanted}; found the point arrays: {listing or 'none'}; expected one "
             f"of three components on the points: {_HOW}"
@@ -140,8 +142,21 @@ class DisplacementFinder:
             "components; write the displacement on the nodes into the file"
         )
 
-    def _named(self, arrays: Arrays) -> dict[str, NDArray[Any]]:
-        wanted = self.wanted or ""
+    def _chosen(self, arrays: Arrays) -> dict[str, NDArray[Any]]:
+        """Displacements of one frame by load case."""
+        if not self.wanted:
+            return self._usual(arrays)
+        if isinstance(self.wanted, str):
+            return self._named(arrays, self.wanted)
+        found: dict[str, NDArray[Any]] = {}
+        for name in self.wanted:
+            here = self._named(arrays, name)
+            if not here:
+                raise ReadError(self._missing((name,)))
+            found |= {f"{name} {case}".strip(): values for case, values in here.items()}
+        return found
+
+    def _named(self, arrays: Arrays, wanted: str) -> dict[str, NDArray[Any]]:
         parts = [part.strip() for part in wanted.split(",")]
         if len(parts) == 3 and wanted not in arrays:
             scalars = [_pick(arrays, part) for part in parts]

@@ -8,16 +8,18 @@ import numpy as np
 
 from front3d.output.charts.along import along_front
 from front3d.output.charts.mix import mode_mix
-from front3d.output.charts.steps import over_steps, rows_of
+from front3d.output.charts.stations import at_stations
+from front3d.output.charts.steps import over_steps
 from front3d.output.charts.through import through_thickness
 from front3d.output.files import file_names
+from front3d.output.history import chosen_stations, places_asked, rows_of
 from front3d.output.shape import section_of
 from front3d.results import Evaluation, FrontResult
 
 if TYPE_CHECKING:
     from matplotlib.figure import Figure
 
-KINDS = ("chart", "through_thickness", "mode_mix", "steps")
+KINDS = ("chart", "through_thickness", "mode_mix", "steps", "stations")
 """How the files of each kind begin."""
 
 
@@ -49,6 +51,8 @@ def charts_of(evaluation: Evaluation) -> dict[str, Callable[[], "Figure"]]:
         if len(row) > 1:
             tail = "" if len(rows) == 1 else f"_front{number}"
             makers[f"steps{tail}"] = partial(over_steps, row, units)
+            stations = chosen_stations(row, places_asked(evaluation))
+            makers[f"stations{tail}"] = partial(at_stations, row, stations, units)
     return makers
 
 

@@ -92,11 +92,3 @@ def _name(number: int, fronts: Sequence[FrontResult]) -> str | None:
         return None
     name = plain_text(fronts[number].step, 24)
     return name if steps <= len(_FEW) else f"step {number + 1} of {steps}: {name}"
-
-
-def rows_of(fronts: Sequence[FrontResult]) -> dict[int, list[FrontResult]]:
-    """Results by front, steps in order."""
-    rows: dict[int, list[FrontResult]] = {}
-    for front in fronts:
-        rows.setdefault(front.front, []).append(front)
-    return rows

@@ -25,6 +25,7 @@ CAPTIONS = {
     "through_thickness": "The section of the crack, and K at the same depth.",
     "mode_mix": "How the modes mix: angles, directions of growth by published criteria, and G.",
     "steps": "The same front in all steps.",
+    "stations": "K at chosen stations, step by step.",
 }
 
 

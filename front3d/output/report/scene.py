@@ -14,9 +14,8 @@ from front3d.output.rendering import why_no_pictures
 from front3d.output.report.page import Markup, join, tag
 from front3d.output.report.words import NAMES, rooted
 from front3d.output.saved import Saved
-from front3d.output.scene import Scale, add_solid, colour_scale, colours
+from front3d.output.scene import Scale, add_solid, best_view, colour_scale, colours
 from front3d.output.skin import read_skin
-from front3d.output.view import best_view
 from front3d.results import FrontResult
 
 PACKAGE = "trame-pyvista"

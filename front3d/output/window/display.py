@@ -1,0 +1,37 @@
+"""Whether a window can be opened: asked in a process of its own, as the answer may be a crash."""
+
+import os
+import subprocess
+import sys
+
+_TRIAL = """
+import ctypes, sys
+library = ctypes.CDLL("libX11.so.6")
+library.XOpenDisplay.restype = ctypes.c_void_p
+sys.exit(0 if library.XOpenDisplay(None) else 1)
+"""
+
+
+def why_no_window() -> str | None:
+    """None when there is a display; else a sentence. A display that does not answer is forgotten,
+    so that pictures are drawn without one.
+    """
+    if not sys.platform.startswith("linux"):
+        return None
+    name = os.environ.get("DISPLAY")
+    if not name:
+        return "there is no display (DISPLAY is not set)"
+    try:
+        trial = subprocess.run(
+            [sys.executable, "-c", _TRIAL],
+            stdin=subprocess.DEVNULL,
+            capture_output=True,
+            timeout=30,
+            check=False,
+        )
+        if trial.returncode == 0:
+            return None
+    except (OSError, subprocess.TimeoutExpired):
+        pass
+    del os.environ["DISPLAY"]
+    return f"the display {name} does not answer"

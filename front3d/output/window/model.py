@@ -1,0 +1,106 @@
+"""What the scene in the window is made of, from the folder of an evaluation and a `Shown`."""
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from front3d.output.saved import Saved
+from front3d.output.scene.camera import View, best_view, box_corners
+from front3d.output.scene.drawing import Extras, Place
+from front3d.output.scene.geometry import (
+    Box,
+    clipped,
+    close_up,
+    moved,
+    opened,
+    opening_factor,
+    size_of,
+    widest_opening,
+)
+from front3d.output.scene.labels import Mark, words_of
+from front3d.output.scene.quantity import Scale, colour_scale, extremes
+from front3d.output.scene.still import RIBBON_WORDS, RING_WORDS, opening_words, title_words
+from front3d.output.scene.surface import Skin
+from front3d.output.skin import read_skin
+from front3d.output.window.state import Shown, fronts_of
+from front3d.results import Evaluation, FrontResult
+
+SKIN = "skin.vtp"
+ALONE = f"the front alone: this evaluation left no {SKIN} to draw the solid from"
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Model:
+    """The evaluation moved to the origin, and the solid's skin if there is one."""
+
+    evaluation: Evaluation
+    parts: Skin | None
+    box: Box
+
+    def view(self, shown: Shown, shape: float) -> View:
+        """Where the crack is looked at from, in a picture of width over height `shape`."""
+        fronts = fronts_of(self.evaluation, shown.step)
+        return best_view(fronts[0], box_corners(*self.box), shape)
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Drawn:
+    """What a `Shown` comes to: everything that the scene draws."""
+
+    fronts: tuple[FrontResult, ...]
+    parts: Skin | None
+    scale: Scale
+    extras: Extras
+    marks: tuple[Mark, ...]
+    arrows: tuple[Place, ...]
+    title: str
+    notes: tuple[str, ...]
+
+
+def model_of(saved: Saved) -> Model:
+    """Read the skin; graphics work in single precision, so all is moved to the origin."""
+    evaluation = saved.evaluation
+    positions = np.concatenate([front.positions for front in evaluation.fronts])
+    centre = positions.mean(axis=0)
+    fronts = moved(evaluation.fronts, -centre)
+    near = Evaluation(
+        evaluation.source, evaluation.material, evaluation.units, fronts, evaluation.options
+    )
+    if SKIN not in saved.files:
+        size = np.full(3, 0.3 * size_of(fronts))
+        low, high = (positions - centre).min(axis=0), (positions - centre).max(axis=0)
+        return Model(near, None, close_up(positions - centre, np.array([low - size, high + size])))
+    parts, box = read_skin(saved.folder / SKIN)
+    for surface in (parts.outside, parts.crack):
+        if surface.n_cells:
+            surface.points = np.asarray(surface.points, np.float64) - centre
+    box = (box[0] - centre, box[1] - centre)
+    return Model(near, clipped(parts, box), box)
+
+
+def drawn_of(model: Model, shown: Shown) -> Drawn:
+    evaluation = model.evaluation
+    fronts, units = fronts_of(evaluation, shown.step), evaluation.units
+    scale = colour_scale(fronts, shown.quantity)
+    picked = (shown.front, shown.station)
+    marks = [
+        Mark(picked, words_of("picked", fronts[shown.front], shown.station, scale, units), True)
+    ]
+    marks += [
+        Mark((number, i), words_of(word, fronts[number], i, scale, units, short=True))
+        for word, number, i in extremes(fronts, scale)
+        if (number, i) != picked
+    ]
+    parts, notes = model.parts, [ALONE]
+    if parts is not None:
+        widest = widest_opening(parts, shown.step)
+        # Steps on steps of the slider: a round number of times.
+        factor = opening_factor(widest, size_of(fronts)) * round(shown.opening, 2)
+        parts, notes = opened(parts, shown.step, factor), [opening_words(factor, widest)]
+    notes += [RIBBON_WORDS] if shown.ribbon else []
+    notes += [RING_WORDS] if shown.rings else []
+    extras = Extras((picked,) if shown.rings else (), (picked,), shown.ribbon)
+    return Drawn(
+        fronts, parts, scale, extras, tuple(marks), (picked,), title_words(fronts, scale),
+        tuple(notes),
+    )  # fmt: skip

@@ -1,0 +1,1 @@
+"""Checks of what physics and good practice expect of a model, said with numbers."""
