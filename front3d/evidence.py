@@ -15,6 +15,7 @@ import numpy as np
 from front3d.arrays import BoolArray, FloatArray
 from front3d.crack.cells import FrontCells
 from front3d.crack.front import FREE_SURFACE, Front
+from front3d.methods.closure import UNBALANCED
 from front3d.results import MethodResult, energy_release_rate, free_surface_layer
 from front3d.solid import Constants
 
@@ -41,6 +42,9 @@ _JUSTIFIED = {  # structured, quadratic, quarter-points: percent for closure, op
 From what was measured on models with known K and a usual fineness (tables in README.md), rounded
 up; on linear tetrahedra no method is accurate.
 """
+
+NEARER = 0.25
+"""Gap of two methods over the gap to the third one, below which the third is the odd one out."""
 
 MAX_TURN = 20.0
 """Turn of the front from edge to edge, degrees, above which a mesh is called coarse: the opening
@@ -72,10 +76,10 @@ def weigh(
     front: Front, cells: FrontCells, methods: Mapping[str, MethodResult], material: Constants
 ) -> Evidence:
     """Compare the methods along one front in one step."""
-    reported = methods[REPORTED]
-    largest = float(np.nanmax(np.abs(reported.K)))
-    restless = reported.columns["ring_spread"] > RING_TOLERANCE * largest
+    own = methods[REPORTED]
+    restless = own.columns["ring_spread"] > RING_TOLERANCE * float(np.nanmax(np.abs(own.K)))
     K, source = _reported(front, methods, restless, material)
+    largest = float(np.abs(K).max())
     layer = free_surface_layer(front.corner_s, front.length, front.ends)
     gaps = {
         pair: np.nanmax(
@@ -96,9 +100,9 @@ def weigh(
         worst = float(gaps[REPORTED, name][far].max()) / largest
         others = {pair: float(gap[far].max()) / largest for pair, gap in gaps.items()}
         warnings.append(
-            f"{name} and interaction differ by up to {100 * worst:.1f} % of the largest K at "
-            f"{int(far.sum())} of {len(K)} stations, more than the {100 * allowed:.0f} % that "
-            f"{' and '.join(cells.kinds)} cells at the front justify: "
+            f"{name} and interaction differ by up to {100 * worst:.2g} % of the largest K at "
+            f"{int(far.sum())} of {len(K)} stations, where {' and '.join(cells.kinds)} cells at "
+            f"the front justify {100 * allowed:.0f} %: "
             + _verdict(name, others, cells, methods, restless[far], material)
         )
     return Evidence(K, source, apart, tuple(warnings))
@@ -146,27 +150,51 @@ def _verdict(
         REPORTED: _against_interaction(methods[REPORTED], restless, material),
         name: _against_further(name, cells),
     }
-    third = [m for m in methods if m not in (REPORTED, name)]
+    third = next((m for m in methods if m not in (REPORTED, name)), None)
+    cause = _cause(methods)
     suspect = ""
-    if third:
-        with_reported = others.get((REPORTED, third[0]), np.inf)
-        with_name = min(others.get(p, np.inf) for p in ((name, third[0]), (third[0], name)))
-        limit = 0.5 * max(with_reported, with_name)
-        if with_reported < limit:
-            suspect, why = name, [f"{third[0]} agrees with interaction", *against[name]]
-        elif with_name < limit:
-            suspect, why = REPORTED, [f"{third[0]} agrees with {name}", *against[REPORTED]]
-    if not suspect and bool(against[REPORTED]) != bool(against[name]):
+    if third is not None:
+        limit = justified(cells, third)
+        apart = others.get((REPORTED, third), np.inf)
+        between = min(others.get(pair, np.inf) for pair in ((name, third), (third, name)))
+        to_reported = _nearness(apart, limit, between)
+        to_name = _nearness(between, max(limit, justified(cells, name)), apart)
+        if to_reported and not to_name:
+            suspect, why = name, [f"{third} {to_reported} interaction", *against[name]]
+        elif to_name and not to_reported:
+            suspect, why = REPORTED, [f"{third} {to_name} {name}", *against[REPORTED]]
+            cause = cause or "as with a load on the crack faces not given, or of another sign"
+    elif bool(against[REPORTED]) != bool(against[name]):
         suspect = REPORTED if against[REPORTED] else name
         why = against[suspect]
     if suspect:
-        return f"{suspect} is more likely wrong ({'; '.join(why)})"
-    reasons = [*against[REPORTED], *against[name]]
+        return f"{suspect} is more likely wrong ({'; '.join([*why, *filter(None, [cause])])})"
+    reasons = [*against[REPORTED], *against[name], *filter(None, [cause])]
     if reasons:
         return f"none is cleared ({'; '.join(reasons)})"
     return (
         "no figure tells which is wrong; a load on the crack faces, a body force or a thermal "
         "strain that was not given moves them apart, too"
+    )
+
+
+def _nearness(gap: float, limit: float, other: float) -> str:
+    """How near two methods are, `other` being the gap of one of them to the remaining method."""
+    if gap <= limit:
+        return "agrees with"
+    return "is much nearer to" if gap < NEARER * other else ""
+
+
+def _cause(methods: Mapping[str, MethodResult]) -> str:
+    """What puts all methods in doubt: the stresses are not in balance with the displacements."""
+    if "closure" not in methods or "closure_unbalance" not in methods["closure"].columns:
+        return ""
+    left = float(methods["closure"].columns["closure_unbalance"].max())
+    if not left > UNBALANCED:
+        return ""
+    return (
+        f"the forces on the two sides of the front leave {100 * left:.0f} % unbalanced, as with a "
+        "wrong Poisson's ratio, or a body force or thermal strain that was not given"
     )
 
 

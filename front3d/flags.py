@@ -43,8 +43,7 @@ def front_warnings(
 
     A wrong Young's modulus cannot be seen: it scales K and leaves J equal to G.
     """
-    interaction = methods[REPORTED]
-    K = interaction.K
+    interaction, K = methods[REPORTED], evidence.K
     warnings = [note for method in methods.values() for note in method.notes]
     warnings += evidence.warnings
     largest = float(np.abs(K).max())
@@ -58,19 +57,20 @@ def front_warnings(
     if not front.closed:
         inside[[0, -1]] = False
     G = energy_release_rate(K, material)
-    J = interaction.columns["J_interaction"]
-    apart = np.abs(J - G)[inside] > J_TOLERANCE * G.max()
-    if apart.any():
-        worst = float(np.abs(J - G)[inside].max() / G.max())
+    own = inside & (np.array(evidence.source) == REPORTED)  # J is of the integral's own domain
+    apart = np.where(own, np.abs(interaction.columns["J_interaction"] - G), 0.0)
+    if (apart > J_TOLERANCE * G.max()).any():
         warnings.append(
-            f"J and G from K differ by up to {100 * worst:.1f} % of the largest G at "
-            f"{int(apart.sum())} stations: Poisson's ratio may not be that of the analysis, or "
-            "the mesh is too coarse around the front"
+            f"J and G from K differ by up to {100 * apart.max() / G.max():.2g} % of the largest G "
+            f"at {int((apart > J_TOLERANCE * G.max()).sum())} stations: Poisson's ratio may not be "
+            "that of the analysis, a load may be missing, or the mesh is too coarse around the "
+            "front"
         )
     spread = interaction.columns["ring_spread"]
     if largest > 0 and float(spread[inside].max(initial=0.0)) > RING_TOLERANCE * largest:
         warnings.append(
-            f"K differs between rings by up to {100 * float(spread[inside].max()) / largest:.1f} "
-            "% of the largest K: refine the mesh around the front or choose other radii"
+            f"K differs between rings by up to {100 * float(spread[inside].max()) / largest:.2g} "
+            "% of the largest K: a load may be missing (on the crack faces, on a surface, in the "
+            "body), or the mesh around the front or the radii do not suit"
         )
     return tuple(warnings)

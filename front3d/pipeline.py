@@ -103,6 +103,7 @@ def evaluate_solid(
                 continue
             for index, step in enumerate(steps):
                 methods = {name: found[index] for name, found in by_method.items()}
+                _require_finite(step, number, methods[REPORTED])
                 beside = published.get((step.name, number), ())
                 unmatched = unlike.get((step.name, number), ())
                 results.append(
@@ -158,6 +159,16 @@ def _apply_methods(context: FrontContext) -> tuple[dict[str, list[MethodResult]]
         except (MethodError, MeshError) as reason:
             refused.append(f"{name} does not apply: {reason}")
     return by_method, tuple(refused)
+
+
+def _require_finite(step: Step, number: int, result: MethodResult) -> None:
+    """No comparison of K notices what is not a number."""
+    bad = np.flatnonzero(~np.isfinite(result.K).all(axis=1))
+    if len(bad):
+        raise MethodError(
+            f"step {step.name}, front {number}: K is not finite at {len(bad)} of {len(result.K)} "
+            "stations; the displacements or the coordinates at the front are not those of a result"
+        )
 
 
 def _check_methods(options: Options) -> None:

@@ -227,18 +227,19 @@ def energy_release_rate(K: FloatArray, material: Constants) -> FloatArray:
 def free_surface_layer(s: FloatArray, length: float, ends: tuple[str, ...]) -> BoolArray:
     """(n,) the stations at which a free surface, where no K exists, is felt.
 
-    Within three stations or 5 % of the front's length of such an end: common practice, and where
-    the methods were seen to part.
+    Within three stations (a quarter of a short front) or 5 % of the front's length of such an end:
+    common practice, and where the methods were seen to part.
 
     Parameters
     ----------
     s : (n,) arc lengths of the stations; length : of the front; ends : what its ends lie on
     """
     number = np.arange(len(s))
+    few = min(3, max(1, len(s) // 4))
     layer = np.zeros(len(s), bool)
     for end, stations, distance in zip(ends, (number, number[::-1]), (s, length - s), strict=False):
         if end == FREE_SURFACE:
-            layer |= (distance < 0.05 * length) | (stations < 3)
+            layer |= (distance < 0.05 * length) | (stations < few)
     return layer
 
 

@@ -75,11 +75,30 @@ def test_at_a_free_surface_the_interaction_integral_stays():
 
 def test_the_odd_one_out_is_suspected():
     (said,) = judge(closure=1.2 * TRUE, opening=TRUE).warnings
-    assert "closure and interaction differ by up to 20.0 %" in said and "20 of 20" in said
+    assert "closure and interaction differ by up to 20 %" in said and "20 of 20" in said
     assert "closure is more likely wrong (opening agrees with interaction" in said
     both = judge(first=interaction(1.2 * TRUE), closure=TRUE, opening=TRUE)
     assert len(both.warnings) == 2 and both.apart.all()
     assert all("interaction is more likely wrong" in said for said in both.warnings)
+
+
+def test_methods_agree_in_a_verdict_as_they_do_in_a_warning():
+    """Where all three are apart by more than the cells justify, none is said to agree."""
+    found = judge(closure=1.8 * TRUE, opening=0.8 * TRUE)
+    assert len(found.warnings) == 2
+    assert not any("agrees" in said for said in found.warnings)
+
+
+def test_forces_out_of_balance_point_at_the_material_and_a_load_apart_at_the_faces():
+    methods = {
+        "interaction": interaction(),
+        "closure": MethodResult("closure", 1.8 * TRUE, {"closure_unbalance": np.full(N, 0.3)}),
+        "opening": MethodResult("opening", 0.8 * TRUE),
+    }
+    for said in weigh(CLOSED, GOOD, methods, STEEL).warnings:
+        assert "30 % unbalanced, as with a wrong Poisson's ratio" in said
+    for said in judge(first=interaction(1.2 * TRUE), closure=TRUE, opening=TRUE).warnings:
+        assert "a load on the crack faces not given" in said
 
 
 @pytest.mark.parametrize(
@@ -113,12 +132,14 @@ def test_coarser_elements_justify_larger_differences():
 
 
 def test_the_free_surface_layer_is_three_stations_or_a_twentieth_of_the_front():
-    s = np.linspace(0.0, 1.0, 11)
+    s = np.linspace(0.0, 1.0, 13)
     ends = ("free surface", "symmetry plane")
     np.testing.assert_array_equal(np.flatnonzero(free_surface_layer(s, 1.0, ends)), [0, 1, 2])
     s = np.linspace(0.0, 1.0, 103)
     assert np.flatnonzero(free_surface_layer(s, 1.0, ends[::-1])).tolist() == list(range(97, 103))
     assert not free_surface_layer(s, 1.0, ()).any()
+    short = free_surface_layer(np.linspace(0.0, 1.0, 5), 1.0, ("free surface",) * 2)
+    assert short.tolist() == [True, False, False, False, True]
 
 
 def test_a_ring_with_the_wrong_load_is_warned_of():

@@ -118,6 +118,15 @@ def in_time(*factors: float) -> list[FrontResult]:
 
 FIGURES: dict[str, Callable[[], Any]] = {
     "along": lambda: along_front(BUSY, MILLIMETRES),
+    "long source": lambda: along_front(
+        replace(
+            BUSY,
+            comparisons=(
+                replace(BUSY.comparisons[0], source="Newman and Raju (1984, 1986), from memory"),
+            ),
+        ),
+        MILLIMETRES,
+    ),
     "no units": lambda: along_front(SURFACE, Units()),
     "closed": lambda: along_front(elliptic_front(1.5, 1.0, closed=True), MILLIMETRES),
     "corner": lambda: through(BUSY),
@@ -203,7 +212,8 @@ def test_words_are_legible_inside_and_do_not_overlap(name: str) -> None:
 
 
 @pytest.mark.parametrize(
-    "name", some("along", "two steps", "seven steps", "load cases", "times", "through")
+    "name",
+    some("along", "two steps", "seven steps", "load cases", "times", "through", "long source"),
 )
 def test_legends_cover_no_panel(name: str) -> None:
     figure = drawn(name)

@@ -382,6 +382,14 @@ def test_numbers_that_are_not_finite_name_the_node(tmp_path, refuse, bad, what):
     refuse(tmp_path / "a.vtu", f"node {node} ", what, "finite")
 
 
+def test_absurd_displacements(tmp_path, refuse):
+    points, nodes = cells("tetra10")
+    u = displacement(points)
+    u[nodes[0, 1]] = 1e200
+    grid(points, {"tetra10": nodes}, u=u).save(tmp_path / "a.vtu")
+    refuse(tmp_path / "a.vtu", f"node {nodes[0, 1]} has the displacement", "damaged")
+
+
 def test_node_data_for_some_nodes_only(tmp_path, refuse):
     """An MSH file whose node data skip a node that a solid cell uses."""
     points, nodes = cells("tetra", 1)

@@ -84,7 +84,7 @@ def evaluate_case(case: Case, out: Path, *, pictures: bool) -> "tuple[Evaluation
             displacement_file=case.displacement_file,
         )
         evaluation = evaluate_solid(solid, material, case.options, case.units, progress)
-        inputs = [*case.results, *(p for p in (case.displacement_file, case.source) if p)]
+        inputs = [p for p in (*case.results, case.displacement_file, case.source) if p]
         written = write_results(
             evaluation,
             solid,

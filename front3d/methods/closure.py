@@ -77,7 +77,11 @@ def evaluate(context: FrontContext) -> list[MethodResult]:
     variant = variant_name(context, ligament, columns)
     return [
         MethodResult(
-            "closure", K[step], variant=variant, notes=_notes(about, G[step], uneven[step])
+            "closure",
+            K[step],
+            {"closure_unbalance": np.full(len(K[step]), uneven[step])},
+            variant=variant,
+            notes=_notes(about, G[step], uneven[step]),
         )
         for step in range(len(K))
     ]
@@ -200,7 +204,8 @@ def _notes(about: tuple[str, ...], G: FloatArray, uneven: float) -> tuple[str, .
     if uneven > UNBALANCED:
         notes.append(
             f"closure: the cells above and below the front leave {100 * uneven:.0f} % of the "
-            "closing force unbalanced: body force, or a result computed by another rule of "
-            "integration; it is shared between them by volume"
+            "closing force unbalanced, as with a Poisson's ratio other than that of the analysis, "
+            "a body force or thermal strain that was not given, or another rule of integration; "
+            "it is shared between them by volume"
         )
     return tuple(notes)

@@ -5,6 +5,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from front3d.arrays import FloatArray
+from front3d.evidence import REPORTED
 from front3d.results import MODES, FrontResult, Rings, free_surface_layer
 
 
@@ -20,10 +21,11 @@ class Agreement:
     Attributes
     ----------
     rings : per mode the largest ring spread; None without rings
-    J_and_G : largest |J - G|; None without rings, and for sums of steps, which have no J
+    J_and_G : largest |J - G| where K is the integral's; None where it never is, and for sums of
+        steps, which have no J
     methods : per method, the largest difference of any mode from the reported K, over the stations
-        where that method gives a value and no free surface is near; without such a station, and
-        for the method that is reported everywhere, there is none
+        where K comes from another one, this one gives a value, and no free surface is near;
+        without such a station there is none
     """
 
     rings: dict[str, float] | None
@@ -36,16 +38,18 @@ def agreement(front: FrontResult) -> Agreement:
     scale = _largest(front.K)
     rings = rings_of(front)
     inside = ~free_surface_layer(front.s, front.length, front.ends)
+    sources = np.array(front.sources)
     differences = {
-        name: _largest((result.K - front.K)[inside]) / scale
+        name: _largest((result.K - front.K)[inside & (sources != name)]) / scale
         for name, result in front.methods.items()
-        if set(front.sources) != {name}
     }
     methods = {name: value for name, value in differences.items() if np.isfinite(value)}
     if rings is None:
         return Agreement(None, None, methods)
     spread = rings.spread
-    apart = _largest(rings.J[rings.compared].mean(axis=0) - front.G) / _largest(front.G)
+    own = sources == REPORTED  # J belongs to the domain of the integral
+    J = rings.J[rings.compared].mean(axis=0)
+    apart = _largest((J - front.G)[own]) / _largest(front.G)
     return Agreement(
         {mode: _largest(spread[:, k]) / scale for k, mode in enumerate(MODES)},
         apart if np.isfinite(apart) else None,

@@ -21,6 +21,10 @@ from front3d.solid import CellBlock, Solid, Step
 
 __all__ = ["FORMATS", "load"]
 
+# Displacement in parts of the solid's size.  A unit load on a soft material may give much, so this
+# only keeps away what overflows.
+_ABSURD = 1e30
+
 
 def load(
     path: str | os.PathLike[str],
@@ -56,12 +60,12 @@ def load(
     form = identify(path)
     if displacement is not None and not isinstance(displacement, str):
         displacement = tuple(displacement) if len(displacement) > 1 else displacement[0]
-    in_table = displacement if isinstance(displacement, str) else None
     if displacement_file is not None and isinstance(displacement, tuple):
         raise ReadError(
-            f"{displacement_file}: found {len(displacement)} names of displacements, expected one; "
-            "several load cases in a table are told apart by its column step"
+            f"{displacement_file}: found {len(displacement)} names of displacements for a table, "
+            "expected one; its column step tells load cases apart"
         )
+    column = displacement if isinstance(displacement, str) else None
     finder = DisplacementFinder(displacement if displacement_file is None else None, tuple(arrays))
     try:
         raw = _read(path, form.reader, finder)
@@ -71,7 +75,7 @@ def load(
             if displacement_file is None:
                 named = finder.steps(need_displacement)
             else:
-                named = read_nodal_csv(Path(displacement_file), raw, in_table)
+                named = read_nodal_csv(Path(displacement_file), raw, column)
                 finder.notes = [f"displacements taken from {Path(displacement_file).name}"]
             kept = finder.kept(len(named))
             named = [
@@ -115,8 +119,15 @@ def _solid(
         nodes, mended = normalise_nodes(points, block, spacing)
         blocks.append(CellBlock(block.kind, nodes))
         notes += mended
+    extent = float(np.ptp(points[used], axis=0).max())
     steps = tuple(
-        Step(s.name, _clean_displacement(s, used), s.time, s.point_arrays, _by_block(arrays, raw))
+        Step(
+            s.name,
+            _clean_displacement(s, used, extent),
+            s.time,
+            s.point_arrays,
+            _by_block(arrays, raw),
+        )
         for s, arrays in zip(named, cells, strict=True)
     )
     notes += remarks
@@ -161,7 +172,7 @@ def _check_length(step: Step, n_points: int) -> None:
         )
 
 
-def _clean_displacement(step: Step, used: np.ndarray) -> np.ndarray:
+def _clean_displacement(step: Step, used: np.ndarray, extent: float) -> np.ndarray:
     values = step.displacement
     bad = ~np.isfinite(values).all(axis=1)
     broken = np.flatnonzero(bad & used)
@@ -171,6 +182,13 @@ def _clean_displacement(step: Step, used: np.ndarray) -> np.ndarray:
             f"step {step.name}: node {node} has the displacement {values[node]}, expected finite "
             f"numbers ({len(broken)} such nodes; nodes numbered from 0); was the result written "
             "for every node of the solid?"
+        )
+    largest = np.abs(values[used]).max(axis=1)
+    if (largest > _ABSURD * extent).any():
+        node = int(np.flatnonzero(used)[np.argmax(largest)])
+        raise ReadError(
+            f"step {step.name}: node {node} has the displacement {values[node]} in a solid of size "
+            f"{extent:.3g} (nodes numbered from 0): no result has this; the file is damaged"
         )
     if bad.any():
         values = values.copy()

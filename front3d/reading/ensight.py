@@ -15,6 +15,13 @@ _WIDTHS |= {"tetra4": 4, "tetra10": 10, "pyramid5": 5, "pyramid13": 13}
 _WIDTHS |= {"penta6": 6, "penta15": 15, "hexa8": 8, "hexa20": 20}
 _COUNTED = "|".join(["coordinates", *(f"(?:g_)?{kind}" for kind in _WIDTHS)])
 
+# The lines that a case file may have.
+_LINE = r"|#.*|FORMAT|GEOMETRY|VARIABLE|TIME|FILE|MATERIAL|BLOCK|SCRIPTS|[-+.\deE\s]+"
+_LINE += r"|(?:type|model|measured|match|boundary|rigid_body|[a-z]+ per (?:measured )?[a-z]+"
+_LINE += r"|complex [a-z]+ per [a-z]+|time set|number of steps|filename start number"
+_LINE += r"|filename increment|filename numbers|time values|file set|filename index"
+_LINE += r"|metadata|constant per case file|maximum time steps):.*"
+
 
 def check_case(path: Path) -> None:
     """Raise ReadError if the case file is no EnSight Gold, or names files that cannot be read."""
@@ -25,9 +32,14 @@ def check_case(path: Path) -> None:
         raise ReadError(
             f"{path}: found a mesh that moves with time, expected the undeformed mesh; export it so"
         )
+    for line in text.splitlines():
+        if not re.fullmatch(_LINE, line.strip()):
+            raise ReadError(f"{path}: found the line {line[:60]!r}, expected EnSight Gold")
     named = re.findall(r"^\s*(model|\w+ per (?:measured )?\w+):(.*)$", text, re.MULTILINE)
     if not any(what == "model" for what, _ in named):
         raise ReadError(f"{path}: names no geometry file (model: ...), expected one")
+    named.sort(key=lambda found: found[0] != "model")
+    nodes: list[int] | None = None
     for what, words in named:
         name = words.split()[-1:] if what != "model" else _model_name(words)
         if not name:
@@ -37,7 +49,14 @@ def check_case(path: Path) -> None:
         if not files:
             raise ReadError(f"{path}: names {pattern}, which is not there; transfer it too")
         for file in files:
-            _check_length(path, file, geometry=what == "model")
+            if what == "model":
+                nodes = _check_length(path, file, geometry=True, size=None)
+            else:
+                width = {"scalar per node": 1, "vector per node": 3}.get(what)
+                size = None
+                if nodes and width:
+                    size = 80 + sum(164 + 4 * width * n for n in nodes)
+                _check_length(path, file, geometry=False, size=size)
 
 
 def _model_name(words: str) -> list[str]:
@@ -45,7 +64,8 @@ def _model_name(words: str) -> list[str]:
     return [word for word in words.split() if not word.isdigit()][:1]
 
 
-def _check_length(case: Path, file: Path, geometry: bool) -> None:
+def _check_length(case: Path, file: Path, geometry: bool, size: int | None) -> list[int] | None:
+    """Nodes of each part of a binary geometry; of a variable, `size` is its length in bytes."""
     try:
         data = np.memmap(file, mode="r") if file.stat().st_size else np.empty(0, np.uint8)
     except OSError as error:
@@ -54,15 +74,21 @@ def _check_length(case: Path, file: Path, geometry: bool) -> None:
     try:
         if not len(data):
             raise ValueError
-        if head.startswith(b"C Binary"):
-            _walk(data)
-        elif geometry:
-            _check_claims(bytes(data))
+        if geometry and head.startswith(b"C Binary"):
+            return _walk(data)
+        if geometry:
+            text = bytes(data)
+            if b"\0" in text or not text.isascii():
+                raise ValueError
+            _check_claims(text)
+        elif size is not None and size != len(data) and bytes(data[:16]) != b"BEGIN TIME STEP\0":
+            raise ValueError
     except (ValueError, IndexError, UnicodeDecodeError):
         raise ReadError(
             f"{case}: {file.name} is damaged or cut short, expected as many numbers as it claims; "
             "transfer or export it again"
         ) from None
+    return None
 
 
 def _check_claims(text: bytes) -> None:
@@ -72,7 +98,7 @@ def _check_claims(text: bytes) -> None:
             raise ValueError
 
 
-def _walk(data: np.ndarray) -> None:
+def _walk(data: np.ndarray) -> list[int] | None:
     """Walk over a binary geometry file, whose first part says how long everything is."""
     place = 0
 
@@ -97,7 +123,7 @@ def _walk(data: np.ndarray) -> None:
         if place > len(data):
             raise ValueError
 
-    order = "<i4"
+    order, nodes = "<i4", []
     line()
     line(), line()
     ids = [line().endswith(("given", "ignore")) for _ in range(2)]
@@ -113,8 +139,9 @@ def _walk(data: np.ndarray) -> None:
         line()
         word = line()
         if word != "coordinates":
-            return  # structured: left to the reader
+            return None  # structured: left to the reader
         n = count()
+        nodes.append(n)
         skip(n * (3 + ids[0]))
         word = line() if place < len(data) else ""
         while word.removeprefix("g_") in _WIDTHS:
@@ -123,3 +150,4 @@ def _walk(data: np.ndarray) -> None:
             word = line() if place < len(data) else ""
     if word and word != "END TIME STEP":
         raise ValueError
+    return nodes

@@ -29,6 +29,11 @@ def load_all(paths: Sequence[str | os.PathLike[str]], **how: Any) -> Solid:
     ReadError : as `load`; the mesh of a file differs from that of the first
     """
     files = [Path(path) for path in paths]
+    if len(files) > 1 and how.get("displacement_file") is not None:
+        raise ReadError(
+            f"{how['displacement_file']}: found a table of displacements with {len(files)} files, "
+            "expected one of a mesh; the table's column step tells load cases apart"
+        )
     solids = [load(path, **how) for path in files]
     if len(solids) == 1:
         return solids[0]

@@ -101,7 +101,7 @@ class _File:
         place = self.data + int(given["offset"]) if appended else start
         if not self.data <= place < len(self.text) if appended else place >= self.end:
             raise ValueError
-        last = self._blocks(place, self.encoded if appended else True)
+        last = self._blocks(place, self.encoded if appended else True, not appended)
         if inside == "Cells" and name == "offsets" and last:
             kind = np.dtype(self.order + {"Int64": "i8", "Int32": "i4"}[given["type"]])
             self._last_offset(int(np.frombuffer(last[-kind.itemsize :], kind)[0]))
@@ -127,7 +127,7 @@ class _File:
         found = self._bytes(place, start * size, (start + count) * size, encoded)
         return [int(v) for v in np.frombuffer(found, self.word)]
 
-    def _blocks(self, place: int, encoded: bool) -> bytes:
+    def _blocks(self, place: int, encoded: bool, inline: bool) -> bytes:
         """Walk over an array; its last bytes, or b"" where they cannot be had cheaply."""
         if encoded:
             place = re.compile(rb"\s*").match(self.text, place).end()  # type: ignore[union-attr]
@@ -137,6 +137,11 @@ class _File:
             (length,) = self._words(place, 0, 1, encoded)
             if length > left:
                 raise ValueError
+            if inline:  # a byte too many moves all that follow it
+                text = _TEXT.match(self.text, place)
+                given = len(text[0].rstrip()) if text else 0
+                if given != -(-(size + length) // 3) * 4:
+                    raise ValueError
             return self._bytes(place, max(size, size + length - 8), size + length, encoded)
         blocks, whole, last = self._words(place, 0, 3, encoded)
         if blocks * size > left or blocks * whole > self.room or last > whole:

@@ -113,9 +113,7 @@ def build_from(
     held = spec.held(values, model.part.points)
     moved = solve_unfolded(model, material, forces, progress, held)
     solid, moved = take_part(model, axes, moved)
-    steps = tuple(
-        Step(load.name, u, float(k)) for k, (load, u) in enumerate(zip(loads, moved, strict=True))
-    )
+    steps = tuple(Step(load.name, u) for load, u in zip(loads, moved, strict=True))
     solid = Solid(solid.points, solid.blocks, steps, source=f"sample {name}")
     about = _description(spec, part, cells, values)
     plane = {"crack_plane": "z=0"} if CRACK_AXIS in axes else {}

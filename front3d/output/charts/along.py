@@ -128,7 +128,7 @@ def _draw(axes: "Axes", front: FrontResult, mode: int) -> None:
         axes.plot(
             x,
             closed_up(comparison.K[:, mode], front),
-            label=plain_text(comparison.source, 30),
+            label=plain_text(comparison.source.partition(", from memory")[0], 30),
             markevery=(every // 3, every),
             **thin,
             **_PUBLISHED[number % len(_PUBLISHED)],

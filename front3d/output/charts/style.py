@@ -99,21 +99,27 @@ def legend(figure: "Figure", axes: "Axes", columns: int = LEGEND_COLUMNS) -> Non
     """The entries of `axes` under the title, where they cover no curve."""
     handles, labels = axes.get_legend_handles_labels()
     if labels:
-        figure.legend(
-            handles,
-            labels,
-            loc="upper center",
-            bbox_to_anchor=(0.5, 1 - (_TITLE_ROW - 0.06) / figure.get_figheight()),
-            ncols=min(columns, len(labels)),
-            fontsize=SMALL,
-            frameon=False,
-            columnspacing=1.4,
-            handlelength=2.8,
-            labelspacing=0.3,
-            borderpad=0.2,
-        )
-        # Placed by hand: the layout of the panels would take it for a part of theirs.
-        figure.legends[-1].set_in_layout(False)
+        # Long names: all of it a little smaller, rather than cut off at the sides.
+        for size in np.arange(SMALL, CAPTION - 0.1, -0.25):
+            made = figure.legend(
+                handles,
+                labels,
+                loc="upper center",
+                bbox_to_anchor=(0.5, 1 - (_TITLE_ROW - 0.06) / figure.get_figheight()),
+                ncols=min(columns, len(labels)),
+                fontsize=size,
+                frameon=False,
+                columnspacing=1.4,
+                handlelength=2.8,
+                labelspacing=0.3,
+                borderpad=0.2,
+            )
+            # Placed by hand: the layout of the panels would take it for a part of theirs.
+            made.set_in_layout(False)
+            if made.get_window_extent().width <= 0.99 * figure.bbox.width:
+                break
+            if size > CAPTION:
+                made.remove()
 
 
 def legend_rows(entries: int, columns: int = LEGEND_COLUMNS) -> int:

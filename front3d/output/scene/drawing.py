@@ -92,7 +92,9 @@ def _add_body(plotter: Any, parts: Skin) -> None:
             plotter.add_mesh(edges, color=EDGE, line_width=2)
     if parts.crack.n_cells:
         plotter.add_mesh(parts.crack, color=CRACK, opacity=0.9, lighting=True)
-        lips = parts.crack.extract_feature_edges(180, feature_edges=False, manifold_edges=False)
+        lips = parts.crack.extract_feature_edges(
+            180, feature_edges=False, non_manifold_edges=False, manifold_edges=False
+        )
         if lips.n_cells:
             plotter.add_mesh(lips, color=EDGE, line_width=2)
 

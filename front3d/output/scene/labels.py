@@ -87,7 +87,11 @@ def draw_marks(
             x, y = end + way / far * 22 * grain
             letter = axes.text(x, y, name, fontsize=size, color=INK, ha="center", va="center")
             letter.set_path_effects([_halo(3.5 * grain)])
-            obstacles.append(start + np.linspace(0, 1.25, 20)[:, None] * way)
+            obstacles.append(start + np.linspace(0, 1.0, 20)[:, None] * way)
+            corners = np.array([[-1, -1], [-1, 1], [1, -1], [1, 1]]) * 18 * grain
+            obstacles.append(
+                np.tile(np.array((x, y)) + corners, (3, 1))
+            )  # letters count for more than a curve
     taken: list[tuple[FloatArray, FloatArray]] = []
     boxes = []
     for mark in marks:

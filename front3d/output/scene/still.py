@@ -115,7 +115,7 @@ def scene_figure(
         far.imshow(_render(parts, fronts, scale, best_view(fronts[0], whole), box, None))
         far.set_axis_off()
         far.set_title("whole solid", fontsize=11, color=MUTED, pad=2)
-    draw_scale(figure, (0.83, 0.42, 0.028, 0.44), scale, units, 14)
+    draw_scale(figure, (0.83, 0.42, 0.028, 0.385), scale, units, 14)
     notes = [opening_words(factor, widest)]
     notes += [RIBBON_WORDS] if ribbon else []
     notes += [RING_WORDS] if extras.rings else []

@@ -30,6 +30,8 @@ def why_no_window() -> str | None:
             check=False,
         )
         if trial.returncode == 0:
+            # A wish for drawing without a screen, left by whoever called, would leave none here.
+            os.environ.pop("VTK_DEFAULT_OPENGL_WINDOW", None)
             return None
     except (OSError, subprocess.TimeoutExpired):
         pass

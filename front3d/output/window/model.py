@@ -1,6 +1,6 @@
 """What the scene in the window is made of, from the folder of an evaluation and a `Shown`."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -26,6 +26,9 @@ from front3d.output.window.state import Shown, fronts_of
 from front3d.results import Evaluation, FrontResult
 
 SKIN = "skin.vtp"
+WORDS = (230, 200)
+"""Pixels of the scene's width and height that are left to scale, title and caution."""
+
 ALONE = f"the front alone: this evaluation left no {SKIN} to draw the solid from"
 
 
@@ -37,10 +40,12 @@ class Model:
     parts: Skin | None
     box: Box
 
-    def view(self, shown: Shown, shape: float) -> View:
-        """Where the crack is looked at from, in a picture of width over height `shape`."""
+    def view(self, shown: Shown, size: tuple[int, int]) -> View:
+        """Where the crack is looked at from, in a picture of `size` (width, height) pixels."""
         fronts = fronts_of(self.evaluation, shown.step)
-        return best_view(fronts[0], box_corners(*self.box), shape)
+        width, height = size[0] - WORDS[0], size[1] - WORDS[1]
+        view = best_view(fronts[0], box_corners(*self.box), width / height)
+        return replace(view, half_height=view.half_height * size[1] / height)
 
 
 @dataclass(frozen=True, slots=True, eq=False)

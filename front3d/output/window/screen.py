@@ -48,7 +48,7 @@ class Window:
         self.plotter.enable_depth_peeling(4)
         self._images: dict[str, Any] = {}
         self._pressed: tuple[int, int] | None = None
-        self._scene(self.model.view(self.shown, self._shape()))
+        self._scene(self.model.view(self.shown, self._half()))
         self._side()
 
     # What is drawn.
@@ -87,10 +87,6 @@ class Window:
     def _half(self) -> tuple[int, int]:
         width, height = self.plotter.window_size
         return width // 2, height
-
-    def _shape(self) -> float:
-        width, height = self._half()
-        return (width - 230) / (height - 200)
 
     def _scene(self, view: View) -> None:
         self.drawn: Drawn = drawn_of(self.model, self.shown)
@@ -151,7 +147,7 @@ class Window:
         if wish == "save picture":
             self.save()
         elif wish == "look again":
-            self._scene(self.model.view(self.shown, self._shape()))
+            self._scene(self.model.view(self.shown, self._half()))
             self.plotter.render()
         elif wish == "close":
             self.plotter.iren.terminate_app()
