@@ -16,6 +16,8 @@ stress = "MPa"
 [options]
 crack_plane = "z=0"             # half model, where it is not found
 symmetry_planes = ["x=0"]       # on which fronts end, where they are not found
+front_nodes = [4, 9, 11]        # only the part of the fronts that has these nodes
+front_line = [[0, 0, 0], [0, 5, 0]]   # or that lies along this line
 expected_stress = 100.0         # K is checked against it, to a power of ten
 face_pressure = 0.0
 surface_pressure = 0.0          # where a front ends
@@ -85,6 +87,8 @@ class Case:
     crack_plane: Plane | None = None
     symmetry_planes: tuple[Plane, ...] | None = None
     expected_stress: float | None = None
+    front_nodes: tuple[int, ...] | None = None
+    front_line: tuple[Vector, ...] | None = None
     face_pressure: float | None = None
     surface_pressure: float | None = None
     rings: tuple[float, ...] | None = None
@@ -131,6 +135,8 @@ class Case:
             crack_plane=self.crack_plane,
             symmetry_planes=self.symmetry_planes or (),
             expected_stress=self.expected_stress,
+            front_nodes=self.front_nodes or (),
+            front_line=self.front_line or (),
             face_pressure=self.face_pressure or 0.0,
             surface_pressure=self.surface_pressure or 0.0,
             loads=self.loads,
@@ -255,6 +261,12 @@ def _number(value: Any) -> float:
     return float(value)
 
 
+def _node(value: Any) -> int:
+    if isinstance(value, bool) or not isinstance(value, int) or value < 0:
+        raise _WrongError("a node number, from 0")
+    return value
+
+
 def _boolean(value: Any) -> bool:
     if not isinstance(value, bool):
         raise _WrongError("true or false")
@@ -325,6 +337,8 @@ _KEYS: Mapping[str, Any] = {
     "options": {
         "crack_plane": _plane,
         "expected_stress": _number,
+        "front_nodes": _list_of(_node, "a list of node numbers such as [4, 9, 11]"),
+        "front_line": _list_of(_vector, "a list of points such as [[0, 0, 0], [0, 1, 0]]"),
         "symmetry_planes": _list_of(_plane, 'a list of planes such as ["x=0"]'),
         "face_pressure": _number,
         "surface_pressure": _number,

@@ -1,7 +1,7 @@
 """The pipeline from a solid to K along its fronts: order of steps, no mathematics."""
 
 from collections.abc import Callable, Mapping
-from dataclasses import asdict
+from dataclasses import asdict, replace
 
 import numpy as np
 
@@ -137,10 +137,9 @@ def _shapes(model: CrackModel) -> list[FrontShape]:
     """What the fronts look like, in their order."""
     shapes = []
     for front in (front for fronts in model.fronts for front in fronts):
-        positions, frames, _ = front.curve.frames(front.corner_s)
-        shapes.append(
-            FrontShape(positions, frames, front.corner_s, front.length, front.closed, front.ends)
-        )
+        s = front.corner_s[front.stations]
+        positions, frames, _ = front.curve.frames(s)
+        shapes.append(FrontShape(positions, frames, s, front.length, front.closed, front.ends))
     return shapes
 
 
@@ -189,6 +188,11 @@ def _front_result(
     unmatched: tuple[str, ...],
 ) -> FrontResult:
     front = context.front
+    if len(front.stations) < len(front.corners):
+        methods = {name: found.at(front.stations) for name, found in methods.items()}
+        front = replace(
+            front, corner_s=front.corner_s[front.stations], stations=np.arange(len(front.stations))
+        )
     positions, frames, _ = front.curve.frames(front.corner_s)
     evidence = weigh(front, context.cells, methods, material)
     said, noted = face_warnings(context.solid, context.patch, step.displacement)

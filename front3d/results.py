@@ -1,11 +1,11 @@
 """What an evaluation gives: K along each front, per method and ring, with flags and warnings."""
 
 from collections.abc import Mapping
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 
 import numpy as np
 
-from front3d.arrays import BoolArray, FloatArray, frozen_floats
+from front3d.arrays import BoolArray, FloatArray, IntArray, frozen_floats
 from front3d.crack.front import FREE_SURFACE
 from front3d.errors import MethodError
 from front3d.solid import Constants, Material
@@ -42,6 +42,10 @@ class Rings:
                 f"rings: found radii {shape}, K {self.K.shape}, J {self.J.shape}; expected "
                 "(rings, stations), (rings, stations, 3), (rings, stations)"
             )
+
+    def at(self, rows: IntArray) -> "Rings":
+        """At some of the stations."""
+        return Rings(self.radii[:, rows], self.K[:, rows], self.J[:, rows])
 
     @property
     def compared(self) -> slice:
@@ -83,6 +87,12 @@ class MethodResult:
 
     def __post_init__(self) -> None:
         _freeze(self, ("K",))
+
+    def at(self, rows: IntArray) -> "MethodResult":
+        """At some of the stations."""
+        columns = {name: values[rows] for name, values in self.columns.items()}
+        rings = self.rings.at(rows) if self.rings else None
+        return replace(self, K=self.K[rows], columns=columns, rings=rings)
 
 
 @dataclass(frozen=True, slots=True, eq=False)

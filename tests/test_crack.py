@@ -11,6 +11,7 @@ from front3d.crack.coincidence import find_coincidence
 from front3d.errors import CrackError, MeshError
 from front3d.options import Plane
 from front3d.solid import CellBlock, Solid, Step
+from tests.meshes import squares
 from tests.meshes.structured import ALL_KINDS, curved, impose, straight
 
 
@@ -144,6 +145,29 @@ def test_a_crack_that_parts_the_solid_has_no_front():
 def test_a_solid_without_coincident_faces_has_no_crack():
     with pytest.raises(CrackError, match="found no crack"):
         front3d.find_fronts(bricks((2, 2, 2)))
+
+
+def slotted(width):
+    """A block of bricks with a slot of a given width, and a root as wide, half through it."""
+    x = np.concatenate([np.arange(5.0), 4.0 + width + np.arange(5.0)])
+    whole = squares.bricks(x, np.arange(5.0), np.arange(5.0))
+    nodes = whole.blocks[0].nodes
+    centre = whole.points[nodes].mean(axis=1)
+    slot = (centre[:, 0] > 4.0) & (centre[:, 0] < 4.0 + width) & (centre[:, 2] > 2.0)
+    block = CellBlock("hexahedron", nodes[~slot])
+    pull = Step("pull", 1e-3 * whole.points + 1.0)
+    return Solid(whole.points, (block,), (pull,), "slotted block")
+
+
+@pytest.mark.parametrize("width", [0.05, 0.4, 2.0])
+def test_a_notch_with_an_open_root_is_refused_with_its_width(width):
+    """The slot is 4 by 2 faces of size 1 on either side; a thin wall is not a gap."""
+    said = rf"across a gap of {width:g} to {width:g} at 16 faces.*no stress intensity factor"
+    with pytest.raises(CrackError, match=said):
+        front3d.find_fronts(slotted(width))
+    with pytest.raises(CrackError, match="found no crack") as plain:
+        front3d.find_fronts(bricks((8, 8, 1)))
+    assert "gap of" not in str(plain.value)
 
 
 def test_faces_that_never_part_are_candidates_only():

@@ -47,6 +47,44 @@ def vector(text: str) -> Vector:
     return (x, y, z)
 
 
+def nodes(text: str) -> tuple[int, ...]:
+    """Node numbers, with commas between them or in a file."""
+    path = Path(text)
+    words = _words_of(path) if path.is_file() else text.split(",")
+    try:
+        found = tuple(int(word) for word in words)
+    except ValueError:
+        found = ()
+    if not found or min(found) < 0:
+        raise argparse.ArgumentTypeError(
+            f"found {text!r}, expected node numbers from 0 with commas between them, or a file of "
+            "node numbers"
+        )
+    return found
+
+
+def line(text: str) -> tuple[Vector, ...]:
+    """The points of a polyline, from a file with three coordinates in each line."""
+    path = Path(text)
+    wrong = argparse.ArgumentTypeError(
+        f"found {text!r}, expected a file with x, y, z of two points or more, a point per line"
+    )
+    try:
+        values = [float(word) for word in _words_of(path)]
+    except ValueError:
+        raise wrong from None
+    if len(values) < 6 or len(values) % 3:
+        raise wrong
+    return tuple(zip(values[0::3], values[1::3], values[2::3], strict=True))
+
+
+def _words_of(path: Path) -> list[str]:
+    try:
+        return path.read_text(encoding="utf-8").replace(",", " ").split()
+    except (OSError, UnicodeDecodeError) as error:
+        raise argparse.ArgumentTypeError(f"{path}: cannot be read ({error})") from None
+
+
 class _Compare(argparse.Action):
     """Collects the solutions asked for; `help` lists what there is, and ends the program."""
 
@@ -107,6 +145,18 @@ def add_crack_flags(parser: argparse.ArgumentParser) -> None:
     )
     parser.add_argument(
         "--up", type=vector, metavar="X,Y,Z", help="direction from lower to upper crack face"
+    )
+    parser.add_argument(
+        "--front-nodes",
+        type=nodes,
+        metavar="N1,N2,..|FILE",
+        help="only the part of the fronts that has these nodes (numbered from 0, in any order)",
+    )
+    parser.add_argument(
+        "--front-line",
+        type=line,
+        metavar="FILE",
+        help="only the part of the fronts along this polyline: x, y, z of a point per line",
     )
     parser.add_argument(
         "--unopened",

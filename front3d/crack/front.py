@@ -1,6 +1,6 @@
 """One crack front: its ordered nodes, its curve, and how it ends."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 import numpy as np
 from scipy.spatial import cKDTree
@@ -30,6 +30,7 @@ class Front:
     corner_s : (n_corners,) arc length of the corner nodes
     half : whether only the upper side of the crack is modelled
     ends : what each end of an open front lies on; empty for a closed front
+    stations : (n,) rows of `corners` at which K is reported: by default all
     """
 
     edges: IntArray
@@ -38,9 +39,12 @@ class Front:
     corner_s: FloatArray
     half: bool
     ends: tuple[str, ...] = ()
+    stations: IntArray = field(default_factory=lambda: np.zeros(0, np.int64))
 
     def __post_init__(self) -> None:
         object.__setattr__(self, "edges", frozen_ints(self.edges))
+        rows = self.stations if len(self.stations) else np.arange(len(self.corner_s))
+        object.__setattr__(self, "stations", frozen_ints(rows))
 
     @property
     def corners(self) -> IntArray:

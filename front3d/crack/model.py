@@ -1,15 +1,24 @@
 """The cracks of a solid: surfaces and fronts found, ordered and classified."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
 from front3d.crack.coincidence import Coincidence, find_coincidence
-from front3d.crack.edges import Chain, full_model_edges, half_model_edges, order_edges
+from front3d.crack.edges import FrontEdges, full_model_edges, half_model_edges, order_edges
 from front3d.crack.ends import classify_ends
 from front3d.crack.front import Front, build_front
 from front3d.crack.half import find_half_patch
+from front3d.crack.notch import open_notch
 from front3d.crack.patches import Patch, find_patches
+from front3d.crack.pieces import (
+    CORNER,
+    GIVEN_END,
+    Piece,
+    given_edges,
+    pieces_of,
+    stations_of,
+)
 from front3d.crack.symmetry import find_crack_plane, found_plane_note
 from front3d.errors import CrackError
 from front3d.options import Options, Plane
@@ -57,7 +66,7 @@ def find_cracks(solid: Solid, options: Options | None = None) -> CrackModel:
             "outer plane that is held along its normal in part, as the crack plane of a half model "
             "is (name it where it is held by springs: --crack-plane z=0); "
             "if the crack is modelled by a gap or by one merged surface, its faces must be split "
-            "into coincident faces first"
+            "into coincident faces first" + (f"; {gap}" if (gap := open_notch(solid, same)) else "")
         )
     if not chosen:
         raise CrackError(
@@ -65,18 +74,14 @@ def find_cracks(solid: Solid, options: Options | None = None) -> CrackModel:
             "neither part nor slide in any step, so they look like unmerged parts or tied "
             "surfaces; if this is a crack, ask for it (--unopened), or check the displacements"
         )
-    fronts_of = []
-    for patch in chosen:
-        edges = full_model_edges(patch, same)
-        chains = order_edges(edges, same, solid.points, solid.source)
-        fronts_of.append(_fronts(solid, patch, same, chains, options))
+    every = [full_model_edges(patch, same) for patch in chosen]
+    fronts_of = _all_fronts(solid, chosen, every, same, options)
     if not any(fronts_of):
         raise CrackError(
             f"{solid.source}: the coincident faces have no front: their sides share no edge, so "
             "they part the solid in two; a crack needs a front where its sides join"
         )
-    _refuse_meeting(solid, same, [front for fronts in fronts_of for front in fronts])
-    return CrackModel(same, chosen, tuple(fronts_of), unopened)
+    return CrackModel(same, chosen, fronts_of, unopened, _notes_on_pieces(fronts_of))
 
 
 def _half_model(
@@ -89,37 +94,93 @@ def _half_model(
     """The crack in a symmetry plane, named or found."""
     patch, ligament = find_half_patch(solid, same, plane)
     edges = half_model_edges(patch, ligament, same)
-    chains = order_edges(edges, same, solid.points, solid.source)
-    fronts = _fronts(solid, patch, same, chains, options)
+    fronts = _all_fronts(solid, (patch,), [edges], same, options)
     notes = () if options.crack_plane is not None else (found_plane_note(patch, ligament),)
-    return CrackModel(same, (patch,), (fronts,), unopened, notes)
+    return CrackModel(same, (patch,), fronts, unopened, (*notes, *_notes_on_pieces(fronts)))
+
+
+def _all_fronts(
+    solid: Solid,
+    patches: tuple[Patch, ...],
+    edges: list[FrontEdges],
+    same: Coincidence,
+    options: Options,
+) -> tuple[tuple[Front, ...], ...]:
+    """The fronts of each patch, from the edges where its faces join."""
+    patch_of = np.repeat(np.arange(len(edges)), [len(e.ends) for e in edges])
+    joined = FrontEdges(
+        np.concatenate([e.ends for e in edges]), np.arange(sum(len(e.ends) for e in edges))
+    )
+    chosen, goes_on = given_edges(solid, joined, same, options)
+    found = []
+    for number, (patch, own) in enumerate(zip(patches, edges, strict=True)):
+        first = int(np.searchsorted(patch_of, number))
+        here = chosen.face[patch_of[chosen.face] == number] - first
+        chains = order_edges(
+            FrontEdges(own.ends[here], own.face[here]), same, solid.points, solid.source
+        )
+        pieces = [p for c in chains for p in pieces_of(c, solid.points, same.entity, goes_on)]
+        fronts = [_front(solid, patch, same, piece, options) for piece in pieces]
+        found.append(tuple(front for front in fronts if front is not None))
+        if fronts and not any(found):
+            short = pieces[0].chain.edges
+            raise CrackError(
+                f"{solid.source}: the front from node {short[0, 0]} to node {short[-1, 1]} has "
+                f"{len(short)} edges between its corners, or the ends of the nodes given: too few "
+                "for a station away from both; refine the mesh along it, or give more nodes"
+            )
+    _refuse_meeting(solid, same, [front for fronts in found for front in fronts])
+    return tuple(found)
+
+
+def _front(
+    solid: Solid, patch: Patch, same: Coincidence, piece: Piece, options: Options
+) -> Front | None:
+    """The front of a piece; None if it is too short for a station away from its ends."""
+    front = build_front(solid, piece.chain, patch.upper, patch.half)
+    if front.closed:
+        return front
+    front = classify_ends(solid, front, patch, same, options.symmetry_planes)
+    ends = tuple(
+        why or end for why, end in zip((piece.starts, piece.stops), front.ends, strict=True)
+    )
+    stations = stations_of(solid, front, piece, same, options)
+    if not len(stations):
+        return None
+    return replace(front, ends=ends, stations=stations)
+
+
+def _notes_on_pieces(fronts: tuple[tuple[Front, ...], ...]) -> tuple[str, ...]:
+    """Where stations were left out, and why."""
+    left_out = sorted(
+        {
+            f"{end} at node {node}"
+            for front in (front for group in fronts for front in group)
+            for end, node in zip(front.ends, front.corners[[0, -1]], strict=False)
+            if end in (CORNER, GIVEN_END)
+        }
+    )
+    if not left_out:
+        return ()
+    return (
+        f"fronts end inside the solid ({', '.join(left_out)}): there is no K at a corner, and "
+        "stations within a few cells of these ends are left out",
+    )
 
 
 def _refuse_meeting(solid: Solid, same: Coincidence, fronts: list[Front]) -> None:
     """CrackError if two fronts share a node: K has no meaning where they meet."""
-    nodes = np.concatenate([np.unique(same.entity[front.nodes]) for front in fronts])
-    shared, count = np.unique(nodes, return_counts=True)
+    inner = [
+        np.setdiff1d(
+            same.entity[front.nodes],
+            [same.entity[n] for n, end in zip(front.corners[[0, -1]], front.ends, strict=False)
+             if end == CORNER],
+        )
+        for front in fronts
+    ]  # fmt: skip
+    shared, count = np.unique(np.concatenate([*inner, np.zeros(0, int)]), return_counts=True)
     if np.any(count > 1):
         raise CrackError(
             f"{solid.source}: two crack fronts meet at node {shared[np.argmax(count)]}; expected "
             "fronts that keep apart"
         )
-
-
-def _fronts(
-    solid: Solid,
-    patch: Patch,
-    same: Coincidence,
-    chains: tuple[Chain, ...],
-    options: Options,
-) -> tuple[Front, ...]:
-    return tuple(
-        classify_ends(
-            solid,
-            build_front(solid, chain, patch.upper, patch.half),
-            patch,
-            same,
-            options.symmetry_planes,
-        )
-        for chain in chains
-    )

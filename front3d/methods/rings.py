@@ -80,15 +80,16 @@ def ring_radii(
     """
     plateau, own, gap = reaches[0], own_room(front), gap_to_others(front, others)
     room = np.minimum(OF_OWN_ROOM * own, OF_GAP * gap)
-    tightest = int(np.argmax(plateau / room))
+    rows = front.stations
+    tightest = int(rows[np.argmax(plateau[rows] / room[rows])])
     if given is not None:
         radii = np.sort(np.asarray(given, float))
-        if radii[0] <= plateau.max():
+        if radii[0] <= plateau[rows].max():
             raise MethodError(
                 f"{source}: found a ring radius of {radii[0]:g}, expected more than "
-                f"{plateau.max():.4g}, the reach of the cells that touch the front"
+                f"{plateau[rows].max():.4g}, the reach of the cells that touch the front"
             )
-        largest = float(OF_GIVEN * np.minimum(own, gap).min())
+        largest = float(OF_GIVEN * np.minimum(own, gap)[rows].min())
         if radii[-1] >= largest:
             raise MethodError(
                 f"{source}: found a ring radius of {radii[-1]:g}, expected less than "
@@ -105,14 +106,14 @@ def ring_radii(
         )
     else:
         grows = (np.diff(reaches, axis=0) > 1e-6 * plateau).all(axis=1)  # not past the last layer
-        fitting = reaches[1:][grows & (reaches[1:] <= room).all(axis=1)]
+        fitting = reaches[1:][grows & (reaches[1:] <= room)[:, rows].all(axis=1)]
         if structured and len(fitting) > 1:
             radii = fitting
         else:
             last = min(RATIOS[-1], float(room[tightest] / plateau[tightest]))
             ratios = RATIOS if last == RATIOS[-1] else np.linspace(RATIOS[0], last, len(RATIOS))
             radii = np.outer(ratios, plateau)
-    return radii, (*_roughness(plateau, own), *_sharp_corners(front))
+    return radii, (*_roughness(plateau[rows], own[rows]), *_sharp_corners(front))
 
 
 def _roughness(plateau: FloatArray, own: FloatArray) -> tuple[str, ...]:
