@@ -4,6 +4,7 @@ meshio's own loop keeps only the last time of a field, drops the times, and trus
 stand in the order of the nodes; here every `$NodeData` section is placed by its node numbers.
 """
 
+import os
 import struct
 from pathlib import Path
 from typing import Any, BinaryIO
@@ -63,6 +64,8 @@ def _sections(file: BinaryIO) -> tuple[Any, Any, Any, list[Any], Any, dict[str, 
         if not section.startswith("$"):
             raise ReadError(f"found the line {section[:40]!r}, expected the start of a section")
         section = section[1:]
+        if section in ("Nodes", "Elements"):
+            _check_counts(file, section)
         if section == "NodeData":
             data.append(_node_data(file, ascii_))
         elif section == "Entities" and version == "4.1":
@@ -82,6 +85,20 @@ def _sections(file: BinaryIO) -> tuple[Any, Any, Any, list[Any], Any, dict[str, 
             common._fast_forward_to_end_block(file, section)
     volumes = {name: int(number) for name, (number, dimension) in names.items() if dimension == 3}
     return points, tags, cells, data, groups, volumes
+
+
+def _check_counts(file: BinaryIO, section: str) -> None:
+    """The counts on the first line of a section cannot be larger than the file is long."""
+    place, length = file.tell(), os.fstat(file.fileno()).st_size
+    counts = [int(word) for word in file.read(80).split(b"\n")[0].split() if word.isdigit()]
+    file.seek(place)
+    # The parser of 4.1 counts blocks and entities first, then numbers from the lowest to the
+    # highest, which may be far apart.
+    if any(count > length for count in counts[:2]):
+        raise ReadError(
+            f"${section} claims {max(counts[:2])} entries in a file of {length} bytes, expected no "
+            "more than fit into it: the file is damaged"
+        )
 
 
 def _elements(
@@ -149,6 +166,8 @@ def _node_data(file: BinaryIO, ascii_: bool) -> tuple[str, int, float, Any, Any]
     if len(integers) < 3:
         raise ReadError(f"$NodeData {name!r} has {len(integers)} integer tags, expected 3 or more")
     step, width, count = integers[:3]
+    if not 0 <= width * count <= os.fstat(file.fileno()).st_size:
+        raise ReadError(f"$NodeData {name!r} claims {count} nodes, more than fit into the file")
     if ascii_:
         table = np.fromfile(file, count=count * (1 + width), sep=" ").reshape(count, 1 + width)
         numbers, values = table[:, 0].astype(np.int64), table[:, 1:]
