@@ -28,6 +28,7 @@ def load(
     path: str | Path,
     *more: str | Path,
     displacement: str | Sequence[str] | None = None,
+    arrays: Sequence[str] = (),
     displacement_file: str | Path | None = None,
 ) -> Solid:
     """Read a finite-element result, or several of one mesh as its steps; see `front3d.reading.load`
@@ -35,7 +36,12 @@ def load(
     """
     from front3d.reading.several import load_all
 
-    return load_all((path, *more), displacement=displacement, displacement_file=displacement_file)
+    return load_all(
+        (path, *more),
+        displacement=displacement,
+        arrays=arrays,
+        displacement_file=displacement_file,
+    )
 
 
 def find_fronts(solid: Solid, **options: Any) -> CrackModel:
@@ -52,8 +58,8 @@ def find_fronts(solid: Solid, **options: Any) -> CrackModel:
 def evaluate(
     solid: Solid,
     *,
-    young: float,
-    poisson: float,
+    young: float | None = None,
+    poisson: float | None = None,
     units: Units | None = None,
     progress: Progress | None = None,
     **options: Any,
@@ -62,14 +68,17 @@ def evaluate(
 
     Parameters
     ----------
-    young, poisson : elastic constants, Young's modulus in the stress unit of the model
+    young, poisson : elastic constants, Young's modulus in the stress unit of the model; left out
+        where a table or regions are given
     units : names of the model's units, for reports
     progress : called with a stage and the fraction done
-    options : fields of `front3d.options.Options`, such as face_pressure=10.0
+    options : fields of `front3d.options.Options` and `front3d.loads.Loads`, such as
+        face_pressure=10.0, temperature="T"; arrays that they name are kept by load(arrays=...)
     """
     from front3d.options import Options
     from front3d.pipeline import evaluate_solid
     from front3d.solid import Material
 
     chosen = Options.from_words(**options)
-    return evaluate_solid(solid, Material(young, poisson), chosen, units, progress)
+    material = None if young is None or poisson is None else Material(young, poisson)
+    return evaluate_solid(solid, material, chosen, units, progress)

@@ -30,6 +30,29 @@ compare = ["penny:a=10,tension=100"]
 combine = ["both = 1.2*pressure + 0.8*thermal"]
 stations = [0, 0.5, 1]
 unopened = false
+
+[load]                          # what acts besides, all optional
+face_polynomial = [5.0, -0.1]   # pressure on the crack faces, c0 + c1 d
+depth_direction = [0, 1, 0]     # d along it, from the point
+depth_from = [0, 0, 0]
+face_array = "pressure"         # pressure or traction by point or cell
+density = 7.85e-9
+gravity = [0, 0, -9810]
+rotation = 314.0                # radians per unit of time
+rotation_axis = [0, 0, 1]
+rotation_point = [0, 0, 0]
+initial_stress = "residual"     # xx, yy, zz, xy, yz, xz by point or cell
+initial_strain = "misfit"
+
+[temperature]
+temperature = "T"               # point array
+reference_temperature = 20
+expansion = 1.2e-5              # or [[20, 1.1e-5], [300, 1.3e-5]]
+elastic_table = [[20, 210e3, 0.3], [300, 190e3, 0.3]]
+
+[materials]                     # in place of [material]
+region_array = "part"           # cell array; the physical groups of the file by default
+regions = [{ region = 1, young = 210e3, poisson = 0.3 }]
 ```
 """
 
@@ -44,7 +67,8 @@ from pathlib import Path
 from typing import Any
 
 from front3d.errors import CaseError
-from front3d.options import Options, Plane, Vector
+from front3d.loads import Loads, Region, Row, Vector
+from front3d.options import Options, Plane
 from front3d.units import Units
 
 
@@ -76,6 +100,23 @@ class Case:
     combine: tuple[str, ...] | None = None
     stations: tuple[float, ...] | None = None
     unopened: bool | None = None
+    face_array: str | None = None
+    face_polynomial: tuple[float, ...] | None = None
+    depth_direction: Vector | None = None
+    depth_from: Vector | None = None
+    density: float | None = None
+    gravity: Vector | None = None
+    rotation: float | None = None
+    rotation_axis: Vector | None = None
+    rotation_point: Vector | None = None
+    initial_stress: str | None = None
+    initial_strain: str | None = None
+    temperature: str | None = None
+    reference_temperature: float | None = None
+    expansion: float | tuple[Row, ...] | None = None
+    elastic_table: tuple[Row, ...] | None = None
+    region_array: str | None = None
+    regions: tuple[Region, ...] | None = None
     source: Path | None = field(default=None, compare=False)
 
     def overridden_by(self, flags: "Case") -> "Case":
@@ -98,6 +139,7 @@ class Case:
             front_line=self.front_line or (),
             face_pressure=self.face_pressure or 0.0,
             surface_pressure=self.surface_pressure or 0.0,
+            loads=self.loads,
             radii=self.rings,
             hat=self.hat,
             up=self.up,
@@ -108,6 +150,17 @@ class Case:
             combine=self.combine or (),
             stations=self.stations,
         )
+
+    @property
+    def loads(self) -> Loads:
+        """What acts besides; CaseError where one is out of range or lacks what belongs to it."""
+        said = {name: getattr(self, name) for name in Loads.names()}
+        return Loads(**{name: value for name, value in said.items() if value is not None})
+
+    @property
+    def own_constants(self) -> bool:
+        """Whether a table or regions hold the elastic constants."""
+        return bool(self.elastic_table or self.regions)
 
     @property
     def results(self) -> tuple[Path, ...]:
@@ -168,6 +221,10 @@ def _line(key: str, value: Any) -> str:
 def _toml(value: Any) -> str:
     if isinstance(value, Plane):
         value = f"{','.join(map(repr, value.normal))}={value.offset!r}"
+    if isinstance(value, Region):
+        said = {f.name: getattr(value, f.name) for f in fields(value)}
+        inner = (f"{key} = {_toml(v)}" for key, v in said.items() if v is not None)
+        return f"{{ {', '.join(inner)} }}"
     if isinstance(value, tuple):
         return f"[{', '.join(map(_toml, value))}]"
     # JSON's texts, numbers and booleans are TOML's.
@@ -246,6 +303,31 @@ def _vector(value: Any) -> Vector:
     return (x, y, z)
 
 
+def _regions(value: Any) -> tuple[Region, ...]:
+    what = "a list such as [{ region = 1, young = 200e3, poisson = 0.3 }]"
+    if not isinstance(value, list) or not value:
+        raise _WrongError(what)
+    try:
+        return Loads(regions=tuple(value)).regions
+    except (CaseError, TypeError) as error:
+        raise _WrongError(f"{what}; {error}") from None
+
+
+def _expansion(value: Any) -> float | tuple[Row, ...]:
+    if isinstance(value, list):
+        return _rows(value)
+    return _number(value)
+
+
+_ROWS = "rows of numbers such as [[20, 1.1e-5], [300, 1.3e-5]]"
+_numbers = _list_of(_number, "a list of numbers such as [5.0, -0.1]")
+
+
+def _rows(value: Any) -> tuple[Row, ...]:
+    found: tuple[Row, ...] = _list_of(_list_of(_number, _ROWS), _ROWS)(value)
+    return found
+
+
 _KEYS: Mapping[str, Any] = {
     "result": _text_or_texts,
     "displacement": _text_or_texts,
@@ -270,6 +352,26 @@ _KEYS: Mapping[str, Any] = {
         "stations": _list_of(_number, "a list of parts of the length such as [0, 0.5, 1]"),
         "unopened": _boolean,
     },
+    "load": {
+        "face_array": _text,
+        "face_polynomial": _numbers,
+        "depth_direction": _vector,
+        "depth_from": _vector,
+        "density": _number,
+        "gravity": _vector,
+        "rotation": _number,
+        "rotation_axis": _vector,
+        "rotation_point": _vector,
+        "initial_stress": _text,
+        "initial_strain": _text,
+    },
+    "temperature": {
+        "temperature": _text,
+        "reference_temperature": _number,
+        "expansion": _expansion,
+        "elastic_table": _rows,
+    },
+    "materials": {"region_array": _text, "regions": _regions},
 }
 
 

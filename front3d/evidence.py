@@ -17,7 +17,7 @@ from front3d.crack.cells import FrontCells
 from front3d.crack.front import FREE_SURFACE, Front
 from front3d.methods.closure import UNBALANCED
 from front3d.results import MethodResult, energy_release_rate, free_surface_layer
-from front3d.solid import Material
+from front3d.solid import Constants
 
 REPORTED = "interaction"
 """The method whose K is reported where nothing speaks against it."""
@@ -73,7 +73,7 @@ class Evidence:
 
 
 def weigh(
-    front: Front, cells: FrontCells, methods: Mapping[str, MethodResult], material: Material
+    front: Front, cells: FrontCells, methods: Mapping[str, MethodResult], material: Constants
 ) -> Evidence:
     """Compare the methods along one front in one step."""
     own = methods[REPORTED]
@@ -116,7 +116,7 @@ def justified(cells: FrontCells, method: str) -> float:
 
 
 def _reported(
-    front: Front, methods: Mapping[str, MethodResult], restless: BoolArray, material: Material
+    front: Front, methods: Mapping[str, MethodResult], restless: BoolArray, material: Constants
 ) -> tuple[FloatArray, tuple[str, ...]]:
     """K and the method it comes from, by the rule of this module."""
     K = methods[REPORTED].K.copy()
@@ -130,7 +130,9 @@ def _reported(
     for i in np.flatnonzero(restless):
         here = np.stack([methods[name].K[i] for name in names])
         if np.isfinite(here).all():
-            middle = int(np.argsort(energy_release_rate(here, material))[len(names) // 2])
+            middle = int(
+                np.argsort(energy_release_rate(here, material.at(int(i))))[len(names) // 2]
+            )
             K[i], source[i] = here[middle], names[middle]
     return K, tuple(source)
 
@@ -141,7 +143,7 @@ def _verdict(
     cells: FrontCells,
     methods: Mapping[str, MethodResult],
     restless: BoolArray,
-    material: Material,
+    material: Constants,
 ) -> str:
     """Which of `name` and the interaction integral is more likely wrong, and why."""
     against = {
@@ -197,7 +199,7 @@ def _cause(methods: Mapping[str, MethodResult]) -> str:
 
 
 def _against_interaction(
-    interaction: MethodResult, restless: BoolArray, material: Material
+    interaction: MethodResult, restless: BoolArray, material: Constants
 ) -> list[str]:
     found = []
     if restless.any():

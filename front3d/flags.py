@@ -7,7 +7,7 @@ import numpy as np
 from front3d.crack.front import FREE_SURFACE, Front
 from front3d.evidence import J_TOLERANCE, REPORTED, RING_TOLERANCE, Evidence
 from front3d.results import MethodResult, energy_release_rate
-from front3d.solid import Material
+from front3d.solid import Constants
 
 OVERLAP = 0.01
 """Negative K_I, in parts of the front's largest K, below which scatter may be the reason and
@@ -37,7 +37,7 @@ def station_flags(
 
 
 def front_warnings(
-    front: Front, methods: Mapping[str, MethodResult], evidence: Evidence, material: Material
+    front: Front, methods: Mapping[str, MethodResult], evidence: Evidence, material: Constants
 ) -> tuple[str, ...]:
     """Sentences about the whole front.
 

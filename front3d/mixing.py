@@ -19,7 +19,7 @@ from collections.abc import Mapping
 import numpy as np
 
 from front3d.arrays import BoolArray, FloatArray
-from front3d.solid import Material
+from front3d.solid import Constants
 
 CLOSED = 0.01
 """Negative K_I, in parts of the station's own |K|, up to which it is taken for scatter around
@@ -35,7 +35,7 @@ SOURCES: Mapping[str, str] = {
 """The published criteria by the suffix of their columns."""
 
 
-def mix_columns(K: FloatArray, material: Material) -> dict[str, FloatArray]:
+def mix_columns(K: FloatArray, material: Constants) -> dict[str, FloatArray]:
     """Every figure of the mode mix by column name, (n,) each, from K (n, 3).
 
     `G_I`, `G_II`, `G_III`; `kink_deg_mts`, `K_eq_mts`; `kink_deg_schollmann`,
@@ -52,11 +52,10 @@ def mix_columns(K: FloatArray, material: Material) -> dict[str, FloatArray]:
     }
 
 
-def energy_by_mode(K: FloatArray, material: Material) -> FloatArray:
+def energy_by_mode(K: FloatArray, material: Constants) -> FloatArray:
     """(n, 3) energy release rate of each mode alone; their sum is G.  Irwin (1957)."""
-    compliance = np.array(
-        [1 / material.plane_strain_modulus] * 2 + [1 / (2 * material.shear_modulus)]
-    )
+    plane, shear = np.asarray(material.plane_strain_modulus), np.asarray(material.shear_modulus)
+    compliance = np.stack([1 / plane, 1 / plane, 1 / (2 * shear)], axis=-1)
     return K**2 * compliance
 
 

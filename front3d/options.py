@@ -1,13 +1,12 @@
 """What a user may choose about an evaluation; the defaults come from the mesh."""
 
-from dataclasses import dataclass, fields
+from dataclasses import dataclass, field, fields
 from math import isfinite
 from typing import Any
 
 from front3d.combination import parse_all
 from front3d.errors import CaseError
-
-Vector = tuple[float, float, float]
+from front3d.loads import Loads, Vector
 
 
 @dataclass(frozen=True, slots=True)
@@ -61,6 +60,7 @@ class Options:
     symmetry_planes : planes on which fronts end by symmetry; others are found by displacements
     face_pressure : pressure on the crack faces, positive when it opens them
     surface_pressure : pressure on the surface on which a front ends, positive when it pushes
+    loads : what acts besides: on the crack faces, in the volume, by temperature
     radii : outer radii of the rings; None takes them from the mesh
     hat : half-width, in cells along the front, of the weight of one station; None takes it from
         the mesh
@@ -81,6 +81,7 @@ class Options:
     crack_plane: Plane | None = None
     face_pressure: float = 0.0
     surface_pressure: float = 0.0
+    loads: Loads = field(default_factory=Loads)
     radii: tuple[float, ...] | None = None
     hat: float | None = None
     up: Vector | None = None
@@ -97,11 +98,17 @@ class Options:
 
     @classmethod
     def from_words(cls, **words: Any) -> "Options":
-        """Options as a person writes them: a plane as "z=0", a single radius, step, method, ..."""
-        known = [field.name for field in fields(cls)]
+        """Options as a person writes them: a plane as "z=0", a single radius, step, method, and
+        the fields of `Loads` beside the others.
+        """
+        known = [entry.name for entry in fields(cls)]
+        loads = {name: words.pop(name) for name in Loads.names() if name in words}
         for name in words:
             if name not in known:
-                raise CaseError(f"unknown option {name!r}, expected one of {', '.join(known)}")
+                names = ", ".join([*known, *Loads.names()])
+                raise CaseError(f"unknown option {name!r}, expected one of {names}")
+        if loads:
+            words["loads"] = Loads(**loads)
         if isinstance(plane := words.get("crack_plane"), str):
             words["crack_plane"] = Plane.parse(plane)
         if isinstance(planes := words.get("symmetry_planes", ()), str):

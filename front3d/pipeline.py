@@ -13,6 +13,8 @@ from front3d.handbook.catalogue import parse
 from front3d.handbook.comparing import compare_fronts
 from front3d.handbook.placing import FrontShape
 from front3d.methods import METHODS, FrontContext
+from front3d.methods.loading import station_constants
+from front3d.methods.materials import foreign_cells, material_of_front, nominal
 from front3d.options import Options
 from front3d.results import (
     Comparison,
@@ -28,7 +30,7 @@ from front3d.sanity.displacements import (
     refuse_coordinates,
 )
 from front3d.sanity.faces import face_warnings, stress_warnings
-from front3d.solid import Material, Solid, Step
+from front3d.solid import Constants, Material, Solid, Step
 from front3d.steps import choose
 from front3d.units import Units
 
@@ -37,7 +39,7 @@ Progress = Callable[[str, float], None]
 
 def evaluate_solid(
     solid: Solid,
-    material: Material,
+    material: Material | None,
     options: Options | None = None,
     units: Units | None = None,
     progress: Progress | None = None,
@@ -47,7 +49,8 @@ def evaluate_solid(
     Parameters
     ----------
     solid : the result, with at least one step
-    material : elastic constants in the units of the model
+    material : elastic constants in the units of the model; None where the options have a table or
+        regions
     options : choices; the defaults suit most results
     units : names of the model's units, for reports
     progress : called with a stage and the fraction done
@@ -67,7 +70,13 @@ def evaluate_solid(
     refuse_coordinates(solid, steps)
     report("finding the crack", 0.0)
     model = find_cracks(solid, options)
-    published, unlike = compare_fronts(requests, steps, _shapes(model), material.poisson)
+    if options.combine and options.loads.elastic_table:
+        raise CaseError(
+            "found combinations of steps with constants by temperature, expected one of them: K is "
+            "not linear in steps whose constants differ"
+        )
+    reported = nominal(material, options.loads)
+    published, unlike = compare_fronts(requests, steps, _shapes(model), reported.poisson)
     displacement = np.stack([step.displacement for step in chosen.computed])
     results: list[FrontResult] = []
     left_out: list[tuple[int, Front3DError]] = []
@@ -75,11 +84,17 @@ def evaluate_solid(
     for patch, fronts in zip(model.patches, model.fronts, strict=True):
         for front in fronts:
             report(f"front {number + 1} of {model.n_fronts}", number / model.n_fronts)
-            context = FrontContext(
-                solid, model, patch, front, material, options, displacement, chosen.rows
-            )
             try:
+                own, loads = material_of_front(
+                    solid, model, front, material, options.loads, chosen.computed
+                )
+                foreign = foreign_cells(solid, model, front, loads, chosen.computed[0])
+                context = FrontContext(
+                    solid, model, patch, front, own, options, displacement, chosen.rows,
+                    chosen.computed, loads, foreign,
+                )  # fmt: skip
                 by_method, refused = _apply_methods(context)
+                constants = station_constants(context)
             except (MethodError, MeshError) as reason:
                 if model.n_fronts == 1:
                     raise
@@ -92,16 +107,26 @@ def evaluate_solid(
                 beside = published.get((step.name, number), ())
                 unmatched = unlike.get((step.name, number), ())
                 results.append(
-                    _front_result(step, timed, number, context, methods, beside, refused, unmatched)
+                    _front_result(
+                        step,
+                        timed,
+                        number,
+                        context,
+                        constants[index],
+                        methods,
+                        beside,
+                        refused,
+                        unmatched,
+                    )
                 )
             number += 1
     if not results:
         raise left_out[0][1]
     report("done", 1.0)
     warnings = _warnings(solid, model)
-    warnings += constant_warnings(material, units) + displacement_warnings(solid, steps, model)
+    warnings += constant_warnings(reported, units) + displacement_warnings(solid, steps, model)
     warnings += tuple(f"front {front} was left out: {reason}" for front, reason in left_out)
-    return Evaluation(solid.source, material, units, tuple(results), asdict(options), warnings)
+    return Evaluation(solid.source, reported, units, tuple(results), asdict(options), warnings)
 
 
 def _silent(stage: str, fraction: float) -> None:
@@ -156,12 +181,13 @@ def _front_result(
     timed: bool,
     number: int,
     context: FrontContext,
+    material: Constants,
     methods: Mapping[str, MethodResult],
     published: tuple[Comparison, ...],
     refused: tuple[str, ...],
     unmatched: tuple[str, ...],
 ) -> FrontResult:
-    front, material = context.front, context.material
+    front = context.front
     if len(front.stations) < len(front.corners):
         methods = {name: found.at(front.stations) for name, found in methods.items()}
         front = replace(
@@ -180,6 +206,7 @@ def _front_result(
         s=front.corner_s,
         positions=positions,
         frames=frames,
+        material=material,
         K=evidence.K,
         G=energy_release_rate(evidence.K, material),
         flags=station_flags(front, methods, evidence),

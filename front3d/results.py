@@ -8,7 +8,7 @@ import numpy as np
 from front3d.arrays import BoolArray, FloatArray, IntArray, frozen_floats
 from front3d.crack.front import FREE_SURFACE
 from front3d.errors import MethodError
-from front3d.solid import Material
+from front3d.solid import Constants, Material
 from front3d.units import Units
 
 MODES = ("K_I", "K_II", "K_III")
@@ -156,6 +156,7 @@ class FrontResult:
     warnings : sentences for the reader, about the whole front
     notes : what the reader may want to know, nothing to worry about
     comparisons : published solutions asked for, at the same stations
+    material : the constants along the front; None where they are those of the whole evaluation
     time : of the step; NaN where the result has none, and for combinations of steps
     """
 
@@ -175,6 +176,7 @@ class FrontResult:
     warnings: tuple[str, ...] = ()
     notes: tuple[str, ...] = ()
     comparisons: tuple[Comparison, ...] = ()
+    material: Constants | None = None
     time: float = float("nan")
 
     def __post_init__(self) -> None:
@@ -226,7 +228,7 @@ class Evaluation:
     warnings: tuple[str, ...] = ()
 
 
-def energy_release_rate(K: FloatArray, material: Material) -> FloatArray:
+def energy_release_rate(K: FloatArray, material: Constants) -> FloatArray:
     """G = (K_I^2 + K_II^2) / E' + K_III^2 / (2 mu), (n,), from K, (n, 3); Irwin (1957)."""
     k1, k2, k3 = np.moveaxis(K, -1, 0)
     return (k1**2 + k2**2) / material.plane_strain_modulus + k3**2 / (2.0 * material.shear_modulus)

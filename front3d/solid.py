@@ -1,5 +1,6 @@
 """The loaded model: points, cells, steps and material, with their shapes checked in one place."""
 
+from collections.abc import Mapping
 from dataclasses import dataclass, field
 from math import isfinite
 
@@ -42,11 +43,17 @@ class CellBlock:
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Step:
-    """One load case or time of a result: a name, a time and (n_points, 3) displacements."""
+    """One load case or time of a result: a name, a time and (n_points, 3) displacements.
+
+    Further arrays that loads refer to: `point_arrays`, (n_points, components), and `cell_arrays`,
+    (n_cells, components) for each block, by name.
+    """
 
     name: str
     displacement: FloatArray
     time: float = 0.0
+    point_arrays: Mapping[str, FloatArray] = field(default_factory=dict)
+    cell_arrays: Mapping[str, tuple[FloatArray, ...]] = field(default_factory=dict)
 
     def __post_init__(self) -> None:
         object.__setattr__(self, "displacement", frozen_floats(self.displacement))
@@ -55,6 +62,21 @@ class Step:
                 f"step {self.name}: found displacements of shape {self.displacement.shape}, "
                 "expected (points, 3)"
             )
+        points = {name: _columns(values) for name, values in self.point_arrays.items()}
+        object.__setattr__(self, "point_arrays", points)
+        for name, values in points.items():
+            if len(values) != len(self.displacement):
+                raise MeshError(
+                    f"step {self.name}: found {len(values)} values of {name!r} for "
+                    f"{len(self.displacement)} points"
+                )
+        cells = {name: tuple(map(_columns, parts)) for name, parts in self.cell_arrays.items()}
+        object.__setattr__(self, "cell_arrays", cells)
+
+
+def _columns(values: FloatArray) -> FloatArray:
+    """(n, components), read-only."""
+    return frozen_floats(np.reshape(values, (len(values), -1)))
 
 
 @dataclass(frozen=True, slots=True)
@@ -90,6 +112,33 @@ class Material:
         """E' = E / (1 - nu^2)."""
         return self.young / (1.0 - self.poisson**2)
 
+    def at(self, station: int) -> "Material":
+        """The constants at a station, which are the same at all."""
+        return self
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class LocalMaterial:
+    """Young's modulus and Poisson's ratio, (n,), at each station of a front."""
+
+    young: FloatArray
+    poisson: FloatArray
+
+    @property
+    def shear_modulus(self) -> FloatArray:
+        return self.young / (2.0 * (1.0 + self.poisson))
+
+    @property
+    def plane_strain_modulus(self) -> FloatArray:
+        return self.young / (1.0 - self.poisson**2)
+
+    def at(self, station: int) -> Material:
+        return Material(float(self.young[station]), float(self.poisson[station]))
+
+
+Constants = Material | LocalMaterial
+"""The constants along a front: the same everywhere, or its own at each station."""
+
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Solid:
@@ -103,6 +152,7 @@ class Solid:
     source : file name or a description, for messages and for the record
     point_spacing : distance between neighbouring representable coordinates in the file (0 if
         double precision): coincidence cannot be judged more finely than this
+    groups : numbers of the named groups in the cell array PHYSICAL_GROUP
     """
 
     points: FloatArray
@@ -111,6 +161,7 @@ class Solid:
     source: str = "model"
     point_spacing: float = 0.0
     notes: tuple[str, ...] = field(default=())
+    groups: Mapping[str, int] = field(default_factory=dict)
 
     def __post_init__(self) -> None:
         object.__setattr__(self, "points", frozen_floats(self.points))
@@ -136,6 +187,12 @@ class Solid:
                     f"{self.source}: step {step.name} has {len(step.displacement)} displacements "
                     f"for {n_points} points"
                 )
+            for name, parts in step.cell_arrays.items():
+                if [len(part) for part in parts] != [len(block) for block in self.blocks]:
+                    raise MeshError(
+                        f"{self.source}: step {step.name} does not have one value of {name!r} for "
+                        "every cell of every block"
+                    )
         self._require_finite()
 
     def _require_finite(self) -> None:

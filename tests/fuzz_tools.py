@@ -31,7 +31,7 @@ class Worker:
                 [sys.executable, str(WORKER)],
                 stdin=subprocess.PIPE,
                 stdout=subprocess.PIPE,
-                stderr=subprocess.PIPE,
+                stderr=subprocess.DEVNULL,
                 text=True,
             )
         self.process.stdin.write(json.dumps(request) + "\n")
@@ -41,8 +41,9 @@ class Worker:
             return {"hang": True}
         line = self.process.stdout.readline()
         if not line:
-            self.process.wait()
-            return {"crash": self.process.returncode, "said": self.process.stderr.read()[-500:]}
+            code = self.process.wait()
+            self.close()
+            return {"crash": code}
         return json.loads(line)
 
     def close(self) -> None:
@@ -56,7 +57,7 @@ def verdict(answer: dict, good: dict) -> str:
     """refused, same, flagged; or what is wrong: crash, hang, traceback, wrong."""
     for bad in ("crash", "hang", "traceback"):
         if bad in answer:
-            return f"{bad}: {answer[bad]} {answer.get('said', '')}"
+            return f"{bad}: {answer[bad]}"
     if "refused" in answer:
         return "refused" if answer["refused"].strip() else "an empty message"
     if "same" in answer:

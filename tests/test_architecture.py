@@ -15,7 +15,7 @@ RANKS = [
     # Each module of front3d imports only from lines above its own, or from its own package.
     {"errors"},
     {"arrays"},
-    {"combination"},
+    {"loads", "combination"},
     {"elements", "units", "options"},
     {"solid"},
     {"steps"},

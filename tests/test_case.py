@@ -7,6 +7,7 @@ import pytest
 
 from front3d.case import Case, as_toml, read_case
 from front3d.errors import CaseError
+from front3d.loads import Loads, Region
 from front3d.options import Options, Plane
 
 FULL = """
@@ -27,6 +28,28 @@ hat = 3
 up = [0, 0, -1]
 steps = ["first", "second"]
 unopened = true
+[load]
+face_array = "traction"
+face_polynomial = [5, -0.5]
+depth_direction = [0, 1, 0]
+depth_from = [0, 2, 0]
+density = 7.85e-9
+gravity = [0, 0, -9810]
+rotation = 314
+rotation_axis = [0, 0, 1]
+rotation_point = [1, 0, 0]
+initial_stress = "residual"
+initial_strain = "misfit"
+[temperature]
+temperature = "T"
+reference_temperature = 20
+expansion = [[20, 1.1e-5], [300, 1.3e-5]]
+[materials]
+region_array = "part"
+regions = [
+  { region = "vessel", young = 2e5, poisson = 0.3 },
+  { region = 2, young = 7e4, poisson = 0.33, density = 2.7e-9 },
+]
 """
 
 
@@ -50,7 +73,29 @@ def test_every_key_arrives(tmp_path: Path) -> None:
         up=(0.0, 0.0, -1.0),
         steps=("first", "second"),
         unopened=True,
+        loads=Loads(
+            face_array="traction",
+            face_polynomial=(5.0, -0.5),
+            depth_direction=(0.0, 1.0, 0.0),
+            depth_from=(0.0, 2.0, 0.0),
+            density=7.85e-9,
+            gravity=(0.0, 0.0, -9810.0),
+            rotation=314.0,
+            rotation_axis=(0.0, 0.0, 1.0),
+            rotation_point=(1.0, 0.0, 0.0),
+            initial_stress="residual",
+            initial_strain="misfit",
+            temperature="T",
+            reference_temperature=20.0,
+            expansion=((20.0, 1.1e-5), (300.0, 1.3e-5)),
+            region_array="part",
+            regions=(
+                Region("vessel", 2e5, 0.3),
+                Region(2, 7e4, 0.33, density=2.7e-9),
+            ),
+        ),
     )
+    assert case.loads.arrays == ("traction", "T", "residual", "misfit", "part")
 
 
 def test_what_is_not_said_takes_the_defaults(tmp_path: Path) -> None:

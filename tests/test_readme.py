@@ -67,7 +67,7 @@ def test_the_case_file_shown_is_read_and_shows_every_key(tmp_path: Path) -> None
     path.write_text(text)
     read_case(path)
     shown = tomllib.loads(text)
-    for section in ("material", "units", "options"):
+    for section in ("material", "units", "options", "load", "temperature", "materials"):
         assert set(shown[section]) == set(_KEYS[section])
 
 

@@ -31,7 +31,7 @@ def add_output_flags(parser: argparse.ArgumentParser) -> None:
 
 def run(arguments: argparse.Namespace) -> int:
     case = case_of(arguments)
-    if case.source is None:
+    if case.source is None and not case.own_constants:
         for flag in ("young", "poisson"):
             if getattr(case, flag) is None:
                 arguments.parser.error(
@@ -58,7 +58,10 @@ def _check_constants(arguments: argparse.Namespace) -> None:
 
 def evaluate_case(case: Case, out: Path, *, pictures: bool) -> "tuple[Evaluation, Written]":
     """Read, evaluate and write what was found into the folder `out`."""
-    if case.result is None or case.young is None or case.poisson is None:
+    material = None
+    if case.result is None or (
+        not case.own_constants and (case.young is None or case.poisson is None)
+    ):
         raise CaseError(
             f"{case.source}: found no elastic constants, expected young and poisson in the section "
             "[material], or --young and --poisson"
@@ -69,12 +72,16 @@ def evaluate_case(case: Case, out: Path, *, pictures: bool) -> "tuple[Evaluation
     from front3d.reading.several import load_all
     from front3d.solid import Material
 
-    material = Material(case.young, case.poisson)
+    if case.young is not None and case.poisson is not None:
+        material = Material(case.young, case.poisson)
     with results_folder(out), progress_bar() as progress:
         if progress is not None:
             progress(f"reading {case.result.name}", 0.0)
         solid = load_all(
-            case.results, displacement=case.displacement, displacement_file=case.displacement_file
+            case.results,
+            displacement=case.displacement,
+            arrays=case.loads.arrays,
+            displacement_file=case.displacement_file,
         )
         evaluation = evaluate_solid(solid, material, case.options, case.units, progress)
         inputs = [p for p in (*case.results, case.displacement_file, case.source) if p]

@@ -8,7 +8,8 @@ from typing import Any
 
 from front3d.case import Case, read_case
 from front3d.errors import CaseError
-from front3d.options import Plane, Vector
+from front3d.loads import Vector
+from front3d.options import Plane
 
 
 def join_negative_values(words: Sequence[str]) -> list[str]:
@@ -179,6 +180,7 @@ def add_evaluation_flags(parser: argparse.ArgumentParser) -> None:
         metavar="P",
         help="pressure on the surface on which the front ends, + pushes",
     )
+    add_load_flags(parser)
     parser.add_argument(
         "--rings", type=numbers, metavar="R1,R2,..", help="radii of the integration domains"
     )
@@ -229,6 +231,28 @@ def add_evaluation_flags(parser: argparse.ArgumentParser) -> None:
     )
     parser.add_argument("--length-unit", dest="length", metavar="UNIT", help="e.g. mm")
     parser.add_argument("--stress-unit", dest="stress", metavar="UNIT", help="e.g. MPa")
+
+
+def add_load_flags(parser: argparse.ArgumentParser) -> None:
+    """Loads beside uniform pressures; tables and regions stand in a case file only."""
+    group = parser.add_argument_group("loads that K depends on, beside the displacements")
+    for flag, kind, metavar, meaning in (
+        ("face-array", str, "NAME", "point or cell array: pressure or traction on the crack faces"),
+        ("face-polynomial", numbers, "C0,C1,..", "pressure on the crack faces, C0 + C1 d + .."),
+        ("depth-direction", vector, "X,Y,Z", "direction of the depth d"),
+        ("depth-from", vector, "X,Y,Z", "a point where d = 0 (default: the origin)"),
+        ("density", float, "RHO", "mass per volume"),
+        ("gravity", vector, "X,Y,Z", "acceleration; the body force is RHO times it"),
+        ("rotation", float, "OMEGA", "angular speed, radians per unit of time"),
+        ("rotation-axis", vector, "X,Y,Z", "direction of the axis"),
+        ("rotation-point", vector, "X,Y,Z", "a point of the axis (default: the origin)"),
+        ("temperature", str, "NAME", "point array of the temperature"),
+        ("reference-temperature", float, "T0", "temperature without thermal strain (default: 0)"),
+        ("expansion", float, "ALPHA", "coefficient of thermal expansion"),
+        ("initial-stress", str, "NAME", "point or cell array: xx, yy, zz, xy, yz, xz"),
+        ("initial-strain", str, "NAME", "likewise, tensor components"),
+    ):
+        group.add_argument(f"--{flag}", type=kind, metavar=metavar, help=meaning)
 
 
 def case_of(arguments: argparse.Namespace) -> Case:

@@ -14,7 +14,8 @@ from front3d.arrays import BoolArray, FloatArray, IntArray
 from front3d.crack.coincidence import Coincidence
 from front3d.crack.facetable import FaceTable, multiplicity, outer_faces, set_keys
 from front3d.errors import CrackError
-from front3d.options import Options, Plane, Vector
+from front3d.loads import Vector
+from front3d.options import Options, Plane
 from front3d.solid import Solid
 
 

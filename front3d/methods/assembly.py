@@ -13,10 +13,12 @@ from front3d.crack.front import on_front_mask
 from front3d.elements import FACES, ElementType
 from front3d.errors import MeshError
 from front3d.methods.context import FrontContext
+from front3d.methods.face_loads import gauss_load, loaded_faces
 from front3d.methods.face_rules import PLAIN, graded_rule, touching_sides
+from front3d.methods.loading import free_extension, nodal_state
 from front3d.methods.nodal_forces import BENT, N_MODES, PRESSED, Rule, cell_forces, face_forces
 from front3d.methods.surfaces import SurfaceTerm
-from front3d.methods.terms import CURVATURE, included
+from front3d.methods.terms import CURVATURE, FACE_LOAD, GRADIENT, included
 from front3d.methods.tube import Tube
 
 CELL_RULE, FACE_RULE = 3, 8
@@ -31,22 +33,28 @@ class Assembly:
     """Sums forces, (steps, N_MODES, tube nodes, 3), of a front's tube.
 
     Nodes are numbered within the tube, and the best rigid motion that the symmetry planes allow is
-    taken off the displacements, so that K does not depend on it even through rounding and
-    quadrature.
+    taken off the displacements, and so is the mean thermal extension, so that K does not depend on
+    it even through rounding and quadrature.
     """
 
     def __init__(self, context: FrontContext, tube: Tube, symmetry_normals: FloatArray) -> None:
-        self._solid, self._tube = context.solid, tube
+        self._context, self._solid, self._tube = context, context.solid, tube
         self._points = frozen_floats(context.solid.points[tube.nodes])
         moved = context.displacement[:, tube.nodes]
+        free = free_extension(context, tube.nodes)
         self._displacement = frozen_floats(
-            [_without_rigid_motion(self._points, u, symmetry_normals) for u in moved]
+            [
+                _without_rigid_motion(self._points, u - even * self._points, symmetry_normals)
+                for u, even in zip(moved, free, strict=True)
+            ]
         )
         self._on_front = on_front_mask(context.front, context.model.same)
         self._curve = context.front.curve.arrays
         material = context.material
         turn = 1.0 if included(CURVATURE) else 0.0
-        self._constants = (material.shear_modulus, material.poisson, turn)
+        gradient = 1.0 if included(GRADIENT) else 0.0
+        self._constants = (material.shear_modulus, material.poisson, turn, gradient)
+        self._state = nodal_state(context, tube.nodes, tube.s, free)
         self.forces = np.zeros((len(moved), N_MODES, len(tube.nodes), 3))
 
     def add_cells(self) -> None:
@@ -59,8 +67,8 @@ class Assembly:
                 out = self._room(cells)
                 status = np.zeros(len(cells), np.int64)
                 cell_forces(
-                    self._points, cells, *self._beside(cells), self._displacement, rule,
-                    self._curve, self._constants, out, status,
+                    self._points, cells, *self._beside(cells), self._displacement, self._state,
+                    rule, self._curve, self._constants, out, status,
                 )  # fmt: skip
                 if status.any():
                     bad = int(np.flatnonzero(status)[0])
@@ -85,11 +93,26 @@ class Assembly:
             for part in _chunks(faces.cell[(groups == group).all(axis=1)]):
                 cells = self._local(block.nodes[part])
                 out = self._room(cells)
+                load = self._load(term, b, local, part, rule[0])
                 face_forces(
-                    self._points, cells, *self._beside(cells), self._displacement, rule, tangents,
-                    term.kind, term.pressure, self._curve, self._constants, out,
+                    self._points, cells, *self._beside(cells), self._displacement, self._state,
+                    rule, tangents, term.kind, load, self._curve, self._constants, out,
                 )  # fmt: skip
                 self._sum(cells, out)
+
+    def _load(
+        self, term: SurfaceTerm, block: int, local: int, cells: IntArray, values: FloatArray
+    ) -> FloatArray:
+        """(cells, 1 or steps, q, 4) pressure and traction on faces, or an empty array."""
+        if term.kind in (PRESSED, BENT):
+            if not (included(FACE_LOAD) and loaded_faces(self._context)):
+                return frozen_floats(np.zeros((0, 0, 0, 4)))
+            return gauss_load(self._context, block, local, cells, values)
+        if not term.pressure:
+            return frozen_floats(np.zeros((0, 0, 0, 4)))
+        load = np.zeros((len(cells), 1, len(values), 4))
+        load[..., 0] = term.pressure
+        return frozen_floats(load)
 
     def _local(self, cells: IntArray) -> IntArray:
         return np.searchsorted(self._tube.nodes, cells)

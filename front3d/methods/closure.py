@@ -38,6 +38,7 @@ from front3d.methods.closure_variant import column_notes, variant_name
 from front3d.methods.closure_weights import Tents, build_tents
 from front3d.methods.context import FrontContext
 from front3d.methods.hats import default_widths
+from front3d.methods.loading import station_constants
 from front3d.methods.tube import layer_reaches, project
 from front3d.results import MethodResult
 
@@ -71,7 +72,7 @@ def evaluate(context: FrontContext) -> list[MethodResult]:
     G = 0.5 * work
     if front.half:
         G[:, :, 1:] = 0.0
-    K = signed_K(G, opening, context.material)
+    K = [signed_K(*of_step) for of_step in zip(G, opening, station_constants(context), strict=True)]
     uneven = _unevenness(ligament, context, forces, imbalance)
     variant = variant_name(context, ligament, columns)
     return [

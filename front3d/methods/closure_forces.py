@@ -25,8 +25,11 @@ from front3d.crack.front import Front, on_front_mask
 from front3d.elements import FACES
 from front3d.errors import MeshError, MethodError
 from front3d.methods.context import FrontContext
+from front3d.methods.face_loads import array_load, face_pressure, loaded_faces
+from front3d.methods.loading import as_tensors, nodal_state
+from front3d.methods.state_kernels import BODY, INITIAL, LAME, RATIO, SHEAR
 from front3d.methods.tube import project
-from front3d.solid import CellBlock, Material, Solid
+from front3d.solid import CellBlock, Solid
 
 FLAT = 0.05
 """Largest rise of a face out of the crack plane, in parts of its reach from the front: a curved
@@ -173,51 +176,55 @@ def closing_forces(context: FrontContext, ligament: Ligament) -> tuple[FloatArra
     forces : (steps, n_points, 3), each at the representative of its entity; positive along the
         crack normal in tension.  Right at nodes that no cell beyond the touching ones holds.  On
         loaded crack faces they include what the faces ahead would carry once open (Nairn 2011).
-    imbalance : (steps, n_points, 3) what is left of the forces of both sides: the body force
+    imbalance : (steps, n_points, 3) what is left of the forces of both sides: a body force that
+        was not given
     """
-    solid, patch = context.solid, context.patch
-    same, pressure = context.model.same, context.options.face_pressure
-    u = context.displacement
-    forces = -cell_forces(solid, ligament.above, context.material, u, same)
-    own = -pressure * area_forces(solid, ligament.behind, same)
-    forces += own
+    solid, patch, same = context.solid, context.patch, context.model.same
+    forces = face_forces(context, ligament.behind) - cell_forces(context, ligament.above)
     imbalance = np.zeros_like(forces)
     if patch.lower is not None:
         touching = np.asarray(ligament.on_front[patch.lower.nodes].any(axis=1))
-        other = -pressure * area_forces(solid, patch.lower[touching], same)
-        lower = other - cell_forces(solid, ligament.below, context.material, u, same)
+        lower = face_forces(context, patch.lower[touching]) - cell_forces(context, ligament.below)
         # Inside each side and between them everything else is in equilibrium.
         imbalance = -(forces + lower)
         up, down = (volumes(solid, cells, same) for cells in (ligament.above, ligament.below))
         forces += (up / np.maximum(up + down, 1e-300))[:, None] * imbalance
-    forces -= pressure * area_forces(solid, ligament.ahead, same)
+    forces += face_forces(context, ligament.ahead, ahead=True)
     return forces, imbalance
 
 
-def cell_forces(
-    solid: Solid,
-    cells: tuple[IntArray, ...],
-    material: Material,
-    displacement: FloatArray,
-    same: Coincidence,
-) -> FloatArray:
-    """(steps, n_points, 3) internal forces int sigma_ij dN/dx_j dV of chosen cells."""
-    out = np.zeros_like(displacement)
+def cell_forces(context: FrontContext, cells: tuple[IntArray, ...]) -> FloatArray:
+    """(steps, n_points, 3) internal forces of chosen cells, less the body force in them:
+    int (sigma_ij dN/dx_j - b_i N) dV.
+    """
+    solid, same, material = context.solid, context.model.same, context.material
+    out = np.zeros_like(context.displacement)
     for block, numbers in zip(solid.blocks, cells, strict=True):
         if not len(numbers):
             continue
         gradient, volume = _gradients(solid, block, numbers)
+        shape = block.element.values(block.element.quadrature(RULE)[0])
         nodes = block.nodes[numbers]
-        for step, u in enumerate(displacement):
+        unique, row = np.unique(nodes, return_inverse=True)
+        state = nodal_state(context, unique, project(context.front, solid.points[unique])[0])
+        lame: FloatArray | float = material.lame
+        shear: FloatArray | float = material.shear_modulus
+        for step, u in enumerate(context.displacement):
             # Relative to one node of the cell: a rigid shift must not cost digits.
             moved = u[nodes] - u[nodes[:, :1]]
             slope = np.einsum("cni,cqnj->cqij", moved, gradient, optimize=True)
             strain = (slope + slope.swapaxes(2, 3)) / 2.0
-            stress = 2.0 * material.shear_modulus * strain
-            stress += (
-                material.lame * np.trace(strain, axis1=2, axis2=3)[..., None, None] * np.eye(3)
-            )
+            body = None
+            initial: FloatArray | float = 0.0
+            if len(state):
+                here = np.einsum("qn,cnm->cqm", shape, state[step][row.reshape(nodes.shape)])
+                lame, shear = here[..., LAME, None, None], here[..., SHEAR, None, None]
+                initial, body = as_tensors(here[..., INITIAL:BODY]), here[..., BODY:RATIO]
+            trace = np.trace(strain, axis1=2, axis2=3)[..., None, None]
+            stress = 2.0 * shear * strain + lame * trace * np.eye(3) + initial
             f = np.einsum("cqij,cqnj,cq->cni", stress, gradient, volume, optimize=True)
+            if body is not None:
+                f -= np.einsum("cqi,qn,cq->cni", body, shape, volume, optimize=True)
             np.add.at(out[step], same.entity[nodes], f)
     return out
 
@@ -260,15 +267,27 @@ def face_nodes(solid: Solid, faces: FaceTable) -> list[tuple[str, IntArray]]:
     return [(kind, np.concatenate(parts)) for kind, parts in groups.items()]
 
 
-def area_forces(solid: Solid, faces: FaceTable, same: Coincidence) -> FloatArray:
-    """(n_points, 3) int N n dA: outward area vectors shared out among the nodes of faces."""
-    out = np.zeros_like(solid.points)
+def face_forces(context: FrontContext, faces: FaceTable, ahead: bool = False) -> FloatArray:
+    """(steps, n_points, 3) what acts on crack faces, shared out among their nodes.
+
+    On faces `ahead` of the front: what would act on the upper side there once they are open.
+    """
+    solid, entity = context.solid, context.model.same.entity
+    out = np.zeros_like(context.displacement)
+    if not loaded_faces(context):
+        return out
     for kind, nodes in face_nodes(solid, faces):
         face = FACES[kind]
         xi, weights = face.quadrature(RULE + 1)
+        shape = face.values(xi)
         x = solid.points[nodes]
         tangents = np.einsum("fni,qnd->fqdi", x - x[:, :1], face.gradients(xi))
         normal = np.cross(tangents[:, :, 0], tangents[:, :, 1])
-        share = np.einsum("qn,fqi,q->fni", face.values(xi), normal, weights)
-        np.add.at(out, same.entity[nodes], share)
+        size = np.linalg.norm(normal, axis=2, keepdims=True)
+        pressure = face_pressure(context, np.einsum("qn,fni->fqi", shape, x))
+        for step, total in zip(context.steps, out, strict=True):
+            array = array_load(context, step, nodes, shape, ahead)
+            acting = size * array[..., 1:] - (pressure + array[..., 0])[..., None] * normal
+            share = np.einsum("qn,fqi,q->fni", shape, acting, weights)
+            np.add.at(total, entity[nodes], share)
     return out

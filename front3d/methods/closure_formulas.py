@@ -10,7 +10,7 @@ in three dimensions, Krueger (2004) for unequal lengths.
 import numpy as np
 
 from front3d.arrays import FloatArray
-from front3d.solid import Material
+from front3d.solid import Constants
 
 QUARTER = 0.375
 """A mid-side node nearer to the front than this part of its edge is a quarter-point."""
@@ -119,7 +119,7 @@ def _between(middle: FloatArray, far: FloatArray, at: float) -> FloatArray:
     return value
 
 
-def signed_K(G: FloatArray, opening: FloatArray, material: Material) -> FloatArray:
+def signed_K(G: FloatArray, opening: FloatArray, material: Constants) -> FloatArray:
     """K_I, K_II, K_III, (..., 3), from G of each mode, with the sign of its opening or sliding.
 
     G_I = K_I^2 / E', G_II = K_II^2 / E', G_III = K_III^2 / (2 mu).
@@ -133,9 +133,8 @@ def signed_K(G: FloatArray, opening: FloatArray, material: Material) -> FloatArr
     opening of a mode disagree, that mode gets no K, and its part is taken from the others, so that
     the sum stays what it was.
     """
-    modulus = np.array(
-        [material.plane_strain_modulus, material.plane_strain_modulus, 2 * material.shear_modulus]
-    )
+    plane, shear = material.plane_strain_modulus, material.shear_modulus
+    modulus = np.stack([plane, plane, 2 * np.asarray(shear)], axis=-1)
     positive = np.maximum(G, 0.0)
     whole, counted = G.sum(axis=-1, keepdims=True), positive.sum(axis=-1, keepdims=True)
     share = np.maximum(whole, 0.0) / np.where(counted > 0.0, counted, 1.0)

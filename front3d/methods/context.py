@@ -4,11 +4,12 @@ from dataclasses import dataclass, field
 
 import numpy as np
 
-from front3d.arrays import FloatArray, frozen_floats
+from front3d.arrays import BoolArray, FloatArray, frozen_floats
 from front3d.crack import CrackModel, Front, Patch
 from front3d.crack.cells import FrontCells, cells_of_front
+from front3d.loads import Loads
 from front3d.options import Options
-from front3d.solid import Material, Solid
+from front3d.solid import Material, Solid, Step
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -19,9 +20,12 @@ class FrontContext:
     ----------
     solid, model : the result, and the cracks found in it
     patch, front : the crack surface and the front on it
-    material, options : elastic constants, and the user's choices
+    material, options : elastic constants at the front, and the user's choices
     displacement : (n_steps, n_points, 3) of the steps to compute
     rows : (n_results, n_steps) factors by which results combine steps; None: a result per step
+    steps : the steps to compute, whose arrays loads refer to; by default all of the solid
+    loads : those of the options, with what belongs to the front's own material; by default they
+    foreign : per block, the cells of another material; by default there are none
     cells : what surrounds the front
     """
 
@@ -33,11 +37,18 @@ class FrontContext:
     options: Options
     displacement: FloatArray
     rows: FloatArray | None = None
+    steps: tuple[Step, ...] = ()
+    loads: Loads = field(default_factory=Loads)
+    foreign: tuple[BoolArray, ...] = ()
     cells: FrontCells = field(init=False)
 
     def __post_init__(self) -> None:
         around = cells_of_front(self.solid, self.front, self.model.same)
         object.__setattr__(self, "cells", around)
+        if not self.steps:
+            object.__setattr__(self, "steps", self.solid.steps)
+        if self.loads == Loads():
+            object.__setattr__(self, "loads", self.options.loads)
         object.__setattr__(self, "displacement", frozen_floats(self.displacement))
 
     def combined(self, values: FloatArray) -> FloatArray:

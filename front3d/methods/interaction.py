@@ -10,13 +10,16 @@ import numpy as np
 from scipy.sparse import csr_array
 
 from front3d.arrays import FloatArray
+from front3d.errors import MethodError
 from front3d.methods.assembly import Assembly
 from front3d.methods.context import FrontContext
 from front3d.methods.hats import Hats, build_hats, default_widths
+from front3d.methods.loading import station_constants
 from front3d.methods.rings import N_RINGS, ring_radii
 from front3d.methods.surfaces import surroundings
 from front3d.methods.tube import Tube, along_front, build_tube, layer_reaches
 from front3d.results import MethodResult, Rings
+from front3d.solid import Constants
 
 SMALLEST_RATIO = 1.3
 """Smallest outer radius of a ring where a surface is near, in reaches of the cells at the front."""
@@ -36,7 +39,9 @@ def evaluate(context: FrontContext) -> list[MethodResult]:
     radii, notes = ring_radii(front, reaches, others, structured, options.radii, solid.source)
     tube = build_tube(solid, front, context.patch, same, float(radii.max()))
     around = surroundings(context, tube)
-    radii, more = _clear_of_surfaces(radii, reaches[0], around.clearance, options.radii is not None)
+    given = options.radii is not None
+    radii, more = _clear_of_surfaces(radii, reaches[0], around.clearance, given)
+    radii = _in_one_material(radii, reaches[0], around.same_material, given, solid.source)
     assembly = Assembly(context, tube, around.symmetry_normals)
     assembly.add_cells()
     for term in around.terms:
@@ -47,14 +52,24 @@ def evaluate(context: FrontContext) -> list[MethodResult]:
         width = np.full(len(front.corners), options.hat)
     hats = build_hats(solid, front, width)
     integrals = _integrals(assembly.forces, tube, hats, reaches[0], radii)
-    modulus, shear = context.material.plane_strain_modulus, context.material.shear_modulus
-    value = integrals * np.array([modulus / 2, modulus / 2, shear, 1.0])[:, None]
+    value = np.moveaxis(integrals, 1, 0)
     if front.half:  # the half that is not modelled gives the same again, and only mode I exists
         value *= 2.0
         value[:, :, 1:3] = 0.0
-    value = np.moveaxis(value, 1, 0)
-    K, J = context.combined(value[:, :, :3]), context.combined_squares(value[:, :, 3])
+    J = context.combined_squares(value[:, :, 3])
+    factors = np.stack([_factors(context, here) for here in station_constants(context)])
+    K = context.combined(value[:, :, :3]) * factors[:, None]
     return [_result(*found, radii, hats, (*notes, *more)) for found in zip(K, J, strict=True)]
+
+
+def _factors(context: FrontContext, here: Constants) -> FloatArray:
+    """(3, n_stations) K over integral: E'/2 and mu.
+
+    The auxiliary displacements have one shear modulus all along the front, and so K too.
+    """
+    shear = context.material.shear_modulus
+    half = np.broadcast_to(shear / (1.0 - here.poisson), (len(context.front.corners),))
+    return np.stack([half, half, np.full_like(half, shear)])
 
 
 def _integrals(
@@ -95,6 +110,25 @@ def _clear_of_surfaces(
     return radii, (
         f"rings of radius {radii[~clear].max():.4g} reach a surface {clearance:.4g} from the front "
         "on which it does not end, and take the traction there from the stresses",
+    )
+
+
+def _in_one_material(
+    radii: FloatArray, plateau: FloatArray, clearance: float, given: bool, source: str
+) -> FloatArray:
+    """Rings that hold one material only; MethodError where none does, or given ones do not."""
+    clear = radii.max(axis=1) < clearance
+    if clear.all():
+        return radii
+    if not given and clear.sum() > 2:
+        return radii[clear]
+    room = 0.98 * clearance / float(plateau.max())
+    if not given and room > SMALLEST_RATIO:
+        return np.outer(np.linspace(SMALLEST_RATIO, room, 3), plateau)
+    raise MethodError(
+        f"{source}: another material begins {clearance:.4g} from the front, within a ring of "
+        f"radius {radii.max():.4g}; expected rings inside one material: "
+        + ("give smaller radii" if given else "refine the mesh around the front")
     )
 
 

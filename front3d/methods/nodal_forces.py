@@ -4,9 +4,15 @@ With q interpolated by the element's own shape functions, q_k = sum_n q_k^n phi_
 any mode over any ring with any hat is sum_n q^n . F^n, where
     F_k^n = int (P_kj dphi_n/dx_j + T_k phi_n) dV - int_S P_kj n_j phi_n dA,
     P_kj = sigma_ij u^aux_i,k + sigma^aux_ij u_i,k - (sigma : eps^aux) delta_kj,
-    T_k = sigma_i3 u^aux_i,3k (k = 1, 2) + sigma^aux_ij,j u_i,k.
+    T_k = sigma_i3 u^aux_i,3k (k = 1, 2) + sigma^aux_ij,j u_i,k - eps^aux_ij X_ij,k - b_i u^aux_i,k,
+    sigma = C : eps + sigma*,    X_ij,k = sigma*_ij,k + C_ijmn,k eps_mn.
+sigma* is the initial stress less C : eps0, where eps0 is thermal or initial strain, b the body
+force.  With sigma^aux = C : eps^aux and the displacements of a solid of constants that do not vary,
+X is all that a varying C, eps0 or initial stress asks for (the non-equilibrium form; Kim and
+Paulino 2005, from memory); for constant C it is sigma^aux_ij eps0_ij,k.
 So every Gauss point is visited once, whatever the number of rings, hats and modes.  The fourth
-"mode" is the domain form of J: P_kj = sigma_ij u_i,k - W delta_kj and T = 0.
+"mode" is the domain form of J: P_kj = sigma_ij u_i,k - W delta_kj with W = eps : C : eps / 2 +
+sigma* : eps, and T_k = - (sigma*_ij,k + C_ijmn,k eps_mn / 2) eps_ij - b_i u_i,k.
 Sources: Li, Shih and Needleman (1985); Nakamura and Parks (1989); Gosz and Moran (2002).
 """
 
@@ -14,9 +20,30 @@ import numba
 import numpy as np
 
 from front3d.arrays import FloatArray, IntArray
-from front3d.crack.curve import CurveArrays, frame_at, nearest
-from front3d.fields.neartip import auxiliary, polar
-from front3d.jit import kernel, parallel_kernel
+from front3d.crack.curve import CurveArrays
+from front3d.fields.neartip import auxiliary
+from front3d.jit import parallel_kernel
+from front3d.methods.point_kernels import (
+    area_vector,
+    displacement_gradient,
+    eshelby,
+    first_constant,
+    hooke,
+    look_at_front,
+    map_point,
+    product,
+    spread,
+    to_frame,
+)
+from front3d.methods.state_kernels import (
+    LAME,
+    N_COLUMNS,
+    RATIO,
+    SHEAR,
+    configurational,
+    local_auxiliary,
+    state_at,
+)
 
 N_MODES = 4
 """K_I, K_II, K_III and J."""
@@ -25,178 +52,9 @@ Rule = tuple[FloatArray, FloatArray, FloatArray]
 """Shape functions (q, nodes), their reference gradients (q, nodes, 3), and weights (q,)."""
 
 OUTER, PRESSED, CUT, BENT = 0, 1, 2, 3
-"""What is known of a face: an outer surface under a given pressure or none; a crack face under a
-given pressure; nothing, so that its traction is taken from the stresses; or a crack face that
-leaves the plane of the front's frame, under a given pressure or none."""
-
-
-@kernel
-def _map(
-    points: FloatArray,
-    cell: IntArray,
-    values: FloatArray,
-    gradients: FloatArray,
-    x: FloatArray,
-    jacobian: FloatArray,
-    inverse: FloatArray,
-) -> float:
-    """Position, Jacobian dx_i/dxi_d and its inverse at one Gauss point; returns its determinant."""
-    x[:] = 0.0
-    jacobian[:] = 0.0
-    for n in range(len(cell)):
-        for i in range(3):
-            value = points[cell[n], i]
-            x[i] += values[n] * value
-            for d in range(3):
-                jacobian[i, d] += value * gradients[n, d]
-    for i in range(3):
-        a, b = (i + 1) % 3, (i + 2) % 3
-        for j in range(3):
-            c, d = (j + 1) % 3, (j + 2) % 3
-            inverse[j, i] = jacobian[a, c] * jacobian[b, d] - jacobian[a, d] * jacobian[b, c]
-    det = 0.0
-    for d in range(3):
-        det += jacobian[0, d] * inverse[d, 0]
-    inverse /= det
-    return det
-
-
-@kernel
-def _look(
-    x: FloatArray,
-    seed: float,
-    side: int,
-    curve: CurveArrays,
-    turn: float,
-    place: FloatArray,
-    frame: FloatArray,
-    turning: FloatArray,
-) -> tuple[float, float, float]:
-    """Frame of the front nearest to x, its turning times `turn`; returns its arc length, and radius
-    and angle of x in it.
-    """
-    s, _ = nearest(x, seed, curve)
-    frame_at(s, curve, place, frame, turning)
-    turning *= turn
-    x1, x2 = 0.0, 0.0
-    for i in range(3):
-        x1 += (x[i] - place[i]) * frame[0, i]
-        x2 += (x[i] - place[i]) * frame[1, i]
-    r, angle = polar(x1, x2, side)
-    return s, r, angle
-
-
-@kernel
-def _to_frame(inverse: FloatArray, frame: FloatArray, local: FloatArray) -> None:
-    """local[d, j] = dxi_d/dx_j along the frame's own axes."""
-    for d in range(3):
-        for j in range(3):
-            local[d, j] = (
-                inverse[d, 0] * frame[j, 0]
-                + inverse[d, 1] * frame[j, 1]
-                + inverse[d, 2] * frame[j, 2]
-            )
-
-
-@kernel
-def _displacement_gradient(
-    displacement: FloatArray,
-    cell: IntArray,
-    gradients: FloatArray,
-    frame: FloatArray,
-    local: FloatArray,
-    raw: FloatArray,
-    gradient: FloatArray,
-) -> None:
-    """gradient[i, j] = du_i/dx_j in the frame, from nodal displacements (points, 3)."""
-    raw[:] = 0.0
-    for n in range(len(cell)):
-        for i in range(3):
-            value = displacement[cell[n], i]
-            for d in range(3):
-                raw[i, d] += value * gradients[n, d]
-    for i in range(3):
-        for j in range(3):
-            total = 0.0
-            for k in range(3):
-                part = raw[k, 0] * local[0, j] + raw[k, 1] * local[1, j] + raw[k, 2] * local[2, j]
-                total += frame[i, k] * part
-            gradient[i, j] = total
-
-
-@kernel
-def _hooke(gradient: FloatArray, lame: float, shear: float, stress: FloatArray) -> float:
-    """Stress from a displacement gradient; returns the strain energy density."""
-    trace = gradient[0, 0] + gradient[1, 1] + gradient[2, 2]
-    energy = 0.0
-    for i in range(3):
-        for j in range(3):
-            strain = 0.5 * (gradient[i, j] + gradient[j, i])
-            stress[i, j] = 2.0 * shear * strain
-            if i == j:
-                stress[i, j] += lame * trace
-            energy += 0.5 * stress[i, j] * strain
-    return energy
-
-
-@kernel
-def _mutual_energy(aux_stress: FloatArray, gradient: FloatArray) -> float:
-    """sigma^aux_ij u_i,j."""
-    total = 0.0
-    for i in range(3):
-        for j in range(3):
-            total += aux_stress[i, j] * gradient[i, j]
-    return total
-
-
-@kernel
-def _eshelby(
-    stress: FloatArray,
-    gradient: FloatArray,
-    aux_stress: FloatArray,
-    aux_gradient: FloatArray,
-    energy: float,
-    P: FloatArray,
-) -> None:
-    """P_kj = sigma_ij u^aux_i,k + sigma^aux_ij u_i,k - energy delta_kj."""
-    for k in range(3):
-        for j in range(3):
-            total = 0.0
-            for i in range(3):
-                total += stress[i, j] * aux_gradient[i, k] + aux_stress[i, j] * gradient[i, k]
-            P[k, j] = total
-        P[k, k] -= energy
-
-
-@kernel
-def _spread(
-    P: FloatArray,
-    T: FloatArray,
-    factor: float,
-    frame: FloatArray,
-    local: FloatArray,
-    values: FloatArray,
-    gradients: FloatArray,
-    pull: FloatArray,
-    forces: FloatArray,
-) -> None:
-    """Add factor (P_kj dphi_n/dx_j + T_k phi_n), turned to global axes, to forces, (nodes, 3)."""
-    for k in range(3):
-        for d in range(3):
-            total = 0.0
-            for m in range(3):
-                part = P[m, 0] * local[d, 0] + P[m, 1] * local[d, 1] + P[m, 2] * local[d, 2]
-                total += frame[m, k] * part
-            pull[k, d] = factor * total
-        pull[k, 3] = factor * (frame[0, k] * T[0] + frame[1, k] * T[1] + frame[2, k] * T[2])
-    for n in range(len(values)):
-        for k in range(3):
-            forces[n, k] += (
-                pull[k, 0] * gradients[n, 0]
-                + pull[k, 1] * gradients[n, 1]
-                + pull[k, 2] * gradients[n, 2]
-                + pull[k, 3] * values[n]
-            )
+"""What is known of a face: an outer surface under a given load or none; a crack face under a
+given load; nothing, so that its traction is taken from the stresses; or a crack face that leaves
+the plane of the front's frame, under a given load or none."""
 
 
 @parallel_kernel
@@ -206,23 +64,28 @@ def cell_forces(
     side: IntArray,
     seed: FloatArray,
     displacement: FloatArray,
+    state: FloatArray,
     rule: Rule,
     curve: CurveArrays,
-    constants: tuple[float, float, float],
+    constants: tuple[float, float, float, float],
     out: FloatArray,
     status: IntArray,
 ) -> None:
     """Volume part of F for every cell.
 
     cells (n, nodes); side (n,) of the crack; seed (n,) arc length near each cell; displacement
-    (steps, points, 3); constants: shear modulus, Poisson's ratio, and 1, or 0 to leave the turning
-    of the frame out.  Fills out, (n, steps, N_MODES, nodes, 3), and status, (n,): 0, or 1 + the
-    Gauss point where the Jacobian is not positive.
+    (steps, points, 3); state (steps, points, N_COLUMNS), or empty where nothing varies and no
+    force acts; constants: shear modulus and Poisson's ratio of the auxiliary fields, and 1, or 0
+    to leave the turning of the frame, and the gradients of the state, out.  Fills out, (n, steps,
+    N_MODES, nodes, 3), and status, (n,): 0, or 1 + the Gauss point where the Jacobian is not
+    positive.
     """
-    shear, poisson, turn = constants
-    lame = 2.0 * shear * poisson / (1.0 - 2.0 * poisson)
+    shear, poisson, turn, weight = constants
     values, gradients, weights = rule
     for c in numba.prange(len(cells)):
+        here, slope, initial = np.zeros(N_COLUMNS), np.zeros((2, 3)), np.zeros((4, 3, 3))
+        here[LAME], here[SHEAR], here[RATIO] = first_constant(shear, poisson), shear, poisson
+        aux_strain = np.zeros((3, 3, 3))
         vectors, matrices = np.zeros((4, 3)), np.zeros((8, 3, 3))
         x, place, turning, T = vectors[0], vectors[1], vectors[2], vectors[3]
         jacobian, inverse, frame, local = matrices[0], matrices[1], matrices[2], matrices[3]
@@ -234,39 +97,62 @@ def cell_forces(
         out[c] = 0.0
         s = seed[c]
         for g in range(len(weights)):
-            det = _map(points, cells[c], values[g], gradients[g], x, jacobian, inverse)
+            det = map_point(points, cells[c], values[g], gradients[g], x, jacobian, inverse)
             if not det > 0.0:
                 status[c] = 1 + g
                 break
-            s, r, angle = _look(x, s, side[c], curve, turn, place, frame, turning)
-            auxiliary(
-                r, angle, turning, shear, poisson,
-                aux_gradient, aux_stress, divergence, incompatibility, work,
-            )  # fmt: skip
-            _to_frame(inverse, frame, local)
+            s, r, angle = look_at_front(x, s, side[c], curve, turn, place, frame, turning)
+            to_frame(inverse, frame, local)
             for step in range(len(displacement)):
-                _displacement_gradient(
+                displacement_gradient(
                     displacement[step], cells[c], gradients[g], frame, local, raw, H
                 )
-                energy = _hooke(H, lame, shear, stress)
+                if len(state):
+                    state_at(
+                        state[step], cells[c], values[g], gradients[g], frame, local, weight,
+                        here, slope, initial,
+                    )  # fmt: skip
+                if step == 0 or len(state):
+                    auxiliary(
+                        r, angle, turning, shear, here[RATIO],
+                        aux_gradient, aux_stress, divergence, incompatibility, work,
+                    )  # fmt: skip
+                if len(state):
+                    local_auxiliary(
+                        aux_gradient, work[:, :, 3:6], here, slope, shear, here[RATIO],
+                        aux_stress, aux_strain, divergence,
+                    )  # fmt: skip
+                energy = hooke(H, here[LAME], here[SHEAR], stress)
+                energy += product(initial[0], H)
+                stress += initial[0]
                 for mode in range(3):
-                    mutual = _mutual_energy(aux_stress[mode], H)
-                    _eshelby(stress, H, aux_stress[mode], aux_gradient[mode], mutual, P)
+                    mutual = product(aux_stress[mode], H)
+                    mutual += product(initial[0], aux_strain[mode])
+                    eshelby(stress, H, aux_stress[mode], aux_gradient[mode], mutual, P)
                     for k in range(3):
                         T[k] = 0.0
                         for i in range(3):
                             T[k] += divergence[mode, i] * H[i, k]
                             if k < 2:
                                 T[k] += stress[i, 2] * incompatibility[mode, i, k]
-                    _spread(
+                    if len(state):
+                        configurational(
+                            aux_strain[mode], aux_gradient[mode], H, 1.0, here, slope, initial, T
+                        )
+                    spread(
                         P, T, weights[g] * det, frame, local, values[g], gradients[g],
                         pull, out[c, step, mode],
                     )  # fmt: skip
                 # J: the actual state with itself, half of each product.
                 stress *= 0.5
-                _eshelby(stress, H, stress, H, energy, P)
+                eshelby(stress, H, stress, H, energy, P)
                 T[:] = 0.0
-                _spread(
+                if len(state):
+                    for i in range(3):
+                        for j in range(3):
+                            raw[i, j] = 0.5 * (H[i, j] + H[j, i])
+                    configurational(raw, H, H, 0.5, here, slope, initial, T)
+                spread(
                     P, T, weights[g] * det, frame, local, values[g], gradients[g],
                     pull, out[c, step, 3],
                 )  # fmt: skip
@@ -279,12 +165,13 @@ def face_forces(
     side: IntArray,
     seed: FloatArray,
     displacement: FloatArray,
+    state: FloatArray,
     rule: Rule,
     tangents: FloatArray,
     kind: int,
-    pressure: float,
+    load: FloatArray,
     curve: CurveArrays,
-    constants: tuple[float, float, float],
+    constants: tuple[float, float, float, float],
     out: FloatArray,
 ) -> None:
     """Surface part of F for one face of every cell: - int P_kj n_j phi_n dA.
@@ -292,19 +179,22 @@ def face_forces(
     `cells` are the cells that own the faces, all by the same local face; the rule holds the cell's
     own shape functions at the face's Gauss points; tangents (q, 3, 2) is the derivative of the
     cell's reference coordinates along the face's own two.
-    Where the traction is known, t = - pressure n, t_i u^aux_i,k is counted with it.  On an OUTER
-    face and a BENT one sigma^aux_ij n_j u_i,k - (sigma : eps^aux) n_k comes with it; on a PRESSED
-    crack face the auxiliary traction is zero, and q lies in the face.  On a CUT all of P_kj n_j
-    counts.
+    load, (n, 1 or steps, q, 4) or empty, is pressure and traction: t = traction - pressure n.
+    Where the traction is known, t_i u^aux_i,k is counted with it.  On an OUTER face and a BENT one
+    sigma^aux_ij n_j u_i,k - (sigma : eps^aux) n_k comes with it; on a PRESSED crack face the
+    auxiliary traction is zero but for what a ratio that varies brings, and q lies in the face.  On
+    a CUT all of P_kj n_j counts.
     Fills out, (n, steps, N_MODES, nodes, 3).
     """
-    shear, poisson, turn = constants
-    lame = 2.0 * shear * poisson / (1.0 - 2.0 * poisson)
+    shear, poisson, turn, weight = constants
     values, gradients, weights = rule
     for c in numba.prange(len(cells)):
-        vectors, matrices = np.zeros((5, 3)), np.zeros((7, 3, 3))
+        here, slope, initial = np.zeros(N_COLUMNS), np.zeros((2, 3)), np.zeros((4, 3, 3))
+        here[LAME], here[SHEAR], here[RATIO] = first_constant(shear, poisson), shear, poisson
+        aux_strain, more = np.zeros((3, 3, 3)), 0.0
+        vectors, matrices = np.zeros((6, 3)), np.zeros((7, 3, 3))
         x, place, turning, area = vectors[0], vectors[1], vectors[2], vectors[3]
-        T = vectors[4]
+        T, traction = vectors[4], vectors[5]
         jacobian, inverse, frame, local = matrices[0], matrices[1], matrices[2], matrices[3]
         raw, H, stress = matrices[4], matrices[5], matrices[6]
         P = np.zeros((3, 3))
@@ -314,28 +204,54 @@ def face_forces(
         out[c] = 0.0
         s = seed[c]
         for g in range(len(weights)):
-            _map(points, cells[c], values[g], gradients[g], x, jacobian, inverse)
-            s, r, angle = _look(x, s, side[c], curve, turn, place, frame, turning)
-            auxiliary(
-                r, angle, turning, shear, poisson,
-                aux_gradient, aux_stress, divergence, incompatibility, work,
-            )  # fmt: skip
-            _to_frame(inverse, frame, local)
-            _area_vector(jacobian, tangents[g], frame, weights[g], area)
+            map_point(points, cells[c], values[g], gradients[g], x, jacobian, inverse)
+            s, r, angle = look_at_front(x, s, side[c], curve, turn, place, frame, turning)
+            to_frame(inverse, frame, local)
+            area_vector(jacobian, tangents[g], frame, weights[g], area)
+            size = np.sqrt(area[0] ** 2 + area[1] ** 2 + area[2] ** 2)
             for step in range(len(displacement)):
-                _displacement_gradient(
+                displacement_gradient(
                     displacement[step], cells[c], gradients[g], frame, local, raw, H
                 )
-                energy = _hooke(H, lame, shear, stress)
+                if len(state):
+                    state_at(
+                        state[step], cells[c], values[g], gradients[g], frame, local, weight,
+                        here, slope, initial,
+                    )  # fmt: skip
+                if step == 0 or len(state):
+                    auxiliary(
+                        r, angle, turning, shear, here[RATIO],
+                        aux_gradient, aux_stress, divergence, incompatibility, work,
+                    )  # fmt: skip
+                if len(state):
+                    more = local_auxiliary(
+                        aux_gradient, work[:, :, 3:6], here, slope, shear, here[RATIO],
+                        aux_stress, aux_strain, divergence,
+                    )  # fmt: skip
+                energy = hooke(H, here[LAME], here[SHEAR], stress)
+                energy += product(initial[0], H)
+                stress += initial[0]
+                traction[:] = 0.0
+                if len(load):
+                    acting = load[c, min(step, load.shape[1] - 1), g]
+                    for i in range(3):
+                        traction[i] = -acting[0] * area[i]
+                        for j in range(3):
+                            traction[i] += size * frame[i, j] * acting[1 + j]
                 for mode in range(N_MODES):
                     T[:] = 0.0
-                    if pressure != 0.0:
-                        for k in range(3):
-                            for i in range(3):
-                                moved = H[i, k] if mode == 3 else aux_gradient[mode, i, k]
-                                T[k] += pressure * area[i] * moved
+                    for k in range(3):
+                        for i in range(3):
+                            moved = H[i, k] if mode == 3 else aux_gradient[mode, i, k]
+                            T[k] -= traction[i] * moved
+                            if kind == PRESSED and mode < 3:
+                                trace = aux_gradient[mode, 0, 0] + aux_gradient[mode, 1, 1]
+                                T[k] -= more * trace * area[i] * H[i, k]
                     if kind != PRESSED and not (kind == BENT and mode == 3):
-                        mutual = energy if mode == 3 else _mutual_energy(aux_stress[mode], H)
+                        mutual = energy
+                        if mode < 3:
+                            mutual = product(aux_stress[mode], H)
+                            mutual += product(initial[0], aux_strain[mode])
                         for k in range(3):
                             T[k] += mutual * area[k]
                             for i in range(3):
@@ -345,26 +261,6 @@ def face_forces(
                                     if kind == CUT:
                                         moved = H[i, k] if mode == 3 else aux_gradient[mode, i, k]
                                         T[k] -= stress[i, j] * area[j] * moved
-                    _spread(
+                    spread(
                         P, T, 1.0, frame, local, values[g], gradients[g], pull, out[c, step, mode]
                     )
-
-
-@kernel
-def _area_vector(
-    jacobian: FloatArray, tangents: FloatArray, frame: FloatArray, weight: float, area: FloatArray
-) -> None:
-    """Outward area vector of a face at a Gauss point, in the frame, times its weight."""
-    for i in range(3):
-        area[i] = 0.0
-    for k in range(3):
-        a, b = (k + 1) % 3, (k + 2) % 3
-        a0, a1, b0, b1 = 0.0, 0.0, 0.0, 0.0
-        for d in range(3):
-            a0 += jacobian[a, d] * tangents[d, 0]
-            a1 += jacobian[a, d] * tangents[d, 1]
-            b0 += jacobian[b, d] * tangents[d, 0]
-            b1 += jacobian[b, d] * tangents[d, 1]
-        component = weight * (a0 * b1 - b0 * a1)
-        for i in range(3):
-            area[i] += frame[i, k] * component

@@ -14,10 +14,11 @@ from front3d.arrays import FloatArray, IntArray
 from front3d.crack.front import Front
 from front3d.errors import MethodError
 from front3d.methods.context import FrontContext
+from front3d.methods.loading import station_constants
 from front3d.methods.opening_fit import Fit, OpeningFit, build_windows
 from front3d.methods.opening_pairs import Pairs, at_pairs, behind_front, cell_sizes
 from front3d.results import MethodResult
-from front3d.solid import Material
+from front3d.solid import Constants
 
 FIRST, LAST = 2.0, 9.0
 """Distances used, in cells at the front.
@@ -62,11 +63,15 @@ def evaluate(context: FrontContext) -> list[MethodResult]:
     near &= d <= MAX_SHARE * (d + pairs.other)
     chosen = Pairs(pairs.s[near], d[near], pairs.other[near], pairs.jump[near])
     fit, count = _equations(context, chosen, cell, reach)
-    scale = _scale(context.material)
     variant = _variant(cell, reach)
     # The fit is not linear in the opening, so openings are combined, not K.
-    jump = context.combined(np.moveaxis(chosen.jump, 1, 0)) * scale
-    return [_result(fit.solve(one), count, variant) for one in jump]
+    jump = context.combined(np.moveaxis(chosen.jump, 1, 0))
+    results = []
+    for one, here in zip(jump, station_constants(context), strict=True):
+        # Fitted with the constants of the first station, then each station with its own.
+        first = _scale(here.at(0))
+        results.append(_result(fit.solve(one * first), count, variant, _scale(here) / first))
+    return results
 
 
 def _equations(
@@ -103,10 +108,11 @@ def _curvature(front: Front) -> FloatArray:
     return curvature
 
 
-def _scale(material: Material) -> FloatArray:
-    """(3,) K over opening per square root of the distance, in the order of the modes."""
+def _scale(material: Constants) -> FloatArray:
+    """(3,) or (n_stations, 3) K over opening per square root of the distance, by mode."""
     modulus, shear = material.plane_strain_modulus, material.shear_modulus
-    scale: FloatArray = np.sqrt(2 * np.pi) * np.array([modulus / 8, modulus / 8, shear / 4])
+    by_mode = np.stack([modulus / 8, modulus / 8, np.asarray(shear) / 4], axis=-1)
+    scale: FloatArray = np.sqrt(2 * np.pi) * by_mode
     return scale
 
 
@@ -117,10 +123,10 @@ def _variant(cell: FloatArray, reach: FloatArray) -> str:
     return f"{VARIANT}, from {FIRST:g} to {cells} cells behind the front"
 
 
-def _result(fit: Fit, count: IntArray, variant: str) -> MethodResult:
+def _result(fit: Fit, count: IntArray, variant: str, factor: FloatArray) -> MethodResult:
     columns = {
         "opening_residual": fit.residual,
         "opening_eps": np.full(len(count), fit.eps[fit.leading]),
         "opening_pairs": count.astype(float),
     }
-    return MethodResult("opening", fit.K, columns, variant=variant)
+    return MethodResult("opening", fit.K * factor, columns, variant=variant)

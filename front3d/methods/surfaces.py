@@ -10,6 +10,8 @@ from front3d.crack.facetable import FaceTable, also_among, outer_faces
 from front3d.crack.front import SYMMETRY_PLANE
 from front3d.crack.patches import marked
 from front3d.methods.context import FrontContext
+from front3d.methods.face_loads import loaded_faces
+from front3d.methods.loading import varying_ratio
 from front3d.methods.nodal_forces import BENT, CUT, OUTER, PRESSED
 from front3d.methods.terms import BENT_FACES, FACE_LOAD, FREE_SURFACE, included
 from front3d.methods.tube import Tube
@@ -27,7 +29,9 @@ _ENDS = 0.5
 
 @dataclass(frozen=True, slots=True, eq=False)
 class SurfaceTerm:
-    """Faces that give a surface term, what is known of them, and the pressure on them."""
+    """Faces that give a surface term, what is known of them, and a uniform pressure on them; that
+    on crack faces comes with the other loads.
+    """
 
     faces: FaceTable
     kind: int
@@ -42,11 +46,13 @@ class Surroundings:
     ----------
     terms : faces that give a surface term
     clearance : distance of the nearest surface on which the front does not end
+    same_material : distance of the nearest cell of another material
     symmetry_normals : (n, 3) unit normals of the symmetry planes at its ends or of a half model
     """
 
     terms: tuple[SurfaceTerm, ...]
     clearance: float
+    same_material: float
     symmetry_normals: FloatArray
 
 
@@ -78,17 +84,32 @@ def surroundings(context: FrontContext, tube: Tube) -> Surroundings:
         SurfaceTerm(rest[ends_here], OUTER, options.surface_pressure),
         SurfaceTerm(beside, CUT),
     ]
-    crack, pressure = outer[is_crack], options.face_pressure if included(FACE_LOAD) else 0.0
+    crack, pressed = outer[is_crack], loaded_faces(context) and included(FACE_LOAD)
     if _bent(context, tube, crack) and included(BENT_FACES):
-        terms.append(SurfaceTerm(crack, BENT, pressure))
-    elif pressure:
-        terms.append(SurfaceTerm(crack, PRESSED, pressure))
+        terms.append(SurfaceTerm(crack, BENT))
+    elif pressed or varying_ratio(context.loads):
+        terms.append(SurfaceTerm(crack, PRESSED))
     if not included(FREE_SURFACE):
         terms = [term for term in terms if term.kind != OUTER]
     terms = [term for term in terms if len(term.faces)]
     distance = tube.r[np.searchsorted(tube.nodes, beside.nodes)]
     normals = np.array([normal for normal, _ in planes]).reshape(-1, 3)
-    return Surroundings(tuple(terms), float(distance.min(initial=np.inf)), normals)
+    clearance = float(distance.min(initial=np.inf))
+    return Surroundings(tuple(terms), clearance, _same_material(context, tube), normals)
+
+
+def _same_material(context: FrontContext, tube: Tube) -> float:
+    """Distance from the front of the nearest node of a cell of another material."""
+    foreign = [
+        block.nodes[cells[np.asarray(other[cells])]].ravel()
+        for block, cells, other in zip(
+            context.solid.blocks, tube.cells, context.foreign, strict=False
+        )
+    ]
+    if not foreign:
+        return float("inf")
+    nodes = np.unique(np.concatenate(foreign))
+    return float(tube.r[np.searchsorted(tube.nodes, nodes)].min(initial=np.inf))
 
 
 def _bent(context: FrontContext, tube: Tube, crack: FaceTable) -> bool:

@@ -7,6 +7,7 @@ from collections.abc import Iterator
 from contextlib import contextmanager
 
 CURVATURE, FREE_SURFACE, FACE_LOAD = "curvature", "free surface", "face load"
+BODY_FORCE, GRADIENT = "body force", "gradient of initial strain or constants"
 BENT_FACES = "bent faces"
 
 _left_out: set[str] = set()

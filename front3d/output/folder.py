@@ -51,7 +51,7 @@ def write_results(
     Raises WriteError; then every file is what it was before.
     """
     prepare_folder(folder)
-    earlier = _earlier_pictures(folder)
+    earlier = _earlier_files(folder)
     makers: dict[str, Callable[[], bytes]] = {
         "points.csv": lambda: points_csv(evaluation),
         "front.vtp": lambda: front_vtp(evaluation),
@@ -107,11 +107,12 @@ def _scenes(evaluation: Evaluation, solid: Solid) -> dict[str, Callable[[], byte
     return {f"scene_{names[step]}.png": maker(step) for step in steps}
 
 
-def _earlier_pictures(folder: Path) -> set[str]:
-    """Pictures that an earlier run's summary says it wrote here."""
+def _earlier_files(folder: Path) -> set[str]:
+    """Pictures, and the table of steps, that an earlier run's summary says it wrote here."""
     try:
         files = json.loads((folder / "summary.json").read_text(encoding="utf-8"))["files"]
         kinds = "|".join((*KINDS, "scene"))
-        return {name for name in files if re.fullmatch(rf"({kinds})[\w.+-]*\.(png|svg)", name)}
+        picture = rf"({kinds})[\w.+-]*\.(png|svg)"
+        return {name for name in files if re.fullmatch(rf"{picture}|steps\.csv", name)}
     except (OSError, ValueError, KeyError, TypeError):
         return set()

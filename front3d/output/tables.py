@@ -12,7 +12,7 @@ from front3d.mixing import mix_columns
 from front3d.output.deviation import deviation
 from front3d.output.trust import rings_of
 from front3d.results import MODES, Evaluation, FrontResult, Rings
-from front3d.solid import Material
+from front3d.solid import Constants
 from front3d.units import Units
 
 FIRST_COLUMNS = (
@@ -24,7 +24,7 @@ FIRST_COLUMNS = (
 Column = NDArray[Any]
 
 
-def front_columns(front: FrontResult, units: Units, material: Material) -> dict[str, Column]:
+def front_columns(front: FrontResult, units: Units, material: Constants) -> dict[str, Column]:
     """Every column of one front by name: FIRST_COLUMNS first, (n,) each, text or numbers."""
     n = len(front)
     columns: dict[str, Column] = {
@@ -96,7 +96,9 @@ def all_columns(evaluation: Evaluation) -> dict[str, Column]:
     the stations of the others.
     """
     units, material = evaluation.units, evaluation.material
-    tables = [front_columns(front, units, material) for front in evaluation.fronts]
+    tables = [
+        front_columns(front, units, front.material or material) for front in evaluation.fronts
+    ]
     names = dict.fromkeys(name for table in tables for name in table)
     return {
         name: np.concatenate([t[name] if name in t else _absent(name, len(t["s"])) for t in tables])

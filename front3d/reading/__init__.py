@@ -5,12 +5,13 @@ Libraries for single formats are imported only when such a file is read, to keep
 
 import os
 from collections.abc import Sequence
+from dataclasses import replace
 from pathlib import Path
 
 import numpy as np
 
 from front3d.errors import Front3DError, ReadError
-from front3d.reading.fields import DisplacementFinder
+from front3d.reading.fields import Arrays, DisplacementFinder
 from front3d.reading.files import FORMATS, identify
 from front3d.reading.nodal_csv import read_nodal_csv
 from front3d.reading.normalise import normalise_nodes
@@ -29,6 +30,7 @@ def load(
     path: str | os.PathLike[str],
     *,
     displacement: str | Sequence[str] | None = None,
+    arrays: Sequence[str] = (),
     displacement_file: str | os.PathLike[str] | None = None,
     need_displacement: bool = True,
 ) -> Solid:
@@ -40,6 +42,7 @@ def load(
     displacement : name of the point array that holds the displacement, or three names of scalars
         separated by commas; several such names for several load cases, each a step of that name;
         None finds it by usual names
+    arrays : names of further arrays, by point or by cell, to keep in the steps
     displacement_file : table of nodal displacements (see front3d.reading.nodal_csv) to take in
         place of those in the file
     need_displacement : with False a file without displacements gives a solid without steps
@@ -63,7 +66,7 @@ def load(
             "expected one; its column step tells load cases apart"
         )
     column = displacement if isinstance(displacement, str) else None
-    finder = DisplacementFinder(displacement if displacement_file is None else None)
+    finder = DisplacementFinder(displacement if displacement_file is None else None, tuple(arrays))
     try:
         raw = _read(path, form.reader, finder)
         # Absurd coordinates overflow in the checks and are refused by them.
@@ -74,7 +77,12 @@ def load(
             else:
                 named = read_nodal_csv(Path(displacement_file), raw, column)
                 finder.notes = [f"displacements taken from {Path(displacement_file).name}"]
-            return _solid(path, raw, named, finder.notes)
+            kept = finder.kept(len(named))
+            named = [
+                replace(step, point_arrays=of_step.points)
+                for step, of_step in zip(named, kept, strict=True)
+            ]
+            return _solid(path, raw, named, [k.cells for k in kept], finder.notes)
     except Front3DError as error:
         said = str(error)
         raise ReadError(said if said.startswith(str(path)) else f"{path}: {said}") from error
@@ -94,7 +102,9 @@ def _read(path: Path, reader: str, finder: DisplacementFinder) -> RawModel:
     return vtk_family.READERS[reader](path, finder)
 
 
-def _solid(path: Path, raw: RawModel, named: list[Step], remarks: list[str]) -> Solid:
+def _solid(
+    path: Path, raw: RawModel, named: list[Step], cells: list[Arrays], remarks: list[str]
+) -> Solid:
     for step in named:
         _check_length(step, len(raw.points))
     raw, named = join_pieces(raw, named)
@@ -110,9 +120,28 @@ def _solid(path: Path, raw: RawModel, named: list[Step], remarks: list[str]) -> 
         blocks.append(CellBlock(block.kind, nodes))
         notes += mended
     extent = float(np.ptp(points[used], axis=0).max())
-    steps = tuple(Step(s.name, _clean_displacement(s, used, extent), s.time) for s in named)
+    steps = tuple(
+        Step(
+            s.name,
+            _clean_displacement(s, used, extent),
+            s.time,
+            s.point_arrays,
+            _by_block(arrays, raw),
+        )
+        for s, arrays in zip(named, cells, strict=True)
+    )
     notes += remarks
-    return Solid(points, tuple(blocks), steps, path.name, spacing, tuple(notes))
+    return Solid(points, tuple(blocks), steps, path.name, spacing, tuple(notes), raw.groups)
+
+
+def _by_block(arrays: Arrays, raw: RawModel) -> dict[str, tuple[np.ndarray, ...]]:
+    """Cell arrays, one array per block; those without a value for every cell are left out."""
+    largest = max(int(block.numbers.max(initial=-1)) for block in raw.blocks)
+    return {
+        name: tuple(values[block.numbers] for block in raw.blocks)
+        for name, values in arrays.items()
+        if len(values) > largest
+    }
 
 
 def _clean_points(points: np.ndarray, used: np.ndarray, notes: list[str]) -> np.ndarray:

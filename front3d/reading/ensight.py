@@ -26,7 +26,7 @@ _LINE += r"|metadata|constant per case file|maximum time steps):.*"
 def check_case(path: Path) -> None:
     """Raise ReadError if the case file is no EnSight Gold, or names files that cannot be read."""
     text = path.read_text(encoding="latin-1")
-    if not re.search(r"^\s*type:\s*ensight\s+gold\b", text, re.MULTILINE):
+    if not re.search(r"^type:[ \t]+ensight[ \t]+gold[ \t\r]*$", text, re.MULTILINE):
         raise ReadError(f"{path}: found no line 'type: ensight gold', expected EnSight Gold")
     if re.search(r"^\s*model:.*change_coords_only", text, re.MULTILINE):
         raise ReadError(
@@ -126,7 +126,12 @@ def _walk(data: np.ndarray) -> list[int] | None:
     order, nodes = "<i4", []
     line()
     line(), line()
-    ids = [line().endswith(("given", "ignore")) for _ in range(2)]
+    ids = []
+    for what in ("node id ", "element id "):
+        said = line()
+        if said.removeprefix(what) not in ("off", "given", "assign", "ignore"):
+            raise ValueError
+        ids.append(said.endswith(("given", "ignore")))
     word = line()
     if word == "extents":
         skip(6)

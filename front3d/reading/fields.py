@@ -45,31 +45,64 @@ def _width(array: NDArray[Any]) -> int:
 
 
 @dataclass(frozen=True, slots=True, eq=False)
+class Kept:
+    """Further arrays of one frame that were asked for: by point, and by cell number of the file."""
+
+    points: dict[str, NDArray[Any]] = field(default_factory=dict)
+    cells: dict[str, NDArray[Any]] = field(default_factory=dict)
+
+    def with_missing(self, others: "Kept") -> "Kept":
+        """With what `others` has besides."""
+        return Kept(others.points | self.points, others.cells | self.cells)
+
+
+@dataclass(frozen=True, slots=True, eq=False)
 class _Found:
     case: str
     values: NDArray[Any]
     time: float | None
+    kept: "Kept"
 
 
 @dataclass(slots=True, eq=False)
 class DisplacementFinder:
-    """Collects the displacement of each frame (time) that a reader offers."""
+    """Collects the displacement of each frame (time) that a reader offers.
+
+    `keep` names further arrays, by point or by cell, that are kept beside it.  A frame that holds
+    no displacement may hold them: then they serve every frame that lacks them.
+    """
 
     wanted: str | tuple[str, ...] | None = None
+    keep: tuple[str, ...] = ()
     notes: list[str] = field(default_factory=list)
     _found: list[_Found] = field(default_factory=list)
     _seen: dict[str, int] = field(default_factory=dict)
     _frames: int = 0
     _without: int = 0
+    _loose: Kept = field(default_factory=Kept)
 
-    def offer(self, arrays: Arrays, time: float | None = None) -> None:
-        """Take the displacements out of the point arrays of one frame, (n,) or (n, components)."""
+    def offer(self, arrays: Arrays, time: float | None = None, cells: Arrays | None = None) -> None:
+        """Take the displacements out of the point arrays of one frame, (n,) or (n, components),
+        and the arrays to keep out of them and of the cell arrays.
+        """
         arrays = {name: a for name, a in arrays.items() if a.dtype.kind in "fiu" and a.ndim >= 1}
         self._seen |= {name: _width(array) for name, array in arrays.items()}
         taken = self._chosen(arrays)
         self._frames += 1
         self._without += not taken
-        self._found += [_Found(case, _vectors(case, v), time) for case, v in taken.items()]
+        kept = Kept(_numbers(arrays, self.keep), _numbers(cells or {}, self.keep))
+        if not taken:
+            self._loose = self._loose.with_missing(kept)
+        self._found += [_Found(case, _vectors(case, v), time, kept) for case, v in taken.items()]
+
+    def kept(self, count: int) -> list[Kept]:
+        """The arrays kept for each of `count` steps; where these come from elsewhere, those of
+        the first frame serve them all.
+        """
+        by_step = [found.kept.with_missing(self._loose) for found in self._found]
+        if len(by_step) != count:
+            return [by_step[0] if by_step else self._loose] * count
+        return by_step
 
     def steps(self, needed: bool) -> list[Step]:
         """The steps found, with distinct names; ReadError if one is needed and there is none."""
@@ -149,6 +182,16 @@ class DisplacementFinder:
                 self.notes.append(note)
             return {"": arrays[exact[0]]}
         return others or _scalars(arrays, _SCALAR_BASES)
+
+
+def _numbers(arrays: Arrays, names: tuple[str, ...]) -> dict[str, NDArray[Any]]:
+    """(n, components) float64 of those that are there and hold numbers."""
+    found = {name: _pick(arrays, name) for name in names}
+    return {
+        name: np.asarray(array, dtype=np.float64).reshape(len(array), -1)
+        for name, array in found.items()
+        if array is not None and array.dtype.kind in "fiu" and array.ndim >= 1
+    }
 
 
 def _pick(arrays: Arrays, name: str) -> NDArray[Any] | None:

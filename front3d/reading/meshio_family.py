@@ -82,6 +82,16 @@ def _arrays(point_data: dict[str, Any]) -> dict[str, NDArray[Any]]:
     return {name: np.asarray(values) for name, values in point_data.items()}
 
 
+def _cell_arrays(cell_data: dict[str, Any]) -> dict[str, NDArray[Any]]:
+    """Values of all blocks one after the other, as the cells are numbered."""
+    joined = {}
+    for name, parts in cell_data.items():
+        values = [np.asarray(part) for part in parts]
+        if len({(part.shape[1:], part.dtype.kind) for part in values}) == 1:
+            joined[name] = np.concatenate(values)
+    return joined
+
+
 def read_med(path: Path, finder: DisplacementFinder) -> RawModel:
     """MED: fields of several times come as arrays named "NAME[k] - time"."""
     with python_library(path, "MED"):
@@ -96,9 +106,10 @@ def read_med(path: Path, finder: DisplacementFinder) -> RawModel:
             moment = (int(match[2]), float(match[3])) if match else None
             frames.setdefault(moment, {})[match[1] if match else name] = values
         frames.get(None, {}).pop("point_tags", None)
+        cells = _cell_arrays(mesh.cell_data)
         for moment, arrays in frames.items():
             if arrays:
-                finder.offer(arrays, moment[1] if moment else None)
+                finder.offer(arrays, moment[1] if moment else None, cells)
     return raw
 
 
@@ -112,14 +123,14 @@ def read_xdmf(path: Path, finder: DisplacementFinder) -> RawModel:
         grids = ET.parse(path).getroot().iter("Grid")
         if not any(g.get("CollectionType") == "Temporal" for g in grids):
             mesh = XdmfReader(str(path)).read()
-            finder.offer(_arrays(mesh.point_data))
+            finder.offer(_arrays(mesh.point_data), None, _cell_arrays(mesh.cell_data))
             return model(mesh.points, ((block.type, block.data) for block in mesh.cells))
         with TimeSeriesReader(path) as reader:
             points, cells = reader.read_points_cells()
             raw = model(points, ((block.type, block.data) for block in cells))
             for k in range(reader.num_steps):
-                time, point_data, _ = reader.read_data(k)
-                finder.offer(_arrays(point_data), time)
+                time, point_data, cell_data = reader.read_data(k)
+                finder.offer(_arrays(point_data), time, _cell_arrays(cell_data))
         return raw
 
 

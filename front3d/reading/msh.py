@@ -4,6 +4,7 @@ meshio's own loop keeps only the last time of a field, drops the times, and trus
 stand in the order of the nodes; here every `$NodeData` section is placed by its node numbers.
 """
 
+import os
 import struct
 from pathlib import Path
 from typing import Any, BinaryIO
@@ -12,6 +13,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from front3d.errors import ReadError
+from front3d.loads import PHYSICAL_GROUP
 from front3d.reading.fields import DisplacementFinder
 from front3d.reading.guard import python_library
 from front3d.reading.meshio_family import mend_meshio, model
@@ -22,7 +24,7 @@ def read_msh(path: Path, finder: DisplacementFinder) -> RawModel:
     """Mesh and node data of an MSH file; every (time step, time) becomes one frame."""
     with python_library(path, "MSH"), path.open("rb") as file:
         mend_meshio()
-        points, tags, cells, data = _sections(file)
+        points, tags, cells, data, groups, names = _sections(file)
         if not len(points) or cells is None:
             raise ReadError(f"{path}: found no $Nodes or no $Elements section; export the mesh")
         rows = _rows(tags)
@@ -36,13 +38,14 @@ def read_msh(path: Path, finder: DisplacementFinder) -> RawModel:
                 raise ReadError(f"{path}: $NodeData {name!r} names a node that is not in $Nodes")
             array[rows[numbers]] = values
         for (_, time), arrays in sorted(frames.items(), key=lambda item: item[0]):
-            finder.offer(arrays, time)
+            finder.offer(arrays, time, {PHYSICAL_GROUP: groups})
         raw = model(points, cells)
         raw.node_numbers = tags + 1
+        raw.groups.update(names)
         return raw
 
 
-def _sections(file: BinaryIO) -> tuple[Any, Any, Any, list[Any]]:
+def _sections(file: BinaryIO) -> tuple[Any, Any, Any, list[Any], Any, dict[str, int]]:
     from meshio.gmsh import _gmsh22, _gmsh41, common
 
     version, ascii_, size = _header(file)
@@ -50,6 +53,8 @@ def _sections(file: BinaryIO) -> tuple[Any, Any, Any, list[Any]]:
     tags: Any = np.empty(0, dtype=np.int64)
     cells: Any = None
     data: list[Any] = []
+    groups: Any = np.empty(0)
+    names: dict[str, Any] = {}
     physical: Any = None
     bounding: Any = None
     while line := file.readline():
@@ -59,6 +64,8 @@ def _sections(file: BinaryIO) -> tuple[Any, Any, Any, list[Any]]:
         if not section.startswith("$"):
             raise ReadError(f"found the line {section[:40]!r}, expected the start of a section")
         section = section[1:]
+        if section in ("Nodes", "Elements"):
+            _check_counts(file, section)
         if section == "NodeData":
             data.append(_node_data(file, ascii_))
         elif section == "Entities" and version == "4.1":
@@ -71,23 +78,61 @@ def _sections(file: BinaryIO) -> tuple[Any, Any, Any, list[Any]]:
             # Only the parser of 4.1 counts from 0.
             tags = np.asarray(tags).astype(np.int64) - (version != "4.1")
         elif section == "Elements":
-            cells = _elements(file, version, ascii_, size, tags, physical, bounding)
+            cells, groups = _elements(file, version, ascii_, size, tags, physical, bounding)
+        elif section == "PhysicalNames":
+            common._read_physical_names(file, names)
         else:
             common._fast_forward_to_end_block(file, section)
-    return points, tags, cells, data
+    volumes = {name: int(number) for name, (number, dimension) in names.items() if dimension == 3}
+    return points, tags, cells, data, groups, volumes
+
+
+def _check_counts(file: BinaryIO, section: str) -> None:
+    """The counts on the first line of a section cannot be larger than the file is long."""
+    place, length = file.tell(), os.fstat(file.fileno()).st_size
+    counts = [int(word) for word in file.read(80).split(b"\n")[0].split() if word.isdigit()]
+    file.seek(place)
+    # The parser of 4.1 counts blocks and entities first, then numbers from the lowest to the
+    # highest, which may be far apart.
+    if any(count > length for count in counts[:2]):
+        raise ReadError(
+            f"${section} claims {max(counts[:2])} entries in a file of {length} bytes, expected no "
+            "more than fit into it: the file is damaged"
+        )
 
 
 def _elements(
     file: BinaryIO, version: str, ascii_: bool, size: int, tags: Any, physical: Any, bounding: Any
-) -> list[tuple[str, Any]]:
+) -> tuple[list[tuple[str, Any]], NDArray[Any]]:
+    """Cells, (type, nodes) a block, and the number of the physical group of every cell, 0 where it
+    belongs to none.
+    """
     from meshio.gmsh import _gmsh22, _gmsh41
 
     if version == "2.2":
         cells: list[tuple[str, Any]] = []
-        _gmsh22._read_cells(file, cells, tags + 1, ascii_)
-        return cells
-    blocks, _, _ = _gmsh41._read_elements(file, tags, physical, bounding, ascii_, size, {})
-    return [(block.type, block.data) for block in blocks]
+        _, by_type = _gmsh22._read_cells(file, cells, tags + 1, ascii_)
+        return cells, _groups_by_type(cells, by_type.get("gmsh:physical", {}))
+    blocks, found, _ = _gmsh41._read_elements(file, tags, physical, bounding, ascii_, size, {})
+    cells = [(block.type, block.data) for block in blocks]
+    parts = found.get("gmsh:physical", [])
+    if [len(part) for part in parts] != [len(nodes) for _, nodes in cells]:
+        # The parser leaves out the blocks without a group, and does not say which.
+        parts = [np.zeros(len(nodes)) for _, nodes in cells]
+    return cells, np.concatenate([*parts, np.empty(0)])
+
+
+def _groups_by_type(cells: list[tuple[str, Any]], found: dict[str, Any]) -> NDArray[Any]:
+    """The same from lists by cell type, whose cells stand in the order of the blocks."""
+    total = {kind: sum(len(n) for k, n in cells if k == kind) for kind, _ in cells}
+    passed = dict.fromkeys(total, 0)
+    parts = [np.empty(0)]
+    for kind, nodes in cells:
+        start, passed[kind] = passed[kind], passed[kind] + len(nodes)
+        whole = found.get(kind, ())
+        complete = len(whole) == total[kind]
+        parts.append(whole[start : passed[kind]] if complete else np.zeros(len(nodes)))
+    return np.concatenate(parts)
 
 
 def _header(file: BinaryIO) -> tuple[str, bool, int]:
@@ -121,6 +166,8 @@ def _node_data(file: BinaryIO, ascii_: bool) -> tuple[str, int, float, Any, Any]
     if len(integers) < 3:
         raise ReadError(f"$NodeData {name!r} has {len(integers)} integer tags, expected 3 or more")
     step, width, count = integers[:3]
+    if not 0 <= width * count <= os.fstat(file.fileno()).st_size:
+        raise ReadError(f"$NodeData {name!r} claims {count} nodes, more than fit into the file")
     if ascii_:
         table = np.fromfile(file, count=count * (1 + width), sep=" ").reshape(count, 1 + width)
         numbers, values = table[:, 0].astype(np.int64), table[:, 1:]

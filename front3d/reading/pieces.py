@@ -80,7 +80,15 @@ def join_pieces(raw: RawModel, steps: list[Step]) -> tuple[RawModel, list[Step]]
         *raw.notes,
         f"{len(row) - len(keep)} border nodes of {int(raw.pieces.max()) + 1} pieces joined {how}",
     ]
-    return joined, [Step(s.name, s.displacement[keep], s.time) for s in steps]
+    return joined, [
+        Step(
+            s.name,
+            s.displacement[keep],
+            s.time,
+            {name: values[keep] for name, values in s.point_arrays.items()},
+        )
+        for s in steps
+    ]
 
 
 def _by_numbers(raw: RawModel, used: BoolArray) -> IntArray | None:

@@ -31,6 +31,7 @@ class RawModel:
     refused : solid cells of types that front3d does not have, by name
     single_if_exact : coordinates come in double precision whatever the file has, so take them for
         single precision where each of them is a single-precision number
+    groups : numbers of the named groups of cells
     pieces : (n,) the piece each point comes from; None if the model is one piece
     global_ids : (n,) node numbers that hold across pieces, if the file has them
     node_numbers : (n,) the numbers of the nodes in the file, if it has any
@@ -42,6 +43,7 @@ class RawModel:
     refused: Counter[str] = field(default_factory=Counter)
     notes: list[str] = field(default_factory=list)
     single_if_exact: bool = False
+    groups: dict[str, int] = field(default_factory=dict)
     pieces: IntArray | None = None
     global_ids: IntArray | None = None
     node_numbers: IntArray | None = None

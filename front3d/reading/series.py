@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 from front3d.errors import ReadError
 from front3d.reading.fields import DisplacementFinder
 from front3d.reading.raw import RawModel
-from front3d.reading.vtk_grid import point_arrays, to_model
+from front3d.reading.vtk_grid import cell_arrays, point_arrays, to_model
 
 
 class Series:
@@ -29,7 +29,7 @@ class Series:
                 f"{self.path}: the mesh at time {time} differs from the first one, expected the "
                 "same undeformed mesh at every time; export without remeshing or deformed points"
             )
-        self.finder.offer(point_arrays(grids), time)
+        self.finder.offer(point_arrays(grids), time, cell_arrays(grids))
 
     def result(self) -> RawModel:
         if self.model is None:

@@ -12,7 +12,7 @@ from front3d.reading.guard import python_library, vtk_library
 from front3d.reading.legacy import check_legacy
 from front3d.reading.raw import RawModel
 from front3d.reading.series import Series
-from front3d.reading.vtk_grid import point_arrays, time_of, to_grids, to_model
+from front3d.reading.vtk_grid import cell_arrays, point_arrays, time_of, to_grids, to_model
 from front3d.reading.vtk_series import read_ensight, read_exodus, read_vtkhdf
 from front3d.reading.vtu import check_vtu
 
@@ -72,7 +72,7 @@ def _read_single(
     def read(path: Path, finder: DisplacementFinder) -> RawModel:
         grids = load(path)
         model = to_model(grids, path)
-        finder.offer(point_arrays(grids), time_of(grids))
+        finder.offer(point_arrays(grids), time_of(grids), cell_arrays(grids))
         return model
 
     return read

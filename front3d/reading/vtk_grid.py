@@ -173,6 +173,29 @@ def point_arrays(grids: list[Any]) -> dict[str, NDArray[Any]]:
     }
 
 
+def cell_arrays(grids: list[Any]) -> dict[str, NDArray[Any]]:
+    """Cell arrays as the cells are numbered; of pieces only where all their cells are solid ones,
+    since pieces are numbered by these.
+    """
+    grids = [grid for grid in grids if grid.n_points]
+    if len(grids) > 1:
+        for grid in grids:
+            solid = np.isin(grid.celltypes, [*BY_VTK_TYPE, _VOXEL])
+            if not (solid & _not_ghosts(grid)).all():
+                return {}
+    return joined_cells(grids)
+
+
+def joined_cells(grids: list[Any]) -> dict[str, NDArray[Any]]:
+    """Cell arrays that all grids have, one after the other."""
+    joined = {}
+    for name in set.intersection(*(set(grid.cell_data) for grid in grids)) if grids else ():
+        parts = [np.asarray(grid.cell_data[name]) for grid in grids]
+        if all(p.dtype.kind in "fiu" for p in parts) and len({p.shape[1:] for p in parts}) == 1:
+            joined[name] = np.concatenate(parts)
+    return joined
+
+
 def time_of(grids: list[Any]) -> float | None:
     values = [] if not grids else grids[0].field_data.get("TimeValue", [])
     return float(values[0]) if len(values) == 1 else None

@@ -13,7 +13,7 @@ from front3d.reading.guard import vtk_library
 from front3d.reading.netcdf import check_exodus
 from front3d.reading.raw import RawModel
 from front3d.reading.series import Series
-from front3d.reading.vtk_grid import to_grids
+from front3d.reading.vtk_grid import joined_cells, to_grids
 
 
 def read_vtkhdf(path: Path, finder: DisplacementFinder) -> RawModel:
@@ -55,8 +55,9 @@ def read_exodus(path: Path, finder: DisplacementFinder) -> RawModel:
         reader.ApplyDisplacementsOff()
         reader.SetSqueezePoints(False)
         nodal = vtkExodusIIReader.NODAL
-        for k in range(reader.GetNumberOfObjectArrays(nodal)):
-            reader.SetObjectArrayStatus(nodal, reader.GetObjectArrayName(nodal, k), 1)
+        for sort in (nodal, vtkExodusIIReader.ELEM_BLOCK):
+            for k in range(reader.GetNumberOfObjectArrays(sort)):
+                reader.SetObjectArrayStatus(sort, reader.GetObjectArrayName(sort, k), 1)
         for time in _update(reader):
             series.add(_copies(_united(to_grids(reader.GetOutputDataObject(0)))), time)
     model = series.result()
@@ -102,4 +103,6 @@ def _united(grids: list[Any]) -> list[Any]:
     for grid in reversed(grids):
         for name in grid.point_data:
             whole.point_data[name] = grid.point_data[name]
+    for name, values in joined_cells(grids).items():
+        whole.cell_data[name] = values
     return [whole]

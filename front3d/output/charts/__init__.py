@@ -46,7 +46,7 @@ def charts_of(evaluation: Evaluation) -> dict[str, Callable[[], "Figure"]]:
         section = section_of(front)
         if section is not None:
             makers[f"through_thickness{tail}"] = partial(through_thickness, front, section, units)
-        makers[f"mode_mix{tail}"] = partial(mode_mix, front, units, material)
+        makers[f"mode_mix{tail}"] = partial(mode_mix, front, units, front.material or material)
     for number, row in rows.items():
         if len(row) > 1:
             tail = "" if len(rows) == 1 else f"_front{number}"

@@ -21,7 +21,7 @@ from front3d.output.charts.style import (
     widen,
 )
 from front3d.results import FrontResult
-from front3d.solid import Material
+from front3d.solid import Constants
 from front3d.units import Units
 
 if TYPE_CHECKING:
@@ -33,7 +33,7 @@ _TINTS = ("#8fbfe0", "#f2b48a", "#8cc7b3")
 _HATCHES = ("", "///", "...")
 
 
-def mode_mix(front: FrontResult, units: Units, material: Material) -> "Figure":
+def mode_mix(front: FrontResult, units: Units, material: Constants) -> "Figure":
     """Three panels over s/L: mode angles, kink and twist, G by mode."""
     captions = [
         "Kink turns the growth from e1 towards e2, twist the normal of the new surface towards e3. "
@@ -110,7 +110,7 @@ def _curves(
     axes.set_ylabel(label, fontsize=MEDIUM)
 
 
-def _energy(axes: "Axes", front: FrontResult, units: Units, material: Material) -> None:
+def _energy(axes: "Axes", front: FrontResult, units: Units, material: Constants) -> None:
     x = closed_up(front.s_rel, front, 1.0)
     split = np.stack([closed_up(g, front) for g in energy_by_mode(front.K, material).T])
     top = np.cumsum(split, axis=0)
