@@ -13,46 +13,10 @@ poisson = 0.3
 length = "mm"
 stress = "MPa"
 
-[options]
-crack_plane = "z=0"             # half model, where it is not found
-symmetry_planes = ["x=0"]       # on which fronts end, where they are not found
-front_nodes = [4, 9, 11]        # only the part of the fronts that has these nodes
-front_line = [[0, 0, 0], [0, 5, 0]]   # or that lies along this line
-expected_stress = 100.0         # K is checked against it, to a power of ten
-face_pressure = 0.0
-surface_pressure = 0.0          # where a front ends
+[options]                       # README.md shows every key of this section and of
+crack_plane = "z=0"             # [load], [temperature] and [materials]
 rings = [0.4, 0.6, 0.8]
-hat = 4
-up = [0, 0, 1]
-steps = ["tension"]
-methods = ["closure"]
 compare = ["penny:a=10,tension=100"]
-combine = ["both = 1.2*pressure + 0.8*thermal"]
-stations = [0, 0.5, 1]
-unopened = false
-
-[load]                          # what acts besides, all optional
-face_polynomial = [5.0, -0.1]   # pressure on the crack faces, c0 + c1 d
-depth_direction = [0, 1, 0]     # d along it, from the point
-depth_from = [0, 0, 0]
-face_array = "pressure"         # pressure or traction by point or cell
-density = 7.85e-9
-gravity = [0, 0, -9810]
-rotation = 314.0                # radians per unit of time
-rotation_axis = [0, 0, 1]
-rotation_point = [0, 0, 0]
-initial_stress = "residual"     # xx, yy, zz, xy, yz, xz by point or cell
-initial_strain = "misfit"
-
-[temperature]
-temperature = "T"               # point array
-reference_temperature = 20
-expansion = 1.2e-5              # or [[20, 1.1e-5], [300, 1.3e-5]]
-elastic_table = [[20, 210e3, 0.3], [300, 190e3, 0.3]]
-
-[materials]                     # in place of [material]
-region_array = "part"           # cell array; the physical groups of the file by default
-regions = [{ region = 1, young = 210e3, poisson = 0.3 }]
 ```
 """
 
@@ -88,6 +52,7 @@ class Case:
     symmetry_planes: tuple[Plane, ...] | None = None
     expected_stress: float | None = None
     front_nodes: tuple[int, ...] | None = None
+    front_array: str | None = None
     front_line: tuple[Vector, ...] | None = None
     face_pressure: float | None = None
     surface_pressure: float | None = None
@@ -136,6 +101,7 @@ class Case:
             symmetry_planes=self.symmetry_planes or (),
             expected_stress=self.expected_stress,
             front_nodes=self.front_nodes or (),
+            front_array=self.front_array,
             front_line=self.front_line or (),
             face_pressure=self.face_pressure or 0.0,
             surface_pressure=self.surface_pressure or 0.0,
@@ -166,6 +132,11 @@ class Case:
     def results(self) -> tuple[Path, ...]:
         """All result files; empty where none is named."""
         return () if self.result is None else (self.result, *(self.more or ()))
+
+    @property
+    def arrays(self) -> tuple[str, ...]:
+        """Names of the arrays that the result file must hold besides the displacement."""
+        return (*self.loads.arrays, *([self.front_array] if self.front_array else []))
 
     @property
     def units(self) -> Units:
@@ -338,6 +309,7 @@ _KEYS: Mapping[str, Any] = {
         "crack_plane": _plane,
         "expected_stress": _number,
         "front_nodes": _list_of(_node, "a list of node numbers such as [4, 9, 11]"),
+        "front_array": _text,
         "front_line": _list_of(_vector, "a list of points such as [[0, 0, 0], [0, 1, 0]]"),
         "symmetry_planes": _list_of(_plane, 'a list of planes such as ["x=0"]'),
         "face_pressure": _number,

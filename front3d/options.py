@@ -54,8 +54,8 @@ class Options:
     ----------
     crack_plane : symmetry plane that holds the crack, for a half model; None finds it by its
         displacements where there are no coincident faces
-    front_nodes, front_line : nodes of the front, or a polyline along it, where only this part of
-        the fronts is wanted
+    front_nodes, front_array, front_line : nodes of the front, or a point array that is not zero
+        there, or a polyline along it, where only this part of the fronts is wanted
     expected_stress : remote stress that K is checked against, to a power of ten; None does not
     symmetry_planes : planes on which fronts end by symmetry; others are found by displacements
     face_pressure : pressure on the crack faces, positive when it opens them
@@ -92,6 +92,7 @@ class Options:
     symmetry_planes: tuple[Plane, ...] = ()
     expected_stress: float | None = None
     front_nodes: tuple[int, ...] = ()
+    front_array: str | None = None
     front_line: tuple[Vector, ...] = ()
     combine: tuple[str, ...] = ()
     stations: tuple[float, ...] | None = None

@@ -130,6 +130,21 @@ def test_of_several_fronts_only_the_given_one_is_found():
     np.testing.assert_array_equal(found.corners, first.corners + n)
 
 
+def test_an_array_of_the_file_marks_the_front(penny):
+    some = front3d.find_fronts(penny).fronts[0][0].corners[10:30]
+    mark = np.zeros((len(penny.points), 1))
+    mark[some] = 7.0
+    (step,) = penny.steps
+    solid = replace(penny, steps=(replace(step, point_arrays={"front": mark}),))
+    found, given = (
+        front3d.find_fronts(solid, **option).fronts[0][0]
+        for option in ({"front_array": "front"}, {"front_nodes": tuple(some.tolist())})
+    )
+    np.testing.assert_array_equal(found.corners, given.corners)
+    with pytest.raises(CrackError, match="found no point array 'tip'"):
+        front3d.find_fronts(solid, front_array="tip")
+
+
 def test_nodes_without_crack_faces_behind_them_are_refused(penny):
     with pytest.raises(CrackError, match=r"not on the edge of a crack surface; .*upper side"):
         front3d.find_fronts(penny, front_nodes=(0, 1))

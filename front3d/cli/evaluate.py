@@ -80,7 +80,7 @@ def evaluate_case(case: Case, out: Path, *, pictures: bool) -> "tuple[Evaluation
         solid = load_all(
             case.results,
             displacement=case.displacement,
-            arrays=case.loads.arrays,
+            arrays=case.arrays,
             displacement_file=case.displacement_file,
         )
         evaluation = evaluate_solid(solid, material, case.options, case.units, progress)

@@ -153,6 +153,11 @@ def add_crack_flags(parser: argparse.ArgumentParser) -> None:
         help="only the part of the fronts that has these nodes (numbered from 0, in any order)",
     )
     parser.add_argument(
+        "--front-array",
+        metavar="NAME",
+        help="only the part of the fronts at whose nodes this point array is not zero",
+    )
+    parser.add_argument(
         "--front-line",
         type=line,
         metavar="FILE",

@@ -42,6 +42,8 @@ def given_edges(
 ) -> tuple[FrontEdges, IntArray]:
     """The edges whose nodes were given, or all; and the entities at which the front goes on."""
     nodes, line = options.front_nodes, options.front_line
+    if options.front_array:
+        nodes = _marked_nodes(solid, options.front_array)
     if not nodes and not line:
         return edges, np.zeros(0, np.int64)
     ends = same.entity[edges.ends[:, :2]]
@@ -69,6 +71,20 @@ def given_edges(
         )
     goes_on = np.intersect1d(ends[chosen], ends[~chosen])
     return FrontEdges(edges.ends[chosen], edges.face[chosen]), goes_on
+
+
+def _marked_nodes(solid: Solid, name: str) -> tuple[int, ...]:
+    """Nodes at which a point array is not zero."""
+    arrays = solid.steps[0].point_arrays if solid.steps else {}
+    if name not in arrays:
+        raise CrackError(
+            f"{solid.source}: front array: found no point array {name!r}, expected one that is not "
+            "zero at the nodes of the front (front3d.load(..., arrays=[...]) keeps it)"
+        )
+    marked = np.flatnonzero(np.any(arrays[name] != 0, axis=1))
+    if not len(marked):
+        raise CrackError(f"{solid.source}: front array: {name!r} is zero at every node")
+    return tuple(marked.tolist())
 
 
 def _distance_to_line(x: FloatArray, line: FloatArray) -> FloatArray:
