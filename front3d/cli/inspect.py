@@ -29,6 +29,7 @@ def run(arguments: argparse.Namespace) -> int:
         displacement=case.displacement,
         displacement_file=case.displacement_file,
         need_displacement=False,
+        arrays=case.arrays,
     )
     print("\n".join(describe_solid(solid)), flush=True)
     print("\n".join(describe_cracks(describe(solid, case.options))))
