@@ -6,14 +6,14 @@ from dataclasses import asdict
 import numpy as np
 
 from front3d.crack import CrackModel, find_cracks
-from front3d.errors import CaseError, Front3DError, MeshError, MethodError
+from front3d.errors import Front3DError, MeshError, MethodError
 from front3d.evidence import REPORTED, weigh
 from front3d.flags import front_warnings, station_flags
 from front3d.handbook.catalogue import parse
 from front3d.handbook.comparing import compare_fronts
 from front3d.handbook.placing import FrontShape
 from front3d.methods import METHODS, FrontContext
-from front3d.options import Options
+from front3d.options import Options, unknown_method
 from front3d.results import (
     Comparison,
     Evaluation,
@@ -138,7 +138,7 @@ def _apply_methods(context: FrontContext) -> tuple[dict[str, list[MethodResult]]
 def _check_methods(options: Options) -> None:
     unknown = [name for name in options.methods or () if name not in METHODS]
     if unknown:
-        raise CaseError(f"method: found {unknown[0]!r}, expected one of {', '.join(METHODS)}")
+        raise unknown_method(unknown[0], METHODS)
 
 
 def _front_result(
