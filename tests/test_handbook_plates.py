@@ -122,7 +122,7 @@ def test_equations_are_doubted_where_they_are_off(text, said):
 
 
 def test_an_equation_is_not_called_off_where_it_is_within_4_per_cent():
-    """Bending at a/c = 0.6, a/t = 0.4: outside what its authors' claim was confirmed for, not off."""
+    """Bending at a/c = 0.6, a/t = 0.4: its claim is not confirmed there, but it is not off."""
     request = parse("newman-raju-surface:a=6,c=10,t=15,bending=1")
     (note,) = request.solution.doubts(request.values)
     assert "known to be off" not in note
