@@ -1,12 +1,25 @@
 """What a user may choose about an evaluation; the defaults come from the mesh."""
 
+from collections.abc import Iterable
 from dataclasses import dataclass, field, fields
+from difflib import get_close_matches
 from math import isfinite
 from typing import Any
 
 from front3d.combination import parse_all
 from front3d.errors import CaseError
 from front3d.loads import Loads, Vector
+
+METHOD_NAMES = ("interaction", "closure", "opening")
+"""Names of the methods, for a check that loads no numerical library; front3d.methods has them."""
+
+
+def unknown_method(name: str, known: Iterable[str]) -> CaseError:
+    """What is wrong with the name of a method, and what comes nearest."""
+    names = list(known)
+    near = get_close_matches(name, names, n=1, cutoff=0.7)
+    nearest = f", did you mean {near[0]!r}?" if near else ""
+    return CaseError(f"method: found {name!r}{nearest} (expected one of {', '.join(names)})")
 
 
 @dataclass(frozen=True, slots=True)

@@ -6,7 +6,7 @@ from dataclasses import asdict, replace
 import numpy as np
 
 from front3d.crack import CrackModel, find_cracks
-from front3d.errors import CaseError, Front3DError, MeshError, MethodError
+from front3d.errors import Front3DError, MeshError, MethodError
 from front3d.evidence import REPORTED, weigh
 from front3d.flags import front_warnings, station_flags
 from front3d.handbook.catalogue import parse
@@ -15,7 +15,7 @@ from front3d.handbook.placing import FrontShape
 from front3d.methods import METHODS, FrontContext
 from front3d.methods.loading import station_constants
 from front3d.methods.materials import foreign_cells, material_of_front, nominal
-from front3d.options import Options
+from front3d.options import Options, unknown_method
 from front3d.results import (
     Comparison,
     Evaluation,
@@ -173,7 +173,7 @@ def _require_finite(step: Step, number: int, result: MethodResult) -> None:
 def _check_methods(options: Options) -> None:
     unknown = [name for name in options.methods or () if name not in METHODS]
     if unknown:
-        raise CaseError(f"method: found {unknown[0]!r}, expected one of {', '.join(METHODS)}")
+        raise unknown_method(unknown[0], METHODS)
 
 
 def _front_result(

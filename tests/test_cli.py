@@ -17,7 +17,8 @@ from front3d.cli import main
 from front3d.cli import progress as progress_module
 from front3d.cli.progress import kernels_compiled, progress_bar
 from front3d.errors import CrackError
-from front3d.options import Options, Plane
+from front3d.methods import METHODS
+from front3d.options import METHOD_NAMES, Options, Plane
 from front3d.results import CAUTION
 from front3d.samples import SAMPLES
 from tests.output_models import cracked_block, elliptic_front, evaluation_of
@@ -157,8 +158,7 @@ def test_samples_and_their_flags_come_from_the_registry(call: Call) -> None:
         ((), "required: COMMAND"),
         (("divine",), "invalid choice: 'divine'"),
         (("evaluate",), "required: RESULT|CASE"),
-        (("evaluate", "a.vtu"), "--young is missing"),
-        (("evaluate", "a.vtu", "--young", "1"), "--poisson is missing"),
+        (("evaluate", "a.vtu", *CONSTANTS, "--method", "clousre"), "did you mean 'closure'?"),
         (("evaluate", "a.vtu", *CONSTANTS, "--colour", "red"), "unrecognized arguments"),
         (("evaluate", "a.vtu", "--young", "1", "--poisson", "0.7"), "Poisson's ratio: found 0.7"),
         (("evaluate", "a.vtu", "--young", "-1", "--poisson", "0.3"), "Young's modulus: found -1"),
@@ -201,6 +201,23 @@ def test_a_case_without_constants_is_1(call: Call, result: Path) -> None:
     code, _, complained = call("evaluate", str(case))
     assert code == 1
     assert "found no elastic constants, expected young and poisson" in complained
+
+
+def test_missing_constants_are_a_wrong_call_unless_the_file_is_missing(
+    call: Call, result: Path
+) -> None:
+    for words, flag in (((), "--young"), (("--young", "1"), "--poisson")):
+        code, _, complained = call("evaluate", str(result), *words)
+        assert code == 2
+        assert f"{flag} is missing" in complained
+        code, _, complained = call("evaluate", f"{result}x", *words)
+        assert code == 1
+        assert "no such file" in complained
+        assert flag not in complained
+
+
+def test_the_names_of_the_methods_are_those_of_the_registry() -> None:
+    assert tuple(METHODS) == METHOD_NAMES
 
 
 def test_a_missing_or_broken_file_is_1(call: Call, tmp_path: Path) -> None:

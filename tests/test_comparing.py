@@ -316,6 +316,7 @@ def test_a_request_is_read():
 @pytest.mark.parametrize(
     ("text", "said"),
     [
+        ("penny:a=1,bending=2", "no argument 'bending'; it takes"),
         ("newman-raju-surfaces:a=1", "did you mean 'newman-raju-surface'"),
         ("", "--compare help"),
         ("penny:a=1,tensoin=2", "no argument 'tensoin', did you mean 'tension'"),
@@ -348,6 +349,36 @@ def test_out_of_range_is_an_error_and_no_mismatch():
     with pytest.raises(CaseError, match="comparison with newman-raju-surface: a/t: found 1") as e:
         compare(parse("newman-raju-surface:a=6,c=10,t=6,tension=1"), shape, NU)
     assert not isinstance(e.value, FrontMismatch)
+
+
+@pytest.mark.parametrize(
+    ("text", "front"),
+    [
+        ("inclined-through-crack:a=1,tension=1,load=0.7071/0.7071/0", "straight"),
+        ("antiplane-centre-crack:a=1,shear=1,along=1/0/0", "straight"),
+        ("penny-shear:a=10,shear=1,along=0/0/1", "penny"),
+        ("penny-inclined:a=10,tension=1,load=1/0/0", "penny"),
+    ],
+)
+def test_a_load_that_leaves_the_crack_alone_is_refused(text, front):
+    """A traction of zero on the crack gives no K by any of the solutions: nothing to divide by."""
+    penny, _ = elliptic(0, 360, a=10, c=10, closed=True)
+    shape = straight(1.0) if front == "straight" else penny
+    with pytest.raises(FrontMismatch, match="does not act on this crack"):
+        compare(parse(text), shape, NU)
+
+
+def test_the_thickness_of_a_specimen_is_that_of_its_front():
+    """ASTM E399: B is the length of the front; a half model has half of it."""
+    text = "compact-specimen:force=1,W=50,a=25,B={}"
+    for ends, share in (((FREE, FREE), 1.0), ((FREE, SYMMETRY), 0.5), ((SYMMETRY, SYMMETRY), 0.5)):
+        front = straight(1.0, ends)
+        whole = front.length / share
+        found = compare(parse(text.format(1.01 * whole)), front, NU)
+        assert any("free" in note for note in found.notes) == (FREE in ends)
+        assert not any("thickness are taken" in note for note in found.notes)
+        with pytest.raises(FrontMismatch, match="% of B"):
+            compare(parse(text.format(1.1 * whole)), front, NU)
 
 
 def test_another_poissons_ratio_is_said():

@@ -37,6 +37,12 @@ def results(solid, options=None):
     return front, opening.evaluate(context)
 
 
+def test_the_range_of_the_fit_is_said_in_words():
+    said = opening._variant(np.ones(2), np.array([4.8, 5.3]))
+    assert "from 2 to between 4.8 and 5.3 cells behind" in said
+    assert "from 2 to 9 cells behind" in opening._variant(np.ones(2), np.full(2, 9.0))
+
+
 def near_tip_results(kind, n=8, along=4, origin=ORIGIN):
     """Steps with one mode each, and one with all three; the mesh's front is at ORIGIN."""
     mesh = straight(kind, n, along=along, length=2.0 * along / n, frame=TURNED, origin=ORIGIN)

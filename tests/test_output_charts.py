@@ -16,7 +16,7 @@ from front3d.output.charts.along import along_front
 from front3d.output.charts.mix import mode_mix
 from front3d.output.charts.stations import at_stations
 from front3d.output.charts.steps import over_steps
-from front3d.output.charts.style import mathtext, plain_text, png, svg
+from front3d.output.charts.style import layer_lengths, mathtext, plain_text, png, svg
 from front3d.output.charts.through import through_thickness
 from front3d.output.shape import section_of
 from front3d.results import Comparison, FrontResult, MethodResult
@@ -88,6 +88,48 @@ def test_curves_are_the_K_of_the_table_by_every_method() -> None:
             assert np.array_equal(found[name].get_ydata(), K[:, k], equal_nan=True)
         widths = {name: found[name].get_linewidth() for name in expected}
         assert max(widths, key=lambda name: widths[name]) == "reported (interaction integral)"
+
+
+def test_a_method_looks_alike_whichever_is_reported() -> None:
+    by_closure = replace(BUSY, K=BUSY.methods["closure"].K, sources=("closure",) * len(BUSY))
+
+    def looks(front: FrontResult) -> dict[str, Any]:
+        found = lines(along_front(front, MILLIMETRES).axes[0])
+        return {name: (line.get_color(), line.get_marker()) for name, line in found.items()}
+
+    one, other = looks(BUSY), looks(by_closure)
+    assert one["closure"] == other["reported (closure)"]
+    assert one["reported (interaction integral)"] == other["interaction integral"]
+    assert one["opening profile"] == other["opening profile"]
+
+
+def test_stations_by_another_method_are_marked() -> None:
+    sources = ("interaction",) * 3 + ("closure",) * (len(BUSY) - 6) + ("interaction",) * 3
+    figure = along_front(replace(BUSY, sources=sources), MILLIMETRES)
+    marked = lines(figure.axes[0])["K from closure"]
+    assert np.array_equal(marked.get_xdata(), BUSY.s_rel[3:-3])
+    said = " ".join(" ".join(text.get_text() for text in figure.texts).split())
+    assert f"At {len(BUSY) - 6} of {len(BUSY)} stations K is not the interaction" in said
+
+
+def test_legend_stays_within_the_figure_and_names_are_whole() -> None:
+    name = "Sneddon (1946), Kassir and Sih (1966), as extended"
+    twice = tuple(replace(BUSY.comparisons[0], source=f"{name} {k}") for k in "ab")
+    sources = ("interaction",) + ("closure",) * (len(BUSY) - 1)
+    figure = along_front(replace(BUSY, sources=sources, comparisons=twice), MILLIMETRES)
+    figure.draw_without_rendering()
+    box, (width, _) = figure.legends[0].get_window_extent(), figure.canvas.get_width_height()
+    assert box.x0 >= 0
+    assert box.x1 <= width
+    entries = [text.get_text() for text in figure.legends[0].get_texts()]
+    assert f"{name} a" in entries
+
+
+def test_a_short_front_is_shaded_at_its_ends_only() -> None:
+    """Three stations are all within the layer of three: it is half the way to the next."""
+    front = elliptic_front(1.6, 1.2, closed=False, n=5, ends=("free surface", "free surface"))
+    first, last = layer_lengths(front)
+    assert (first, last) == pytest.approx((front.s[1] / 2, (front.length - front.s[-2]) / 2))
 
 
 def test_ring_band_is_the_range_of_the_compared_rings() -> None:

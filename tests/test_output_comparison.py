@@ -11,6 +11,7 @@ import pytest
 from front3d.cli import main
 from front3d.cli.words import describe_evaluation
 from front3d.output.deviation import deviation
+from front3d.output.report.checks import checks
 from front3d.output.saved import read_saved
 from front3d.output.summary import summary_json
 from front3d.output.tables import points_csv
@@ -134,6 +135,7 @@ def test_a_solution_reads_back_from_the_folder(tmp_path):
     np.testing.assert_array_equal(back.K, evaluation.fronts[0].comparisons[0].K)
     np.testing.assert_array_equal(back.angle, ANGLE)
     assert deviation(front, back).worst == pytest.approx(100 * 0.02 / 0.98)
+    assert "a = 1.2, load = 0/0/1" in str(checks(read_saved(tmp_path)))
 
 
 def test_words_about_the_solutions():

@@ -89,7 +89,7 @@ def test_the_record_holds_every_row_and_what_it_was_made_with() -> None:
     assert [r["verdict"] for r in content["rows"]] == ["within", "out", "failed"]
     assert content["within"] is False and content["versions"]["front3d"]
     assert content["date"].startswith("2030-01-02T03:04") and content["caution"] == CAUTION
-    assert verdict(rows[:1]) == "all 1 cases are within what is allowed (1 comparisons)"
+    assert verdict(rows[:1]) == "the one case is within what is allowed (1 comparison)"
 
 
 def test_a_case_that_cannot_be_done_is_a_row_and_stops_no_other() -> None:
@@ -102,6 +102,12 @@ def test_a_case_that_cannot_be_done_is_a_row_and_stops_no_other() -> None:
 def test_unknown_cases_are_refused(capsys: pytest.CaptureFixture[str]) -> None:
     assert main(["verify", "--case", "nothing like it"]) == 1
     assert "found no case with 'nothing like it'" in capsys.readouterr().err
+
+
+def test_quick_says_which_cases_it_leaves_out(capsys: pytest.CaptureFixture[str]) -> None:
+    slow = next(case.name for case in CASES if not case.quick)
+    assert main(["verify", "--quick", "--case", slow]) == 1
+    assert f"--quick leaves out {slow}" in capsys.readouterr().err
 
 
 @pytest.mark.slow
@@ -121,5 +127,5 @@ def test_a_missing_term_is_noticed(
     assert json.loads((tmp_path / "verification.json").read_text())["within"] is True
     with terms.without(term):
         assert main(words) == 1
-    assert "1 of 1 cases are out" in capsys.readouterr().out
+    assert "the one case is out" in capsys.readouterr().out
     assert "out |" in (tmp_path / "verification.md").read_text()

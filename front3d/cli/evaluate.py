@@ -9,7 +9,7 @@ from front3d.cli.command import Command
 from front3d.cli.flags import add_evaluation_flags, add_result, case_of
 from front3d.cli.progress import progress_bar
 from front3d.cli.words import describe_evaluation, describe_written
-from front3d.errors import CaseError
+from front3d.errors import CaseError, ReadError
 
 if TYPE_CHECKING:
     from front3d.output.folder import Written
@@ -34,6 +34,7 @@ def run(arguments: argparse.Namespace) -> int:
     if case.source is None and not case.own_constants:
         for flag in ("young", "poisson"):
             if getattr(case, flag) is None:
+                _check_there(case)
                 arguments.parser.error(
                     f"--{flag} is missing; a result file does not hold the elastic constants"
                 )
@@ -41,6 +42,13 @@ def run(arguments: argparse.Namespace) -> int:
     evaluation, written = evaluate_case(case, arguments.out, pictures=not arguments.no_pictures)
     print("\n".join([*describe_evaluation(evaluation), "", *describe_written(written)]))
     return 0
+
+
+def _check_there(case: Case) -> None:
+    """ReadError for a file that is not there: to be said before what else is missing."""
+    for path in case.results:
+        if not path.exists():
+            raise ReadError(f"{path}: no such file; check the name and the directory")
 
 
 def _check_constants(arguments: argparse.Namespace) -> None:

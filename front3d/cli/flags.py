@@ -9,7 +9,7 @@ from typing import Any
 from front3d.case import Case, read_case
 from front3d.errors import CaseError
 from front3d.loads import Vector
-from front3d.options import Plane
+from front3d.options import METHOD_NAMES, Plane, unknown_method
 
 
 def join_negative_values(words: Sequence[str]) -> list[str]:
@@ -299,6 +299,9 @@ def case_of(arguments: argparse.Namespace) -> Case:
 def _check(case: Case) -> None:
     """CaseError where an option is out of range or a solution is not asked for as it should be."""
     _ = case.options, case.units
+    for name in case.methods or ():
+        if name not in METHOD_NAMES:
+            raise unknown_method(name, METHOD_NAMES)
     if case.compare:
         from front3d.handbook.catalogue import parse
 

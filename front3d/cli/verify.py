@@ -60,7 +60,13 @@ def _chosen(arguments: argparse.Namespace) -> "list[Case]":
 
     chosen = [case for case in CASES if case.quick or not arguments.quick]
     if arguments.case:
-        chosen = [c for c in chosen if any(words in c.name for words in arguments.case)]
+        named = [c for c in CASES if any(words in c.name for words in arguments.case)]
+        chosen = [c for c in chosen if c in named]
+        if named and not chosen:
+            raise CaseError(
+                f"verify: --quick leaves out {', '.join(c.name for c in named)}; ask for "
+                f"{'it' if len(named) == 1 else 'them'} without --quick"
+            )
     if not chosen:
         raise CaseError(
             f"verify: found no case with {' or '.join(map(repr, arguments.case))} in its name "

@@ -125,7 +125,7 @@ def describe_comparison(front: "FrontResult", comparison: "Comparison") -> list[
     found = deviation(front, comparison)
     head = f"  beside {comparison.solution} ({comparison.source}; claimed: {comparison.claim}):"
     if not found.judged:
-        return [head, "    no station can be compared"]
+        return [head, "    no station can be compared: all are at a free surface or too near it"]
     i = found.station
     angle = comparison.angle[i]
     where = f"phi = {angle:.0f} degrees" if isfinite(angle) else f"s/L {front.s_rel[i]:.3f}"

@@ -148,5 +148,5 @@ def _direction(where: str, text: str) -> FloatArray:
 
 
 def _nearest(word: str, known: Iterable[str]) -> str:
-    near = get_close_matches(word, list(known), n=1, cutoff=0.5)
+    near = get_close_matches(word, list(known), n=1, cutoff=0.7)
     return f", did you mean {near[0]!r}?" if near else ""

@@ -5,11 +5,15 @@ from dataclasses import replace
 
 import numpy as np
 
+from front3d.arrays import FloatArray
 from front3d.errors import CaseError
 from front3d.handbook.catalogue import Request
 from front3d.handbook.placing import FREE, NEAR_SURFACE, FrontMismatch, FrontShape, Placed
 from front3d.results import Comparison
 from front3d.solid import Step
+
+_UNLOADED = 1e-3
+"""K over stress sqrt(a) up to which a crack is not loaded: directions have about three digits."""
 
 OfFront = tuple[str, int]
 """Name of the step, number of the front."""
@@ -87,11 +91,14 @@ def compare(request: Request, shape: FrontShape, poisson: float) -> Comparison:
     try:
         placed = solution.place(request.values, shape)
         K = solution.K(request.values, placed, poisson)
+        _refuse_no_load(request, shape, K)
     except FrontMismatch:
         raise
     except CaseError as error:
         raise CaseError(f"comparison with {solution.name}: {error}") from None
     notes = list(solution.doubts(request.values))
+    if shape.free:
+        notes += solution.at_free_ends
     if solution.poisson is not None and abs(poisson - solution.poisson) > 0.005:
         notes.append(
             f"it holds for Poisson's ratio {solution.poisson:g}; the material has {poisson:g}"
@@ -108,6 +115,31 @@ def compare(request: Request, shape: FrontShape, poisson: float) -> Comparison:
         judged=placed.judged,
         average=solution.average,
     )
+
+
+def _refuse_no_load(request: Request, shape: FrontShape, K: FloatArray) -> None:
+    """FrontMismatch where a direction was given that does not load the crack: no K to compare with.
+
+    The others give K only by a load that is not zero, which the request has been checked for.
+    """
+    solution, values = request.solution, request.values
+    ways = [name for name, about in solution.arguments.items() if about.unit == "direction"]
+    ways = [name for name in ways if values[name] is not None]
+    stress = sum(abs(values[load]) for load in solution.loads)
+    if not ways or np.nanmax(np.abs(K), initial=0.0) > _UNLOADED * stress * np.sqrt(values["a"]):
+        return
+    said = ", ".join(f"{name} = {_direction(values[name])}" for name in ways)
+    where = f"its plane has the normal {_direction(shape.frames[:, 1].mean(axis=0))}"
+    if not shape.closed:
+        where += f" and its front starts along {_direction(shape.frames[0, 2])}"
+    raise FrontMismatch(
+        f"with {said} the load does not act on this crack, and the solution gives no K here "
+        f"({where}); expected {' and '.join(solution.arguments[name].meaning for name in ways)}"
+    )
+
+
+def _direction(vector: FloatArray) -> str:
+    return "/".join(f"{v:g}" for v in np.round(vector, 3) + 0.0)  # no -0
 
 
 def _left_out(shape: FrontShape, placed: Placed) -> list[str]:

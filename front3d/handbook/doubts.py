@@ -14,6 +14,9 @@ from front3d.handbook.tabulated import FREE_SURFACE, TabulatedCase, table
 Equation = Callable[[FloatArray, tuple[float, ...], str], FloatArray]
 """(phi, ratios of a case, load) -> K_I of the equation over stress sqrt(pi a)/E(k)."""
 
+OFF = 0.04
+"""Difference beyond which an equation is called off, in parts of the front's largest K."""
+
 
 def worst_difference(
     case: TabulatedCase, equation: Equation, free_at: tuple[float, ...]
@@ -39,7 +42,8 @@ def doubts(
     good: Mapping[str, Callable[[float, float], bool]],
     good_in_words: str,
 ) -> tuple[str, ...]:
-    """A sentence per load under which the equation is not known to hold for these ratios.
+    """A sentence per load under which the equation is not known to hold for these ratios: how far
+    it is from the tables around them, and that it is off where this is more than OFF.
 
     `good` says per load for which a/c and a/t it is; a load it does not name is never good.
     """
@@ -54,11 +58,13 @@ def doubts(
         where = f"a/c = {case.ratios[0]:g}, a/t = {case.ratios[1]:g}"
         if len(case.ratios) > 2:
             where += f", r/t = {case.ratios[2]:g}"
+        off = f"the equation itself is known to be off here: {good_in_words}; "
+        # With the sign of the deviations beside it: K less the equation.
         sentences.append(
-            f"the equation itself is known to be off here: {good_in_words}; under {load} around "
-            f"this shape it differs by up to {100 * value:+.1f} % of the front's largest K "
-            f"({where}, 2 phi/pi = {place:g}) from high-order finite elements computed for "
-            f"front3d, not published (table {name})"
+            f"{off if abs(value) > OFF else ''}under {load} around this shape K of high-order "
+            f"finite elements less the equation is up to {-100 * value:+.1f} % of the front's "
+            f"largest K ({where}, 2 phi/pi = {place:g}); they were computed for front3d and are "
+            f"not published (table {name})"
         )
     return tuple(sentences)
 

@@ -7,7 +7,14 @@ import numpy as np
 
 from front3d.arrays import FloatArray
 from front3d.handbook import rows, specimens, through
-from front3d.handbook.placing import FrontShape, Placed, place_straight
+from front3d.handbook.placing import (
+    SYMMETRY,
+    TOLERANCE,
+    FrontMismatch,
+    FrontShape,
+    Placed,
+    place_straight,
+)
 from front3d.handbook.solution import Argument, Solution, Values, direction, length, only, stress
 
 _TENSION = stress("remote tension across the crack (gross stress)")
@@ -36,13 +43,34 @@ def _unseen(values: Values) -> tuple[str, ...]:
 
 def _averaged(values: Values) -> tuple[str, ...]:
     return (
-        _UNSEEN,
-        "an average over the thickness: K is above it in the middle and below at free faces; the "
-        "root mean square of K_I over the whole front, as from the average J, is what to compare",
-        "the average J lies between plane strain, K^2 (1 - nu^2)/E, and plane stress, K^2/E, where "
-        "the side faces are free: K from it by the plane-strain modulus may then stand above the "
-        "solution by up to 1/sqrt(1 - nu^2), 4.8 % for nu = 0.3",
+        "a, W and the force are taken as given: one front does not show them; B was checked "
+        "against the front",
+        "an average over the thickness: the root mean square of K_I over the whole front, as from "
+        "the average J, is what to compare",
     )
+
+
+_AT_FREE_SIDES = (
+    "K is above the average in the middle of the thickness and below it at free faces",
+    "the average J lies between plane strain, K^2 (1 - nu^2)/E, and plane stress, K^2/E, where "
+    "the side faces are free: K from it by the plane-strain modulus may then stand above the "
+    "solution by up to 1/sqrt(1 - nu^2), 4.8 % for nu = 0.3",
+)
+
+
+def _place_specimen(values: Values, shape: FrontShape) -> Placed:
+    """A straight front across the thickness, or half of it up to a symmetry plane."""
+    placed = place_straight(shape)
+    B, symmetric = values["B"], SYMMETRY in shape.ends
+    halves = {2: (B,), 1: (B / 2,), 0: (B, B / 2)}[len(shape.free)]  # a slice may be of either
+    if min(abs(shape.length - size) for size in halves) > TOLERANCE * B:
+        expected = " or ".join(f"{size:g}" for size in halves)
+        reason = "half of B up to a symmetry plane" if symmetric else "B between free surfaces"
+        raise FrontMismatch(
+            f"the front is {shape.length:.4g} long, expected {expected}, within "
+            f"{100 * TOLERANCE:g} % of B = {B:g} ({reason})"
+        )
+    return placed
 
 
 def _opening(formula: Callable[..., FloatArray]) -> Callable[[Values, Placed, float], FloatArray]:
@@ -189,11 +217,12 @@ ENTRIES: tuple[Solution, ...] = (
         "compact specimen of ASTM E399",
         _SPECIMEN,
         ("force",),
-        _place,
+        _place_specimen,
         partial(_specimen, specimens.compact_specimen),
         "Srawley (1976), ASTM E399",
         "within 0.5 % for a/W >= 0.2",
         _averaged,
+        at_free_ends=_AT_FREE_SIDES,
         average=True,
     ),
     Solution(
@@ -201,11 +230,12 @@ ENTRIES: tuple[Solution, ...] = (
         "three-point bend specimen of ASTM E399, span 4 W",
         {**_SPECIMEN, "W": length("depth of the beam"), "a": length("crack length")},
         ("force",),
-        _place,
+        _place_specimen,
         partial(_specimen, specimens.bend_specimen),
         "Srawley (1976), ASTM E399",
         "within 0.5 % (0.7 % was found at a/W = 0.5)",
         _averaged,
+        at_free_ends=_AT_FREE_SIDES,
         average=True,
     ),
 )

@@ -44,6 +44,7 @@ class Solution:
     source : authors and year
     claim : the accuracy claimed, in words, and by whom
     doubts : values -> what is known against it for these values
+    at_free_ends : what is to be said where the front ends at a free surface
     average : whether it gives the average of the whole front, not K at each station
     poisson : Poisson's ratio it holds for; None where it is exact for any, or takes the material's
     """
@@ -58,6 +59,7 @@ class Solution:
     claim: str
     doubts: Callable[[Values], tuple[str, ...]] = lambda values: ()
     poisson: float | None = None
+    at_free_ends: tuple[str, ...] = ()
     average: bool = False
 
 

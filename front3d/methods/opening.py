@@ -118,8 +118,9 @@ def _scale(material: Constants) -> FloatArray:
 
 def _variant(cell: FloatArray, reach: FloatArray) -> str:
     """The form of the fit, and the range it is made over, which curvature may cut short."""
-    last = (reach / cell).min(), (reach / cell).max()
-    cells = f"{last[1]:.2g}" if last[0] > 0.999 * last[1] else f"{last[0]:.2g} to {last[1]:.2g}"
+    least, most = (reach / cell).min(), (reach / cell).max()
+    alike = least > 0.999 * most
+    cells = f"{most:.2g}" if alike else f"between {least:.2g} and {most:.2g}"
     return f"{VARIANT}, from {FIRST:g} to {cells} cells behind the front"
 
 

@@ -178,7 +178,7 @@ def acting(sample: str, loads: Mapping[str, tuple[float, Load]]) -> tuple[Load, 
     out = tuple(load for stress, load in loads.values() if stress != 0.0)
     if not out:
         raise CaseError(
-            f"sample {sample}: found no load, expected one of {', '.join(loads)} other than zero"
+            f"sample {sample}: found no load, expected {' or '.join(loads)} other than zero"
         )
     return out
 

@@ -39,8 +39,13 @@ def verdict(rows: Sequence[Row]) -> str:
     cases = {row.case for row in rows}
     out = {row.case for row in rows if not row.within}
     if not out:
-        return f"all {len(cases)} cases are within what is allowed ({len(rows)} comparisons)"
-    return f"{len(out)} of {len(cases)} cases are out: {'; '.join(sorted(out))}"
+        which = f"all {len(cases)} cases are" if len(cases) > 1 else "the one case is"
+        counted = f"{len(rows)} comparison{'s' if len(rows) > 1 else ''}"
+        return f"{which} within what is allowed ({counted})"
+    if len(cases) == 1:
+        return f"the one case is out: {out.pop()}"
+    verb = "is" if len(out) == 1 else "are"
+    return f"{len(out)} of {len(cases)} cases {verb} out: {'; '.join(sorted(out))}"
 
 
 def markdown(rows: Sequence[Row], when: datetime) -> bytes:

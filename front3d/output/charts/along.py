@@ -12,6 +12,7 @@ from front3d.output.charts.panels import (
     label_K,
     largest_K,
     layer_entry,
+    layer_names,
     left_out,
     panel_heights,
     position_panels,
@@ -43,12 +44,15 @@ METHOD_NAMES = {
     "closure": "closure",
     "opening": "opening profile",
 }
-_REPORTED: dict[str, Any] = {"color": BLUE, "linestyle": "-", "linewidth": 2.4, "marker": "o"}
-_OTHERS: tuple[dict[str, Any], ...] = (
-    {"color": VERMILION, "linestyle": "--", "marker": "x"},
-    {"color": GREEN, "linestyle": "-.", "marker": "^"},
-    {"color": BLACK, "linestyle": (0, (3, 1, 1, 1, 1, 1)), "marker": "v"},
-)
+_STYLES: dict[str, dict[str, Any]] = {
+    "interaction": {"color": BLUE, "linestyle": "-", "marker": "o"},
+    "closure": {"color": VERMILION, "linestyle": "--", "marker": "x"},
+    "opening": {"color": GREEN, "linestyle": "-.", "marker": "^"},
+}
+_ANOTHER: dict[str, Any] = {"color": BLACK, "linestyle": (0, (3, 1, 1, 1, 1, 1)), "marker": "v"}
+"""A method's look is its own, whichever is reported: that one is drawn strong."""
+
+_MOST = 60  # letters of the name of a published solution
 _PUBLISHED: tuple[dict[str, Any], ...] = (
     {"color": BLACK, "linestyle": ":", "marker": "D"},
     {"color": BLACK, "linestyle": (0, (6, 2)), "marker": "s"},
@@ -62,14 +66,16 @@ def along_front(front: FrontResult, units: Units) -> "Figure":
     if any(layer_lengths(front)):
         captions += ("Shaded: K has no strict meaning where the front meets a free surface.",)
     heights = panel_heights([front], modes)
-    entries = (
-        1
-        + (rings_of(front) is not None)
-        + len(_other_methods(front))
-        + len(front.comparisons)
-        + any(front.flags)
-        + any(layer_lengths(front))
-    )
+    captions += _taken_from_others(front)
+    entries = [
+        f"reported ({reported_by(front)})",
+        *(_from(name) for name in _sources(front) if len(_sources(front)) > 1),
+        *(["range over rings"] if rings_of(front) is not None else []),
+        *(METHOD_NAMES.get(name, name) for name in _other_methods(front)),
+        *(plain_text(comparison.source, _MOST) for comparison in front.comparisons),
+        *(["flagged"] if any(front.flags) else []),
+        *layer_names(front),
+    ]
     title = f"Stress intensity along front {front.front}, step {plain_text(front.step)}"
     figure = new_figure(sum(heights) + POSITION_AXIS, title, captions, legend_rows(entries))
     panels = position_panels(figure, front, units, heights)
@@ -88,14 +94,29 @@ def along_front(front: FrontResult, units: Units) -> "Figure":
 def _draw(axes: "Axes", front: FrontResult, mode: int) -> None:
     x = closed_up(front.s_rel, front, 1.0)
     every = mark_every(front)
+    sources = _sources(front)
+    one = len(sources) == 1
+    strong = _style(max(sources, key=front.sources.count))
     axes.plot(
         x,
         closed_up(front.K[:, mode], front),
+        linewidth=2.4,
         markersize=5,
         markevery=every,
         label=f"reported ({reported_by(front)})",
-        **_REPORTED,
+        **(strong if one else strong | {"linestyle": "-", "marker": ""}),
     )
+    for name in () if one else sources:
+        there = np.array([source == name for source in front.sources])
+        axes.plot(
+            front.s_rel[there],
+            front.K[there, mode],
+            markersize=7,
+            markeredgewidth=1.8,
+            label=_from(name),
+            zorder=3.5,
+            **(_style(name) | {"linestyle": "none"}),
+        )
     rings = rings_of(front)
     if rings is not None:
         compared = rings.K[rings.compared, :, mode]
@@ -115,20 +136,20 @@ def _draw(axes: "Axes", front: FrontResult, mode: int) -> None:
         "markerfacecolor": "none",
         "zorder": 3,
     }
-    for number, (name, K) in enumerate(_other_methods(front).items()):
+    for name, K in _other_methods(front).items():
         axes.plot(
             x,
             closed_up(K[:, mode], front),
             label=METHOD_NAMES.get(name, name),
             markevery=(every // 2, every),
             **thin,
-            **_OTHERS[number % len(_OTHERS)],
+            **_style(name),
         )
     for number, comparison in enumerate(front.comparisons):
         axes.plot(
             x,
             closed_up(comparison.K[:, mode], front),
-            label=plain_text(comparison.source.partition(", from memory")[0], 30),
+            label=plain_text(comparison.source, _MOST),
             markevery=(every // 3, every),
             **thin,
             **_PUBLISHED[number % len(_PUBLISHED)],
@@ -140,6 +161,30 @@ def _other_methods(front: FrontResult) -> dict[str, FloatArray]:
     return {
         name: method.K for name, method in front.methods.items() if set(front.sources) != {name}
     }
+
+
+def _style(name: str) -> dict[str, Any]:
+    return _STYLES.get(name, _ANOTHER)
+
+
+def _sources(front: FrontResult) -> list[str]:
+    """The methods that K is taken from, each once."""
+    return list(dict.fromkeys(front.sources))
+
+
+def _from(name: str) -> str:
+    return f"K from {METHOD_NAMES.get(name, name)}"
+
+
+def _taken_from_others(front: FrontResult) -> tuple[str, ...]:
+    """A caption where K is taken from one method here and from another there."""
+    if len(_sources(front)) < 2:
+        return ()
+    others = sum(name != "interaction" for name in front.sources)
+    return (
+        f"At {others} of {len(front)} stations K is not the interaction integral's, as marked: the "
+        "curve may jump where the method changes.",
+    )
 
 
 def reported_by(front: FrontResult) -> str:

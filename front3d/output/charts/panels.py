@@ -90,8 +90,13 @@ def position_panels(
 
 def layer_entry(axes: "Axes", front: FrontResult) -> None:
     """The free-surface layer in the legend."""
-    if any(layer_lengths(front)):
-        axes.fill_between([], [], [], color=LAYER, linewidth=0, label="free-surface layer")
+    for name in layer_names(front):
+        axes.fill_between([], [], [], color=LAYER, linewidth=0, label=name)
+
+
+def layer_names(front: FrontResult) -> list[str]:
+    """What the legend has for the free-surface layer: one entry, or none."""
+    return ["free-surface layer"] if any(layer_lengths(front)) else []
 
 
 def label_K(axes: "Axes", mode: int, units: Units) -> None:

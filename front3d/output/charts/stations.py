@@ -73,7 +73,7 @@ def at_stations(fronts: Sequence[FrontResult], stations: Sequence[int], units: U
         sum(heights) + _AXIS,
         f"Stress intensity at stations of front {fronts[0].front}, {len(fronts)} steps",
         captions,
-        legend_rows(len(shown), _COLUMNS),
+        legend_rows(names, _COLUMNS),
     )
     panels = figure.subplots(len(modes), 1, sharex=True, squeeze=False, height_ratios=heights)
     largest = largest_K(fronts)

@@ -10,6 +10,7 @@ from front3d.output.charts.panels import (
     label_K,
     largest_K,
     layer_entry,
+    layer_names,
     left_out,
     panel_heights,
     position_panels,
@@ -20,7 +21,6 @@ from front3d.output.charts.style import (
     GREEN,
     VERMILION,
     closed_up,
-    layer_lengths,
     legend,
     legend_rows,
     mark_every,
@@ -47,12 +47,12 @@ def over_steps(fronts: Sequence[FrontResult], units: Units) -> "Figure":
     """
     modes = drawn_modes(fronts)
     heights = panel_heights(fronts, modes)
-    named = sum(_name(number, fronts) is not None for number in range(len(fronts)))
+    named = [name for k in range(len(fronts)) if (name := _name(k, fronts)) is not None]
     figure = new_figure(
         sum(heights) + POSITION_AXIS,
         f"Stress intensity along front {fronts[0].front}, {len(fronts)} steps",
         left_out(modes),
-        legend_rows(named + any(layer_lengths(fronts[0]))),
+        legend_rows(named + layer_names(fronts[0])),
     )
     panels = position_panels(figure, fronts[0], units, heights)
     largest = largest_K(fronts)

@@ -2,6 +2,7 @@
 
 import io
 from collections.abc import Sequence
+from itertools import pairwise
 from textwrap import fill
 from typing import TYPE_CHECKING, Any
 
@@ -33,6 +34,7 @@ WIDTH = 8.0  # inches: 1200 pixels
 DPI = 150
 LARGE, MEDIUM, SMALL, CAPTION = 14.0, 12.5, 11.0, 9.0  # points
 LEGEND_COLUMNS = 3
+_HANDLE, _HANDLE_GAP, _COLUMN_GAP = 2.8, 0.8, 1.4  # of a legend, in sizes of its letters
 _MARKERS_WANTED = 18
 _CAPTION_LINE, _LEGEND_ROW, _TITLE_ROW = 0.165, 0.24, 0.42  # inches
 _WORDS_PER_LINE = 118
@@ -99,31 +101,47 @@ def legend(figure: "Figure", axes: "Axes", columns: int = LEGEND_COLUMNS) -> Non
     """The entries of `axes` under the title, where they cover no curve."""
     handles, labels = axes.get_legend_handles_labels()
     if labels:
-        # Long names: all of it a little smaller, rather than cut off at the sides.
-        for size in np.arange(SMALL, CAPTION - 0.1, -0.25):
-            made = figure.legend(
-                handles,
-                labels,
-                loc="upper center",
-                bbox_to_anchor=(0.5, 1 - (_TITLE_ROW - 0.06) / figure.get_figheight()),
-                ncols=min(columns, len(labels)),
-                fontsize=size,
-                frameon=False,
-                columnspacing=1.4,
-                handlelength=2.8,
-                labelspacing=0.3,
-                borderpad=0.2,
-            )
-            # Placed by hand: the layout of the panels would take it for a part of theirs.
-            made.set_in_layout(False)
-            if made.get_window_extent().width <= 0.99 * figure.bbox.width:
-                break
-            if size > CAPTION:
-                made.remove()
+        figure.legend(
+            handles,
+            labels,
+            loc="upper center",
+            bbox_to_anchor=(0.5, 1 - (_TITLE_ROW - 0.06) / figure.get_figheight()),
+            ncols=legend_columns(labels, columns),
+            fontsize=SMALL,
+            frameon=False,
+            columnspacing=_COLUMN_GAP,
+            handlelength=_HANDLE,
+            handletextpad=_HANDLE_GAP,
+            labelspacing=0.3,
+            borderpad=0.2,
+        )
+        # Placed by hand: the layout of the panels would take it for a part of theirs.
+        figure.legends[-1].set_in_layout(False)
 
 
-def legend_rows(entries: int, columns: int = LEGEND_COLUMNS) -> int:
-    return -(-entries // columns)
+def legend_rows(labels: Sequence[str], columns: int = LEGEND_COLUMNS) -> int:
+    """Rows of the legend with these entries."""
+    return -(-len(labels) // legend_columns(labels, columns)) if labels else 0
+
+
+def legend_columns(labels: Sequence[str], most: int = LEGEND_COLUMNS) -> int:
+    """The most columns, up to `most`, that leave every entry whole within the figure."""
+    from matplotlib.font_manager import FontProperties
+    from matplotlib.textpath import TextToPath
+
+    measure, font = TextToPath(), FontProperties(size=SMALL)
+    widths = [
+        measure.get_text_width_height_descent(label, font, ismath="$" in label)[0]
+        + (_HANDLE + _HANDLE_GAP) * SMALL
+        for label in labels
+    ]
+    for columns in range(min(most, len(labels)), 1, -1):
+        rows, longer = divmod(len(labels), columns)
+        stops = np.cumsum([0] + [rows + (k < longer) for k in range(columns)])
+        total = sum(max(widths[a:b]) for a, b in pairwise(stops))
+        if total + _COLUMN_GAP * SMALL * (columns - 1) <= 0.97 * 72 * WIDTH:
+            return columns
+    return 1
 
 
 def second_unit(axes: "Axes", units: Units, *, on_top: bool = False) -> None:
@@ -187,13 +205,18 @@ def widen(low: float, high: float, least: float) -> tuple[float, float]:
 
 def layer_lengths(front: FrontResult) -> tuple[float, float]:
     """Arc lengths from the start and from the end of a front up to the last station at which a free
-    surface is felt; 0 at other ends.
+    surface is felt; 0 at other ends.  Where that is every station, it tells none from another: half
+    way from the end to the next station then.
     """
     if front.closed:
         return 0.0, 0.0
+    whole = bool(free_surface_layer(front.s, front.length, front.ends).all())
     found = []
     for end, reach in ((0, front.s), (1, front.length - front.s)):
         ends = tuple(name if i == end else "" for i, name in enumerate(front.ends))
         layer = free_surface_layer(front.s, front.length, ends)
-        found.append(float(reach[layer].max(initial=0.0)))
+        if whole and layer.any() and len(reach) > 1:
+            found.append(float(np.sort(reach)[1]) / 2)
+        else:
+            found.append(float(reach[layer].max(initial=0.0)))
     return found[0], found[1]

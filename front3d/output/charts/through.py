@@ -6,7 +6,13 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from front3d.output.charts.along import reported_by
-from front3d.output.charts.panels import LEAST_SPAN, drawn_modes, largest_K, layer_entry
+from front3d.output.charts.panels import (
+    LEAST_SPAN,
+    drawn_modes,
+    largest_K,
+    layer_entry,
+    layer_names,
+)
 from front3d.output.charts.style import (
     BODY,
     CRACK,
@@ -60,12 +66,12 @@ def through_thickness(front: FrontResult, section: Section, units: Units) -> "Fi
     place = _placed(section)
     what = "through the thickness" if section.kind == "through" else "over the depth"
     title = f"Stress intensity {what}, front {front.front}, step {plain_text(front.step)}"
-    entries = len(modes) * len(_branches(section)) + any(layer_lengths(front))
+    entries = [f"{MODE_LABELS[k]}{name}" for k in modes for _, name in _branches(section)]
     figure = new_figure(
         _ABOVE + place.height + _BELOW,
         title,
         captions,
-        legend_rows(entries),
+        legend_rows(entries + layer_names(front)),
     )
     total = figure.get_figheight()
     bottom = float(figure.get_layout_engine().get()["rect"][1]) + _BELOW / total  # type: ignore[union-attr]

@@ -1,6 +1,6 @@
 """What the results say about themselves, and the directions of the published criteria."""
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from typing import Any
 
 import numpy as np
@@ -85,11 +85,16 @@ def _compared(one: Mapping[str, Any]) -> list[str]:
     worst, mean = (one.get("worst") or {}).get("percent"), one.get("mean_percent")
     return [
         one["source"],
-        ", ".join(f"{key} = {value:g}" for key, value in one["arguments"].items()),
+        ", ".join(f"{key} = {_argument(value)}" for key, value in one["arguments"].items()),
         "no value" if worst is None else f"{worst:+.2f}\N{NO-BREAK SPACE}%",
         "no value" if mean is None else f"{mean:.2f}\N{NO-BREAK SPACE}%",
         one["claim"],
     ]
+
+
+def _argument(value: float | Sequence[float]) -> str:
+    """A number, or a direction as a user writes it."""
+    return "/".join(f"{v:g}" for v in value) if isinstance(value, Sequence) else f"{value:g}"
 
 
 def mix(saved: Saved) -> Markup:
