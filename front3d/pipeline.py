@@ -6,7 +6,7 @@ from dataclasses import asdict, replace
 import numpy as np
 
 from front3d.crack import CrackModel, find_cracks
-from front3d.errors import Front3DError, MeshError, MethodError
+from front3d.errors import CaseError, Front3DError, MeshError, MethodError
 from front3d.evidence import REPORTED, weigh
 from front3d.flags import front_warnings, station_flags
 from front3d.handbook.catalogue import parse
