@@ -127,7 +127,9 @@ TERM = {by_body_force: BODY_FORCE}
 
 
 @pytest.mark.parametrize("carry", CARRIED)
-@pytest.mark.parametrize("kind", ["quarter_collapsed", "hexahedron20"])
+@pytest.mark.parametrize(
+    "kind", ["quarter_collapsed", pytest.param("hexahedron20", marks=pytest.mark.slow)]
+)
 def test_loads_leave_k_as_it_is_on_every_ring(carry, kind):
     solid, loads = carry(block(kind))
     found, energy = rings(solid, **loads)
@@ -145,6 +147,7 @@ def test_without_its_term_a_load_makes_k_depend_on_the_radius(carry):
     assert np.ptp(found, axis=0).max() > 0.015
 
 
+@pytest.mark.slow
 @pytest.mark.parametrize("carry", [by_body_force, by_temperature])
 def test_without_the_tractions_on_the_faces_k_is_off(carry):
     solid, loads = carry(block())
