@@ -6,7 +6,7 @@ TOLERANCE of that of the good file, at all stations between the ends.
 
 What cannot be noticed, by any program: a smooth change of the displacements that is itself a
 possible result (a factor, another load, K_III of the other sign), and a wrong Young's modulus.
-What is not always noticed: other displacements of a few nodes (changed bytes that are still numbers);
+What is not always noticed: other displacements of a few nodes (bytes that are still numbers):
 K was then off by 3 to 6 % in the cases looked at.  They are counted, and must stay rare.
 """
 
