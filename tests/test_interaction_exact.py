@@ -120,7 +120,10 @@ def test_a_circular_front_converges_with_its_own_curvature_terms(kind):
     assert np.log2(coarse.max() / fine.max()) > 0.85
 
 
-@pytest.mark.parametrize("kind", QUARTER_POINT)
+@pytest.mark.parametrize(
+    "kind",
+    [QUARTER_POINT[0], *(pytest.param(k, marks=pytest.mark.slow) for k in QUARTER_POINT[1:])],
+)
 def test_a_circular_front_with_quarter_points_converges_quadratically(kind):
     coarse, fine = penny_errors(kind, 4), penny_errors(kind, 8)
     assert fine.max() < 1e-3
@@ -140,7 +143,7 @@ def test_edges_that_cut_the_corners_of_the_front_cost_little():
     [
         ("hexahedron20", 0.04),
         pytest.param("collapsed", 0.03, marks=pytest.mark.slow),
-        *((k, 0.01) for k in QUARTER_POINT),
+        *(pytest.param(k, 0.01, marks=pytest.mark.slow) for k in QUARTER_POINT),
     ],
 )
 def test_J_of_the_same_domain_agrees_with_G_of_the_three_modes(kind, allowed):

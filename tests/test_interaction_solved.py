@@ -69,6 +69,7 @@ def test_penny_on_tetrahedra_in_shear():
     assert np.abs(front.K - exact).max() < 0.01 * np.abs(exact).max()
 
 
+@pytest.mark.slow
 def test_ellipse_on_tetrahedra_in_tension():
     """Exact: Irwin (1962), Green and Sneddon (1950); a/c = 0.5, 120 cells around the front."""
     front = stored("ellipse")["tension"]
@@ -91,6 +92,7 @@ def test_rings_beyond_the_first_agree(name):
         assert inside.max() < 0.005
 
 
+@pytest.mark.slow
 def test_rings_agree_at_free_ends_over_a_wide_range_of_radii():
     """From 0.2 to 0.45 of the crack depth: the free-surface term carries a growing part."""
     for front in stored("surface_06_04", radii=(0.2, 0.25, 0.3, 0.35, 0.4, 0.45)).values():
@@ -100,6 +102,7 @@ def test_rings_agree_at_free_ends_over_a_wide_range_of_radii():
         assert spread[1:-1].max() < 0.005
 
 
+@pytest.mark.slow
 def test_a_row_of_collinear_cracks_on_bricks():
     """Exact: the tangent formula (Westergaard 1939); half-period 2, half-length 1.
 

@@ -16,7 +16,7 @@ DATA = ROOT / "tests" / "data"
 
 def test_an_unknown_method_is_refused_by_name():
     solid = front3d.load(DATA / "row.vtu")
-    with pytest.raises(CaseError, match="found 'guess', expected one of interaction, closure"):
+    with pytest.raises(CaseError, match=r"found 'guess' \(expected one of interaction, closure"):
         front3d.evaluate(solid, young=1.0, poisson=0.3, methods="guess")
 
 

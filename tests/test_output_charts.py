@@ -126,7 +126,7 @@ def test_legend_stays_within_the_figure_and_names_are_whole() -> None:
 
 
 def test_a_short_front_is_shaded_at_its_ends_only() -> None:
-    """Three stations are all within the layer of three: it is half the way to the next."""
+    """Of five stations the layer holds the ends alone: it is drawn half the way to the next."""
     front = elliptic_front(1.6, 1.2, closed=False, n=5, ends=("free surface", "free surface"))
     first, last = layer_lengths(front)
     assert (first, last) == pytest.approx((front.s[1] / 2, (front.length - front.s[-2]) / 2))

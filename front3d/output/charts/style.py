@@ -205,17 +205,15 @@ def widen(low: float, high: float, least: float) -> tuple[float, float]:
 
 def layer_lengths(front: FrontResult) -> tuple[float, float]:
     """Arc lengths from the start and from the end of a front up to the last station at which a free
-    surface is felt; 0 at other ends.  Where that is every station, it tells none from another: half
-    way from the end to the next station then.
+    surface is felt; 0 at other ends.  Where that is the end alone, half the way to the next one.
     """
     if front.closed:
         return 0.0, 0.0
-    whole = bool(free_surface_layer(front.s, front.length, front.ends).all())
     found = []
     for end, reach in ((0, front.s), (1, front.length - front.s)):
         ends = tuple(name if i == end else "" for i, name in enumerate(front.ends))
         layer = free_surface_layer(front.s, front.length, ends)
-        if whole and layer.any() and len(reach) > 1:
+        if layer.sum() == 1 and len(reach) > 1:
             found.append(float(np.sort(reach)[1]) / 2)
         else:
             found.append(float(reach[layer].max(initial=0.0)))
