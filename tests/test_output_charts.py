@@ -1,9 +1,7 @@
 """The charts: what they show, read from the drawn objects and from the finished picture."""
 
 import io
-from collections.abc import Callable, Iterator
 from dataclasses import replace
-from functools import cache
 from typing import Any
 from xml.etree import ElementTree
 
@@ -14,60 +12,11 @@ import pytest
 from front3d.output.charts import charts_of
 from front3d.output.charts.along import along_front
 from front3d.output.charts.mix import mode_mix
-from front3d.output.charts.stations import at_stations
-from front3d.output.charts.steps import over_steps
 from front3d.output.charts.style import layer_lengths, mathtext, plain_text, png, svg
-from front3d.output.charts.through import through_thickness
-from front3d.output.shape import section_of
-from front3d.results import Comparison, FrontResult, MethodResult
+from front3d.results import FrontResult
 from front3d.units import Units
-from tests.output_models import (
-    MILLIMETRES,
-    STEEL,
-    corner_front,
-    elliptic_front,
-    evaluation_of,
-    through_front,
-)
-
-SURFACE = elliptic_front(
-    1.6, 1.2, closed=False, flags={0: "free surface"}, ends=("free surface", "free surface")
-)
-
-
-def busy() -> FrontResult:
-    """Everything that a chart can show: three methods, one with a gap, and a published solution."""
-    front = corner_front()
-    gap = np.array(0.98 * front.K)
-    gap[20:25] = np.nan
-    methods = dict(front.methods) | {"opening": MethodResult("opening", gap)}
-    published = Comparison(
-        "newman-raju-corner",
-        {"a": 4.0},
-        "Newman and Raju (1981)",
-        "5 %",
-        np.stack([1.03 * front.K[:, 0], *np.full((2, len(front)), np.nan)], axis=1),
-        np.degrees(np.arctan2(front.positions[:, 1] / 4, front.positions[:, 0] / 6)),
-    )
-    return replace(
-        front, methods=methods, comparisons=(published,), step="a step with a long name, $1"
-    )
-
-
-BUSY = busy()
-
-
-def through(front: FrontResult, units: Units = MILLIMETRES) -> Any:
-    section = section_of(front)
-    assert section is not None
-    return through_thickness(front, section, units)
-
-
-def lines(axes: Any) -> dict[str, Any]:
-    return {
-        line.get_label(): line for line in axes.lines if not str(line.get_label()).startswith("_")
-    }
-
+from tests.chart_models import BUSY, SURFACE, contrast_on_white, drawn, lines, steps
+from tests.output_models import MILLIMETRES, STEEL, elliptic_front, evaluation_of, through_front
 
 # --- along the front -------------------------------------------------------------------------
 
@@ -139,131 +88,6 @@ def test_ring_band_is_the_range_of_the_compared_rings() -> None:
     assert rings is not None
     assert path.vertices[:, 1].max() == rings.K[1:, :, 0].max()
     assert path.vertices[:, 1].min() == rings.K[1:, :, 0].min()
-
-
-def contrast_on_white(color: Any) -> float:
-    """Web Content Accessibility Guidelines 2.1, criterion 1.4.11."""
-    rgb = np.array(matplotlib.colors.to_rgb(color))
-    linear = np.where(rgb <= 0.04045, rgb / 12.92, ((rgb + 0.055) / 1.055) ** 2.4)
-    return float(1.05 / (linear @ [0.2126, 0.7152, 0.0722] + 0.05))
-
-
-def steps(*factors: float) -> list[FrontResult]:
-    return [replace(SURFACE, step=f"step{x}", K=x * SURFACE.K) for x in factors]
-
-
-def in_time(*factors: float) -> list[FrontResult]:
-    """Steps with times, and a combination, which has none."""
-    timed = [replace(f, time=10.0 * k) for k, f in enumerate(steps(*factors))]
-    return [*timed, replace(SURFACE, step="sum", K=3 * SURFACE.K)]
-
-
-FIGURES: dict[str, Callable[[], Any]] = {
-    "along": lambda: along_front(BUSY, MILLIMETRES),
-    "long source": lambda: along_front(
-        replace(
-            BUSY,
-            comparisons=(
-                replace(BUSY.comparisons[0], source="Newman and Raju (1984, 1986), from memory"),
-            ),
-        ),
-        MILLIMETRES,
-    ),
-    "no units": lambda: along_front(SURFACE, Units()),
-    "closed": lambda: along_front(elliptic_front(1.5, 1.0, closed=True), MILLIMETRES),
-    "corner": lambda: through(BUSY),
-    "surface": lambda: through(SURFACE),
-    "shallow": lambda: through(
-        elliptic_front(9.0, 0.9, closed=False, ends=("free surface", "free surface"))
-    ),
-    "through": lambda: through(through_front()),
-    "mix": lambda: mode_mix(through_front(), MILLIMETRES, STEEL),
-    "two steps": lambda: over_steps(steps(1, 0.5), MILLIMETRES),
-    "seven steps": lambda: over_steps(steps(*np.linspace(1, 2, 7)), MILLIMETRES),
-    "load cases": lambda: at_stations(
-        [replace(f, step=f"a long name of load case {f.step}") for f in steps(1, 0.5, -0.3)],
-        [0, 7, 20, 40],
-        MILLIMETRES,
-    ),
-    "times": lambda: at_stations(in_time(1, 1.5, 0.2, 0.9), [0, 20], MILLIMETRES),
-}
-
-
-@cache
-def drawn(name: str) -> Any:
-    """A chart, laid out."""
-    figure = FIGURES[name]()
-    figure.draw_without_rendering()
-    return figure
-
-
-QUICK = ("along", "corner")
-
-
-def some(*names: str) -> list[Any]:
-    """Names of charts as parameters: to draw each takes a while, so only two are tested quickly."""
-    slow = pytest.mark.slow
-    return [n if n in QUICK else pytest.param(n, marks=slow) for n in names]
-
-
-@pytest.mark.parametrize("name", some("along", "through", "mix", "two steps"))
-def test_curves_differ_without_colour(name: str) -> None:
-    figure = drawn(name)
-    for axes in figure.axes:
-        curves = [line for line in lines(axes).values() if line.get_linestyle() != "None"]
-        styles = {(str(line._unscaled_dash_pattern), line.get_marker()) for line in curves}
-        assert len(styles) == len(curves)
-        for line in curves:
-            assert contrast_on_white(line.get_color()) >= 3.0
-
-
-def words_of(figure: Any) -> Iterator[Any]:
-    """Every text that is drawn: also of ticks, second axes and legends."""
-    yield from figure.texts
-    for legend in figure.legends:
-        yield from legend.get_texts()
-    todo = list(figure.axes)
-    while todo:
-        axes = todo.pop()
-        todo += axes.child_axes
-        yield from axes.texts
-        yield from axes.get_legend().get_texts() if axes.get_legend() else ()
-        for axis in (axes.xaxis, axes.yaxis):
-            yield axis.label
-            low, high = sorted(axis.get_view_interval())
-            for tick in axis.get_major_ticks():  # those beyond the limits are not drawn
-                if low <= tick.get_loc() <= high:
-                    yield from (tick.label1, tick.label2)
-
-
-@pytest.mark.parametrize("name", some(*FIGURES))
-def test_words_are_legible_inside_and_do_not_overlap(name: str) -> None:
-    figure = drawn(name)
-    renderer = figure._get_renderer()
-    words = [text for text in words_of(figure) if text.get_visible() and text.get_text().strip()]
-    # 6 points at 600 pixels over 8 inches is 6 px tall; 9 px are read with ease (common practice).
-    assert min(text.get_fontsize() for text in words) * 600 / 8 / 72 >= 9
-    boxes = [(text.get_text(), text.get_window_extent(renderer)) for text in words]
-    assert len(boxes) > 8
-    whole = figure.bbox
-    for i, (text, box) in enumerate(boxes):
-        assert whole.x0 <= box.x0 + 1 and box.x1 <= whole.x1 + 1, text
-        assert whole.y0 <= box.y0 + 1 and box.y1 <= whole.y1 + 1, text
-        for other, its_box in boxes[i + 1 :]:
-            assert not box.padded(-1).overlaps(its_box.padded(-1)), (text, other)
-
-
-@pytest.mark.parametrize(
-    "name",
-    some("along", "two steps", "seven steps", "load cases", "times", "through", "long source"),
-)
-def test_legends_cover_no_panel(name: str) -> None:
-    figure = drawn(name)
-    (legend,) = figure.legends
-    box = legend.get_window_extent()
-    assert figure.bbox.x0 <= box.x0 and box.x1 <= figure.bbox.x1
-    for axes in figure.axes:
-        assert not box.overlaps(axes.get_tightbbox())
 
 
 def test_a_closed_front_comes_back_to_its_start() -> None:
@@ -388,9 +212,6 @@ def test_steps_are_a_family_from_light_to_dark() -> None:
     ]
 
 
-# --- files -----------------------------------------------------------------------------------
-
-
 def test_stations_stand_against_time_or_against_load_cases_without_order() -> None:
     times, cases = drawn("times"), drawn("load cases")
     (curve,) = (c for label, c in lines(times.axes[0]).items() if label.startswith("s/L 0.500"))
@@ -401,6 +222,9 @@ def test_stations_stand_against_time_or_against_load_cases_without_order() -> No
     for points in lines(cases.axes[0]).values():
         assert points.get_linestyle() == "None"
         assert len(points.get_xdata()) == 3
+
+
+# --- files -----------------------------------------------------------------------------------
 
 
 def test_which_charts_an_evaluation_gets() -> None:

@@ -9,17 +9,30 @@ import front3d
 from front3d.reading import load
 from front3d.solid import Solid, Step
 from tests.meshes.held import near_tip_block
+from tests.reading_models import grid
 
+KIND = "hexahedron20"
 YOUNG, POISSON = 200e3, 0.3
 
 
 @cache
 def block() -> Solid:
     """48 bricks of 20 nodes around a straight front along z, all three modes held around it."""
-    solid = near_tip_block("hexahedron20", 4, YOUNG, POISSON, along=3)
+    solid = near_tip_block(KIND, 4, YOUNG, POISSON, along=3)
     u = sum(k * s.displacement for k, s in zip((100, 30, 20), solid.steps, strict=True))
     # Two scales: lengths in the hundreds show what single precision does to a format.
     return replace(solid, points=100 * solid.points, steps=(Step("1", u),))
+
+
+def parts():
+    """Points, nodes and displacements of the model."""
+    solid = block()
+    return solid.points, solid.blocks[0].nodes, solid.steps[0].displacement
+
+
+def whole_grid():
+    points, nodes, u = parts()
+    return grid(points, {KIND: nodes}, displacement=u)
 
 
 @cache
