@@ -38,7 +38,7 @@ def profile(examples):
 
 
 QUICK = 10
-THOROUGH = pytest.param(150, marks=pytest.mark.slow, id="thorough")
+THOROUGH = pytest.param(60, marks=pytest.mark.slow, id="thorough")  # 20 kinds of file, 11 damages
 EXAMPLES = [pytest.param(QUICK, id="quick"), THOROUGH]
 
 
@@ -219,7 +219,10 @@ unopened = false
 """
 
 
-@pytest.mark.parametrize("examples", [pytest.param(40, id="quick"), THOROUGH])
+@pytest.mark.parametrize(
+    "examples",
+    [pytest.param(40, id="quick"), pytest.param(1000, marks=pytest.mark.slow, id="thorough")],
+)
 def test_damaged_cases(tmp_path, worker, examples):
     """Values that say another case are not damage: they are kept as they are."""
     model().save(tmp_path / "good.vtu")
