@@ -106,10 +106,14 @@ def test_default_hats_are_wide_on_straight_fronts_and_narrow_where_the_front_tur
     np.testing.assert_array_equal(default_widths(circle, structured=False, reach=around), 1.0)
 
 
-def test_default_hats_are_no_wider_than_three_cells_across_the_front():
+def test_default_hats_are_no_wider_than_three_cells_across_a_curved_front():
     """Cells drawn long along a front would blunt a K that changes over their length."""
+    _, circle = front_of(curved("tetra10", 2, around=96))
+    edge = circle.length / 96
+    for reach, width in ((edge, 2.9), (edge / 2, 1.5), (edge / 10, 1.0)):
+        reaches = np.full(len(circle.corners), reach)
+        found = default_widths(circle, structured=False, reach=reaches)
+        np.testing.assert_allclose(found, width, atol=0.05)
     _, line = front_of(straight("tetra10", 2, along=12, length=LENGTH))
-    edge = LENGTH / 12
-    for reach, width in ((edge / 2, 1.5), (edge / 10, 1.0)):
-        reaches = np.full(len(line.corners), reach)
-        np.testing.assert_allclose(default_widths(line, structured=False, reach=reaches), width)
+    thin = np.full(len(line.corners), LENGTH / 120)
+    np.testing.assert_array_equal(default_widths(line, structured=False, reach=thin), 3.0)
