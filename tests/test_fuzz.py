@@ -186,7 +186,7 @@ damages = st.lists(
 )
 
 
-@pytest.mark.parametrize(("form", "examples"), with_examples(FORMATS, QUICK))
+@pytest.mark.parametrize(("form", "examples"), list(with_examples(FORMATS, QUICK)))
 def test_damaged_files(tmp_path, worker, good, form, examples):
     write, main, pattern = FORMATS[form]
     write(tmp_path)
@@ -339,7 +339,7 @@ MODEL_DAMAGES = {
 }
 
 
-@pytest.mark.parametrize(("name", "examples"), with_examples(MODEL_DAMAGES, 2))
+@pytest.mark.parametrize(("name", "examples"), list(with_examples(MODEL_DAMAGES, 2)))
 def test_damaged_models(tmp_path, worker, good, name, examples):
     """Whole files of a model that is wrong."""
     damage = MODEL_DAMAGES[name]
