@@ -168,7 +168,7 @@ def _laws() -> Iterator[Case]:
     parts = tuple(Run("surface-crack", part=part) for part in ("full", "half", "upper", "quarter"))
     yield Case(
         "surface crack: half and quarter models are the full one", "law: symmetry",
-        parts, same_as_full, limit, quick=True,
+        parts, same_as_full, limit, quick=False,
     )  # fmt: skip
     runs = tuple(
         Run("cylinder-crack", parameters={"bore_pressure": bore, "face_pressure": face})
