@@ -8,7 +8,7 @@ from front3d.samples.fineness import density
 from front3d.samples.mirror import Unfolded
 from front3d.samples.octant import octant
 from front3d.samples.parts import CORNER_PARTS
-from front3d.samples.plate_loads import ends, load_parameters, plate_loads
+from front3d.samples.plate_loads import load_parameters, plate_loads
 from front3d.samples.sample import (
     Load,
     Parameter,
@@ -16,6 +16,7 @@ from front3d.samples.sample import (
     Values,
     check_ratio,
     common_parameters,
+    on_ends,
     required,
 )
 from front3d.samples.sheet import Quarter
@@ -60,7 +61,7 @@ def _mesh(values: Values, cells: str) -> Unfolded:
 
 
 def _loads(values: Values) -> tuple[Load, ...]:
-    return plate_loads("corner-crack", values, ends(values["half_height"]))
+    return plate_loads("corner-crack", values, on_ends(values["half_height"]))
 
 
 CORNER_CRACK = SampleSpec(

@@ -17,7 +17,7 @@ from front3d.samples.hole import Hole
 from front3d.samples.mirror import Unfolded
 from front3d.samples.octant import octant
 from front3d.samples.parts import SURFACE_PARTS
-from front3d.samples.plate_loads import ends, load_parameters, plate_loads
+from front3d.samples.plate_loads import load_parameters, plate_loads
 from front3d.samples.sample import (
     Load,
     Parameter,
@@ -25,6 +25,7 @@ from front3d.samples.sample import (
     Values,
     check_ratio,
     common_parameters,
+    on_ends,
     required,
 )
 from front3d.samples.sheet import Quarter
@@ -91,7 +92,7 @@ def _loads(values: Values) -> tuple[Load, ...]:
         gap: FloatArray = np.abs(np.hypot(faces[:, :, 0], faces[:, :, 2]) - radius).max(axis=1)
         return gap < 1e-9 * radius
 
-    return plate_loads(_NAME, values, rim if values["cylinder"] else ends(values["half_height"]))
+    return plate_loads(_NAME, values, rim if values["cylinder"] else on_ends(values["half_height"]))
 
 
 CORNER_CRACK_AT_HOLE = SampleSpec(

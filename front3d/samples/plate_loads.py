@@ -2,8 +2,6 @@
 
 from collections.abc import Callable
 
-import numpy as np
-
 from front3d.arrays import BoolArray, FloatArray
 from front3d.samples.sample import Load, Parameter, Values, acting
 
@@ -38,13 +36,3 @@ def plate_loads(
             "bending": (values["bending"], Load("bending", bending, on)),
         },
     )
-
-
-def ends(height: float) -> Callable[[FloatArray], BoolArray]:
-    """Faces in z = height and z = -height, by the nodes of faces, (faces, m, 3)."""
-
-    def on(faces: FloatArray) -> BoolArray:
-        gap: FloatArray = np.abs(np.abs(faces[:, :, 2]) - height).max(axis=1)
-        return gap < 1e-9 * height
-
-    return on

@@ -1,13 +1,11 @@
 """What plates with a straight through crack have in common: fineness, thickness, sides, ends."""
 
-from collections.abc import Callable
-
 import numpy as np
 
 from front3d.arrays import BoolArray, FloatArray
 from front3d.samples import grading
 from front3d.samples.fineness import density
-from front3d.samples.sample import Parameter
+from front3d.samples.sample import Load, Parameter, Values, acting, on_ends
 from front3d.samples.section import Grid, graded_lines, through_thickness
 from front3d.samples.tube import Tube
 
@@ -69,11 +67,11 @@ def hold(points: FloatArray, half_extents: dict[int, float]) -> BoolArray:
     return out
 
 
-def on_ends(height: float) -> Callable[[FloatArray], BoolArray]:
-    """The faces in z = +- height: (faces, m, 3) -> (faces,)."""
+def end_tension(sample: str, values: Values) -> tuple[Load, ...]:
+    """The tension of `values` on the ends of the plate."""
 
-    def ends(faces: FloatArray) -> BoolArray:
-        gap: FloatArray = np.abs(np.abs(faces[:, :, 2]) - height).max(axis=1)
-        return gap < 1e-9 * height
+    def tension(points: FloatArray, normals: FloatArray) -> FloatArray:
+        return values["tension"] * normals
 
-    return ends
+    load = Load("tension", tension, on_ends(values["half_height"]))
+    return acting(sample, {"tension": (values["tension"], load)})

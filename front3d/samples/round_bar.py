@@ -9,7 +9,6 @@ from front3d.samples.cells import cracked_solid, is_tetra
 from front3d.samples.fineness import density
 from front3d.samples.mirror import Unfolded
 from front3d.samples.octant import octant
-from front3d.samples.plates import on_ends
 from front3d.samples.sample import (
     Load,
     Parameter,
@@ -18,6 +17,7 @@ from front3d.samples.sample import (
     acting,
     check_ratio,
     common_parameters,
+    on_ends,
     required,
 )
 from front3d.samples.sheet import Quarter

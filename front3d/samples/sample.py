@@ -173,6 +173,16 @@ def outside(faces: FloatArray) -> BoolArray:
     return np.abs(faces[:, :, 2]).max(axis=1) > 0.0
 
 
+def on_ends(height: float) -> Callable[[FloatArray], BoolArray]:
+    """The faces in z = +- height: nodes of faces, (faces, m, 3) -> (faces,)."""
+
+    def ends(faces: FloatArray) -> BoolArray:
+        gap: FloatArray = np.abs(np.abs(faces[:, :, 2]) - height).max(axis=1)
+        return gap < 1e-9 * height
+
+    return ends
+
+
 def acting(sample: str, loads: Mapping[str, tuple[float, Load]]) -> tuple[Load, ...]:
     """The loads whose stress (by parameter) is not zero; CaseError when none is left."""
     out = tuple(load for stress, load in loads.values() if stress != 0.0)

@@ -6,11 +6,11 @@ from front3d.arrays import BoolArray, FloatArray
 from front3d.samples.cells import cracked_solid
 from front3d.samples.mirror import Unfolded
 from front3d.samples.plates import (
+    end_tension,
     free_sides_parameter,
     growth_for,
     hold,
     layers,
-    on_ends,
     plate_grid,
     tube_for,
 )
@@ -19,7 +19,6 @@ from front3d.samples.sample import (
     Parameter,
     SampleSpec,
     Values,
-    acting,
     check_ratio,
     common_parameters,
     required,
@@ -66,11 +65,7 @@ def _mesh(values: Values, cells: str) -> Unfolded:
 
 
 def _loads(values: Values) -> tuple[Load, ...]:
-    def tension(points: FloatArray, normals: FloatArray) -> FloatArray:
-        return values["tension"] * normals
-
-    load = Load("tension", tension, on_ends(values["half_height"]))
-    return acting(_NAME, {"tension": (values["tension"], load)})
+    return end_tension(_NAME, values)
 
 
 def _held(values: Values, points: FloatArray) -> BoolArray:
