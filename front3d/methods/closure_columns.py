@@ -9,11 +9,11 @@ from dataclasses import dataclass
 import numpy as np
 
 from front3d.arrays import FloatArray, IntArray
+from front3d.crack.cells import QUARTER
 from front3d.crack.facetable import FaceTable
 from front3d.crack.front import Front
 from front3d.methods.closure_forces import Ligament, face_nodes, mode_axes
 from front3d.methods.closure_formulas import (
-    QUARTER,
     USUAL_RISE,
     length_powers,
     mirrored_openings,

@@ -10,10 +10,8 @@ in three dimensions, Krueger (2004) for unequal lengths.
 import numpy as np
 
 from front3d.arrays import FloatArray
+from front3d.crack.cells import QUARTER
 from front3d.solid import Constants
-
-QUARTER = 0.375
-"""A mid-side node nearer to the front than this part of its edge is a quarter-point."""
 
 POWER_FIT = {1: (0.321, 0.0, 0.686, -0.061), 2: (0.144, 0.369, 0.417, -0.050)}
 """Coefficients of `length_powers` by the cells' order: constant, of the rise within the first cell,

@@ -3,10 +3,10 @@
 import numpy as np
 
 from front3d.arrays import FloatArray, IntArray
+from front3d.crack.cells import QUARTER
 from front3d.elements import ELEMENTS
 from front3d.methods.closure_columns import Columns, length_and_middle
 from front3d.methods.closure_forces import Ligament
-from front3d.methods.closure_formulas import QUARTER
 from front3d.methods.context import FrontContext
 
 UNEQUAL = 1.2

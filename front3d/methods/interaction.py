@@ -98,17 +98,12 @@ def _clear_of_surfaces(
     A ring that cuts a surface takes its traction from the stresses there, which are less accurate
     than displacements.
     """
-    clear = radii.max(axis=1) < clearance
-    if clear.all():
-        return radii, ()
-    if not given:
-        if clear.sum() > 2:
-            return radii[clear], ()
-        room = 0.98 * clearance / float(plateau.max())
-        if room > SMALLEST_RATIO:
-            return np.outer(np.linspace(SMALLEST_RATIO, room, 3), plateau), ()
+    inside = _within(radii, plateau, clearance, given)
+    if inside is not None:
+        return inside, ()
+    reaching = radii[radii.max(axis=1) >= clearance]
     return radii, (
-        f"rings of radius {radii[~clear].max():.4g} reach a surface {clearance:.4g} from the front "
+        f"rings of radius {reaching.max():.4g} reach a surface {clearance:.4g} from the front "
         "on which it does not end, and take the traction there from the stresses",
     )
 
@@ -117,19 +112,33 @@ def _in_one_material(
     radii: FloatArray, plateau: FloatArray, clearance: float, given: bool, source: str
 ) -> FloatArray:
     """Rings that hold one material only; MethodError where none does, or given ones do not."""
-    clear = radii.max(axis=1) < clearance
-    if clear.all():
-        return radii
-    if not given and clear.sum() > 2:
-        return radii[clear]
-    room = 0.98 * clearance / float(plateau.max())
-    if not given and room > SMALLEST_RATIO:
-        return np.outer(np.linspace(SMALLEST_RATIO, room, 3), plateau)
+    inside = _within(radii, plateau, clearance, given)
+    if inside is not None:
+        return inside
     raise MethodError(
         f"{source}: another material begins {clearance:.4g} from the front, within a ring of "
         f"radius {radii.max():.4g}; expected rings inside one material: "
         + ("give smaller radii" if given else "refine the mesh around the front")
     )
+
+
+def _within(
+    radii: FloatArray, plateau: FloatArray, clearance: float, given: bool
+) -> FloatArray | None:
+    """The rings if they are smaller than `clearance`; else those that are, or smaller ones, unless
+    the user gave them; None where that cannot be.
+    """
+    clear = radii.max(axis=1) < clearance
+    if clear.all():
+        return radii
+    if given:
+        return None
+    if clear.sum() > 2:
+        return radii[clear]
+    room = 0.98 * clearance / float(plateau.max())
+    if room > SMALLEST_RATIO:
+        return np.outer(np.linspace(SMALLEST_RATIO, room, 3), plateau)
+    return None
 
 
 def _result(
