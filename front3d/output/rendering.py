@@ -24,19 +24,28 @@ def why_no_pictures(timeout: float = 120.0) -> str | None:
     """None when pictures can be drawn; else a sentence with the reason and what to do."""
     choose_window()
     try:
-        trial = subprocess.run(
-            [sys.executable, "-c", _TRIAL],
-            stdin=subprocess.DEVNULL,
-            capture_output=True,
-            timeout=timeout,
-            check=False,
-        )
+        ended = exit_of_trial(_TRIAL, timeout)
     except (OSError, subprocess.TimeoutExpired) as error:
         return _advice(f"a trial picture failed: {type(error).__name__}")
-    if trial.returncode == 0:
+    if ended == 0:
         return None
-    ended = "crashed" if trial.returncode < 0 else "failed"
-    return _advice(f"a trial picture {ended}, as it does without a graphics library")
+    how = "crashed" if ended < 0 else "failed"
+    return _advice(f"a trial picture {how}, as it does without a graphics library")
+
+
+def exit_of_trial(script: str, timeout: float) -> int:
+    """How a script ends in a Python process of its own: 0 well, negative by a signal.
+
+    Raises OSError or subprocess.TimeoutExpired where it cannot be told.
+    """
+    trial = subprocess.run(
+        [sys.executable, "-c", script],
+        stdin=subprocess.DEVNULL,
+        capture_output=True,
+        timeout=timeout,
+        check=False,
+    )
+    return trial.returncode
 
 
 def choose_window() -> None:

@@ -1,6 +1,6 @@
 """VTKHDF, Exodus and EnSight Gold: files of many times, through VTK's own readers."""
 
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from pathlib import Path
 from typing import Any
 
@@ -19,35 +19,31 @@ from front3d.reading.vtk_grid import joined_cells, to_grids
 def read_vtkhdf(path: Path, finder: DisplacementFinder) -> RawModel:
     from vtkmodules.vtkIOHDF import vtkHDFReader
 
-    series = Series(path, finder)
-    with vtk_library(path, "VTKHDF", native=True):
+    def opened() -> Any:
         reader = vtkHDFReader()
         reader.SetFileName(str(path))
-        for time in _update(reader):
-            series.add(_copies(to_grids(reader.GetOutputDataObject(0))), time)
-    return series.result()
+        return reader
+
+    return _read(path, finder, "VTKHDF", opened)
 
 
 def read_ensight(path: Path, finder: DisplacementFinder) -> RawModel:
     """Parts of an EnSight file number their nodes for themselves: they are pieces."""
     from vtkmodules.vtkIOEnSight import vtkGenericEnSightReader
 
-    check_case(path)
-    series = Series(path, finder)
-    with vtk_library(path, "EnSight Gold", native=True):
+    def opened() -> Any:
         reader = vtkGenericEnSightReader()
         reader.SetCaseFileName(str(path))
-        for time in _update(reader):
-            series.add(_copies(to_grids(reader.GetOutputDataObject(0))), time)
-    return series.result()
+        return reader
+
+    check_case(path)
+    return _read(path, finder, "EnSight Gold", opened)
 
 
 def read_exodus(path: Path, finder: DisplacementFinder) -> RawModel:
     from vtkmodules.vtkIOExodus import vtkExodusIIReader
 
-    check_exodus(path)
-    series = Series(path, finder)
-    with vtk_library(path, "Exodus", native=True):
+    def opened() -> Any:
         reader = vtkExodusIIReader()
         reader.SetFileName(str(path))
         reader.UpdateInformation()
@@ -58,11 +54,28 @@ def read_exodus(path: Path, finder: DisplacementFinder) -> RawModel:
         for sort in (nodal, vtkExodusIIReader.ELEM_BLOCK):
             for k in range(reader.GetNumberOfObjectArrays(sort)):
                 reader.SetObjectArrayStatus(sort, reader.GetObjectArrayName(sort, k), 1)
-        for time in _update(reader):
-            series.add(_copies(_united(to_grids(reader.GetOutputDataObject(0)))), time)
-    model = series.result()
+        return reader
+
+    check_exodus(path)
+    model = _read(path, finder, "Exodus", opened, _united)
     model.single_if_exact = True
     return model
+
+
+def _read(
+    path: Path,
+    finder: DisplacementFinder,
+    library: str,
+    opened: Callable[[], Any],
+    joined: Callable[[list[Any]], list[Any]] = list,
+) -> RawModel:
+    """The model at every time of a reader; `joined` makes its grids what they are pieces of."""
+    series = Series(path, finder)
+    with vtk_library(path, library, native=True):
+        reader = opened()
+        for time in _update(reader):
+            series.add(_copies(joined(to_grids(reader.GetOutputDataObject(0)))), time)
+    return series.result()
 
 
 def _update(reader: Any) -> Iterator[float | None]:

@@ -2,7 +2,6 @@
 
 from collections.abc import Callable, Iterator, Sequence
 from functools import lru_cache
-from math import pi
 from time import perf_counter
 
 from front3d.errors import Front3DError
@@ -47,21 +46,11 @@ def _rows(case: Case, build_once: Callable[..., Sample]) -> Iterator[Row]:
 
 def _outcome(run: Run, build_once: Callable[..., Sample]) -> Outcome:
     sample = build_once(run.sample, run.cells, run.part, tuple(run.parameters.items()))
-    values = dict(sample.parameters) | _totals(sample)
     words = dict(sample.case["options"])
-    words["compare"] = tuple(text.format_map(values) for text in run.compare)
+    words["compare"] = tuple(text.format_map(sample.parameters) for text in run.compare)
     options = Options.from_words(**words)
     return Outcome(run, sample, evaluate_solid(sample.solid, sample.material, options))
 
 
 def _build(name: str, cells: str, part: str, parameters: tuple[tuple[str, float], ...]) -> Sample:
     return build(name, cells=cells, part=part, progress=None, **dict(parameters))
-
-
-def _totals(sample: Sample) -> dict[str, float]:
-    """Force and torque on a bar, which its formulas ask for in place of stresses."""
-    values = sample.parameters
-    if sample.name != "round-bar":
-        return {}
-    b = values["radius"]
-    return {"force": values["tension"] * pi * b**2, "torque": values["torsion"] * pi * b**3 / 2.0}

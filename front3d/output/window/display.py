@@ -4,11 +4,14 @@ import os
 import subprocess
 import sys
 
+from front3d.output.rendering import exit_of_trial
+
 _TRIAL = """
-import ctypes, sys
+import ctypes
 library = ctypes.CDLL("libX11.so.6")
 library.XOpenDisplay.restype = ctypes.c_void_p
-sys.exit(0 if library.XOpenDisplay(None) else 1)
+if not library.XOpenDisplay(None):
+    raise OSError
 """
 
 
@@ -22,14 +25,7 @@ def why_no_window() -> str | None:
     if not name:
         return "there is no display (DISPLAY is not set)"
     try:
-        trial = subprocess.run(
-            [sys.executable, "-c", _TRIAL],
-            stdin=subprocess.DEVNULL,
-            capture_output=True,
-            timeout=30,
-            check=False,
-        )
-        if trial.returncode == 0:
+        if exit_of_trial(_TRIAL, timeout=30.0) == 0:
             # A wish for drawing without a screen, left by whoever called, would leave none here.
             os.environ.pop("VTK_DEFAULT_OPENGL_WINDOW", None)
             return None
