@@ -1,11 +1,12 @@
 """The pipeline from a solid to K along its fronts: order of steps, no mathematics."""
 
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Iterator, Mapping
 from dataclasses import asdict, replace
 
 import numpy as np
 
-from front3d.crack import CrackModel, find_cracks
+from front3d.arrays import FloatArray
+from front3d.crack import CrackModel, Front, find_cracks
 from front3d.errors import CaseError, Front3DError, MeshError, MethodError
 from front3d.evidence import REPORTED, weigh
 from front3d.flags import front_warnings, station_flags
@@ -29,7 +30,7 @@ from front3d.sanity.displacements import (
     displacement_warnings,
     refuse_coordinates,
 )
-from front3d.sanity.faces import face_warnings, stress_warnings
+from front3d.sanity.faces import face_warnings, pair_normals, stress_warnings
 from front3d.solid import Constants, Material, Solid, Step
 from front3d.steps import choose
 from front3d.units import Units
@@ -80,46 +81,42 @@ def evaluate_solid(
     displacement = np.stack([step.displacement for step in chosen.computed])
     results: list[FrontResult] = []
     left_out: list[tuple[int, Front3DError]] = []
-    number = 0
-    for patch, fronts in zip(model.patches, model.fronts, strict=True):
-        for front in fronts:
-            report(f"front {number + 1} of {model.n_fronts}", number / model.n_fronts)
-            try:
-                own, loads = material_of_front(
-                    solid, model, front, material, options.loads, chosen.computed
+    normals = [pair_normals(solid, patch) for patch in model.patches]
+    for number, (crack, front) in enumerate(_fronts(model)):
+        report(f"front {number + 1} of {model.n_fronts}", number / model.n_fronts)
+        try:
+            own, loads = material_of_front(
+                solid, model, front, material, options.loads, chosen.computed
+            )
+            foreign = foreign_cells(solid, model, front, loads, chosen.computed[0])
+            context = FrontContext(
+                solid, model, model.patches[crack], front, own, options, displacement,
+                chosen.rows, chosen.computed, loads, foreign,
+            )  # fmt: skip
+            by_method, refused = _apply_methods(context)
+            constants = station_constants(context)
+        except (MethodError, MeshError) as reason:
+            if model.n_fronts == 1:
+                raise
+            left_out.append((number, reason))
+            continue
+        for index, step in enumerate(steps):
+            methods = {name: found[index] for name, found in by_method.items()}
+            _require_finite(step, number, methods[REPORTED])
+            results.append(
+                _front_result(
+                    step,
+                    timed,
+                    number,
+                    context,
+                    normals[crack],
+                    constants[index],
+                    methods,
+                    published.get((step.name, number), ()),
+                    refused,
+                    unlike.get((step.name, number), ()),
                 )
-                foreign = foreign_cells(solid, model, front, loads, chosen.computed[0])
-                context = FrontContext(
-                    solid, model, patch, front, own, options, displacement, chosen.rows,
-                    chosen.computed, loads, foreign,
-                )  # fmt: skip
-                by_method, refused = _apply_methods(context)
-                constants = station_constants(context)
-            except (MethodError, MeshError) as reason:
-                if model.n_fronts == 1:
-                    raise
-                left_out.append((number, reason))
-                number += 1
-                continue
-            for index, step in enumerate(steps):
-                methods = {name: found[index] for name, found in by_method.items()}
-                _require_finite(step, number, methods[REPORTED])
-                beside = published.get((step.name, number), ())
-                unmatched = unlike.get((step.name, number), ())
-                results.append(
-                    _front_result(
-                        step,
-                        timed,
-                        number,
-                        context,
-                        constants[index],
-                        methods,
-                        beside,
-                        refused,
-                        unmatched,
-                    )
-                )
-            number += 1
+            )
     if not results:
         raise left_out[0][1]
     report("done", 1.0)
@@ -133,10 +130,16 @@ def _silent(stage: str, fraction: float) -> None:
     """Progress nobody asked for."""
 
 
+def _fronts(model: CrackModel) -> Iterator[tuple[int, Front]]:
+    """Every front, in the order of their numbers, with the number of its crack."""
+    for crack, fronts in enumerate(model.fronts):
+        yield from ((crack, front) for front in fronts)
+
+
 def _shapes(model: CrackModel) -> list[FrontShape]:
     """What the fronts look like, in their order."""
     shapes = []
-    for front in (front for fronts in model.fronts for front in fronts):
+    for _, front in _fronts(model):
         s = front.corner_s[front.stations]
         positions, frames, _ = front.curve.frames(s)
         shapes.append(FrontShape(positions, frames, s, front.length, front.closed, front.ends))
@@ -181,6 +184,7 @@ def _front_result(
     timed: bool,
     number: int,
     context: FrontContext,
+    normals: FloatArray,
     material: Constants,
     methods: Mapping[str, MethodResult],
     published: tuple[Comparison, ...],
@@ -195,7 +199,7 @@ def _front_result(
         )
     positions, frames, _ = front.curve.frames(front.corner_s)
     evidence = weigh(front, context.cells, methods, material)
-    said, noted = face_warnings(context.solid, context.patch, step.displacement)
+    said, noted = face_warnings(context.patch, normals, step.displacement)
     said += stress_warnings(context, evidence.K)
     return FrontResult(
         step=step.name,

@@ -23,14 +23,13 @@ def find_half_patch(solid: Solid, same: Coincidence, plane: Plane) -> tuple[Patc
     edges lie inside a curved front.
     """
     normal = np.asarray(plane.normal)
-    distance = solid.points @ normal - plane.offset
     free = faces_on_plane(solid, same, plane)
     where = f"{solid.source}: the plane {plane}"
     if not len(free):
-        low, high = distance.min(), distance.max()
+        along = solid.points @ normal
         raise CrackError(
             f"{where} holds no outer face; along its normal the model reaches from "
-            f"{plane.offset + low:g} to {plane.offset + high:g}"
+            f"{along.min():g} to {along.max():g}"
         )
     if not solid.steps:
         raise CrackError(f"{where}: a half model's crack is found by its displacements; found none")

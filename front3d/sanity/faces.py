@@ -3,7 +3,6 @@
 import numpy as np
 
 from front3d.arrays import FloatArray
-from front3d.crack.facetable import FaceTable
 from front3d.crack.patches import Patch
 from front3d.methods.context import FrontContext
 from front3d.solid import Solid
@@ -23,13 +22,13 @@ a few times at the most."""
 
 
 def face_warnings(
-    solid: Solid, patch: Patch, displacement: FloatArray
+    patch: Patch, normals: FloatArray, displacement: FloatArray
 ) -> tuple[tuple[str, ...], tuple[str, ...]]:
     """Warnings and notes on one crack in one step, from the opening of its node pairs.
 
-    displacement : (n_points, 3)
+    normals : those of `pair_normals`; displacement : (n_points, 3)
     """
-    opening, size = _openings(solid, patch, displacement)
+    opening, size = _openings(patch, normals, displacement)
     largest, n = float(size.max(initial=0.0)), len(opening)
     if largest == 0.0:
         return (), ("the crack faces do not move against each other in this step: K is zero",)
@@ -59,26 +58,27 @@ def face_warnings(
 
 
 def _openings(
-    solid: Solid, patch: Patch, displacement: FloatArray
+    patch: Patch, normals: FloatArray, displacement: FloatArray
 ) -> tuple[FloatArray, FloatArray]:
     """(n,) opening along the crack normal, and size of the jump, of each node pair."""
     upper, lower = patch.pairs.T
     if patch.plane is not None:
-        inward = _node_normals(solid, patch.upper)[upper]
-        opening = 2.0 * np.einsum("nk,nk->n", displacement[upper], inward)
+        opening = 2.0 * np.einsum("nk,nk->n", displacement[upper], normals)
         return opening, np.abs(opening)
     jump = displacement[upper] - displacement[lower]
-    opening = np.einsum("nk,nk->n", jump, _node_normals(solid, patch.upper)[upper])
+    opening = np.einsum("nk,nk->n", jump, normals)
     return opening, np.linalg.norm(jump, axis=1)
 
 
-def _node_normals(solid: Solid, upper: FaceTable) -> FloatArray:
-    """(n_points, 3) unit normals at the nodes of the upper faces, from the lower to the upper."""
-    area = -upper.area_vectors(solid.points)
+def pair_normals(solid: Solid, patch: Patch) -> FloatArray:
+    """(n, 3) unit normals at the upper node of each pair, from the lower face to the upper."""
+    faces = patch.upper
+    area = -faces.area_vectors(solid.points)
     out = np.zeros_like(solid.points)
-    np.add.at(out, upper.nodes.ravel(), np.repeat(area, upper.nodes.shape[1], axis=0))
-    size = np.linalg.norm(out, axis=1, keepdims=True)
-    normals: FloatArray = out / np.where(size > 0, size, 1.0)
+    np.add.at(out, faces.nodes.ravel(), np.repeat(area, faces.nodes.shape[1], axis=0))
+    at_pairs = out[patch.pairs[:, 0]]
+    size = np.linalg.norm(at_pairs, axis=1, keepdims=True)
+    normals: FloatArray = at_pairs / np.where(size > 0, size, 1.0)
     return normals
 
 
