@@ -49,7 +49,9 @@ def refuse_coordinates(solid: Solid, steps: Sequence[Step]) -> None:
 def mean_gradient(x: FloatArray, u: FloatArray) -> FloatArray:
     """(3, 3) du_i/dx_j of the linear field nearest to displacements u, (n, 3), at x, (n, 3)."""
     centred = x - x.mean(axis=0)
-    found, *_ = np.linalg.lstsq(centred, u - u.mean(axis=0), rcond=1e-9)
+    # Normal equations: every node of a solid goes in, and three columns need no more digits.
+    moments = centred.T @ (u - u.mean(axis=0))
+    found, *_ = np.linalg.lstsq(centred.T @ centred, moments, rcond=1e-14)
     gradient: FloatArray = found.T
     return gradient
 
