@@ -4,9 +4,9 @@ import json
 import re
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
-from functools import cache
+from functools import cache, partial
 from pathlib import Path
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 from front3d.output.charts import KINDS, charts_of
 from front3d.output.charts.style import png, svg
@@ -20,6 +20,9 @@ from front3d.output.tables import front_vtp, points_csv
 from front3d.results import Evaluation
 from front3d.solid import Solid
 from front3d.steps import with_combinations
+
+if TYPE_CHECKING:
+    from matplotlib.figure import Figure
 
 Progress = Callable[[str, float], None]
 
@@ -88,9 +91,13 @@ def _charts(evaluation: Evaluation) -> dict[str, Callable[[], bytes]]:
     makers: dict[str, Callable[[], bytes]] = {}
     for name, draw in charts_of(evaluation).items():
         drawn = cache(draw)
-        makers[f"{name}.png"] = lambda drawn=drawn: png(drawn())  # type: ignore[misc]
-        makers[f"{name}.svg"] = lambda drawn=drawn: svg(drawn())  # type: ignore[misc]
+        makers[f"{name}.png"] = partial(_saved, drawn, png)
+        makers[f"{name}.svg"] = partial(_saved, drawn, svg)
     return makers
+
+
+def _saved(draw: "Callable[[], Figure]", save: "Callable[[Figure], bytes]") -> bytes:
+    return save(draw())
 
 
 def _scenes(evaluation: Evaluation, solid: Solid) -> dict[str, Callable[[], bytes]]:

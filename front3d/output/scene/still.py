@@ -160,7 +160,10 @@ def _render(
 def _draw_words(
     figure: "Figure", fronts: tuple[FrontResult, ...], scale: Scale, notes: list[str]
 ) -> None:
-    title, middle = title_words(fronts, scale), {"x": 0.5, "ha": "center"}
-    figure.text(y=0.965, s=title, fontsize=15, color=INK, va="top", **middle)  # type: ignore[arg-type]
-    figure.text(y=0.915, s="\n".join(notes), fontsize=10.5, color=INK, va="top", **middle)  # type: ignore[arg-type]
-    figure.text(y=0.012, s=fill(CAUTION, 110), fontsize=9, color=MUTED, va="bottom", **middle)  # type: ignore[arg-type]
+    words = [
+        (0.965, title_words(fronts, scale), 15.0, INK, "top"),
+        (0.915, "\n".join(notes), 10.5, INK, "top"),
+        (0.012, fill(CAUTION, 110), 9.0, MUTED, "bottom"),
+    ]
+    for y, text, size, colour, side in words:
+        figure.text(0.5, y, text, fontsize=size, color=colour, ha="center", va=side)

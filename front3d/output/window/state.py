@@ -95,8 +95,13 @@ def _other_axis(_: Evaluation, shown: Shown) -> Shown:
 
 Change = Callable[[Evaluation, Shown], Shown]
 
+
+def _to_quantity(quantity: str) -> Change:
+    return lambda _, shown: with_quantity(shown, quantity)
+
+
 CHANGES: Mapping[str, Change] = {
-    **{q: lambda _, shown, q=q: with_quantity(shown, q) for q in QUANTITIES},  # type: ignore[misc]
+    **{quantity: _to_quantity(quantity) for quantity in QUANTITIES},
     "next step": next_step,
     "next front": next_front,
     "station before": lambda evaluation, shown: next_station(evaluation, shown, -1),
