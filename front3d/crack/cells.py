@@ -6,7 +6,9 @@ import numpy as np
 
 from front3d.arrays import BoolArray, FloatArray, IntArray
 from front3d.crack.coincidence import Coincidence
+from front3d.crack.facetable import cells_with
 from front3d.crack.front import Front, on_front_mask
+from front3d.crack.near import Near
 from front3d.elements.element import ElementType
 from front3d.solid import Solid
 
@@ -52,17 +54,18 @@ class FrontCells:
     off_chord: float = 0.0
 
 
-def cells_of_front(solid: Solid, front: Front, same: Coincidence) -> FrontCells:
-    """Look at every cell that touches the front."""
-    on_front = on_front_mask(front, same)
+def cells_of_front(solid: Solid, front: Front, same: Coincidence, near: Near) -> FrontCells:
+    """Look at every cell that touches the front; `near` are the cells near it."""
+    on_front = on_front_mask(front, same, near.nodes)
     kinds: set[str] = set()
     smallest, worst = 180.0, ("", -1)
     middles: list[FloatArray] = []
     bows: list[FloatArray] = []
     ends = np.sort(same.entity[front.edges[:, :2]], axis=1)
     around = np.zeros(len(ends), np.int64)
-    for block in solid.blocks:
-        touching = np.flatnonzero(on_front[block.nodes].any(axis=1))
+    for block, touching in zip(
+        solid.blocks, cells_with(solid, on_front, near.cells), strict=True
+    ):
         if not len(touching):
             continue
         kinds.add(block.kind)

@@ -4,9 +4,9 @@ from collections.abc import Mapping
 
 import numpy as np
 
-from front3d.crack.coincidence import Coincidence
+from front3d.crack.facetable import cells_with
 from front3d.crack.front import Front, on_front_mask
-from front3d.crack.model import find_cracks
+from front3d.crack.model import CrackModel, find_cracks
 from front3d.crack.patches import Patch
 from front3d.options import Options
 from front3d.solid import Solid
@@ -18,7 +18,7 @@ def describe(solid: Solid, options: Options | None = None) -> dict[str, list[Row
     """Crack surfaces, fronts, and coincident faces left alone, a row of numbers and words each."""
     model = find_cracks(solid, options)
     fronts: list[Row] = [
-        {"crack": number, **_front(solid, front, model.same)}
+        {"crack": number, **_front(solid, front, model)}
         for number, group in enumerate(model.fronts)
         for front in group
     ]
@@ -40,7 +40,7 @@ def _patch(patch: Patch) -> Row:
     }
 
 
-def _front(solid: Solid, front: Front, same: Coincidence) -> Row:
+def _front(solid: Solid, front: Front, model: CrackModel) -> Row:
     lengths = np.linalg.norm(
         solid.points[front.edges[:, 1]] - solid.points[front.edges[:, 0]], axis=1
     )
@@ -52,16 +52,16 @@ def _front(solid: Solid, front: Front, same: Coincidence) -> Row:
         "shortest edge": float(lengths.min()),
         "median edge": float(np.median(lengths)),
         "longest edge": float(lengths.max()),
-        "cells at front": _cells_at_front(solid, front, same),
+        "cells at front": _cells_at_front(solid, front, model),
     }
 
 
-def _cells_at_front(solid: Solid, front: Front, same: Coincidence) -> str:
+def _cells_at_front(solid: Solid, front: Front, model: CrackModel) -> str:
     """Number of cells of each type that touch the front, as text."""
-    on_front = on_front_mask(front, same)
+    on_front = on_front_mask(front, model.same, model.near.nodes)
     counts: dict[str, int] = {}
-    for block in solid.blocks:
-        touching = int(on_front[block.nodes].any(axis=1).sum())
-        if touching:
-            counts[block.kind] = counts.get(block.kind, 0) + touching
+    touching = cells_with(solid, on_front, model.near.cells)
+    for block, cells in zip(solid.blocks, touching, strict=True):
+        if len(cells):
+            counts[block.kind] = counts.get(block.kind, 0) + len(cells)
     return ", ".join(f"{count} {kind}" for kind, count in counts.items())

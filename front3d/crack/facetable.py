@@ -1,5 +1,6 @@
 """Faces of cells as one table, whatever the element types."""
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -7,6 +8,7 @@ import numpy as np
 from front3d.arrays import BoolArray, FloatArray, IntArray
 from front3d.solid import Solid
 
+_CHUNK = 1 << 18
 
 @dataclass(frozen=True, slots=True, eq=False)
 class FaceTable:
@@ -55,16 +57,16 @@ class FaceTable:
         return ends, rows
 
 
-def faces_of_cells(solid: Solid, chosen: list[BoolArray]) -> FaceTable:
-    """All faces of the chosen cells, one mask per block."""
+def faces_of_cells(solid: Solid, chosen: Sequence[IntArray]) -> FaceTable:
+    """All faces of the chosen cells, their numbers per block."""
     parts: list[tuple[IntArray, ...]] = []
-    for b, (block, mask) in enumerate(zip(solid.blocks, chosen, strict=True)):
-        cells = np.flatnonzero(mask)
+    for b, (block, cells) in enumerate(zip(solid.blocks, chosen, strict=True)):
         if not len(cells):
             continue
+        members_of = block.nodes[cells]
         for local, (kind, members) in enumerate(block.element.faces):
             n_corners = 3 if kind.startswith("triangle") else 4
-            nodes = block.nodes[cells][:, list(members)]
+            nodes = members_of[:, list(members)]
             corners = nodes[:, [0, 1, 2, 0]] if n_corners == 3 else nodes[:, :4]
             midsides = np.full((len(cells), 4), -1)
             if nodes.shape[1] > n_corners:
@@ -107,19 +109,54 @@ def also_among(faces: FaceTable, others: FaceTable, entity: IntArray) -> BoolArr
     return np.isin(keys[: len(faces)], keys[len(faces) :])
 
 
-def cells_with(solid: Solid, nodes: BoolArray) -> list[BoolArray]:
-    """Per block, the mask of the cells that hold any of the marked nodes."""
-    return [np.asarray(nodes[block.nodes].any(axis=1)) for block in solid.blocks]
+def cells_with(
+    solid: Solid, nodes: BoolArray, among: Sequence[IntArray] | None = None
+) -> tuple[IntArray, ...]:
+    """Per block, the numbers of the cells that hold any of the marked nodes.
+
+    `among` are the cells to look at, which must be all that can hold one; None looks at all.
+    """
+    if among is not None:
+        return tuple(
+            numbers[nodes.take(block.nodes[numbers]).any(axis=1)]
+            for block, numbers in zip(solid.blocks, among, strict=True)
+        )
+    return tuple(_holding(block.nodes, nodes) for block in solid.blocks)
 
 
-def outer_faces(solid: Solid, entity: IntArray, nodes: BoolArray) -> FaceTable:
-    """Free faces that hold any of the marked nodes (of all faces there, crack faces included).
+def _holding(cells: IntArray, nodes: BoolArray) -> IntArray:
+    """Rows with a marked node.  Marked nodes are few: looking for them in the flat list takes a
+    third of the time of asking every row.
+    """
+    width, found = cells.shape[1], []
+    step = max(1, _CHUNK // width)
+    for start in range(0, len(cells), step):
+        places = np.flatnonzero(nodes.take(cells[start : start + step]))
+        if len(places):
+            rows = places // width
+            new = np.ones(len(rows), bool)
+            new[1:] = rows[1:] != rows[:-1]
+            found.append(start + rows[new])
+    return np.concatenate(found) if found else np.zeros(0, np.int64)
+
+
+def outer_faces(
+    solid: Solid,
+    entity: IntArray,
+    nodes: BoolArray,
+    among: Sequence[IntArray] | None = None,
+    *,
+    whole: bool = False,
+) -> FaceTable:
+    """Free faces that hold any of the marked nodes (of all faces there, crack faces included), or
+    with `whole` none but marked ones.
 
     A face is free when no other cell has it; every cell that could share it holds one of its
-    nodes, so looking at the cells around the marked nodes is enough.
+    nodes, so looking at the cells around the marked nodes is enough.  `among` as in `cells_with`.
     """
-    table = faces_of_cells(solid, cells_with(solid, nodes))
-    table = table[np.asarray(nodes[table.nodes].any(axis=1))]
+    table = faces_of_cells(solid, cells_with(solid, nodes, among))
+    marked = nodes[table.nodes]
+    table = table[np.asarray(marked.all(axis=1) if whole else marked.any(axis=1))]
     corners = entity[table.corners]
     distinct = (np.diff(np.sort(corners, axis=1), axis=1) != 0).sum(axis=1) + 1
     table = table[distinct >= 3]  # a collapsed brick has faces that are lines

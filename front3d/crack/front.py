@@ -169,19 +169,28 @@ def _reference_of(nodes: IntArray, reference: FloatArray, node: int) -> FloatArr
     return at
 
 
-def on_front_mask(front: Front, same: Coincidence) -> BoolArray:
-    """(n_points,) which nodes stand for a node of the front, those of collapsed cells included."""
-    return np.isin(same.entity, same.entity[front.nodes])
+def on_front_mask(
+    front: Front, same: Coincidence, among: IntArray | slice = slice(None)
+) -> BoolArray:
+    """(n_points,) which nodes stand for a node of the front, those of collapsed cells included.
+
+    `among` are nodes to look at, all those of the front's cells among them.
+    """
+    entities = np.zeros(len(same.entity), bool)
+    entities[same.entity[front.nodes]] = True
+    mask = np.zeros(len(same.entity), bool)
+    mask[among] = entities[same.entity[among]]
+    return mask
 
 
 def near_nodes(
-    solid: Solid, front: Front, reach: float
-) -> tuple[BoolArray, FloatArray, FloatArray]:
-    """Nodes within `reach` of the front: their mask, arc lengths and distances.
+    front: Front, x: FloatArray, reach: float
+) -> tuple[IntArray, FloatArray, FloatArray]:
+    """Which of the places x, (n, 3), are within `reach` of the front.
 
     Returns
     -------
-    mask : (n_points,); s and distance : (n_points,), NaN and infinity outside the mask
+    rows : (m,) of x; s and distance : (m,) arc length and distance of these
     """
     per_piece = 8
     knots = front.curve.knots
@@ -189,15 +198,11 @@ def near_nodes(
     samples = np.append(t.ravel(), knots[-1])
     places, _, _ = front.curve.frames(samples)
     low, high = places.min(axis=0) - reach, places.max(axis=0) + reach
-    box = np.flatnonzero(((solid.points >= low) & (solid.points <= high)).all(axis=1))
+    box = np.flatnonzero(((x >= low) & (x <= high)).all(axis=1))
     spacing = float(np.diff(knots).max()) / per_piece
-    found, index = cKDTree(places).query(solid.points[box], distance_upper_bound=reach + spacing)
+    found, index = cKDTree(places).query(x[box], distance_upper_bound=reach + spacing)
     hit = np.isfinite(np.asarray(found))
-    s = np.full(len(solid.points), np.nan)
-    distance = np.full(len(solid.points), np.inf)
-    candidates = box[hit]
-    s[candidates], distance[candidates] = front.curve.project(
-        solid.points[candidates], samples[np.asarray(index)[hit]]
-    )
-    mask = distance <= reach
-    return mask, s, distance
+    rows = box[hit]
+    s, distance = front.curve.project(x[rows], samples[np.asarray(index)[hit]])
+    inside = distance <= reach
+    return rows[inside], s[inside], distance[inside]

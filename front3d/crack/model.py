@@ -9,6 +9,7 @@ from front3d.crack.edges import FrontEdges, full_model_edges, half_model_edges, 
 from front3d.crack.ends import classify_ends
 from front3d.crack.front import Front, build_front
 from front3d.crack.half import find_half_patch
+from front3d.crack.near import Near, cells_near, first_reach
 from front3d.crack.notch import open_notch
 from front3d.crack.patches import Patch, find_patches
 from front3d.crack.pieces import (
@@ -35,6 +36,7 @@ class CrackModel:
     patches : crack surfaces that will be evaluated
     fronts : per patch, its fronts
     unopened : coincident surfaces whose sides never part: not evaluated unless asked for
+    near : the cells near the fronts
     notes : what was taken for granted, for the reader
     """
 
@@ -42,6 +44,7 @@ class CrackModel:
     patches: tuple[Patch, ...]
     fronts: tuple[tuple[Front, ...], ...]
     unopened: tuple[Patch, ...]
+    near: Near
     notes: tuple[str, ...] = ()
 
     @property
@@ -81,7 +84,20 @@ def find_cracks(solid: Solid, options: Options | None = None) -> CrackModel:
             f"{solid.source}: the coincident faces have no front: their sides share no edge, so "
             "they part the solid in two; a crack needs a front where its sides join"
         )
-    return CrackModel(same, chosen, fronts_of, unopened, _notes_on_pieces(fronts_of))
+    near = _near(solid, chosen, fronts_of)
+    return CrackModel(same, chosen, fronts_of, unopened, near, _notes_on_pieces(fronts_of))
+
+
+def _near(
+    solid: Solid, patches: tuple[Patch, ...], fronts_of: tuple[tuple[Front, ...], ...]
+) -> Near:
+    """The cells near all the fronts."""
+    fronts = [front for fronts in fronts_of for front in fronts]
+    if not fronts:
+        none = np.zeros(0, np.int64)
+        return Near(solid, (), 0.0, tuple(none for _ in solid.blocks), none)
+    reach = first_reach(solid, fronts, [patch.upper for patch in patches])
+    return cells_near(solid, fronts, reach)
 
 
 def _half_model(
@@ -96,7 +112,8 @@ def _half_model(
     edges = half_model_edges(patch, ligament, same)
     fronts = _all_fronts(solid, (patch,), [edges], same, options)
     notes = () if options.crack_plane is not None else (found_plane_note(patch, ligament),)
-    return CrackModel(same, (patch,), fronts, unopened, (*notes, *_notes_on_pieces(fronts)))
+    near = _near(solid, (patch,), fronts)
+    return CrackModel(same, (patch,), fronts, unopened, near, (*notes, *_notes_on_pieces(fronts)))
 
 
 def _all_fronts(

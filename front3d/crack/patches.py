@@ -10,7 +10,7 @@ import numpy as np
 from scipy.sparse import coo_array
 from scipy.sparse.csgraph import connected_components
 
-from front3d.arrays import BoolArray, FloatArray, IntArray
+from front3d.arrays import BoolArray, FloatArray, IntArray, extent
 from front3d.crack.coincidence import Coincidence
 from front3d.crack.facetable import FaceTable, multiplicity, outer_faces, set_keys
 from front3d.errors import CrackError
@@ -155,7 +155,7 @@ def _patch(solid: Solid, same: Coincidence, a: FaceTable, b: FaceTable, up: Vect
         jump = step.displacement[pairs[:, 0]] - step.displacement[pairs[:, 1]]
         largest = float(np.sqrt((jump**2).sum(axis=1).max()))
         spread = float(np.ptp(step.displacement[np.unique(pairs)], axis=0).max())
-        spread = max(spread, 1e-3 * float(np.ptp(step.displacement, axis=0).max()))
+        spread = max(spread, 1e-3 * float(extent(step.displacement).max()))
         opening = max(opening, largest)
         opens |= largest > NEGLIGIBLE_OPENING * spread
     return Patch(upper, lower, pairs, opening, opens)

@@ -9,6 +9,9 @@ import numpy as np
 
 from front3d.arrays import FloatArray, IntArray
 
+_BY_PRODUCTS = 4
+"""Highest exponent that is reached by multiplying: several times as fast as a power."""
+
 
 def _powers(x: FloatArray, exponents: IntArray) -> FloatArray:
     """x**n per column, with 0**negative taken as 0.
@@ -16,6 +19,13 @@ def _powers(x: FloatArray, exponents: IntArray) -> FloatArray:
     Negative exponents occur only in the pyramids, as x y / w near the apex w = 0, where
     |x|, |y| <= w makes the product vanish.
     """
+    highest = int(exponents.max(initial=0))
+    if exponents.min(initial=0) >= 0 and highest <= _BY_PRODUCTS:
+        table = np.ones((highest + 1, *x.shape))
+        for k in range(highest):
+            table[k + 1] = table[k] * x
+        taken: FloatArray = table[exponents, :, np.arange(x.shape[1])].transpose(2, 0, 1)
+        return taken
     base = np.where((x[:, None, :] == 0.0) & (exponents < 0), np.inf, x[:, None, :])
     out: FloatArray = np.power(base, exponents.astype(float))
     return out

@@ -9,7 +9,6 @@ from collections.abc import Iterator
 import numpy as np
 
 from front3d.arrays import FloatArray, IntArray, frozen_floats
-from front3d.crack.front import on_front_mask
 from front3d.elements import FACES, ElementType
 from front3d.errors import MeshError
 from front3d.methods.context import FrontContext
@@ -48,7 +47,6 @@ class Assembly:
                 for u, even in zip(moved, free, strict=True)
             ]
         )
-        self._on_front = on_front_mask(context.front, context.model.same)
         self._curve = context.front.curve.arrays
         material = context.material
         turn = 1.0 if included(CURVATURE) else 0.0
@@ -84,7 +82,7 @@ class Assembly:
         faces = term.faces
         how = np.full(len(faces), PLAIN)
         if term.kind in (PRESSED, BENT):
-            how = touching_sides(faces, self._on_front)
+            how = touching_sides(faces, self._context.on_front)
         groups = np.stack([faces.block, faces.local, how], axis=1)
         for group in np.unique(groups, axis=0):
             b, local, touching = (int(k) for k in group)

@@ -57,7 +57,7 @@ def evaluate(context: FrontContext) -> list[MethodResult]:
     columns = find_columns(context, ligament)
     front, options = context.front, context.options
     if options.hat is None:
-        (reach,) = layer_reaches(context.solid, front, context.model.same, 1)
+        (reach,) = layer_reaches(context, 1)
         width = default_widths(front, columns is not None, reach)
     else:
         width = np.full(len(front.corners), options.hat)
@@ -93,7 +93,7 @@ def openings(context: FrontContext) -> FloatArray:
     """
     u, patch, entity = context.displacement, context.patch, context.model.same.entity
     upper, lower = patch.pairs.T
-    out = np.zeros_like(u)
+    out = np.zeros(u.shape)
     if patch.plane is not None:
         normal = np.asarray(patch.plane.normal)
         out[:, entity[upper]] = 2.0 * (u[:, upper] @ normal)[..., None] * normal

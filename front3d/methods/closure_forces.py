@@ -21,7 +21,8 @@ from front3d.crack.facetable import (
     outer_faces,
     set_keys,
 )
-from front3d.crack.front import Front, on_front_mask
+from front3d.crack.front import Front
+from front3d.crack.near import nodes_of
 from front3d.elements import FACES
 from front3d.errors import MeshError, MethodError
 from front3d.methods.context import FrontContext
@@ -62,41 +63,31 @@ class Ligament:
 def find_ligament(context: FrontContext) -> Ligament:
     """Faces ahead and cells on both sides; MethodError where no faces go on ahead."""
     solid, front, same, patch = context.solid, context.front, context.model.same, context.patch
-    on_front = on_front_mask(front, same)
-    touching = cells_with(solid, on_front)
+    on_front, near = context.on_front, context.model.near
+    touching = cells_with(solid, on_front, near.cells)
     behind = patch.upper[np.asarray(on_front[patch.upper.nodes].any(axis=1))]
     if patch.lower is None:
-        free = outer_faces(solid, same.entity, on_front)
+        free = outer_faces(solid, same.entity, on_front, near.cells)
         ahead = free[_in_plane(context, free)]
         crack = set_keys(same.entity[np.concatenate([ahead.nodes, behind.nodes])])
         ahead = ahead[~np.isin(crack[: len(ahead)], crack[len(ahead) :])]
         if not len(ahead):
             raise _refusal(context, 0)
         none = tuple(np.zeros(0, np.int64) for _ in solid.blocks)
-        return Ligament(
-            ahead, behind, tuple(np.flatnonzero(mask) for mask in touching), none, on_front
-        )
+        return Ligament(ahead, behind, touching, none, on_front)
     faces, twin = _shared_faces(solid, same, touching)
     flat = _in_plane(context, faces) & on_front[faces.nodes].any(axis=1)
-    label = _parts(solid, faces, twin, flat)
+    ring = _Counted(solid, touching)
+    label = _parts(ring, faces, twin, flat)
     beneath = patch.lower[np.asarray(on_front[patch.lower.nodes].any(axis=1))]
-    start = _offsets(solid)
-    upper = np.isin(label, label[start[behind.block] + behind.cell])
-    lower = np.isin(label, label[start[beneath.block] + beneath.cell])
+    upper = np.isin(label, label[ring.rows(behind)])
+    lower = np.isin(label, label[ring.rows(beneath)])
     reached = np.unique(same.entity[faces.corners[flat]])
     if (upper & lower).any():
         raise _refusal(context, int(np.isin(same.entity[front.corners], reached).sum()))
-    ring = np.concatenate(touching)
-    split = start[1:-1]
-    above = np.split(ring & upper, split)
-    below = np.split(ring & lower, split)
-    of_upper = upper[start[faces.block] + faces.cell]
+    of_upper = upper[ring.rows(faces)]
     return Ligament(
-        faces[flat & of_upper],
-        behind,
-        tuple(np.flatnonzero(mask) for mask in above),
-        tuple(np.flatnonzero(mask) for mask in below),
-        on_front,
+        faces[flat & of_upper], behind, ring.chosen(upper), ring.chosen(lower), on_front
     )
 
 
@@ -113,13 +104,31 @@ def _refusal(context: FrontContext, with_faces: int) -> MethodError:
     )
 
 
-def _offsets(solid: Solid) -> IntArray:
-    """Number of the first cell of each block when all cells are counted through, and their sum."""
-    return np.concatenate([[0], np.cumsum([len(block) for block in solid.blocks])])
+class _Counted:
+    """Chosen cells, their numbers per block, counted through."""
+
+    def __init__(self, solid: Solid, cells: tuple[IntArray, ...]) -> None:
+        self._cells = cells
+        self._first = np.cumsum([0, *(len(block) for block in solid.blocks)])
+        starts = self._first[:-1]
+        self._all = np.concatenate([s + c for s, c in zip(starts, cells, strict=True)])
+
+    def __len__(self) -> int:
+        return len(self._all)
+
+    def rows(self, faces: FaceTable) -> IntArray:
+        """(n,) which of the chosen cells each face is of; all must be among them."""
+        return np.searchsorted(self._all, self._first[faces.block] + faces.cell)
+
+    def chosen(self, mask: BoolArray) -> tuple[IntArray, ...]:
+        """The numbers per block of those that a mask picks."""
+        ends = np.cumsum([len(cells) for cells in self._cells])[:-1]
+        parts = np.split(mask, ends)
+        return tuple(cells[part] for cells, part in zip(self._cells, parts, strict=True))
 
 
 def _shared_faces(
-    solid: Solid, same: Coincidence, cells: list[BoolArray]
+    solid: Solid, same: Coincidence, cells: tuple[IntArray, ...]
 ) -> tuple[FaceTable, IntArray]:
     """Faces that two of the cells share, each seen from both; and the row of the other view."""
     table = faces_of_cells(solid, cells)
@@ -150,12 +159,10 @@ def _in_plane(context: FrontContext, faces: FaceTable) -> BoolArray:
     return np.asarray(flat & ahead)
 
 
-def _parts(solid: Solid, faces: FaceTable, twin: IntArray, cut: BoolArray) -> IntArray:
+def _parts(ring: _Counted, faces: FaceTable, twin: IntArray, cut: BoolArray) -> IntArray:
     """(n_cells,) label of the part each cell belongs to, joined through faces that are not cut."""
-    start = _offsets(solid)
-    cell = start[faces.block] + faces.cell
+    cell, n = ring.rows(faces), len(ring)
     kept = np.flatnonzero(~(cut | cut[twin]))
-    n = int(start[-1])
     graph = coo_array((np.ones(len(kept), np.int8), (cell[kept], cell[twin[kept]])), shape=(n, n))
     return np.asarray(connected_components(graph, directed=False)[1], np.int64)
 
@@ -180,17 +187,24 @@ def closing_forces(context: FrontContext, ligament: Ligament) -> tuple[FloatArra
         was not given
     """
     solid, patch, same = context.solid, context.patch, context.model.same
-    forces = face_forces(context, ligament.behind) - cell_forces(context, ligament.above)
+    # No other nodes have any: what follows must not look at the whole solid.
+    sides = (ligament.above, ligament.below)
+    rows = np.unique(same.entity[np.concatenate([nodes_of(solid, cells) for cells in sides])])
+    forces = face_forces(context, ligament.behind)[:, rows]
+    forces -= cell_forces(context, ligament.above)[:, rows]
     imbalance = np.zeros_like(forces)
     if patch.lower is not None:
         touching = np.asarray(ligament.on_front[patch.lower.nodes].any(axis=1))
-        lower = face_forces(context, patch.lower[touching]) - cell_forces(context, ligament.below)
+        lower = face_forces(context, patch.lower[touching])[:, rows]
+        lower -= cell_forces(context, ligament.below)[:, rows]
         # Inside each side and between them everything else is in equilibrium.
         imbalance = -(forces + lower)
-        up, down = (volumes(solid, cells, same) for cells in (ligament.above, ligament.below))
+        up, down = (volumes(solid, cells, same)[rows] for cells in sides)
         forces += (up / np.maximum(up + down, 1e-300))[:, None] * imbalance
-    forces += face_forces(context, ligament.ahead, ahead=True)
-    return forces, imbalance
+    forces += face_forces(context, ligament.ahead, ahead=True)[:, rows]
+    every = np.zeros((2, *context.displacement.shape))
+    every[0][:, rows], every[1][:, rows] = forces, imbalance
+    return every[0], every[1]
 
 
 def cell_forces(context: FrontContext, cells: tuple[IntArray, ...]) -> FloatArray:
@@ -198,7 +212,7 @@ def cell_forces(context: FrontContext, cells: tuple[IntArray, ...]) -> FloatArra
     int (sigma_ij dN/dx_j - b_i N) dV.
     """
     solid, same, material = context.solid, context.model.same, context.material
-    out = np.zeros_like(context.displacement)
+    out = np.zeros(context.displacement.shape)  # unlike zeros_like, it does not touch them all
     for block, numbers in zip(solid.blocks, cells, strict=True):
         if not len(numbers):
             continue
@@ -273,7 +287,7 @@ def face_forces(context: FrontContext, faces: FaceTable, ahead: bool = False) ->
     On faces `ahead` of the front: what would act on the upper side there once they are open.
     """
     solid, entity = context.solid, context.model.same.entity
-    out = np.zeros_like(context.displacement)
+    out = np.zeros(context.displacement.shape)
     if not loaded_faces(context):
         return out
     for kind, nodes in face_nodes(solid, faces):

@@ -150,10 +150,12 @@ def _read(
         centres = corners[:, : face.n_corners].mean(axis=1)
         near = np.asarray(cKDTree(centres).query(x, k=np.arange(1, count + 1))[1], np.int64)
         for k in range(count):
-            xi, margin = _locate(face, corners[near[:, k]], x)
-            better = np.flatnonzero(margin > best)
-            best[better] = margin[better]
-            shape = face.values(xi[better])
+            (left,) = np.nonzero(best < 0.0)  # a place inside one face is in no other
+            xi, margin = _locate(face, corners[near[left, k]], x[left])
+            closer = margin > best[left]
+            better = left[closer]
+            best[better] = margin[closer]
+            shape = face.values(xi[closer])
             at = jump[:, entity[nodes[near[better, k]]]]
             found[:, better] = np.einsum("pn,tpni->tpi", shape, at)
     return found, best > _OUTSIDE

@@ -7,6 +7,7 @@ import numpy as np
 from front3d.arrays import BoolArray, FloatArray, frozen_floats
 from front3d.crack import CrackModel, Front, Patch
 from front3d.crack.cells import FrontCells, cells_of_front
+from front3d.crack.front import on_front_mask
 from front3d.loads import Loads
 from front3d.options import Options
 from front3d.solid import Material, Solid, Step
@@ -27,6 +28,7 @@ class FrontContext:
     loads : those of the options, with what belongs to the front's own material; by default they
     foreign : per block, the cells of another material; by default there are none
     cells : what surrounds the front
+    on_front : (n_points,) which nodes stand for a node of the front
     """
 
     solid: Solid
@@ -41,10 +43,12 @@ class FrontContext:
     loads: Loads = field(default_factory=Loads)
     foreign: tuple[BoolArray, ...] = ()
     cells: FrontCells = field(init=False)
+    on_front: BoolArray = field(init=False)
 
     def __post_init__(self) -> None:
-        around = cells_of_front(self.solid, self.front, self.model.same)
-        object.__setattr__(self, "cells", around)
+        same, near = self.model.same, self.model.near
+        object.__setattr__(self, "cells", cells_of_front(self.solid, self.front, same, near))
+        object.__setattr__(self, "on_front", on_front_mask(self.front, same, near.nodes))
         if not self.steps:
             object.__setattr__(self, "steps", self.solid.steps)
         if self.loads == Loads():

@@ -4,7 +4,6 @@ import numpy as np
 from scipy.spatial import cKDTree
 
 from front3d.arrays import BoolArray, FloatArray, IntArray, frozen_floats
-from front3d.crack.front import on_front_mask
 from front3d.methods.context import FrontContext
 from front3d.methods.named import at_cells, at_nodes
 from front3d.solid import Step
@@ -96,7 +95,7 @@ def _at_face_nodes(context: FrontContext, step: Step, name: str, nodes: IntArray
     at = at_nodes(context.solid, step, name, nodes.ravel(), (1, 3)).reshape(*nodes.shape, -1)
     if at.shape[2] == 1:
         return at
-    shared = on_front_mask(context.front, context.model.same)[nodes]
+    shared = context.on_front[nodes]
     for pattern in np.unique(shared, axis=0):
         if pattern.any() and not pattern.all():
             rows = (shared == pattern).all(axis=1)

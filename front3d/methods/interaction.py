@@ -32,12 +32,11 @@ ring falls with the element size at the rate of the element's order."""
 def evaluate(context: FrontContext) -> list[MethodResult]:
     """K of one front, one result per step."""
     solid, front, options = context.solid, context.front, context.options
-    same = context.model.same
     structured = context.cells.structured
-    reaches = layer_reaches(solid, front, same, 1 + N_RINGS)
+    reaches = layer_reaches(context, 1 + N_RINGS if structured else 1)
     others = [f for fronts in context.model.fronts for f in fronts if f is not front]
     radii, notes = ring_radii(front, reaches, others, structured, options.radii, solid.source)
-    tube = build_tube(solid, front, context.patch, same, float(radii.max()))
+    tube = build_tube(context, float(radii.max()))
     around = surroundings(context, tube)
     given = options.radii is not None
     radii, more = _clear_of_surfaces(radii, reaches[0], around.clearance, given)

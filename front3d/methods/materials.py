@@ -83,10 +83,11 @@ def _number_of(solid: Solid, region: Region) -> float:
 
 
 def _region_at(solid: Solid, model: CrackModel, front: Front, loads: Loads, step: Step) -> Region:
-    touching = cells_with(solid, on_front_mask(front, model.same))
+    on_front = on_front_mask(front, model.same, model.near.nodes)
+    touching = cells_with(solid, on_front, model.near.cells)
     numbers = _numbers(solid, loads, step)
     found = np.unique(
-        np.concatenate([part[mask] for part, mask in zip(numbers, touching, strict=True)])
+        np.concatenate([part[cells] for part, cells in zip(numbers, touching, strict=True)])
     )
     if len(found) > 1:
         raise MethodError(

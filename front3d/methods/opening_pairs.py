@@ -5,7 +5,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from front3d.arrays import BoolArray, FloatArray, IntArray
-from front3d.crack.front import Front, on_front_mask
+from front3d.crack.front import Front
 from front3d.errors import MethodError
 from front3d.methods.context import FrontContext
 from front3d.methods.tube import along_front, project
@@ -74,8 +74,7 @@ def cell_sizes(context: FrontContext) -> FloatArray:
     size does to the opening is not.
     """
     solid, front, same = context.solid, context.front, context.model.same
-    n = len(front.corners)
-    on_front = on_front_mask(front, same)
+    n, on_front = len(front.corners), context.on_front
     corners = context.patch.upper.corners
     touching = _distinct_on_front(same.entity[corners], on_front[corners]) >= 2
     corners = corners[touching]

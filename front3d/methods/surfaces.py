@@ -69,8 +69,8 @@ def surroundings(context: FrontContext, tube: Tube) -> Surroundings:
     solid, patch = context.solid, context.patch
     same = context.model.same
     inside = marked(len(solid.points), tube.nodes)
-    outer = outer_faces(solid, same.entity, inside)
-    outer = outer[np.asarray(inside[outer.nodes].all(axis=1))]
+    near = context.model.near.reaching(float(tube.r.max()))
+    outer = outer_faces(solid, same.entity, inside, near.cells, whole=True)
     is_crack = also_among(outer, patch.upper, same.entity)
     if patch.lower is not None:
         is_crack |= also_among(outer, patch.lower, same.entity)

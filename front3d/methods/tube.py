@@ -6,11 +6,11 @@ import numpy as np
 from scipy.spatial import cKDTree
 
 from front3d.arrays import FloatArray, IntArray
-from front3d.crack.coincidence import Coincidence
-from front3d.crack.front import Front, near_nodes, on_front_mask
-from front3d.crack.patches import Patch
+from front3d.crack.facetable import cells_with
+from front3d.crack.front import Front, near_nodes
+from front3d.crack.near import nodes_of
 from front3d.errors import MethodError
-from front3d.solid import Solid
+from front3d.methods.context import FrontContext
 
 
 def along_front(front: Front, at_corners: FloatArray, s: FloatArray) -> FloatArray:
@@ -39,52 +39,67 @@ class Tube:
     side: IntArray
 
 
-def layer_reaches(solid: Solid, front: Front, same: Coincidence, count: int) -> FloatArray:
+def layer_reaches(context: FrontContext, count: int) -> FloatArray:
     """(count, n_corners) how far each layer of cells reaches from the front, at each corner node.
 
     Layer 0 are the cells that touch the front, layer k + 1 those that touch layer k.  The reach at
     a corner node is the largest over it and its two neighbours.
     """
-    n = len(front.corners)
-    inside = on_front_mask(front, same)
-    reaches = []
+    solid, front, near = context.solid, context.front, context.model.near
+    entity, n = context.model.same.entity, len(front.corners)
+    inside = context.on_front
+    reached = np.zeros(len(inside), bool)
+    reach, reaches = np.zeros(n), []
     for _ in range(count):
+        cells = cells_with(solid, inside, near.cells)
         grown = np.zeros(len(inside), bool)
-        for block in solid.blocks:
-            grown[block.nodes[inside[block.nodes].any(axis=1)]] = True
-        inside = grown[same.entity] | grown
-        nodes = np.flatnonzero(grown)
+        for block, numbers in zip(solid.blocks, cells, strict=True):
+            grown[block.nodes[numbers]] = True
+        nodes = near.nodes[(grown & ~reached)[near.nodes]]
+        reached = grown
         s, r = project(front, solid.points[nodes])
         corner = np.rint(front.cell_coordinate(s)).astype(np.int64) % n
-        reach = np.zeros(n)
         np.maximum.at(reach, corner, r)
         padded = np.pad(reach, 1, mode="wrap" if front.closed else "edge")
         reaches.append(np.max([padded[:-2], padded[1:-1], padded[2:]], axis=0))
+        near = near.reaching(float(r.max(initial=0.0)))
+        inside = np.zeros(len(inside), bool)
+        inside[near.nodes] = grown[entity[near.nodes]] | grown[near.nodes]
     return np.stack(reaches)
 
 
-def build_tube(solid: Solid, front: Front, patch: Patch, same: Coincidence, reach: float) -> Tube:
+def build_tube(context: FrontContext, reach: float) -> Tube:
     """Cells and nodes within `reach` of the front."""
-    inside, s, r = near_nodes(solid, front, reach)
-    chosen = [inside[block.nodes].any(axis=1) for block in solid.blocks]
-    cells = tuple(np.flatnonzero(mask) for mask in chosen)
+    solid, front, patch = context.solid, context.front, context.patch
+    near = context.model.near.reaching(reach)
+    x = solid.points[near.nodes]
+    rows, s_near, r_near = near_nodes(front, x, reach)
+    inside = np.zeros(len(solid.points), bool)
+    inside[near.nodes[rows]] = True
+    cells = cells_with(solid, inside, near.cells)
     if not any(len(c) for c in cells):
         raise MethodError(
             f"{solid.source}: no cell within {reach:g} of the front; give larger ring radii"
         )
-    members = [block.nodes[c].ravel() for block, c in zip(solid.blocks, cells, strict=True)]
-    nodes = np.unique(np.concatenate(members))
+    nodes = nodes_of(solid, cells)
+    s, r = np.empty(len(nodes)), np.empty(len(nodes))
+    within = inside[nodes]
+    s[within], r[within] = s_near, r_near
     # Outer nodes of these cells lie beyond the reach: they need places too, for seeds.
-    far = nodes[~np.isfinite(r[nodes])]
-    if len(far):
-        s[far], r[far] = project(front, solid.points[far])
-    side = np.zeros(len(solid.points), np.int64)
+    s[~within], r[~within] = project(front, solid.points[nodes[~within]])
+    return Tube(cells, nodes, s, r, _sides(context, nodes))
+
+
+def _sides(context: FrontContext, nodes: IntArray) -> IntArray:
+    """(m,) side of the crack of each node of a tube."""
+    patch, same = context.patch, context.model.same
+    side = np.zeros(len(context.solid.points), np.int8)
     if patch.half:
         side[patch.pairs[:, 0]] = 1
-    else:
-        side[same.double & np.isin(same.entity, same.entity[patch.pairs[:, 0]])] = 1
-        side[same.double & np.isin(same.entity, same.entity[patch.pairs[:, 1]])] = -1
-    return Tube(cells, nodes, s[nodes], r[nodes], side[nodes])
+        return side[nodes].astype(np.int64)
+    side[same.entity[patch.pairs[:, 0]]] = 1
+    side[same.entity[patch.pairs[:, 1]]] = -1
+    return np.where(same.double[nodes], side[same.entity[nodes]], 0).astype(np.int64)
 
 
 def project(front: Front, x: FloatArray) -> tuple[FloatArray, FloatArray]:

@@ -74,7 +74,7 @@ def pair_normals(solid: Solid, patch: Patch) -> FloatArray:
     """(n, 3) unit normals at the upper node of each pair, from the lower face to the upper."""
     faces = patch.upper
     area = -faces.area_vectors(solid.points)
-    out = np.zeros_like(solid.points)
+    out = np.zeros(solid.points.shape)
     np.add.at(out, faces.nodes.ravel(), np.repeat(area, faces.nodes.shape[1], axis=0))
     at_pairs = out[patch.pairs[:, 0]]
     size = np.linalg.norm(at_pairs, axis=1, keepdims=True)
