@@ -22,4 +22,3 @@ def _decorator(**flags: Any) -> Callable[[Callable[..., Any]], Any]:
 
 
 kernel = _decorator()
-parallel_kernel = _decorator(parallel=True)

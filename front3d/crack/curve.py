@@ -49,7 +49,7 @@ class Curve:
 
     def frames(self, s: FloatArray) -> tuple[FloatArray, FloatArray, FloatArray]:
         """Positions (n, 3), frames (n, 3, 3) with rows e1, e2, e3, and turning w (n, 3)."""
-        s = np.ascontiguousarray(s, float)
+        s = frozen_floats(s)
         place, frame, turning = (
             np.empty((len(s), 3)),
             np.empty((len(s), 3, 3)),

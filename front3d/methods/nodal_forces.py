@@ -16,13 +16,12 @@ sigma* : eps, and T_k = - (sigma*_ij,k + C_ijmn,k eps_mn / 2) eps_ij - b_i u_i,k
 Sources: Li, Shih and Needleman (1985); Nakamura and Parks (1989); Gosz and Moran (2002).
 """
 
-import numba
 import numpy as np
 
 from front3d.arrays import FloatArray, IntArray
 from front3d.crack.curve import CurveArrays
 from front3d.fields.neartip import auxiliary
-from front3d.jit import parallel_kernel
+from front3d.jit import kernel
 from front3d.methods.point_kernels import (
     area_vector,
     displacement_gradient,
@@ -57,7 +56,7 @@ given load; nothing, so that its traction is taken from the stresses; or a crack
 the plane of the front's frame, under a given load or none."""
 
 
-@parallel_kernel
+@kernel
 def cell_forces(
     points: FloatArray,
     cells: IntArray,
@@ -82,17 +81,17 @@ def cell_forces(
     """
     shear, poisson, turn, weight = constants
     values, gradients, weights = rule
-    for c in numba.prange(len(cells)):
-        here, slope, initial = np.zeros(N_COLUMNS), np.zeros((2, 3)), np.zeros((4, 3, 3))
-        here[LAME], here[SHEAR], here[RATIO] = first_constant(shear, poisson), shear, poisson
-        aux_strain = np.zeros((3, 3, 3))
-        vectors, matrices = np.zeros((4, 3)), np.zeros((8, 3, 3))
-        x, place, turning, T = vectors[0], vectors[1], vectors[2], vectors[3]
-        jacobian, inverse, frame, local = matrices[0], matrices[1], matrices[2], matrices[3]
-        raw, H, stress, P = matrices[4], matrices[5], matrices[6], matrices[7]
-        aux_gradient, aux_stress = np.empty((3, 3, 3)), np.empty((3, 3, 3))
-        divergence, incompatibility = np.empty((3, 3)), np.empty((3, 3, 2))
-        work, pull = np.empty((3, 3, 9)), np.empty((3, 4))
+    here, slope, initial = np.zeros(N_COLUMNS), np.zeros((2, 3)), np.zeros((4, 3, 3))
+    here[LAME], here[SHEAR], here[RATIO] = first_constant(shear, poisson), shear, poisson
+    aux_strain = np.zeros((3, 3, 3))
+    vectors, matrices = np.zeros((4, 3)), np.zeros((8, 3, 3))
+    x, place, turning, T = vectors[0], vectors[1], vectors[2], vectors[3]
+    jacobian, inverse, frame, local = matrices[0], matrices[1], matrices[2], matrices[3]
+    raw, H, stress, P = matrices[4], matrices[5], matrices[6], matrices[7]
+    aux_gradient, aux_stress = np.empty((3, 3, 3)), np.empty((3, 3, 3))
+    divergence, incompatibility = np.empty((3, 3)), np.empty((3, 3, 2))
+    work, pull = np.empty((3, 3, 9)), np.empty((3, 4))
+    for c in range(len(cells)):
         status[c] = 0
         out[c] = 0.0
         s = seed[c]
@@ -158,7 +157,7 @@ def cell_forces(
                 )  # fmt: skip
 
 
-@parallel_kernel
+@kernel
 def face_forces(
     points: FloatArray,
     cells: IntArray,
@@ -188,19 +187,19 @@ def face_forces(
     """
     shear, poisson, turn, weight = constants
     values, gradients, weights = rule
-    for c in numba.prange(len(cells)):
-        here, slope, initial = np.zeros(N_COLUMNS), np.zeros((2, 3)), np.zeros((4, 3, 3))
-        here[LAME], here[SHEAR], here[RATIO] = first_constant(shear, poisson), shear, poisson
-        aux_strain, more = np.zeros((3, 3, 3)), 0.0
-        vectors, matrices = np.zeros((6, 3)), np.zeros((7, 3, 3))
-        x, place, turning, area = vectors[0], vectors[1], vectors[2], vectors[3]
-        T, traction = vectors[4], vectors[5]
-        jacobian, inverse, frame, local = matrices[0], matrices[1], matrices[2], matrices[3]
-        raw, H, stress = matrices[4], matrices[5], matrices[6]
-        P = np.zeros((3, 3))
-        aux_gradient, aux_stress = np.empty((3, 3, 3)), np.empty((3, 3, 3))
-        divergence, incompatibility = np.empty((3, 3)), np.empty((3, 3, 2))
-        work, pull = np.empty((3, 3, 9)), np.empty((3, 4))
+    here, slope, initial = np.zeros(N_COLUMNS), np.zeros((2, 3)), np.zeros((4, 3, 3))
+    here[LAME], here[SHEAR], here[RATIO] = first_constant(shear, poisson), shear, poisson
+    aux_strain, more = np.zeros((3, 3, 3)), 0.0
+    vectors, matrices = np.zeros((6, 3)), np.zeros((7, 3, 3))
+    x, place, turning, area = vectors[0], vectors[1], vectors[2], vectors[3]
+    T, traction = vectors[4], vectors[5]
+    jacobian, inverse, frame, local = matrices[0], matrices[1], matrices[2], matrices[3]
+    raw, H, stress = matrices[4], matrices[5], matrices[6]
+    P = np.zeros((3, 3))
+    aux_gradient, aux_stress = np.empty((3, 3, 3)), np.empty((3, 3, 3))
+    divergence, incompatibility = np.empty((3, 3)), np.empty((3, 3, 2))
+    work, pull = np.empty((3, 3, 9)), np.empty((3, 4))
+    for c in range(len(cells)):
         out[c] = 0.0
         s = seed[c]
         for g in range(len(weights)):
@@ -264,3 +263,16 @@ def face_forces(
                     spread(
                         P, T, 1.0, frame, local, values[g], gradients[g], pull, out[c, step, mode]
                     )
+
+
+@kernel
+def sum_at_nodes(cells: IntArray, of_cells: FloatArray, forces: FloatArray) -> None:
+    """Add forces of cells, (n, steps, N_MODES, nodes, 3), to those at nodes, (steps, N_MODES,
+    points, 3).
+    """
+    for c in range(len(cells)):
+        for step in range(forces.shape[0]):
+            for mode in range(forces.shape[1]):
+                for n in range(cells.shape[1]):
+                    for k in range(3):
+                        forces[step, mode, cells[c, n], k] += of_cells[c, step, mode, n, k]
