@@ -105,8 +105,11 @@ def by_c(library: ctypes.CDLL, given: Inputs, part: slice) -> FloatArray:
     values, gradients, weights = given.rule
     knots, position, normal, closed = given.curve
     shear, poisson, turn, _ = given.constants
-    at = (lambda array: ctypes.c_void_p(array.ctypes.data))  # fmt: skip
     many = ctypes.c_long
+
+    def at(array: np.ndarray) -> ctypes.c_void_p:
+        return ctypes.c_void_p(array.ctypes.data)
+
     library.cell_forces(
         at(given.points), many(len(given.points)), at(cells), many(len(cells)),
         many(cells.shape[1]), at(side), at(seed), at(given.displacement),

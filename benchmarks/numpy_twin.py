@@ -1,5 +1,6 @@
-"""The volume kernel of the interaction integral in plain vectorised numpy, for constants that do not
-vary: what the compiled kernel is measured against, and checked with.
+"""The volume kernel of the interaction integral in numpy, vectorised, where constants do not vary.
+
+It is what the compiled kernel is measured against, and checked with.
 
 Every array runs over (cells, Gauss points); the formulas are those of `methods/nodal_forces.py`,
 `fields/neartip.py` and `crack/curve.py`, written down anew.
@@ -68,9 +69,7 @@ def cell_forces(
     return out
 
 
-def _pieces(
-    s: FloatArray, curve: CurveArrays
-) -> tuple[IntArray, FloatArray, FloatArray]:
+def _pieces(s: FloatArray, curve: CurveArrays) -> tuple[IntArray, FloatArray, FloatArray]:
     """Piece of the curve, offset in it, and what lies beyond an open end."""
     knots, _, _, closed = curve
     inside = s % knots[-1] if closed else np.clip(s, 0.0, knots[-1])

@@ -85,7 +85,6 @@ def measure(path: Path, repeats: int = 2) -> dict[str, Any]:
     front = result.fronts[0]
     record["stations"] = len(front.s)
     record["error of K_I"] = float(abs(front.K[:, 0] / K_EXACT - 1.0).max())
-    del result, front, solid
     if path.suffix == ".vtu":
         clock.time("reading by VTK alone", lambda: _bare_vtk(path))
     return record | {"seconds": clock.found}

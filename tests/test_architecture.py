@@ -20,6 +20,7 @@ RANKS = [
     {"solid"},
     {"steps"},
     {"jit", "threads"},
+    {"places"},
     {"reading"},
     {"crack"},
     {"fields"},

@@ -63,9 +63,7 @@ def cells_of_front(solid: Solid, front: Front, same: Coincidence, near: Near) ->
     bows: list[FloatArray] = []
     ends = np.sort(same.entity[front.edges[:, :2]], axis=1)
     around = np.zeros(len(ends), np.int64)
-    for block, touching in zip(
-        solid.blocks, cells_with(solid, on_front, near.cells), strict=True
-    ):
+    for block, touching in zip(solid.blocks, cells_with(solid, on_front, near.cells), strict=True):
         if not len(touching):
             continue
         kinds.add(block.kind)

@@ -10,6 +10,7 @@ from front3d.solid import Solid
 
 _CHUNK = 1 << 18
 
+
 @dataclass(frozen=True, slots=True, eq=False)
 class FaceTable:
     """Faces of cells.

@@ -7,9 +7,10 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from front3d.arrays import BoolArray, FloatArray, IntArray
+from front3d.arrays import FloatArray, IntArray
 from front3d.crack.facetable import FaceTable, cells_with
 from front3d.crack.front import Front
+from front3d.places import within
 from front3d.solid import Solid
 
 SPAN = 5.5
@@ -17,8 +18,6 @@ SPAN = 5.5
 rings on most meshes, and where it is not, more cells are fetched."""
 
 _PER_PIECE = 4
-_FINENESS, _MOST_VOXELS = 3.0, 128
-_CHUNK = 1 << 16
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -61,23 +60,10 @@ def first_reach(solid: Solid, fronts: Sequence[Front], faces: Sequence[FaceTable
 
 
 def cells_near(solid: Solid, fronts: Sequence[Front], reach: float) -> Near:
-    """Cells with a node within `reach` of a front.
-
-    Nodes are looked up in a grid of voxels over the fronts, of which those within reach are marked.
-    """
+    """Cells with a node within `reach` of a front."""
     samples = np.concatenate([_samples(front) for front in fronts])
     gap = max(float(np.diff(front.curve.knots).max()) for front in fronts) / _PER_PIECE
-    low = samples.min(axis=0) - reach
-    span = samples.max(axis=0) + reach - low
-    size = max(reach / _FINENESS, float(span.max()) / _MOST_VOXELS)
-    marked = _marked_voxels(samples - low, np.ceil(span / size).astype(np.int64) + 1, size,
-                            reach + gap)  # fmt: skip
-    inside = np.zeros(len(solid.points), bool)
-    for start in range(0, len(inside), _CHUNK):
-        part = solid.points[start : start + _CHUNK]
-        rows = np.flatnonzero(((part >= low) & (part <= low + span)).all(axis=1))
-        i, j, k = ((part[rows] - low) / size).astype(np.int64).T
-        inside[start + rows] = marked[i, j, k]
+    inside = within(solid.points, samples, reach + gap)
     cells = cells_with(solid, inside)
     return Near(solid, tuple(fronts), reach, cells, nodes_of(solid, cells))
 
@@ -95,20 +81,3 @@ def _samples(front: Front) -> FloatArray:
     knots = front.curve.knots
     t = (np.arange(_PER_PIECE) / _PER_PIECE)[None, :] * np.diff(knots)[:, None] + knots[:-1, None]
     return front.curve.frames(np.append(t.ravel(), knots[-1]))[0]
-
-
-def _marked_voxels(samples: FloatArray, shape: IntArray, size: float, reach: float) -> BoolArray:
-    """Which voxels hold a point within `reach` of a sample, and some more."""
-    at = np.unique((samples / size).astype(np.int64), axis=0)
-    n = int(np.ceil(reach / size)) + 1
-    offsets = np.stack(np.meshgrid(*(np.arange(-n, n + 1),) * 3, indexing="ij"), axis=-1)
-    offsets = offsets.reshape(-1, 3)
-    # The nearest points of two voxels are a voxel closer along each axis than their corners.
-    apart = np.maximum(np.abs(offsets) - 1, 0) * size
-    offsets = offsets[(apart**2).sum(axis=1) <= reach**2]
-    marked = np.zeros(shape, bool)
-    for offset in offsets:
-        voxel = at + offset
-        i, j, k = voxel[((voxel >= 0) & (voxel < shape)).all(axis=1)].T
-        marked[i, j, k] = True
-    return marked

@@ -70,7 +70,7 @@ def layer_reaches(context: FrontContext, count: int) -> FloatArray:
 
 def build_tube(context: FrontContext, reach: float) -> Tube:
     """Cells and nodes within `reach` of the front."""
-    solid, front, patch = context.solid, context.front, context.patch
+    solid, front = context.solid, context.front
     near = context.model.near.reaching(reach)
     x = solid.points[near.nodes]
     rows, s_near, r_near = near_nodes(front, x, reach)

@@ -2,14 +2,17 @@
 
 import xml.etree.ElementTree as ET
 from collections.abc import Callable, Mapping
+from functools import partial
 from pathlib import Path
 from typing import Any
 
 from front3d.errors import ReadError
+from front3d.reading.around_crack import around_crack, joined
 from front3d.reading.fields import DisplacementFinder
 from front3d.reading.files import identify
 from front3d.reading.guard import python_library, vtk_library
 from front3d.reading.legacy import check_legacy
+from front3d.reading.pieces import concatenated
 from front3d.reading.raw import RawModel
 from front3d.reading.series import Series
 from front3d.reading.vtk_grid import cell_arrays, point_arrays, time_of, to_grids, to_model
@@ -46,11 +49,30 @@ def _load_legacy(path: Path) -> list[Any]:
 
 def _load_pvtu(path: Path) -> list[Any]:
     """The pieces one by one: VTK's own reader would append them without their borders."""
+    return [grid for piece in _pieces(path) for grid in piece()]
+
+
+def _pieces(path: Path) -> list[Callable[[], list[Any]]]:
+    """What loads each of the pieces that a PVTU file names."""
     with python_library(path, "PVTU"):
         files = [e.attrib["Source"] for e in ET.parse(path).getroot().iter("Piece")]
     if not files:
         raise ReadError(f"{path}: names no pieces, expected at least one; export it again")
-    return [grid for file in files for grid in _load_named(path, file, {"vtu": _load_vtu})]
+    return [partial(_load_named, path, file, {"vtu": _load_vtu}) for file in files]
+
+
+def _read_pvtu(path: Path, finder: DisplacementFinder) -> RawModel:
+    """Of a large solid in pieces the cells around the crack, else all of them."""
+    pieces = _pieces(path)
+    found = around_crack(pieces, path) if len(pieces) > 1 else None
+    if found is None:
+        return _read_single(_load_pvtu)(path, finder)
+    kept, note = found
+    model = concatenated([part.model for part in kept])
+    model.notes.append(note)
+    points, cells = (joined([getattr(p, of) for p in kept]) for of in ("points", "cells"))
+    finder.offer(points, None, cells)
+    return model
 
 
 def _load_named(path: Path, file: str, loaders: Mapping[str, Callable[[Path], list[Any]]]) -> Any:
@@ -95,7 +117,7 @@ def _read_pvd(path: Path, finder: DisplacementFinder) -> RawModel:
 READERS: dict[str, Callable[[Path, DisplacementFinder], RawModel]] = {
     "vtu": _read_single(_load_vtu),
     "vtk": _read_single(_load_legacy),
-    "pvtu": _read_single(_load_pvtu),
+    "pvtu": _read_pvtu,
     "pvd": _read_pvd,
     "vtkhdf": read_vtkhdf,
     "exodus": read_exodus,
