@@ -22,3 +22,6 @@ def _decorator(**flags: Any) -> Callable[[Callable[..., Any]], Any]:
 
 
 kernel = _decorator()
+
+inlined = _decorator(forceinline=True)
+"""For what is called at every Gauss point: a call hands over each array as some ten numbers."""
