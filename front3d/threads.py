@@ -20,7 +20,7 @@ _AHEAD = 2
 
 def thread_count() -> int:
     """Threads to use: the cores this process may run on, or NUMBA_NUM_THREADS."""
-    return int(numba.config.NUMBA_NUM_THREADS)
+    return int(numba.config.NUMBA_NUM_THREADS)  # type: ignore[attr-defined]
 
 
 def in_order(work: Callable[[Part], Result], parts: Sequence[Part]) -> Iterator[Result]:

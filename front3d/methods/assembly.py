@@ -36,7 +36,7 @@ CELL_RULE, FACE_RULE = 3, 8
 front too, where q is flat."""
 
 _PART = 512
-"""Cells per call: enough for the threads to share, and few forces to hold before they are summed."""
+"""Cells per call: enough to share among threads, few enough to hold their forces before the sum."""
 
 
 class Assembly:
@@ -119,7 +119,7 @@ class Assembly:
         out = self._room(cells)
         face_forces(
             self._points, cells, *self._beside(cells), self._displacement, self._state,
-            rule, tangents, term.kind, self._load(term, block, local, part, rule[0]),
+            rule, tangents, term.kind, self._load(term, block, local, part, rule[0][:, 0]),
             self._curve, self._constants, out,
         )  # fmt: skip
         return cells, out
@@ -142,7 +142,7 @@ class Assembly:
         return np.searchsorted(self._tube.nodes, cells)
 
     def _room(self, cells: IntArray) -> FloatArray:
-        return np.empty((len(cells), len(self._displacement), N_MODES, cells.shape[1], 3))
+        return np.empty((len(cells), len(self._displacement), cells.shape[1], 3 * N_MODES))
 
     def _beside(self, cells: IntArray) -> tuple[IntArray, FloatArray]:
         """Side of the crack of each cell, and arc length of its node nearest to the front."""
@@ -178,11 +178,8 @@ def _without_rigid_motion(
 
 def _rule(element: ElementType, xi: FloatArray, weights: FloatArray) -> Rule:
     """The shape functions of an element at points xi, (q, 3), as the kernels take them."""
-    return (
-        frozen_floats(element.values(xi)),
-        frozen_floats(element.gradients(xi)),
-        frozen_floats(weights),
-    )
+    values, gradients = element.values(xi)[:, None], element.gradients(xi).transpose(0, 2, 1)
+    return frozen_floats(np.concatenate([values, gradients], axis=1)), frozen_floats(weights)
 
 
 def _face_rule(element: ElementType, local: int, touching: int) -> tuple[Rule, FloatArray]:
