@@ -166,22 +166,32 @@ static void auxiliary(double r, double angle, const double *w, double mu, double
     }
 }
 
-static void spread(double P[3][3], const double *T, double factor, double frame[3][3], double local[3][3],
-                   const double *values, const double *gradients, long nodes, double *forces) {
-    double pull[3][4];
+static void pull_of(double P[3][3], const double *T, double factor, double frame[3][3], double local[3][3],
+                    int mode, double pull[4][12]) {
     for (int k = 0; k < 3; k++) {
         for (int d = 0; d < 3; d++) {
             double total = 0.0;
             for (int m = 0; m < 3; m++)
                 total += frame[m][k] * (P[m][0] * local[d][0] + P[m][1] * local[d][1] + P[m][2] * local[d][2]);
-            pull[k][d] = factor * total;
+            pull[1 + d][3 * mode + k] = factor * total;
         }
-        pull[k][3] = factor * (frame[0][k] * T[0] + frame[1][k] * T[1] + frame[2][k] * T[2]);
+        pull[0][3 * mode + k] = factor * (frame[0][k] * T[0] + frame[1][k] * T[1] + frame[2][k] * T[2]);
     }
-    for (long n = 0; n < nodes; n++)
-        for (int k = 0; k < 3; k++)
-            forces[3 * n + k] += pull[k][0] * gradients[3 * n] + pull[k][1] * gradients[3 * n + 1]
-                               + pull[k][2] * gradients[3 * n + 2] + pull[k][3] * values[n];
+}
+
+/* A vector field at nodes, and its derivatives: at[0], and at[1 + d]. */
+static inline void interpolate(const double *field, const long *cell, const double *shape, long nodes, double at[4][3]) {
+    for (int row = 0; row < 4; row++) {
+        double a = 0.0, b = 0.0, c = 0.0;
+        for (long n = 0; n < nodes; n++) {
+            double weight = shape[row * nodes + n];
+            const double *p = field + 3 * cell[n];
+            a += weight * p[0];
+            b += weight * p[1];
+            c += weight * p[2];
+        }
+        at[row][0] = a; at[row][1] = b; at[row][2] = c;
+    }
 }
 
 static void eshelby(double stress[3][3], double H[3][3], double S[3][3], double G[3][3], double energy, double P[3][3]) {
@@ -196,8 +206,8 @@ static void eshelby(double stress[3][3], double H[3][3], double S[3][3], double 
 }
 
 void cell_forces(const double *points, long n_points, const long *cells, long n_cells, long nodes, const long *side,
-                 const double *seed, const double *displacement, long steps, const double *values,
-                 const double *gradients, const double *weights, long n_gauss, const double *knots,
+                 const double *seed, const double *displacement, long steps, const double *shapes,
+                 const double *weights, long n_gauss, const double *knots,
                  const double *position, const double *normal, long pieces, int closed, double mu, double nu,
                  double turn, double *out, long *status) {
     curve_t curve = {pieces, closed, knots, position, normal};
@@ -208,22 +218,17 @@ void cell_forces(const double *points, long n_points, const long *cells, long n_
         double s = seed[c];
         status[c] = 0;
         for (long g = 0; g < n_gauss; g++) {
-            const double *v = values + g * nodes, *gr = gradients + g * nodes * 3;
-            double x[3] = {0}, J[3][3] = {{0}}, inverse[3][3], det = 0.0;
-            for (long n = 0; n < nodes; n++)
-                for (int i = 0; i < 3; i++) {
-                    double p = points[3 * cell[n] + i];
-                    x[i] += v[n] * p;
-                    for (int d = 0; d < 3; d++) J[i][d] += p * gr[3 * n + d];
-                }
+            const double *shape = shapes + g * 4 * nodes;
+            double at[4][3], inverse[3][3], det = 0.0, *x = at[0];
+            interpolate(points, cell, shape, nodes, at);
             for (int i = 0; i < 3; i++) {
                 int a = (i + 1) % 3, b = (i + 2) % 3;
                 for (int j = 0; j < 3; j++) {
-                    int e = (j + 1) % 3, f = (j + 2) % 3;
-                    inverse[j][i] = J[a][e] * J[b][f] - J[a][f] * J[b][e];
+                    int e = 1 + (j + 1) % 3, f = 1 + (j + 2) % 3;
+                    inverse[j][i] = at[e][a] * at[f][b] - at[f][a] * at[e][b];
                 }
             }
-            for (int d = 0; d < 3; d++) det += J[0][d] * inverse[d][0];
+            for (int d = 0; d < 3; d++) det += at[1 + d][0] * inverse[d][0];
             for (int i = 0; i < 3; i++) for (int j = 0; j < 3; j++) inverse[i][j] /= det;
             if (!(det > 0.0)) { status[c] = 1 + g; break; }
             double place[3], frame[3][3], w[3], local[3][3], x1 = 0.0, x2 = 0.0;
@@ -245,16 +250,14 @@ void cell_forces(const double *points, long n_points, const long *cells, long n_
             double factor = weights[g] * det;
             for (long step = 0; step < steps; step++) {
                 const double *u = displacement + step * n_points * 3;
-                double *forces = out + ((c * steps + step) * 4) * nodes * 3;
-                double raw[3][3] = {{0}}, H[3][3], stress[3][3], P[3][3], T[3], energy = 0.0;
-                for (long n = 0; n < nodes; n++)
-                    for (int i = 0; i < 3; i++)
-                        for (int d = 0; d < 3; d++) raw[i][d] += u[3 * cell[n] + i] * gr[3 * n + d];
+                double *forces = out + (c * steps + step) * nodes * 12;
+                double moved[4][3], H[3][3], stress[3][3], P[3][3], T[3], pull[4][12], energy = 0.0;
+                interpolate(u, cell, shape, nodes, moved);
                 for (int i = 0; i < 3; i++)
                     for (int j = 0; j < 3; j++) {
                         double total = 0.0;
                         for (int k = 0; k < 3; k++)
-                            total += frame[i][k] * (raw[k][0] * local[0][j] + raw[k][1] * local[1][j] + raw[k][2] * local[2][j]);
+                            total += frame[i][k] * (moved[1][k] * local[0][j] + moved[2][k] * local[1][j] + moved[3][k] * local[2][j]);
                         H[i][j] = total;
                     }
                 double trace = H[0][0] + H[1][1] + H[2][2];
@@ -273,12 +276,17 @@ void cell_forces(const double *points, long n_points, const long *cells, long n_
                         for (int i = 0; i < 3; i++)
                             T[k] += div[mode][i] * H[i][k] + (k < 2 ? stress[i][2] * inc[mode][i][k] : 0.0);
                     }
-                    spread(P, T, factor, frame, local, v, gr, nodes, forces + mode * nodes * 3);
+                    pull_of(P, T, factor, frame, local, mode, pull);
                 }
                 for (int i = 0; i < 3; i++) for (int j = 0; j < 3; j++) stress[i][j] *= 0.5;
                 eshelby(stress, H, stress, H, energy, P);
                 T[0] = T[1] = T[2] = 0.0;
-                spread(P, T, factor, frame, local, v, gr, nodes, forces + 3 * nodes * 3);
+                pull_of(P, T, factor, frame, local, 3, pull);
+                for (long n = 0; n < nodes; n++) {
+                    double v = shape[n], a = shape[nodes + n], b = shape[2 * nodes + n], e = shape[3 * nodes + n];
+                    for (int m = 0; m < 12; m++)
+                        forces[12 * n + m] += v * pull[0][m] + a * pull[1][m] + b * pull[2][m] + e * pull[3][m];
+                }
             }
         }
     }

@@ -25,7 +25,8 @@ def cell_forces(
     poisson: float,
 ) -> FloatArray:
     """(cells, steps, 4 modes, nodes, 3) nodal forces."""
-    values, gradients, weights = rule
+    shapes, weights = rule
+    values, gradients = shapes[:, 0], shapes[:, 1:].swapaxes(1, 2)
     x = points[cells]
     place = values @ x
     jacobian = np.einsum("cni,gnd->cgid", x, gradients, optimize=True)
