@@ -11,7 +11,7 @@ import numpy as np
 from scipy.sparse import coo_array
 from scipy.sparse.csgraph import connected_components
 
-from front3d.arrays import BoolArray, IntArray
+from front3d.arrays import BoolArray, IntArray, frozen_floats
 from front3d.crack.facetable import cells_with
 from front3d.errors import MeshError
 from front3d.places import RELATIVE_TOLERANCE, coincident_pairs, shortest_edges
@@ -59,7 +59,7 @@ def find_coincidence(solid: Solid) -> Coincidence:
     tolerance = np.multiply(shortest, RELATIVE_TOLERANCE, out=shortest)
     np.maximum(tolerance, 2.0 * spacing, out=tolerance)
     tolerance[~used] = -1.0
-    first, second = coincident_pairs(solid.points, tolerance, float(tolerance.max()))
+    first, second = coincident_pairs(solid.points, frozen_floats(tolerance))
     del shortest, tolerance
     place = _components(n, first, second)
     first, second = _pairs_inside_cells(solid, place, first, second)

@@ -13,7 +13,7 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from front3d.arrays import BoolArray, FloatArray, IntArray
+from front3d.arrays import BoolArray, FloatArray, IntArray, frozen_floats
 from front3d.elements import ELEMENTS
 from front3d.places import RELATIVE_TOLERANCE, coincident_pairs, shortest_edges, within
 from front3d.reading.raw import RawBlock, RawModel
@@ -56,10 +56,9 @@ def around_crack(pieces: list[Piece], source: Any) -> tuple[list[Kept], str] | N
     points = points.astype(np.float64, copy=False)
     tolerance = np.maximum(RELATIVE_TOLERANCE * shortest, 2.0 * spacing)
     tolerance[~np.isfinite(shortest)] = -1.0
-    largest = float(tolerance.max())
-    if not largest > 0.0:
+    if not tolerance.max() > 0.0:
         return None
-    first, second = coincident_pairs(points, tolerance, largest)
+    first, second = coincident_pairs(frozen_floats(points), frozen_floats(tolerance))
     del tolerance
     if not len(first):
         return None
