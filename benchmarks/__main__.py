@@ -45,7 +45,7 @@ def stages(kind: str, cells: int, stations: int, suffix: str = ".vtu") -> dict[s
     with tempfile.TemporaryDirectory() as folder:
         path = Path(folder) / f"penny{suffix}"
         run("benchmarks.stages", "build", kind, cells, stations, path)
-        repeats = 3 if 100_000 < cells < 5_000_000 else 1
+        repeats = 2 if 60_000 < cells < 5_000_000 else 1
         return {"kind": kind, "file": suffix} | run("benchmarks.stages", path, repeats)
 
 

@@ -174,7 +174,7 @@ def _parts(count: int) -> list[slice]:
     return [slice(k, min(k + PART, count)) for k in range(0, count, PART)]
 
 
-def measure(given: Inputs, repeats: int = 5) -> dict[str, float]:
+def measure(given: Inputs, repeats: int = 4) -> dict[str, float]:
     """Seconds per million Gauss points, and how far the results are apart, over the largest."""
     some = slice(0, min(PART, len(given.cells)))
     with tempfile.TemporaryDirectory() as folder:

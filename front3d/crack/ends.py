@@ -8,6 +8,7 @@ from front3d.arrays import FloatArray, IntArray
 from front3d.crack.coincidence import Coincidence
 from front3d.crack.facetable import FaceTable, also_among, outer_faces
 from front3d.crack.front import FREE_SURFACE, SYMMETRY_PLANE, Front
+from front3d.crack.near import Near
 from front3d.crack.patches import Patch, marked
 from front3d.options import Plane
 from front3d.solid import Solid
@@ -38,10 +39,21 @@ def classify_ends(
     return dataclasses.replace(front, ends=ends)
 
 
-def end_faces(solid: Solid, front: Front, node: int, patch: Patch, same: Coincidence) -> FaceTable:
-    """Outer faces at an end node, without crack faces and the plane of a half model."""
-    here = marked(len(solid.points), np.flatnonzero(same.entity == same.entity[node]))
-    faces = outer_faces(solid, same.entity, here)
+def end_faces(
+    solid: Solid,
+    front: Front,
+    node: int,
+    patch: Patch,
+    same: Coincidence,
+    near: Near | None = None,
+) -> FaceTable:
+    """Outer faces at an end node, without crack faces and the plane of a half model; `near` saves
+    looking at the whole solid.
+    """
+    among = None if near is None else near.cells
+    nodes = np.arange(len(solid.points)) if near is None else near.nodes
+    here = marked(len(solid.points), nodes[same.entity[nodes] == same.entity[node]])
+    faces = outer_faces(solid, same.entity, here, among)
     keep = ~also_among(faces, patch.upper, same.entity)
     if patch.lower is not None:
         keep &= ~also_among(faces, patch.lower, same.entity)

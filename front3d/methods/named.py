@@ -3,6 +3,7 @@
 import numpy as np
 
 from front3d.arrays import FloatArray, IntArray
+from front3d.crack.facetable import cells_with
 from front3d.crack.patches import marked
 from front3d.errors import CaseError
 from front3d.solid import Solid, Step
@@ -78,8 +79,8 @@ def _from_cells(solid: Solid, parts: tuple[FloatArray, ...], nodes: IntArray) ->
     row[nodes] = np.arange(len(nodes))
     width = parts[0].shape[1]
     at, offset, values = [], [], []
-    for block, part in zip(solid.blocks, parts, strict=True):
-        cells = np.flatnonzero(inside[block.nodes].any(axis=1))
+    around = cells_with(solid, inside)
+    for block, part, cells in zip(solid.blocks, parts, around, strict=True):
         members = block.nodes[cells]
         centre = solid.points[members].mean(axis=1)
         cell, place = np.nonzero(inside[members])

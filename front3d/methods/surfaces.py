@@ -143,7 +143,8 @@ def _symmetry_planes(context: FrontContext) -> list[tuple[FloatArray, FloatArray
     planes = []
     for end, node in zip(front.ends, front.corners[[0, -1]], strict=False):
         if end == SYMMETRY_PLANE:
-            there = end_faces(solid, front, int(node), context.patch, context.model.same)
+            same, near = context.model.same, context.model.near
+            there = end_faces(solid, front, int(node), context.patch, same, near)
             normal = there.area_vectors(solid.points).sum(axis=0)
             planes.append((normal / np.linalg.norm(normal), solid.points[node]))
     if context.patch.plane is not None:
