@@ -12,6 +12,7 @@ from front3d.crack.edges import Chain
 from front3d.crack.facetable import FaceTable
 from front3d.elements import FACES
 from front3d.errors import CrackError
+from front3d.places import within
 from front3d.solid import Solid
 
 FREE_SURFACE = "free surface"
@@ -197,12 +198,11 @@ def near_nodes(
     t = (np.arange(per_piece) / per_piece)[None, :] * np.diff(knots)[:, None] + knots[:-1, None]
     samples = np.append(t.ravel(), knots[-1])
     places, _, _ = front.curve.frames(samples)
-    low, high = places.min(axis=0) - reach, places.max(axis=0) + reach
-    box = np.flatnonzero(((x >= low) & (x <= high)).all(axis=1))
     spacing = float(np.diff(knots).max()) / per_piece
-    found, index = cKDTree(places).query(x[box], distance_upper_bound=reach + spacing)
+    close = np.flatnonzero(within(x, places, reach + spacing))
+    found, index = cKDTree(places).query(x[close], distance_upper_bound=reach + spacing)
     hit = np.isfinite(np.asarray(found))
-    rows = box[hit]
+    rows = close[hit]
     s, distance = front.curve.project(x[rows], samples[np.asarray(index)[hit]])
     inside = distance <= reach
     return rows[inside], s[inside], distance[inside]

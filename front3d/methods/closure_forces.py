@@ -248,16 +248,24 @@ def volumes(solid: Solid, cells: tuple[IntArray, ...], same: Coincidence) -> Flo
     out = np.zeros(len(solid.points))
     for block, numbers in zip(solid.blocks, cells, strict=True):
         if len(numbers):
-            _, volume = _gradients(solid, block, numbers)
+            _, weights = block.element.quadrature(RULE)
+            volume = _jacobians(solid, block, numbers)[1] @ weights
             nodes = same.entity[block.nodes[numbers]]
-            np.add.at(out, nodes, np.broadcast_to(volume.sum(axis=1)[:, None], nodes.shape))
+            np.add.at(out, nodes, np.broadcast_to(volume[:, None], nodes.shape))
     return out
 
 
 def _gradients(solid: Solid, block: CellBlock, numbers: IntArray) -> tuple[FloatArray, FloatArray]:
     """dN/dx, (cells, q, nodes, 3), and weights times Jacobian, (cells, q)."""
     xi, weights = block.element.quadrature(RULE)
-    reference = block.element.gradients(xi)
+    jacobian, det = _jacobians(solid, block, numbers)
+    gradients = np.matmul(block.element.gradients(xi)[None], np.linalg.inv(jacobian))
+    return gradients, det * weights
+
+
+def _jacobians(solid: Solid, block: CellBlock, numbers: IntArray) -> tuple[FloatArray, FloatArray]:
+    """dx_i/dxi_d, (cells, q, 3, 3), and its determinant, (cells, q)."""
+    reference = block.element.gradients(block.element.quadrature(RULE)[0])
     x = solid.points[block.nodes[numbers]]
     jacobian = np.einsum("cni,qnd->cqid", x - x[:, :1], reference, optimize=True)
     det = np.linalg.det(jacobian)
@@ -267,7 +275,7 @@ def _gradients(solid: Solid, block: CellBlock, numbers: IntArray) -> tuple[Float
             f"{solid.source}: {block.kind} cell {cell} at the front: the Jacobian determinant is "
             "not positive; check its node order and mid-side nodes"
         )
-    return np.matmul(reference[None], np.linalg.inv(jacobian)), det * weights
+    return jacobian, det
 
 
 def face_nodes(solid: Solid, faces: FaceTable) -> list[tuple[str, IntArray]]:
