@@ -258,6 +258,13 @@ def add_load_flags(parser: argparse.ArgumentParser) -> None:
         ("initial-strain", str, "NAME", "likewise, tensor components"),
     ):
         group.add_argument(f"--{flag}", type=kind, metavar=metavar, help=meaning)
+    group.add_argument(
+        "--acts-in",
+        action="append",
+        metavar="LOAD=STEP,..",
+        help="a load acts in these steps only, e.g. face_pressure=pressure (may be repeated; "
+        "default: every load acts in every step)",
+    )
 
 
 def case_of(arguments: argparse.Namespace) -> Case:
@@ -272,7 +279,7 @@ def case_of(arguments: argparse.Namespace) -> Case:
         if name not in ("result", "source")
         and (value := getattr(arguments, name, None)) is not None
     }
-    for name in ("steps", "methods", "compare", "combine", "symmetry_planes"):
+    for name in ("steps", "methods", "compare", "combine", "symmetry_planes", "acts_in"):
         if name in said:
             said[name] = tuple(said[name])
     if "displacement" in said:

@@ -285,9 +285,9 @@ def face_forces(context: FrontContext, faces: FaceTable, ahead: bool = False) ->
         normal = np.cross(tangents[:, :, 0], tangents[:, :, 1])
         size = np.linalg.norm(normal, axis=2, keepdims=True)
         pressure = face_pressure(context, np.einsum("qn,fni->fqi", shape, x))
-        for step, total in zip(context.steps, out, strict=True):
+        for step, uniform, total in zip(context.steps, pressure, out, strict=True):
             array = array_load(context, step, nodes, shape, ahead)
-            acting = size * array[..., 1:] - (pressure + array[..., 0])[..., None] * normal
+            acting = size * array[..., 1:] - (uniform + array[..., 0])[..., None] * normal
             share = np.einsum("qn,fqi,q->fni", shape, acting, weights)
             np.add.at(total, entity[nodes], share)
     return out

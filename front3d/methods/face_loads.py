@@ -11,34 +11,46 @@ from front3d.solid import Step
 
 
 def face_pressure(context: FrontContext, x: FloatArray) -> FloatArray:
-    """Pressure at points x, (..., 3), of the crack faces that does not come from an array."""
+    """(steps, ...) pressure at points x, (..., 3), of the crack faces that does not come from an
+    array.
+    """
     loads = context.loads
-    pressure = np.full(x.shape[:-1], context.options.face_pressure)
+    uniform = acting(context, "face_pressure") * context.options.face_pressure
+    pressure = np.multiply.outer(uniform, np.ones(x.shape[:-1]))
     if loads.face_polynomial is not None:
         direction = np.array(loads.depth_direction or (0.0, 0.0, 1.0))
         depth = (x - np.array(loads.depth_from)) @ (direction / np.linalg.norm(direction))
-        pressure += np.polynomial.polynomial.polyval(depth, loads.face_polynomial)
+        varying = np.polynomial.polynomial.polyval(depth, loads.face_polynomial)
+        pressure += np.multiply.outer(acting(context, "face_polynomial"), varying)
     return pressure
+
+
+def acting(context: FrontContext, load: str) -> FloatArray:
+    """(steps,) one where a load acts, else zero."""
+    return np.array([float(context.loads.acts(load, step.name)) for step in context.steps])
 
 
 def gauss_load(
     context: FrontContext, block: int, local: int, cells: IntArray, values: FloatArray
 ) -> FloatArray:
-    """(len(cells), 1 or steps, q, 4) pressure and traction at Gauss points of crack faces.
+    """(len(cells), steps, q, 4) pressure and traction at Gauss points of crack faces.
 
     `values`, (q, nodes), are the cell's shape functions at the points of its face `local`.
     """
     solid, name = context.solid, context.loads.face_array
     members = solid.blocks[block].nodes[cells]
     x = np.einsum("qn,fnk->fqk", values, solid.points[members])
-    out = np.zeros((len(cells), 1, len(values), 4))
-    out[:, 0, :, 0] = face_pressure(context, x)
+    out = np.zeros((len(cells), len(context.steps), len(values), 4))
+    out[..., 0] = np.moveaxis(face_pressure(context, x), 0, 1)
     if name is None:
         return frozen_floats(out)
     # On a face only its own nodes count, and the others may be without a value.
     on_face = list(solid.blocks[block].element.faces[local][1])
     by_step = []
     for step in context.steps:
+        if not context.loads.acts("face_array", step.name):
+            by_step.append(np.zeros_like(out[:, 0]))
+            continue
         own = at_cells(solid, step, name, block, cells, (1, 3))
         if own is None:
             at = _at_face_nodes(context, step, name, members[:, on_face])
@@ -76,7 +88,7 @@ def array_load(
     Ahead of the front: the value of the nearest node of the upper face.
     """
     solid, name = context.solid, context.loads.face_array
-    if name is None:
+    if name is None or not context.loads.acts("face_array", step.name):
         return np.zeros((1, 1, 4))
     if ahead:
         upper = np.unique(context.patch.upper.nodes)
