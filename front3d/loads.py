@@ -108,8 +108,7 @@ class Loads:
             object.__setattr__(self, "face_polynomial", found)
         regions = tuple(r if isinstance(r, Region) else _region(r) for r in self.regions)
         object.__setattr__(self, "regions", regions)
-        texts = (self.acts_in,) if isinstance(self.acts_in, str) else tuple(self.acts_in)
-        object.__setattr__(self, "acts_in", texts)
+        object.__setattr__(self, "acts_in", _texts(self.acts_in))
         self._check_tables()
         self._check_partners()
 
@@ -215,6 +214,10 @@ _VECTORS = ("depth_direction", "depth_from", "gravity", "rotation_axis", "rotati
 
 def _words(name: str) -> str:
     return name.replace("_", " ")
+
+
+def _texts(value: Any) -> tuple[str, ...]:
+    return (value,) if isinstance(value, str) else tuple(value)
 
 
 def _acting(text: str) -> tuple[str, tuple[str, ...]]:

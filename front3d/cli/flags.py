@@ -286,21 +286,36 @@ def case_of(arguments: argparse.Namespace) -> Case:
         first, *others = said["displacement"]
         said["displacement"] = (first, *others) if others else first
     flags = Case(**said)
-    try:
-        _check(flags)
-    except CaseError as error:
-        arguments.parser.error(str(error))
     path, *more = (Path(name) for name in arguments.result)
     if more and any(p.suffix.lower() == ".toml" for p in (path, *more)):
         arguments.parser.error("found a case file among several files, expected it alone")
     if path.suffix.lower() == ".toml":
-        case = read_case(path).overridden_by(flags)
+        return _joined(arguments, path, flags)
+    _require(arguments, flags)
+    return Case(result=path, more=tuple(more) or None).overridden_by(flags)
+
+
+def _joined(arguments: argparse.Namespace, path: Path, flags: Case) -> Case:
+    """A case file under the flags, which need not make sense without it."""
+    case = read_case(path)
+    joined = case.overridden_by(flags)
+    try:
+        _check(joined)
+    except CaseError as error:
         try:
             _check(case)
-        except CaseError as error:
-            raise CaseError(f"{path}: {error}") from None
-        return case
-    return Case(result=path, more=tuple(more) or None).overridden_by(flags)
+        except CaseError as own:
+            raise CaseError(f"{path}: {own}") from None
+        arguments.parser.error(str(error))
+    return joined
+
+
+def _require(arguments: argparse.Namespace, flags: Case) -> None:
+    """A wrong call where the flags do not make sense."""
+    try:
+        _check(flags)
+    except CaseError as error:
+        arguments.parser.error(str(error))
 
 
 def _check(case: Case) -> None:

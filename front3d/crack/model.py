@@ -81,7 +81,8 @@ def find_cracks(solid: Solid, options: Options | None = None) -> CrackModel:
             f"{solid.source}: the coincident faces have no front: their sides share no edge, so "
             "they part the solid in two; a crack needs a front where its sides join"
         )
-    return CrackModel(same, chosen, fronts_of, unopened, _notes_on_pieces(fronts_of))
+    notes = (*_notes_on_faces(chosen), *_notes_on_pieces(fronts_of))
+    return CrackModel(same, chosen, fronts_of, unopened, notes)
 
 
 def _half_model(
@@ -148,6 +149,18 @@ def _front(
     if not len(stations):
         return None
     return replace(front, ends=ends, stations=stations)
+
+
+def _notes_on_faces(patches: tuple[Patch, ...]) -> tuple[str, ...]:
+    """Faces that are paired though the two sides are not meshed alike."""
+    unlike = sum(int(patch.unlike.sum()) for patch in patches)
+    if not unlike:
+        return ()
+    return (
+        f"{unlike} of {sum(len(p.upper) for p in patches)} pairs of crack faces have mid-side "
+        "nodes that stand apart (a quarter-point on one side only, or an edge that is straight on "
+        "one side): they are paired by their corners",
+    )
 
 
 def _notes_on_pieces(fronts: tuple[tuple[Front, ...], ...]) -> tuple[str, ...]:

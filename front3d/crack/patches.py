@@ -4,7 +4,7 @@ A patch is one crack surface with an upper and a lower side.  In a half model, w
 is a symmetry plane, it has only the side that was modelled.
 """
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 import numpy as np
 from scipy.sparse import coo_array
@@ -32,6 +32,7 @@ class Patch:
         largest displacement normal to the plane)
     opens : whether the sides part or slide at all
     plane : the symmetry plane that holds the crack of a half model
+    unlike : (n,) pairs of faces whose mid-side nodes stand apart; empty where all are alike
     """
 
     upper: FaceTable
@@ -40,6 +41,7 @@ class Patch:
     opening: float
     opens: bool
     plane: Plane | None = None
+    unlike: BoolArray = field(default_factory=lambda: np.zeros(0, bool))
 
     @property
     def half(self) -> bool:
@@ -97,8 +99,13 @@ def chosen_up(normal: FloatArray, up: Vector | None) -> float:
 
 
 def _opposite_pairs(free: FaceTable, solid: Solid, same: Coincidence) -> tuple[IntArray, IntArray]:
-    """Rows of free faces at the same place with opposing normals and different nodes."""
-    place_key = set_keys(same.place[free.nodes])
+    """Rows of free faces whose corners are at the same places, with opposing normals and different
+    nodes.
+
+    Mid-side nodes may stand apart: a quarter-point on one side only, or an edge that is straight
+    on one side.
+    """
+    place_key = set_keys(same.place[free.corners])
     shared = np.flatnonzero(multiplicity(place_key) > 1)
     order = shared[np.argsort(place_key[shared], kind="stable")]
     keys = place_key[order]
@@ -158,7 +165,9 @@ def _patch(solid: Solid, same: Coincidence, a: FaceTable, b: FaceTable, up: Vect
         spread = max(spread, 1e-3 * float(np.ptp(step.displacement, axis=0).max()))
         opening = max(opening, largest)
         opens |= largest > NEGLIGIBLE_OPENING * spread
-    return Patch(upper, lower, pairs, opening, opens)
+    apart = set_keys(same.place[np.concatenate([upper.nodes, lower.nodes])])
+    unlike = apart[: len(upper)] != apart[len(upper) :]
+    return Patch(upper, lower, pairs, opening, opens, unlike=unlike)
 
 
 def _node_pairs(upper: FaceTable, lower: FaceTable, same: Coincidence) -> IntArray:

@@ -155,7 +155,7 @@ def _from_the_ends(context: FrontContext, faces: FaceTable) -> BoolArray:
         if end == FREE_SURFACE
     ]
     corners = entity[faces.corners]
-    seeds = np.isin(corners, ends).any(axis=1)
+    seeds = np.asarray(np.isin(corners, ends).any(axis=1))
     if not seeds.any():
         return seeds
     n = len(faces)
@@ -168,7 +168,7 @@ def _from_the_ends(context: FrontContext, faces: FaceTable) -> BoolArray:
     smooth = np.sum(unit[beside.row] * unit[beside.col], axis=1) > _SMOOTH
     pairs = (np.ones(smooth.sum()), (beside.row[smooth], beside.col[smooth]))
     label = connected_components(coo_array(pairs, shape=(n, n)), directed=False)[1]
-    return np.isin(label, label[seeds])
+    return np.asarray(np.isin(label, label[seeds]), dtype=bool)
 
 
 def _symmetry_planes(context: FrontContext) -> list[tuple[FloatArray, FloatArray]]:
