@@ -57,8 +57,8 @@ def bent(c0, c1):
 
 
 def pressed_ends(p):
-    """The block, sheared so that its ends are aslant to the front, under -p across them besides: the
-    surfaces on which the front ends bear it.
+    """The block, sheared so that its ends are aslant to the front, under -p across them besides:
+    the surfaces on which the front ends bear it.
     """
     mesh = block()
     x = mesh.solid.points + np.outer(mesh.solid.points[:, 0], [0, 0, 0.5])

@@ -55,7 +55,8 @@ def quadratic(x):
 
 
 def loaded(mesh, stress_at_faces, smooth=quadratic, **arrays):
-    """The block with near-tip field and v (or another smooth field), and the tractions of a stress on its crack faces.
+    """The block with near-tip field and v, or another smooth field, and the tractions of a stress
+    on its crack faces.
 
     At the front itself the tractions of the two faces differ, and nothing can be said at the
     nodes: what is written there is left out on purpose.

@@ -13,8 +13,8 @@ from tests.meshes.solving import solve_tetra10
 
 YOUNG, DENSITY, SPIN = 1.0, 0.5, 0.1
 AXIS, BELOW, END, WIDE = 20.0, -5.0, 5.0, 6.0
-"""The axis is along x, 20 below a crack of radius 1 in the plane z = 0; the bar ends at z = 5.  It is
-held along z, where its sections stay plane: at z = -5."""
+"""The axis is along x, 20 below a crack of radius 1 in the plane z = 0; the bar ends at z = 5.  Its
+sections stay plane, so that it can be held along z at z = -5."""
 
 STRESS = DENSITY * SPIN**2 / 2 * ((AXIS + END) ** 2 - AXIS**2)
 """Across the crack's place, without the crack."""
