@@ -1,10 +1,9 @@
 """Series of times give the K of each step: PVD of VTU files, XDMF, and Exodus by VTK's writer."""
 
 import meshio
-import numpy as np
 import pytest
 
-from tests.reading_models import grid, mesh
+from tests.reading_models import grid
 from tests.whole_models import KIND, assert_same_K, parts, whole_grid
 
 pytestmark = pytest.mark.filterwarnings("ignore::DeprecationWarning:meshio")

@@ -4,6 +4,7 @@ import numpy as np
 from scipy.spatial import cKDTree
 
 from front3d.arrays import BoolArray, FloatArray, IntArray, frozen_floats
+from front3d.crack.facetable import FaceTable
 from front3d.crack.front import on_front_mask
 from front3d.methods.context import FrontContext
 from front3d.methods.named import at_cells, at_nodes
@@ -78,25 +79,51 @@ def split_load(values: FloatArray) -> FloatArray:
 def array_load(
     context: FrontContext,
     step: Step,
+    faces: FaceTable,
     nodes: IntArray,
     values: FloatArray,
     ahead: bool,
 ) -> FloatArray:
-    """(n, q, 4) pressure and traction that an array gives at Gauss points of faces with these
-    nodes, (n, m), and shape functions, (q, m).
+    """(n, q, 4) pressure and traction that an array gives at Gauss points of faces of one block.
 
-    Ahead of the front: the value of the nearest node of the upper face.
+    `nodes`, (n, m), are those of the faces, `values`, (q, m), their shape functions.  Ahead of the
+    front: the value of the nearest node, or the cell of the nearest face, of the upper face.
     """
     solid, name = context.solid, context.loads.face_array
     if name is None or not context.loads.acts("face_array", step.name):
         return np.zeros((1, 1, 4))
+    if name not in step.point_arrays:
+        own = _of_cells(context, step, name, faces, ahead)
+        return split_load(np.repeat(own[:, None], len(values), axis=1))
     if ahead:
         upper = np.unique(context.patch.upper.nodes)
+        if step.point_arrays[name].shape[1] == 3:
+            # The front's nodes belong to both faces, and no traction can be told there.
+            upper = upper[~on_front_mask(context.front, context.model.same)[upper]]
         _, nearest = cKDTree(solid.points[upper]).query(solid.points[nodes])
         at = at_nodes(solid, step, name, upper, (1, 3))[nearest]
     else:
         at = _at_face_nodes(context, step, name, nodes)
     return split_load(np.einsum("qn,fnk->fqk", values, at))
+
+
+def _of_cells(
+    context: FrontContext, step: Step, name: str, faces: FaceTable, ahead: bool
+) -> FloatArray:
+    """(n, components) of a cell array at faces; ahead of the front, at the nearest upper face."""
+    solid = context.solid
+    if ahead:
+        upper = context.patch.upper
+        tree = cKDTree(solid.points[upper.corners].mean(axis=1))
+        faces = upper[np.asarray(tree.query(solid.points[faces.corners].mean(axis=1))[1])]
+    out: FloatArray | None = None
+    for block in np.unique(faces.block):
+        mine = faces.block == block
+        own = at_cells(solid, step, name, int(block), faces.cell[mine], (1, 3))
+        if own is not None:
+            out = np.zeros((len(faces), own.shape[1])) if out is None else out
+            out[mine] = own
+    return np.zeros((len(faces), 1)) if out is None else out
 
 
 def _at_face_nodes(context: FrontContext, step: Step, name: str, nodes: IntArray) -> FloatArray:
