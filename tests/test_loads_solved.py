@@ -168,7 +168,7 @@ def check_all_methods(front, K, allowed):
 
 def test_pressure_by_cell_array_in_all_methods():
     """The bowl by its values at the centres of the cells: constant over each face, and carried to
-    the nodes for closure.  Measured: interaction 0.3 %, closure 0.5 %, opening 0.9 %.
+    the nodes for closure.  Measured: interaction 0.3 %, closure 0.1 %, opening 1.0 %.
     """
     whole = solid("bricks")
     centres = [whole.points[b.nodes].mean(axis=1) for b in whole.blocks]
@@ -191,7 +191,7 @@ def test_tractions_by_array_in_all_methods(by):
     """Shear on the faces is remote shear of the other sign: K_II = 4 tau / (2 - nu) sqrt(a / pi)
     along e1, K_III = (1 - nu) times that along e3 (Kassir and Sih 1966).
 
-    Nodes of the front belong to both faces and hold zero.
+    Nodes of the front belong to both faces and hold zero.  Measured: 0.8 %, 0.2 %, 0.3 %.
     """
     whole, side = solid("bricks"), sides()
     if by == "point":
