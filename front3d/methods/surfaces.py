@@ -82,12 +82,15 @@ def surroundings(context: FrontContext, tube: Tube) -> Surroundings:
     rest = outer[~is_crack]
     planes = _symmetry_planes(context)
     rest = rest[~_on_planes(context, tube, rest, planes)]
-    ends_here = _across_the_front(context, tube, rest) | _from_the_ends(context, rest)
-    beside = rest[~ends_here]
+    across, led_away = _across_the_front(context, tube, rest), _from_the_ends(context, rest)
+    ends_here = across | led_away
+    # A surface that leads away from an end may come beside the front further on: it is free there,
+    # too, but rings do better to keep clear of it.
+    beside = rest[~across & ~(led_away & _beyond_the_ends(context, tube, rest))]
     options = context.options
     terms = [
         SurfaceTerm(rest[ends_here], OUTER, options.surface_pressure),
-        SurfaceTerm(beside, CUT),
+        SurfaceTerm(rest[~ends_here], CUT),
     ]
     crack, pressed = outer[is_crack], loaded_faces(context) and included(FACE_LOAD)
     if _bent(context, tube, crack) and included(BENT_FACES):
@@ -169,6 +172,12 @@ def _from_the_ends(context: FrontContext, faces: FaceTable) -> BoolArray:
     pairs = (np.ones(smooth.sum()), (beside.row[smooth], beside.col[smooth]))
     label = connected_components(coo_array(pairs, shape=(n, n)), directed=False)[1]
     return np.asarray(np.isin(label, label[seeds]), dtype=bool)
+
+
+def _beyond_the_ends(context: FrontContext, tube: Tube, faces: FaceTable) -> BoolArray:
+    """Which faces have an end of the front for their nearest point."""
+    s = tube.s[np.searchsorted(tube.nodes, faces.corners)] / context.front.length
+    return np.asarray((s < 1e-6).all(axis=1) | (s > 1.0 - 1e-6).all(axis=1))
 
 
 def _symmetry_planes(context: FrontContext) -> list[tuple[FloatArray, FloatArray]]:
