@@ -175,9 +175,10 @@ def _from_the_ends(context: FrontContext, faces: FaceTable) -> BoolArray:
 
 
 def _beyond_the_ends(context: FrontContext, tube: Tube, faces: FaceTable) -> BoolArray:
-    """Which faces have an end of the front for their nearest point."""
-    s = tube.s[np.searchsorted(tube.nodes, faces.corners)] / context.front.length
-    return np.asarray((s < 1e-6).all(axis=1) | (s > 1.0 - 1e-6).all(axis=1))
+    """Which faces are nearest to an end of the front, or to the half of an edge next to it."""
+    at = context.front.cell_coordinate(tube.s[np.searchsorted(tube.nodes, faces.corners)])
+    last = len(context.front.edges)
+    return np.asarray((at < 0.5).all(axis=1) | (at > last - 0.5).all(axis=1))
 
 
 def _symmetry_planes(context: FrontContext) -> list[tuple[FloatArray, FloatArray]]:
