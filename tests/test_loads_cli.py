@@ -190,7 +190,7 @@ def test_temperature_by_flags_and_a_table_by_a_case_file(tmp_path: Path) -> None
 
 
 @pytest.mark.slow
-def test_constants_by_temperature_and_by_region_in_a_case_file(tmp_path: Path) -> None:
+def test_constants_by_temperature_and_by_region_in_a_case_file(tmp_path: Path, capsys) -> None:
     solid, loads = graded()
     (step,) = solid.steps
     arrays = {"displacement": step.displacement, **step.point_arrays}
@@ -202,6 +202,7 @@ def test_constants_by_temperature_and_by_region_in_a_case_file(tmp_path: Path) -
     )
     found = run(case)["1"][1:-1]
     np.testing.assert_allclose(found, np.broadcast_to([0, 0, 1.0], found.shape), atol=2e-3)
+    assert "block.vtu: constants by temperature; K in" in capsys.readouterr().out
     solid, _ = in_regions()
     centre = np.concatenate([solid.points[b.nodes].mean(axis=1) for b in solid.blocks])
     path = result(tmp_path, in_regions, part=1.0 + (centre[:, 0] > 0.95))
@@ -211,6 +212,7 @@ def test_constants_by_temperature_and_by_region_in_a_case_file(tmp_path: Path) -
         ", { region = 2, young = 1.0, poisson = 0.0 }]\n"
     )
     assert_known(run(case)["1"])
+    assert "constants of the region that each front runs in" in capsys.readouterr().out
 
 
 @pytest.mark.slow

@@ -57,10 +57,10 @@ def describe_evaluation(evaluation: "Evaluation") -> list[str]:
 
 def _constants(evaluation: "Evaluation") -> str:
     """Elastic constants, or where they come from."""
-    loads = evaluation.options.get("loads") or {}
-    if loads.get("elastic_table"):
+    loads = evaluation.options.get("loads")
+    if isinstance(loads, dict) and loads.get("elastic_table"):
         return "constants by temperature"
-    if loads.get("regions"):
+    if isinstance(loads, dict) and loads.get("regions"):
         return "constants of the region that each front runs in"
     material, units = evaluation.material, evaluation.units
     unit = f" {units.stress}" if units.stress else ""
