@@ -175,7 +175,10 @@ def test_loads_leave_k_as_it_is_on_every_ring(carry, kind):
     np.testing.assert_allclose(energy, 1.0, atol=0.002 if "quarter" in kind else 0.01)
 
 
-@pytest.mark.parametrize("carry", CARRIED)
+@pytest.mark.parametrize(
+    "carry",
+    [*(pytest.param(c, marks=pytest.mark.slow) for c in CARRIED[:1] + CARRIED[3:]), *CARRIED[1:3]],
+)
 def test_without_its_term_a_load_makes_k_depend_on_the_radius(carry):
     solid, loads = carry(block())
     with without(TERM.get(carry, GRADIENT)):
