@@ -142,6 +142,13 @@ def test_a_polyline_chooses_the_front_that_lies_along_it(penny):
     assert whole.closed
 
 
+def test_a_line_that_misses_the_fronts_is_refused_with_the_distance(penny):
+    with pytest.raises(
+        CrackError, match=r"front line: .* nearest node of a front, \d+, is 0\.5 from"
+    ):
+        front3d.find_fronts(penny, front_line=((1.5, 0, 0), (2.0, 0, 0)))
+
+
 def test_of_several_fronts_only_the_given_one_is_found():
     two = square_crack(24)
     shift = two.points + np.array([100.0, 0, 0])

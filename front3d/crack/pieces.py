@@ -62,6 +62,12 @@ def given_edges(
         size = np.linalg.norm(x[:, 1] - x[:, 0], axis=1)
         away = _distance_to_line(x.reshape(-1, 3), np.asarray(line, float)).reshape(-1, 2)
         chosen = (away <= 0.5 * size[:, None]).all(axis=1)
+    if not chosen.any() and not nodes and len(away):
+        raise CrackError(
+            f"{solid.source}: front line: no edge of a front lies within half its length of the "
+            f"line given; the nearest node of a front, {edges.ends[:, :2].ravel()[away.argmin()]}, "
+            f"is {away.min():.4g} from it"
+        )
     if not chosen.any():
         raise CrackError(
             f"{solid.source}: the front nodes that were given are not on the edge of a crack "
