@@ -235,7 +235,7 @@ def _front_result(
 
 
 def _warnings(solid: Solid, model: CrackModel) -> tuple[str, ...]:
-    notes = list(solid.notes)
+    notes = [*solid.notes, *model.warnings]
     for patch in model.unopened:
         notes.append(
             f"{len(patch.upper)} pairs of coincident faces whose sides never part were left alone "

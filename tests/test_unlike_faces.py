@@ -7,7 +7,8 @@ import pytest
 
 import front3d
 from front3d.crack import find_cracks
-from front3d.solid import Material
+from front3d.errors import CrackError
+from front3d.solid import CellBlock, Material
 from tests.meshes.held import _relaxed
 from tests.meshes.structured import Cracked, impose, straight
 from tests.reference import exact
@@ -66,3 +67,43 @@ def test_K_of_unlike_faces_and_no_closure():
     refused = next(note for note in front.notes if note.startswith("closure does not apply"))
     assert "stand apart, expected pairs at the same places" in refused
     assert any("expected all alike" in warning for warning in front.warnings)
+
+
+def cut_in_wedges(where):
+    """A block of bricks with a crack, some of the bricks under it cut upright into two wedges."""
+    mesh = straight("hexahedron", 8, along=3, length=0.75)
+    (block,) = mesh.solid.blocks
+    x, y, z = mesh.solid.points[block.nodes].mean(axis=1).T
+    chosen = (y < 0) & (y > -0.25) & where(x, z)
+    n = block.nodes[chosen]
+    # Seen from above the brick's corners in order; which they are is told by their heights.
+    heights = mesh.solid.points[n][:, :, 1]
+    order = np.argsort(heights, axis=1, kind="stable")
+    low, high = order[:, :4], order[:, 4:]
+    wedges = []
+    for nodes, bottom, top in zip(n, low, high, strict=True):
+        ring = sorted(bottom, key=lambda k: _turn(mesh.solid.points[nodes], k))
+        above = sorted(top, key=lambda k: _turn(mesh.solid.points[nodes], k))
+        for corners in ((0, 1, 2), (0, 2, 3)):
+            wedges.append(nodes[[side[k] for side in (ring, above) for k in corners]])
+    blocks = (
+        CellBlock("hexahedron", block.nodes[~chosen]),
+        CellBlock("wedge", np.array(wedges)),
+    )
+    solid = replace(mesh.solid, blocks=blocks)
+    return impose(solid, mesh.side, exact.near_tip(ELASTIC, K))
+
+
+def _turn(points, k):
+    x, _, z = points[k] - points.mean(axis=0)
+    return np.arctan2(x, z)
+
+
+def test_faces_that_are_cut_differently_are_said():
+    """Squares of the upper face on pairs of triangles of the lower one, away from the front."""
+    model = find_cracks(cut_in_wedges(lambda x, z: x < -0.75))
+    assert model.fronts[0][0].length == pytest.approx(0.75)
+    (said,) = model.warnings
+    assert said.startswith("9 crack faces") and "cut differently" in said
+    with pytest.raises(CrackError, match=r"27 crack faces, .* cut differently"):
+        find_cracks(cut_in_wedges(lambda x, z: x < 0))

@@ -13,6 +13,7 @@ from scipy.sparse.csgraph import connected_components
 from front3d.arrays import BoolArray, FloatArray, IntArray
 from front3d.crack.coincidence import Coincidence
 from front3d.crack.facetable import FaceTable, multiplicity, outer_faces, set_keys
+from front3d.crack.unmatched import unmatched_faces
 from front3d.errors import CrackError
 from front3d.loads import Vector
 from front3d.options import Options, Plane
@@ -52,15 +53,20 @@ NEGLIGIBLE_OPENING = 1e-6
 """Sides that move by less than this times the spread of displacements do not part."""
 
 
-def find_patches(solid: Solid, same: Coincidence, options: Options) -> tuple[Patch, ...]:
-    """All pairs of coincident face patches of a full model; empty if there are none."""
+def find_patches(
+    solid: Solid, same: Coincidence, options: Options
+) -> tuple[tuple[Patch, ...], FaceTable]:
+    """All pairs of coincident face patches of a full model; and faces on each other that are cut
+    differently, and so have no partner.  Both empty if there are none.
+    """
     free = outer_faces(solid, same.entity, same.double)
     if not len(free):
-        return ()
+        return (), free
     upper, lower = _opposite_pairs(free, solid, same)
-    if not len(upper):
-        return ()
     both = np.concatenate([upper, lower])
+    unmatched = unmatched_faces(solid, same, free, marked(len(free), both))
+    if not len(upper):
+        return (), unmatched
     side = _connected_sides(free[both], same)
     sides = np.stack([side[: len(upper)], side[len(upper) :]], axis=1)
     _refuse_branches(sides, free[upper], solid)
@@ -76,7 +82,7 @@ def find_patches(solid: Solid, same: Coincidence, options: Options) -> tuple[Pat
                 "an upper and a lower side (check for faces that were merged in part)"
             )
         patches.append(_patch(solid, same, free[a], free[b], options.up))
-    return tuple(patches)
+    return tuple(patches), unmatched
 
 
 def chosen_up(normal: FloatArray, up: Vector | None) -> float:
