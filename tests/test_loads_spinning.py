@@ -13,8 +13,8 @@ def test_a_crack_in_a_bar_that_turns_end_over_end():
     """K_I = 2 sigma sqrt(a / pi) (Sneddon 1946) for the stress of the bar's own weight, which has
     the same value all over the crack's place.
 
-    Measured: K_I 1.0 % off at the worst station and 0.1 % in the mean, rings 0.2 % apart; without
-    the body force 1.7 %.
+    Measured: K_I 0.8 % off at the worst station and 0.2 % in the mean, rings 0.1 % apart; without
+    the body force 1.1 %.
     """
     solid = spinning_bar()
 
