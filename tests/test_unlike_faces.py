@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 
 import front3d
-from front3d.crack import find_cracks
+from front3d.crack import describe, find_cracks
 from front3d.errors import CrackError
 from front3d.solid import CellBlock, Material
 from tests.meshes.held import _relaxed
@@ -105,5 +105,6 @@ def test_faces_that_are_cut_differently_are_said():
     assert model.fronts[0][0].length == pytest.approx(0.75)
     (said,) = model.warnings
     assert said.startswith("9 crack faces") and "cut differently" in said
+    assert describe(cut_in_wedges(lambda x, z: x < -0.75))["notes"][0]["note"] == said
     with pytest.raises(CrackError, match=r"27 crack faces, .* cut differently"):
         find_cracks(cut_in_wedges(lambda x, z: x < 0))
