@@ -39,7 +39,7 @@ def test_growth_is_the_exponent_of_a_power_law():
          "by stations": [run(1000, n) for n in (10, 40, 80)]}
     )  # fmt: skip
     assert found["detection, by cells"] == pytest.approx(1.0)
-    assert found["after detection, by cells"] == pytest.approx(0.0, abs=1e-9)
+    assert found["integral and closure, by cells"] == pytest.approx(0.0, abs=1e-9)
     assert found["geometry, by stations"] == pytest.approx(2.0)
 
 

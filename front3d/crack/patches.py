@@ -135,9 +135,9 @@ def _connected_sides(faces: FaceTable, same: Coincidence) -> IntArray:
     nodes = faces.nodes
     rows = np.broadcast_to(np.arange(len(faces))[:, None], nodes.shape)
     member = same.double[nodes]
-    entity = same.entity[nodes][member]
-    n_entities = int(entity.max()) + 1
-    n = len(faces) + n_entities
+    entities, row = np.unique(same.entity[nodes][member], return_inverse=True)
+    entity = row.ravel()
+    n = len(faces) + len(entities)
     graph = coo_array(
         (np.ones(len(entity), np.int8), (rows[member], len(faces) + entity)), shape=(n, n)
     )

@@ -96,7 +96,7 @@ def _require_alike(context: FrontContext) -> None:
 
     Their openings would be missing from the work: closure was 12 to 19 % low on solved models.
     """
-    patch, front = context.patch, context.front
+    patch = context.patch
     if not patch.unlike.any():
         return
     at_front = context.on_front[patch.upper.corners].any(axis=1)
