@@ -126,7 +126,8 @@ def tube(front: FrontResult, scale: Scale, radius: float) -> Any:
 
 def kink_ribbon(front: FrontResult, size: float) -> Any | None:
     """A strip from the front into the direction of growth by the maximum tangential stress; None
-    where no station has one.  It is broken where stations have none.
+    where no station has one.  It is broken where stations have none, and where it would turn by
+    more than a right angle from one to the next, as where K_II changes its sign without K_I.
     """
     import pyvista as pv
 
@@ -136,7 +137,7 @@ def kink_ribbon(front: FrontResult, size: float) -> Any | None:
     n = len(front)
     after = (np.arange(n) + 1) % n if front.closed else np.arange(1, n)
     before = np.arange(len(after))
-    known = np.isfinite(angle[before]) & np.isfinite(angle[after])
+    known = np.abs(angle[after] - angle[before]) < np.pi / 2  # NaN is not
     if not known.any():
         return None
     outer = np.nan_to_num(front.positions + _RIBBON * size * way)
