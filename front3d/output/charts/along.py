@@ -99,7 +99,7 @@ def _draw(axes: "Axes", front: FrontResult, mode: int) -> None:
     every = mark_every(front)
     sources = _sources(front)
     one = len(sources) == 1
-    strong = _style(max(sources, key=front.sources.count))
+    strong = method_style(max(sources, key=front.sources.count))
     axes.plot(
         x,
         closed_up(front.K[:, mode], front),
@@ -118,7 +118,7 @@ def _draw(axes: "Axes", front: FrontResult, mode: int) -> None:
             markeredgewidth=1.8,
             label=_from(name),
             zorder=3.5,
-            **(_style(name) | {"linestyle": "none"}),
+            **(method_style(name) | {"linestyle": "none"}),
         )
     rings = rings_of(front)
     if rings is not None:
@@ -146,7 +146,7 @@ def _draw(axes: "Axes", front: FrontResult, mode: int) -> None:
             label=METHOD_NAMES.get(name, name),
             markevery=(every // 2, every),
             **thin,
-            **_style(name),
+            **method_style(name),
         )
     for number, comparison in enumerate(front.comparisons):
         axes.plot(
@@ -166,7 +166,7 @@ def _other_methods(front: FrontResult) -> dict[str, FloatArray]:
     }
 
 
-def _style(name: str) -> dict[str, Any]:
+def method_style(name: str) -> dict[str, Any]:
     return _STYLES.get(name, _ANOTHER)
 
 

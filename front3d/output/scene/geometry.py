@@ -18,7 +18,8 @@ from front3d.solid import Solid
 
 # How far beyond the front the close-up reaches, in diameters of the front, and its least half-size.
 _AROUND, _LEAST = 0.16, 0.30
-_OPEN = 0.12  # the widest opening drawn, in diameters of the front
+OPEN = 0.12
+"""The widest opening drawn, in diameters of the front."""
 _RIBBON = 0.09  # width in diameters of the front
 RIBBON_FROM = 5.0
 """Degrees of kink from which a ribbon says more than the tube."""
@@ -79,7 +80,7 @@ def opening_factor(widest: float, size: float) -> float:
     """
     if not widest > 1e-12 * size:
         return 0.0
-    wanted = _OPEN * size / widest
+    wanted = OPEN * size / widest
     power = 10.0 ** floor(log10(wanted))
     return float(power * max(n for n in (1, 2, 5) if n * power <= wanted))
 

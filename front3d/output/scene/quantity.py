@@ -115,6 +115,14 @@ def colours(scale: Scale | None = None) -> Any:
     return ListedColormap(colormaps["viridis_r"](np.linspace(0.08, 1.0, steps)))
 
 
+def colour_of(front: FrontResult, station: int, scale: Scale) -> Any:
+    """The colour that the front has at a station."""
+    value = float(values_of(front, scale.quantity, scale.words)[station])
+    if not np.isfinite(value):
+        return NO_VALUE
+    return colours(scale)(np.clip((value - scale.low) / (scale.high - scale.low), 0.0, 1.0))
+
+
 def extremes(fronts: Sequence[FrontResult], scale: Scale) -> list[tuple[str, int, int]]:
     """What to mark: (word, which of `fronts`, station) of the largest and the smallest value, the
     largest magnitude first; one where all are alike, none of flags.
