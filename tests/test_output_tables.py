@@ -102,7 +102,9 @@ def test_summary_names_inputs_extremes_and_caution(tmp_path: Path) -> None:
     assert data["inputs"] == [
         {"file": "block.vtu", "sha256": hashlib.sha256(b"numbers").hexdigest()}
     ]
-    assert data["material"] == {"young": 200e3, "poisson": 0.3}
+    stated = "isotropic, E = 200000 MPa, Poisson's ratio 0.3"
+    assert data["material"] == {"young": 200e3, "poisson": 0.3, "stated": stated}
+    assert data["loads"].startswith("none stated")
     assert {"front3d", "python", "numpy", "vtk"} <= set(data["versions"])
     (front,) = data["fronts"]
     peak = front["K"]["K_I"]["max"]
