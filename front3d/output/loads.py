@@ -33,7 +33,9 @@ def material_words(options: Mapping[str, Any], material: Material, units: Units)
         if region.get("density") is not None:
             more += f", density {region['density']:g}"
         elastic = _elastic(region["young"], region["poisson"], stress)
-        words.append(f"region {region['region']}: {elastic}{more}")
+        name = region["region"]
+        name = name if isinstance(name, str) else f"{name:g}"
+        words.append(f"region {name}: {elastic}{more}")
     array = loads.get("region_array")
     return [
         ("material", f"isotropic, by region ({array or 'physical groups'}); " + "; ".join(words))
@@ -59,9 +61,8 @@ def load_words(options: Mapping[str, Any], units: Units) -> list[Pair]:
         if loads.get("depth_direction"):
             where += f" along ({_vector(loads['depth_direction'])})"
         unit = f" {stress}".rstrip()
-        found.append(
-            ("pressure on the crack faces by depth", f"{' + '.join(terms)}{unit}, {where}")
-        )
+        polynomial = " + ".join(terms).replace("+ -", "- ")
+        found.append(("pressure on the crack faces by depth", f"{polynomial}{unit}, {where}"))
     if loads.get("face_array"):
         found.append(("load on the crack faces", f"array {loads['face_array']} of the result file"))
     density = loads.get("density")

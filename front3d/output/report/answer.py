@@ -207,6 +207,6 @@ def _range(front: FrontResult, units: Units) -> str:
         ("Poisson's ratio", own.poisson, ""),
     ):
         low, high = float(np.min(values)), float(np.max(values))
-        text = f"{low:.5g}" if low == high else f"{low:.5g} to {high:.5g}"
+        text = f"{low:g}" if low == high else f"{low:g} to {high:g}"
         said.append(f"{name} {text} {unit}".rstrip())
     return ", ".join(said)

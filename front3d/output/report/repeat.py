@@ -31,7 +31,8 @@ def stations(saved: Saved) -> Markup:
             "K in ",
             rooted(evaluation.units.K_label),
             f". Without columns of other methods that are below {100 * NOUGHT:g} % of the largest "
-            "K throughout. The file points.csv has these figures with all digits, and more columns.",
+            "K throughout. The file points.csv has these figures with all digits, and more "
+            "columns.",
             class_="small",
         )
     ]
