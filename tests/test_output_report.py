@@ -27,7 +27,7 @@ from front3d.output.saved import read_saved
 from front3d.output.skin import skin_vtp
 from front3d.output.summary import summary_json
 from front3d.output.tables import points_csv
-from front3d.results import CAUTION, Evaluation
+from front3d.results import CAUTION, Evaluation, MethodResult
 from front3d.solid import LocalMaterial, Material
 from tests.output_models import corner_front, cracked_block, elliptic_front, evaluation_of
 
@@ -322,7 +322,32 @@ def test_page_opens_offline_and_prints(tmp_path: Path, browse: Callable[..., str
     blue = np.abs(picture - matplotlib.colors.to_rgb("#0072B2")).max(axis=-1) < 0.02
     assert blue.sum() > 1000  # a chart's reported curve
     browse(path, "--no-pdf-header-footer", f"--print-to-pdf={tmp_path / 'page.pdf'}")
-    assert (tmp_path / "page.pdf").read_bytes().startswith(b"%PDF")
+    pages = re.findall(rb"/Type\s*/Page\b", (tmp_path / "page.pdf").read_bytes())
+    # Answer and question, crack and two charts, a third and the checks, 61 stations, the inputs.
+    assert 3 <= len(pages) <= 6
+
+
+@in_browser
+@pytest.mark.slow
+def test_the_widest_table_fits_a_printed_page(
+    tmp_path: Path, one_chart: None, browse: Callable[..., str]
+) -> None:
+    K = FRONT.K + np.array((0.0, 0.0, -123.4))
+    methods = {name: replace(m, K=K) for name, m in FRONT.methods.items()}
+    methods["opening"] = MethodResult("opening", K)
+    flags = ("free surface; methods disagree", *FRONT.flags[1:])
+    front = replace(FRONT, K=K, methods=methods, flags=flags, step="tension")
+    path, _ = write_report(read_saved(folder_of(evaluation_of(front), tmp_path)))
+    # As printed on A4 with margins of 14 mm: 182 mm are 688 pixels of 1/96 inch.
+    text = path.read_text(encoding="utf-8").replace("@media print {", "@media all {")
+    text = text.replace(
+        "</style>", "main { width: 688px !important; margin: 0 !important; }</style>"
+    )
+    path.write_text(text, encoding="utf-8")
+    browse(path, f"--screenshot={tmp_path / 'page.png'}")
+    picture = matplotlib.image.imread(tmp_path / "page.png")[..., :3]
+    assert (picture[:, :688] < 0.5).any(axis=2).sum() > 5000
+    assert picture[:, 692:].min() > 0.99
 
 
 @in_browser

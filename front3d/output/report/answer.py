@@ -63,6 +63,12 @@ def answer(saved: Saved) -> Markup:
         tag("ul", *(tag("li", line) for line in trust)),
         _warnings(saved),
         table(head, rows, numeric=False),
+        tag(
+            "p",
+            f"None: below {100 * NOUGHT:g} % of the front's largest K. Places are (x, y, z)",
+            f" in {units.length}." if units.length else ".",
+            class_="small",
+        ),
         name="answer",
     )
 
@@ -108,8 +114,7 @@ def _largest_row(front: FrontResult, k: int, units: Units) -> list[Any]:
     if units.K_factor is not None:
         row.append(levelled(values[i] * units.K_factor, most * units.K_factor))
     if abs(values[i]) < NOUGHT * most:
-        none = f"none (below {100 * NOUGHT:g} % of the largest K)"
-        return [*start, none, *([""] if units.K_factor is not None else []), "", "", "", ""]
+        return [*start, "none", *([""] if units.K_factor is not None else []), "", "", "", ""]
     row += [f"{front.s_rel[i]:.3f}", place(front.positions[i], front.length), front.flags[i]]
     plain = np.array([not flag for flag in front.flags]) & np.isfinite(values)
     inside = np.where(plain, np.abs(values), -1.0)

@@ -146,7 +146,10 @@ code { font-family: "Liberation Mono", "DejaVu Sans Mono", monospace; font-size:
   thead { display: table-header-group; }
   tr { break-inside: avoid; }
   .wide { overflow: visible; }
+  table { font-size: 8.5pt; }
+  table.numbers td { white-space: normal; }
   table.stations { font-size: 6.6pt; }
+  table.few { font-size: 7.6pt; }
   table.stations th, table.stations td { padding: .5pt 2.5pt; }
   pre { white-space: pre-wrap; }
   .screen { display: none; }

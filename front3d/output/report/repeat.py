@@ -12,6 +12,9 @@ from front3d.output.report.words import NAMES, levelled, rooted
 from front3d.output.saved import Saved
 from front3d.results import CAUTION, FrontResult
 
+_FEW = 12
+"""Columns up to which the table is printed in larger letters."""
+
 
 def stations(saved: Saved) -> Markup:
     """Every station with the reported K, that of each method, and its flag."""
@@ -55,7 +58,8 @@ def stations(saved: Saved) -> Markup:
             rows.append(row)
         if len(evaluation.fronts) > 1:
             children.append(tag("h3", f"Front {front.front}, step {front.step}"))
-        children.append(table(head, rows, kind="stations"))
+        kind = "stations" if len(head) > _FEW else "stations few"
+        children.append(table(head, rows, kind=kind))
     return section("Table", *children, name="table")
 
 

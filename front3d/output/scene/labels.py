@@ -264,7 +264,7 @@ def place_for_words(
     """
     best, least = peak, np.inf
     centre = np.array(shape) / 2
-    for distance in (1.0, 1.5, 2.0, 3.0, 4.5):
+    for distance in (1.0, 1.5, 2.0, 3.0, 4.5, 6.5):
         for angle in np.radians(np.arange(0, 360, 30) - 90):
             way = np.array([np.cos(angle), np.sin(angle)])
             # The nearest edge of the box is that far away, so that the pointer is seen.

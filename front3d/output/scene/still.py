@@ -94,9 +94,7 @@ def scene_figure(
     arrows = look.arrows
     if arrows is None:
         arrows = tuple((number, i) for _, number, i in marked[:1])
-    # With room for the letters at the tips of the arrows.
-    tips = [arrow_tips(fronts[n], i, 1.5 * ARROW * size_of(fronts)) for n, i in arrows]
-    view = best_view(fronts[0], np.concatenate([box_corners(*box), *tips]))
+    view = view_of(fronts, box, arrows)
     ribbon = kinked(fronts) if look.ribbon is None else look.ribbon
     widest = widest_opening(parts, 0)
     factor = opening_factor(widest, size_of(fronts)) if look.opening is None else look.opening
@@ -126,6 +124,12 @@ def scene_figure(
     notes += [RING_WORDS] if extras.rings else []
     _draw_words(figure, fronts, scale, notes)
     return figure
+
+
+def view_of(fronts: tuple[FrontResult, ...], box: Box, arrows: tuple[Place, ...]) -> View:
+    """From where the picture is taken: with room for the letters at the tips of the arrows."""
+    tips = [arrow_tips(fronts[n], i, 1.5 * ARROW * size_of(fronts)) for n, i in arrows]
+    return best_view(fronts[0], np.concatenate([box_corners(*box), *tips]))
 
 
 def opening_words(factor: float, widest: float) -> str:
