@@ -9,6 +9,7 @@ import numpy as np
 
 from front3d.output.charts.style import plain_text
 from front3d.output.rendering import choose_window
+from front3d.output.scene.arrows import ARROW, MUTED, SHAPE, draw_axes
 from front3d.output.scene.camera import View, best_view, box_corners
 from front3d.output.scene.drawing import INK, Extras, Place, add_solid, bring_forward
 from front3d.output.scene.geometry import (
@@ -24,11 +25,7 @@ from front3d.output.scene.geometry import (
     widest_opening,
 )
 from front3d.output.scene.labels import (
-    ARROW,
-    MUTED,
-    SHAPE,
     Mark,
-    draw_axes,
     draw_marks,
     draw_scale,
     words_of,

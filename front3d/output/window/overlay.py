@@ -4,8 +4,9 @@ from dataclasses import dataclass
 from textwrap import fill
 from typing import Any
 
+from front3d.output.scene.arrows import MUTED, Letters, draw_axes
 from front3d.output.scene.camera import View
-from front3d.output.scene.labels import MUTED, Letters, draw_axes, draw_marks, draw_scale
+from front3d.output.scene.labels import draw_marks, draw_scale
 from front3d.output.window.layers import DPI, blank, bytes_of, keep, laid_over
 from front3d.output.window.model import Drawn
 from front3d.results import CAUTION
