@@ -16,7 +16,7 @@ from front3d.output.scene.camera import pixels
 from front3d.output.scene.cutting import cut_to_box
 from front3d.output.scene.geometry import moved, opened, opening_factor, tube
 from front3d.output.scene.labels import half_box, place_for_words
-from front3d.output.scene.quantity import QUANTITIES, values_of
+from front3d.output.scene.quantity import QUANTITIES, Scale, shown_value, values_of
 from front3d.output.scene.still import Look, scene_figure, view_of
 from front3d.results import FrontResult
 from tests.output_models import MILLIMETRES, cracked_block, elliptic_front
@@ -80,6 +80,15 @@ def test_scatter_does_not_fill_the_colour_scale() -> None:
     assert scale.high - scale.low >= 10.0
     assert scale.low < 99.9
     assert scale.high == K[:, 0].max()  # the peak has the last colour
+
+
+def test_scatter_around_nought_has_no_colours_and_no_digits() -> None:
+    K = np.zeros_like(EMBEDDED.K)
+    K[:, 0] = 100.0
+    K[:, 1] = 5e-3 * np.cos(np.arange(len(K)))
+    front = with_K(EMBEDDED, K)
+    assert colour_scale((front,), "K_II") == Scale("K_II", -1.0, 1.0)
+    assert shown_value((front,), front, 0, "K_II") == 0.0
 
 
 def test_a_front_under_shear_shows_the_mode_that_counts() -> None:

@@ -11,6 +11,8 @@ import numpy as np
 import pytest
 import pyvista as pv
 
+from front3d.cli import words
+from front3d.output import formats
 from front3d.output.formats import place
 from front3d.output.summary import companions, summary_json
 from front3d.output.tables import FIRST_COLUMNS, front_vtp, points_csv
@@ -143,3 +145,7 @@ def test_places_far_from_the_origin_keep_their_digits() -> None:
     """A ten-thousandth of the front's length can be read off, wherever the model stands."""
     assert place(np.array([5000.0123, -7000.0, 1e-15]), 0.01) == "5000.0123, -7000, 0"
     assert place(np.array([12.3456789, 0.5, 0.0]), 10.0) == "12.346, 0.5, 0"
+
+
+def test_nought_is_the_same_on_the_terminal_and_in_pictures() -> None:
+    assert words.NOUGHT == formats.NOUGHT

@@ -166,25 +166,37 @@ def place_for_words(
 
 
 def draw_scale(
-    figure: Any, place: tuple[float, float, float, float], scale: Scale, units: Units, size: float
+    figure: Any,
+    place: tuple[float, float, float, float],
+    scale: Scale,
+    units: Units,
+    size: float,
+    *,
+    flat: bool = False,
 ) -> None:
-    """The scale of the colours with its unit; `size` is that of its letters in points."""
+    """The scale of the colours with its unit, upright or `flat`; `size` is that of its letters in
+    points.
+    """
     from matplotlib.cm import ScalarMappable
     from matplotlib.colors import Normalize
     from matplotlib.ticker import MaxNLocator
 
     axes = figure.add_axes(place)
     bar = figure.colorbar(
-        ScalarMappable(Normalize(scale.low, scale.high), colours(scale)), cax=axes
+        ScalarMappable(Normalize(scale.low, scale.high), colours(scale)),
+        cax=axes,
+        orientation="horizontal" if flat else "vertical",
     )
+    axis = bar.ax.xaxis if flat else bar.ax.yaxis
     if scale.words:
         from textwrap import fill
 
-        bar.set_ticks(list(range(len(scale.words))), labels=[fill(w, 14) for w in scale.words])
+        room = max(14, 60 // len(scale.words)) if flat else 14
+        bar.set_ticks(list(range(len(scale.words))), labels=[fill(w, room) for w in scale.words])
         bar.ax.tick_params(labelsize=0.75 * size, length=0)
         bar.ax.set_title("flag", fontsize=size, color=INK, loc="left")
         return
-    bar.ax.yaxis.set_major_locator(MaxNLocator(5, steps=[1, 2, 2.5, 5, 10]))
+    axis.set_major_locator(MaxNLocator(5, steps=[1, 2, 2.5, 5, 10]))
     bar.ax.tick_params(labelsize=0.9 * size)
     unit = unit_of(scale.quantity, units)
     label = LABELS[scale.quantity] + (f"  [{unit}]" if unit else "")

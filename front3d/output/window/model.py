@@ -26,8 +26,8 @@ from front3d.output.window.state import Shown, fronts_of
 from front3d.results import Evaluation, FrontResult
 
 SKIN = "skin.vtp"
-WORDS = (230, 200)
-"""Pixels of the scene's width and height that are left to scale, title and caution."""
+WORDS = (100, 320)
+"""Pixels of the scene's width and height that are left to title, scale and caution."""
 
 ALONE = f"the front alone: this evaluation left no {SKIN} to draw the solid from"
 

@@ -54,7 +54,7 @@ def draw_overlay(
     taken = draw_axes(axes, view, (width, height - 30), LETTERS)
     draw_marks(
         axes, drawn.fronts, drawn.marks, drawn.arrows, view, drawn.scale,
-        shape=size, letters=LETTERS, room=(width - 120, height - 40), taken=taken,
+        shape=size, letters=LETTERS, room=(width, height - 145), taken=taken,
     )  # fmt: skip
     return Overlay(laid_over(below, bytes_of(figure)), (frame, figure))
 
@@ -66,8 +66,8 @@ def _frame(drawn: Drawn, units: Units, size: tuple[int, int]) -> Any:
     figure.text(0.5, 1 - 12 / height, drawn.title, fontsize=13, ha="center", va="top")
     notes = "\n".join(drawn.notes)
     figure.text(0.5, 1 - 38 / height, notes, fontsize=9.5, ha="center", va="top")
-    place = (1 - 95 / width, 1 - 350 / height, 22 / width, 250 / height)
-    draw_scale(figure, place, drawn.scale, units, 11)
+    place = (0.28, 112 / height, 0.6, 16 / height)
+    draw_scale(figure, place, drawn.scale, units, 11, flat=True)
     words = fill(CAUTION, max(40, width // 7))
     figure.text(0.5, 6 / height, words, fontsize=8, color=MUTED, ha="center", va="bottom")
     return figure
