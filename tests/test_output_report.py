@@ -3,6 +3,7 @@
 import json
 import re
 import shutil
+import socket
 import subprocess
 from collections.abc import Callable
 from dataclasses import asdict, fields, replace
@@ -353,13 +354,23 @@ def test_the_widest_table_fits_a_printed_page(
 @in_browser
 @pytest.mark.slow
 @pytest.mark.skipif(find_spec("trame_pyvista") is None, reason="needs the extra trame-pyvista")
-def test_scene_can_be_turned_in_the_page(tmp_path: Path, browse: Callable[..., str]) -> None:
+def test_scene_can_be_turned_in_the_page(
+    tmp_path: Path, browse: Callable[..., str], monkeypatch: pytest.MonkeyPatch
+) -> None:
+    hosts, find = set(), socket.getaddrinfo
+
+    def found(host: Any, *more: Any, **named: Any) -> Any:
+        hosts.add(host)
+        return find(host, *more, **named)
+
+    monkeypatch.setattr(socket, "getaddrinfo", found)
     front = elliptic_front(1.6, 1.2, closed=True, centre=2.0)
     folder_of(evaluation_of(front), tmp_path, "skin.vtp")
     skin = skin_vtp(cracked_block(1.6, 1.2, embedded=True), (front,))
     write_whole(tmp_path / "skin.vtp", skin)
     path, notes = write_report(read_saved(tmp_path))
     assert notes == ()
+    assert hosts <= {"127.0.0.1", "localhost", None}  # nothing was fetched to make it
     browse(path, f"--screenshot={tmp_path / 'page.png'}")
     picture = matplotlib.image.imread(tmp_path / "page.png")[..., :3]
     red, green, blue = np.moveaxis(picture, -1, 0)

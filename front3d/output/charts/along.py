@@ -208,13 +208,15 @@ def _also_fitted(front: FrontResult, mode: int) -> list[FloatArray]:
 def _leaving(front: FrontResult, modes: Sequence[int]) -> tuple[str, ...]:
     """A caption on curves that leave their panel at an end."""
     largest = largest_K([front])
+    curves = [(METHOD_NAMES.get(name, name), K) for name, K in _other_methods(front).items()]
+    curves += [(plain_text(one.source, _MOST), one.K) for one in front.comparisons]
     names = []
-    for name, K in _other_methods(front).items():
+    for name, K in () if front.closed else curves:
         for mode in modes:
             low, high = limits_of([front.K[:, mode], *_also_fitted(front, mode)], largest)
             ends = K[[0, -1], mode]
-            if not front.closed and ((ends < low) | (ends > high)).any():
-                names.append(METHOD_NAMES.get(name, name))
+            if ((ends < low) | (ends > high)).any():
+                names.append(name)
     if not names:
         return ()
     return (f"Beyond the panel at an end of the front: {', '.join(dict.fromkeys(names))}.",)
