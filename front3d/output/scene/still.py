@@ -9,7 +9,7 @@ import numpy as np
 
 from front3d.output.charts.style import plain_text
 from front3d.output.rendering import choose_window
-from front3d.output.scene.arrows import ARROW, MUTED, SHAPE, draw_axes
+from front3d.output.scene.arrows import ARROW, MUTED, SHAPE, STILL, Letters, draw_axes
 from front3d.output.scene.camera import View, best_view, box_corners
 from front3d.output.scene.drawing import INK, Extras, Place, add_solid, bring_forward
 from front3d.output.scene.geometry import (
@@ -99,15 +99,20 @@ def scene_figure(
     extras = Extras(arrows if look.rings else (), ribbon=ribbon)
 
     figure = Figure(figsize=(8.0, 6.0), dpi=150, facecolor="white")
-    near = figure.add_axes((0.0, 0.1, 0.765, 0.765))
+    notes = ["; ".join([opening_words(factor, widest), *([FRAME_WORDS] if arrows else [])])]
+    notes += [RIBBON_WORDS] if ribbon else []
+    notes += [RING_WORDS] if extras.rings else []
+    side = 0.765 - 0.03 * (len(notes) - 1)  # below the notes
+    near = figure.add_axes((0.3825 - side / 2, 0.1, side, side))
+    letters = Letters(STILL.points, STILL.pixels * 0.765 / side)
     near.imshow(_render(near_parts, fronts, scale, view, box, extras))
     near.set_axis_off()
-    taken = draw_axes(near, view)
+    taken = draw_axes(near, view, letters=letters)
     marks = [
         Mark((number, i), words_of(word, fronts[number], i, scale, units))
         for word, number, i in marked
     ]
-    draw_marks(near, fronts, marks, arrows, view, scale, taken=taken)
+    draw_marks(near, fronts, marks, arrows, view, scale, letters=letters, taken=taken)
     extent = np.ptp(solid.points, axis=0)
     if np.linalg.norm(extent) > 1.3 * np.linalg.norm(box[1] - box[0]):
         whole = box_corners(solid.points.min(axis=0), solid.points.max(axis=0))
@@ -116,9 +121,6 @@ def scene_figure(
         far.set_axis_off()
         far.set_title("whole solid", fontsize=11, color=MUTED, pad=2)
     draw_scale(figure, (0.83, 0.42, 0.028, 0.385), scale, units, 14)
-    notes = ["; ".join([opening_words(factor, widest), *([FRAME_WORDS] if arrows else [])])]
-    notes += [RIBBON_WORDS] if ribbon else []
-    notes += [RING_WORDS] if extras.rings else []
     _draw_words(figure, fronts, scale, notes)
     return figure
 
