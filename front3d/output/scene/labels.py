@@ -150,6 +150,8 @@ def place_for_words(
     """
     best, least = peak, np.inf
     centre = np.array(shape) / 2
+    far = np.linalg.norm(drawn - peak, axis=1) > 30 * grain
+    offset = (drawn - peak)[far]
     for distance in (1.0, 1.5, 2.0, 3.0, 4.5, 6.5):
         for angle in np.radians(np.arange(0, 360, 30) - 90):
             way = np.array([np.cos(angle), np.sin(angle)])
@@ -159,7 +161,11 @@ def place_for_words(
             outside = np.maximum(np.abs(middle - centre) + half - centre, 0).sum() / grain
             hidden = (np.abs(drawn - middle) < half + 12 * grain).all(axis=1).sum()
             over = sum((np.abs(m - middle) < half + h + 8 * grain).all() for m, h in taken)
-            cost = 5000 * over + 1000 * hidden + 100 * outside + 30 * distance
+            # A pointer over an arrow or its letter is worse than one that is longer.
+            along = offset @ way
+            beside = np.abs(offset @ (-way[1], way[0])) < 10 * grain
+            crossed = (beside & (along > 0) & (along < reach.min())).sum()
+            cost = 5000 * over + 1000 * hidden + 100 * outside + 30 * distance + 10 * crossed
             if cost < least:
                 best, least = middle, cost
     return float(best[0]), float(best[1])

@@ -190,15 +190,19 @@ def _draw_chart(axes: Any, evaluation: Evaluation, front: FrontResult, shown: Sh
         if rings is not None:
             band = rings.K[rings.compared, :, mode]
             shade = axes.fill_betweenx if upright else axes.fill_between
-            low, high = band.min(axis=0), band.max(axis=0)
-            shade(x, low, high, color=BLUE, alpha=0.25, linewidth=0, label="range over rings")
+            low, high = (closed_up(end, front) for end in (band.min(axis=0), band.max(axis=0)))
+            ends = closed_up(x, front, 1.0) if not upright else x
+            shade(ends, low, high, color=BLUE, alpha=0.25, linewidth=0, label="range over rings")
         for name, method in front.methods.items():
             if set(front.sources) != {name}:
                 look = method_style(name) | {"marker": "", "linewidth": 1.2}
                 line(method.K[:, mode], label=METHOD_NAMES.get(name, name), **look)
                 inner = slice(None) if front.closed else slice(1, -1)
                 curves.append(method.K[inner, mode])
+    source = max(dict.fromkeys(front.sources), key=front.sources.count)
     own: dict[str, Any] = {"color": BLUE, "linewidth": 2.0, "marker": "o", "markersize": 4}
+    if quantity in MODES:
+        own |= {"color": method_style(source)["color"]}
     if scale.words:
         own |= {"linestyle": "none"}
     line(values, label="reported" if quantity in MODES else None, **own)
