@@ -80,7 +80,7 @@ FIGURES: dict[str, Callable[[], Any]] = {
         replace(
             BUSY,
             comparisons=(
-                replace(BUSY.comparisons[0], source="Newman and Raju (1984, 1986), from memory"),
+                replace(BUSY.comparisons[0], source="Newman and Raju (1984, 1986) and others"),
             ),
         ),
         MILLIMETRES,
