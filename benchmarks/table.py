@@ -75,8 +75,8 @@ def _runs(record: Record) -> list[Record]:
 
 
 def _name(run: Record) -> str:
-    pieces = " in pieces" if run["file"] == ".pvtu" else ""
-    return f"{run['cells'] / 1e6:.2g} million {run['kind']}{pieces}"
+    kept = f"{run['cells'] / 1e6:.2g} million {run['kind']}"
+    return f"{kept} kept of 8 pieces" if run["file"] == ".pvtu" else kept
 
 
 def text(record: Record) -> str:
