@@ -61,7 +61,7 @@ def measure(
             "load": os.getloadavg()[0],
         },
         "kernel": {
-            kind: run("benchmarks.kernel", kind, cells, usual)
+            kind: run("benchmarks.kernel", kind, cells, usual, 4 if usual == USUAL else 1)
             for kind, cells in (("tetra10", sizes[0]), ("hexahedron20", bricks // 10))
         },
         "by cells": [stages("tetra10", cells, usual) for cells in sizes],
@@ -83,7 +83,7 @@ def main() -> None:
     if given.given:
         record = json.loads(given.given.read_text())
     elif given.small:
-        record = measure((36 * AROUND,), (), 6 * AROUND, 36)
+        record = measure((24 * AROUND,), (), 4 * AROUND, 24)
     else:
         sizes = tuple(cells for cells in SIZES if cells <= given.largest)
         record = measure(sizes, STATIONS, BRICKS, USUAL)
