@@ -24,6 +24,7 @@ from front3d.results import (
     MethodResult,
     energy_release_rate,
 )
+from front3d.sanity.balance import balance_warnings
 from front3d.sanity.cells import cell_warnings
 from front3d.sanity.displacements import (
     constant_warnings,
@@ -95,6 +96,7 @@ def evaluate_solid(
             )  # fmt: skip
             by_method, refused = _apply_methods(context)
             constants = station_constants(context)
+            unbalanced = balance_warnings(context, by_method[REPORTED], METHODS[REPORTED])
         except (MethodError, MeshError) as reason:
             if model.n_fronts == 1:
                 raise
@@ -114,7 +116,7 @@ def evaluate_solid(
                     methods,
                     published.get((step.name, number), ()),
                     refused,
-                    unlike.get((step.name, number), ()),
+                    unlike.get((step.name, number), ()) + unbalanced[index],
                 )
             )
     if not results:

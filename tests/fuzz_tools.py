@@ -17,10 +17,6 @@ TOLERANCE = 0.02
 of the rings beyond which the program itself warns."""
 
 
-FEW, UNNOTICED = 16, "unnoticed"
-"""A sound mesh in which the displacements of no more than a few nodes were changed."""
-
-
 class Worker:
     """The reused process; started again after it died."""
 
@@ -77,8 +73,6 @@ def verdict(answer: dict, good: dict) -> str:
         off = np.inf
     if _words(answer) - _words(good):
         return "flagged"
-    if answer.get("moved") is not None and 0 < answer["moved"] <= FEW:
-        return UNNOTICED
     return f"wrong: K off by {100 * off:.3g} % without a word"
 
 

@@ -35,6 +35,7 @@ def check_case(path: Path) -> None:
     for line in text.splitlines():
         if not re.fullmatch(_LINE, line.strip()):
             raise ReadError(f"{path}: found the line {line[:60]!r}, expected EnSight Gold")
+    _check_steps(path, text)
     named = re.findall(r"^\s*(model|\w+ per (?:measured )?\w+):(.*)$", text, re.MULTILINE)
     if not any(what == "model" for what, _ in named):
         raise ReadError(f"{path}: names no geometry file (model: ...), expected one")
@@ -57,6 +58,16 @@ def check_case(path: Path) -> None:
                 if nodes and width:
                     size = 80 + sum(164 + 4 * width * n for n in nodes)
                 _check_length(path, file, geometry=False, size=size)
+
+
+def _check_steps(path: Path, text: str) -> None:
+    """ReadError where a time set claims more steps than there is text for: VTK would count them."""
+    for found in re.findall(r"^\s*(?:number of|maximum time) steps:(.*)$", text, re.MULTILINE):
+        if not (found.strip().isdigit() and int(found) <= len(text)):
+            raise ReadError(
+                f"{path}: found {found.strip()[:30]!r} steps, expected the number of time values "
+                "that follow; the file is damaged: transfer or export it again"
+            )
 
 
 def _model_name(words: str) -> list[str]:
