@@ -9,7 +9,7 @@ from pathlib import Path
 import numpy as np
 
 WORKER = Path(__file__).with_name("fuzz_worker.py")
-START, PATIENCE = 240.0, 20.0
+START, PATIENCE = 300.0, 60.0
 """Seconds before the first request, which may compile kernels, and a later one count as hanging."""
 
 TOLERANCE = 0.02

@@ -42,6 +42,7 @@ def profile(examples):
 QUICK = 10
 THOROUGH = int(os.environ.get("FRONT3D_FUZZ", "60"))
 
+
 def with_examples(names, quick):
     """Quick and thorough runs of each name."""
     for name in names:

@@ -69,6 +69,15 @@ def results_folder(folder: Path) -> Iterator[Path]:
         raise
 
 
+@contextmanager
+def explained(path: Path) -> Iterator[None]:
+    """WriteError in place of the OSError of something that writes to `path` by itself."""
+    try:
+        yield
+    except OSError as error:
+        raise WriteError(_explain(path, error)) from error
+
+
 def prepare_folder(folder: Path) -> Path:
     """Make `folder` with its parents and try that it can be written to, before any long work."""
     try:

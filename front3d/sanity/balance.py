@@ -120,9 +120,7 @@ def forces_left(context: FrontContext, reach: float) -> _Forces:
     points, displacement = solid.points[nodes], context.displacement[:, nodes]
     for block, cells in zip(solid.blocks, tube.cells, strict=True):
         local = np.searchsorted(nodes, block.nodes[cells])
-        add_cells(
-            sums, block.element, local, rows, points, displacement, state, context.material
-        )
+        add_cells(sums, block.element, local, rows, points, displacement, state, context.material)
     left = sums.force
     if loaded_faces(context):
         for faces in filter(None, (context.patch.upper, context.patch.lower)):

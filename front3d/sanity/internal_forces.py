@@ -130,9 +130,7 @@ def _slope(
 ) -> list[list[FloatArray]]:
     """slope[i][j] = du_i/dx_j, each (q, cells)."""
     raw = [[gradient @ u[i] for gradient in by_axis] for i in range(3)]
-    return [
-        [sum(raw[i][d] * inverse[d][j] for d in range(3)) for j in range(3)] for i in range(3)
-    ]
+    return [[sum(raw[i][d] * inverse[d][j] for d in range(3)) for j in range(3)] for i in range(3)]
 
 
 def _stress(
