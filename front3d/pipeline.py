@@ -26,6 +26,7 @@ from front3d.results import (
 )
 from front3d.sanity.balance import balance_warnings
 from front3d.sanity.cells import cell_warnings
+from front3d.sanity.conformity import conformity_warnings
 from front3d.sanity.displacements import (
     constant_warnings,
     displacement_warnings,
@@ -96,6 +97,7 @@ def evaluate_solid(
             )  # fmt: skip
             by_method, refused = _apply_methods(context)
             constants = station_constants(context)
+            gaping = conformity_warnings(context)
             unbalanced = balance_warnings(context, by_method[REPORTED], METHODS[REPORTED])
         except (MethodError, MeshError) as reason:
             if model.n_fronts == 1:
@@ -116,7 +118,7 @@ def evaluate_solid(
                     methods,
                     published.get((step.name, number), ()),
                     refused,
-                    unlike.get((step.name, number), ()) + unbalanced[index],
+                    unlike.get((step.name, number), ()) + gaping + unbalanced[index],
                 )
             )
     if not results:

@@ -235,9 +235,9 @@ def _about_place(
                 )
             if away2 > (_BENT * np.sqrt(span2) + slack) ** 2:
                 return (
-                    f"{what} stands {np.sqrt(away2):.3g} from the middle of its edge or face, which "
-                    f"is {np.sqrt(span2):.3g} long, expected half of that at the most (numbers "
-                    "from 0): check its coordinates and its node order"
+                    f"{what} stands {np.sqrt(away2):.3g} from the middle of its edge or face, "
+                    f"which is {np.sqrt(span2):.3g} long, expected half of that at the most "
+                    "(numbers from 0): check its coordinates and its node order"
                 )
             if group.on_edges and along > _ALONG * span2 + slack * np.sqrt(span2):
                 return (
