@@ -112,13 +112,16 @@ def cells_with(solid: Solid, nodes: BoolArray) -> list[BoolArray]:
     return [np.asarray(nodes[block.nodes].any(axis=1)) for block in solid.blocks]
 
 
-def outer_faces(solid: Solid, entity: IntArray, nodes: BoolArray) -> FaceTable:
+def outer_faces(
+    solid: Solid, entity: IntArray, nodes: BoolArray, around: list[BoolArray] | None = None
+) -> FaceTable:
     """Free faces that hold any of the marked nodes (of all faces there, crack faces included).
 
     A face is free when no other cell has it; every cell that could share it holds one of its
-    nodes, so looking at the cells around the marked nodes is enough.
+    nodes, so looking at the cells around the marked nodes is enough; `around` are these cells,
+    where they are known already, or more.
     """
-    table = faces_of_cells(solid, cells_with(solid, nodes))
+    table = faces_of_cells(solid, cells_with(solid, nodes) if around is None else around)
     table = table[np.asarray(nodes[table.nodes].any(axis=1))]
     corners = entity[table.corners]
     distinct = (np.diff(np.sort(corners, axis=1), axis=1) != 0).sum(axis=1) + 1

@@ -85,17 +85,17 @@ class _Forces:
 
 def balance_warnings(
     context: FrontContext,
+    tube: Tube,
     found: list[MethodResult],
     method: Callable[[FrontContext], list[MethodResult]],
 ) -> list[tuple[str, ...]]:
     """What is to be said of each result of a method, which can be asked once more."""
     quiet: list[tuple[str, ...]] = [() for _ in found]
     largest = max(float(np.abs(result.K).max(initial=0.0)) for result in found)
-    rings = found[0].rings
-    if rings is None or not largest > 0.0:
+    if not largest > 0.0:
         return quiet
-    reach = float(rings.radii.max())
-    forces = forces_left(context, reach)
+    reach = reach_of(found)
+    forces = forces_left(context, tube, reach)
     factor = 1.0 if context.rows is None else float(np.abs(context.rows).max())
     scale = largest / factor / context.material.plane_strain_modulus * float(np.sqrt(reach))
     out = _out_of_balance(context, forces, scale)
@@ -117,10 +117,22 @@ def balance_warnings(
     return quiet
 
 
-def forces_left(context: FrontContext, reach: float) -> _Forces:
+def tube_of(context: FrontContext, found: list[MethodResult]) -> Tube:
+    """The cells that the rings of a method hold."""
+    return build_tube(
+        context.solid, context.front, context.patch, context.model.same, reach_of(found)
+    )
+
+
+def reach_of(found: list[MethodResult]) -> float:
+    """The radius of the largest ring."""
+    rings = found[0].rings
+    return float(rings.radii.max()) if rings is not None else 0.0
+
+
+def forces_left(context: FrontContext, tube: Tube, reach: float) -> _Forces:
     """The forces left at the nodes within `reach` of a front."""
     solid, same = context.solid, context.model.same
-    tube = build_tube(solid, context.front, context.patch, same, reach)
     nodes = tube.nodes
     entity, first, rows = np.unique(same.entity[nodes], return_index=True, return_inverse=True)
     state = nodal_state(context, nodes, tube.s)

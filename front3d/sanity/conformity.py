@@ -4,8 +4,8 @@ import numpy as np
 
 from front3d.arrays import BoolArray, IntArray
 from front3d.crack.facetable import FaceTable, also_among, multiplicity, outer_faces, set_keys
-from front3d.crack.front import on_front_mask
 from front3d.methods.context import FrontContext
+from front3d.methods.tube import Tube
 
 PER_EDGE = 2
 """Free faces that meet at an edge of a surface: a closed surface has two, wherever it lies."""
@@ -13,7 +13,7 @@ PER_EDGE = 2
 _TRIPLES = ([0, 1, 2], [0, 1, 3], [0, 2, 3], [1, 2, 3])
 
 
-def conformity_warnings(context: FrontContext) -> tuple[str, ...]:
+def conformity_warnings(context: FrontContext, tube: Tube) -> tuple[str, ...]:
     """A sentence on faces around a front that have no twin although other cells stand there.
 
     Corners of a cell in a wrong order, a brick against two tetrahedra, or a node exchanged for
@@ -22,11 +22,17 @@ def conformity_warnings(context: FrontContext) -> tuple[str, ...]:
     crack faces, and on meshes that are tied and share no nodes, neither is so.
     """
     solid, same, patch = context.solid, context.model.same, context.patch
-    at_front = on_front_mask(context.front, same)
-    near = at_front.copy()
-    for block in solid.blocks:
-        near[block.nodes[at_front[block.nodes].any(axis=1)]] = True
-    faces = outer_faces(solid, same.entity, near)
+    at_front = np.zeros(len(solid.points), bool)
+    at_front[tube.nodes] = np.isin(same.entity[tube.nodes], same.entity[context.front.nodes])
+    near, around = at_front.copy(), []
+    for block, cells in zip(solid.blocks, tube.cells, strict=True):
+        nodes = block.nodes[cells]
+        near[nodes[at_front[nodes].any(axis=1)]] = True
+    for block, cells in zip(solid.blocks, tube.cells, strict=True):
+        mask = np.zeros(len(block), bool)
+        mask[cells] = near[block.nodes[cells]].any(axis=1)
+        around.append(mask)
+    faces = outer_faces(solid, same.entity, near, around)
     crack = also_among(faces, patch.upper, same.entity)
     if patch.lower is not None:
         crack |= also_among(faces, patch.lower, same.entity)

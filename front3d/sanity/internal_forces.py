@@ -19,6 +19,9 @@ RULE = 3
 # Small enough for the cache, and for BLAS not to start threads.
 _CHUNK = 512
 
+# What that many cells give is summed at the nodes at once.
+_BATCH = 32 * _CHUNK
+
 _PLACE = ((0, 3, 5), (3, 1, 4), (5, 4, 2))
 
 
@@ -29,7 +32,7 @@ class NodalSums:
     Attributes
     ----------
     force : (steps, nodes, 3) int (sigma_ij dN/dx_j - b_i N) dV
-    stiffness : (nodes,) int |grad N|^2 dV times the modulus lame + 2 shear
+    stiffness : (nodes,) about int |grad N|^2 dV, times the modulus lame + 2 shear
     area : (nodes, 3) int dN/dx_j dV: nothing inside a solid, the outward area at its surface; N is
         the linear function at corners, since the quadratic one has no mean on a triangle
     area_parts : (nodes,) the sum of its sizes, cell by cell
@@ -69,34 +72,39 @@ def add_cells(
     linear = gradients.copy()
     linear[:, : element.n_corners] = element_type(element.family).gradients(xi)
     of_area = np.ascontiguousarray(linear.transpose(2, 1, 0))
-    size = len(sums.stiffness)
+    squares = by_axis**2
     modulus = material.lame + 2.0 * material.shear_modulus
-    for start in range(0, len(cells), _CHUNK):
-        part = cells[start : start + _CHUNK].T
-        at = rows[part].ravel()
-        inverse, volume = _geometry(_columns(points, part), by_axis, weights)
-        stiff = np.zeros(part.shape)
-        for d in range(3):
-            for e in range(d, 3):
-                metric = _dot(inverse[d], inverse[e]) * volume * (1.0 if d == e else 2.0)
-                stiff += (gradients[:, :, d] * gradients[:, :, e]).T @ metric
-        sums.stiffness[:] += np.bincount(at, modulus * stiff.ravel(), size)
-        weighed = [[volume * inverse[d][j] for j in range(3)] for d in range(3)]
-        own = [sum(of_area[d] @ weighed[d][j] for d in range(3)) for j in range(3)]
-        sums.area_parts[:] += np.bincount(at, np.sqrt(_dot(own, own)).ravel(), size)
-        for j in range(3):
-            sums.area[:, j] += np.bincount(at, own[j].ravel(), size)
-        for step, u in enumerate(displacement):
-            here = None
-            if len(state):
-                here = [values @ state[step][part, m] for m in range(state.shape[2])]
-            slope = _slope(_columns(u, part), by_axis, inverse)
-            stress = _stress(slope, material, here)
-            for i in range(3):
-                force = sum(by_axis[d].T @ _dot(stress[i], weighed[d]) for d in range(3))
-                if here is not None:
-                    force -= values.T @ (here[BODY + i] * volume)
-                sums.force[step, :, i] += np.bincount(at, force.ravel(), size)
+    size, n_steps = len(sums.stiffness), len(displacement)
+    for first in range(0, len(cells), _BATCH):
+        batch = cells[first : first + _BATCH].T
+        given = np.empty((5 + 3 * n_steps, *batch.shape))
+        for start in range(0, batch.shape[1], _CHUNK):
+            part = batch[:, start : start + _CHUNK]
+            out = given[:, :, start : start + _CHUNK]
+            inverse, volume = _geometry(_columns(points, part), by_axis, weights)
+            out[0] = sum(squares[d].T @ (_dot(inverse[d], inverse[d]) * volume) for d in range(3))
+            weighed = [[volume * inverse[d][j] for j in range(3)] for d in range(3)]
+            for j in range(3):
+                out[2 + j] = sum(of_area[d] @ weighed[d][j] for d in range(3))
+            np.sqrt(_dot(out[2:], out[2:]), out=out[1])
+            for step, u in enumerate(displacement):
+                here = None
+                if len(state):
+                    here = [values @ state[step][part, m] for m in range(state.shape[2])]
+                slope = _slope(_columns(u, part), by_axis, inverse)
+                stress = _stress(slope, material, here)
+                for i in range(3):
+                    force = out[5 + 3 * step + i]
+                    force[:] = sum(by_axis[d].T @ _dot(stress[i], weighed[d]) for d in range(3))
+                    if here is not None:
+                        force -= values.T @ (here[BODY + i] * volume)
+        at = rows[batch].ravel()
+        summed = [np.bincount(at, what.ravel(), size) for what in given]
+        sums.stiffness[:] += modulus * summed[0]
+        sums.area_parts[:] += summed[1]
+        sums.area[:] += np.stack(summed[2:5], axis=1)
+        for step in range(n_steps):
+            sums.force[step] += np.stack(summed[5 + 3 * step : 8 + 3 * step], axis=1)
 
 
 def _columns(values: FloatArray, part: IntArray) -> list[FloatArray]:
@@ -104,7 +112,7 @@ def _columns(values: FloatArray, part: IntArray) -> list[FloatArray]:
     return [values[part, i] - values[part[0], i] for i in range(3)]
 
 
-def _dot(a: list[FloatArray], b: list[FloatArray]) -> FloatArray:
+def _dot(a: list[FloatArray] | FloatArray, b: list[FloatArray] | FloatArray) -> FloatArray:
     return a[0] * b[0] + a[1] * b[1] + a[2] * b[2]
 
 
