@@ -40,7 +40,7 @@ def profile(examples):
 
 
 QUICK = 10
-THOROUGH = int(os.environ.get("FRONT3D_FUZZ", "60"))
+THOROUGH = int(os.environ.get("FRONT3D_FUZZ", "40"))
 
 
 def with_examples(names, quick):
@@ -226,7 +226,7 @@ unopened = false
 
 @pytest.mark.parametrize(
     "examples",
-    [pytest.param(40, id="quick"), pytest.param(1000, marks=pytest.mark.slow, id="thorough")],
+    [pytest.param(40, id="quick"), pytest.param(10 * THOROUGH, marks=pytest.mark.slow, id="thorough")],
 )
 def test_damaged_cases(tmp_path, worker, examples):
     """Values that say another case are not damage: they are kept as they are."""
