@@ -226,7 +226,10 @@ unopened = false
 
 @pytest.mark.parametrize(
     "examples",
-    [pytest.param(40, id="quick"), pytest.param(10 * THOROUGH, marks=pytest.mark.slow, id="thorough")],
+    [
+        pytest.param(40, id="quick"),
+        pytest.param(10 * THOROUGH, marks=pytest.mark.slow, id="thorough"),
+    ],
 )
 def test_damaged_cases(tmp_path, worker, examples):
     """Values that say another case are not damage: they are kept as they are."""
