@@ -258,6 +258,13 @@ def add_load_flags(parser: argparse.ArgumentParser) -> None:
         ("initial-strain", str, "NAME", "likewise, tensor components"),
     ):
         group.add_argument(f"--{flag}", type=kind, metavar=metavar, help=meaning)
+    group.add_argument(
+        "--acts-in",
+        action="append",
+        metavar="LOAD=STEP,..",
+        help="a load acts in these steps only, e.g. face_pressure=pressure (may be repeated; "
+        "default: every load acts in every step)",
+    )
 
 
 def case_of(arguments: argparse.Namespace) -> Case:
@@ -272,28 +279,43 @@ def case_of(arguments: argparse.Namespace) -> Case:
         if name not in ("result", "source")
         and (value := getattr(arguments, name, None)) is not None
     }
-    for name in ("steps", "methods", "compare", "combine", "symmetry_planes"):
+    for name in ("steps", "methods", "compare", "combine", "symmetry_planes", "acts_in"):
         if name in said:
             said[name] = tuple(said[name])
     if "displacement" in said:
         first, *others = said["displacement"]
         said["displacement"] = (first, *others) if others else first
     flags = Case(**said)
-    try:
-        _check(flags)
-    except CaseError as error:
-        arguments.parser.error(str(error))
     path, *more = (Path(name) for name in arguments.result)
     if more and any(p.suffix.lower() == ".toml" for p in (path, *more)):
         arguments.parser.error("found a case file among several files, expected it alone")
     if path.suffix.lower() == ".toml":
-        case = read_case(path).overridden_by(flags)
+        return _joined(arguments, path, flags)
+    _require(arguments, flags)
+    return Case(result=path, more=tuple(more) or None).overridden_by(flags)
+
+
+def _joined(arguments: argparse.Namespace, path: Path, flags: Case) -> Case:
+    """A case file under the flags, which need not make sense without it."""
+    case = read_case(path)
+    joined = case.overridden_by(flags)
+    try:
+        _check(joined)
+    except CaseError as error:
         try:
             _check(case)
-        except CaseError as error:
-            raise CaseError(f"{path}: {error}") from None
-        return case
-    return Case(result=path, more=tuple(more) or None).overridden_by(flags)
+        except CaseError as own:
+            raise CaseError(f"{path}: {own}") from None
+        arguments.parser.error(str(error))
+    return joined
+
+
+def _require(arguments: argparse.Namespace, flags: Case) -> None:
+    """A wrong call where the flags do not make sense."""
+    try:
+        _check(flags)
+    except CaseError as error:
+        arguments.parser.error(str(error))
 
 
 def _check(case: Case) -> None:
