@@ -43,7 +43,7 @@ def check_legacy(path: Path) -> None:
 def _check_structure(path: Path) -> None:
     with path.open("rb") as file, mmap.mmap(file.fileno(), 0, access=mmap.ACCESS_READ) as text:
         lines = text[:1024].split(b"\n")
-        version = re.fullmatch(rb"# vtk DataFile Version\s+(\d+)\.\d+\s*", lines[0])
+        version = re.fullmatch(rb"# vtk DataFile Version ([1-5])\.\d\s*", lines[0])
         if version is None or len(lines) < 4 or len(lines[1]) > 256:
             raise ValueError
         ascii_ = len(lines) > 2 and lines[2].strip().upper() == b"ASCII"
