@@ -36,6 +36,8 @@ RANKS = [
     {"output"},
     {"verification"},
     {"case"},
+    {"job"},
+    {"batch"},
     {"cli"},
     {"__main__"},
 ]

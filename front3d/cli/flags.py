@@ -266,6 +266,22 @@ def case_of(arguments: argparse.Namespace) -> Case:
     A value out of range is a wrong call (exit 2) when a flag gave it, and a wrong input
     (CaseError) when the case file did.
     """
+    flags = flags_said(arguments)
+    path, *more = (Path(name) for name in arguments.result)
+    if more and any(p.suffix.lower() == ".toml" for p in (path, *more)):
+        arguments.parser.error("found a case file among several files, expected it alone")
+    if path.suffix.lower() == ".toml":
+        case = read_case(path).overridden_by(flags)
+        try:
+            _check(case)
+        except CaseError as error:
+            raise CaseError(f"{path}: {error}") from None
+        return case
+    return Case(result=path, more=tuple(more) or None).overridden_by(flags)
+
+
+def flags_said(arguments: argparse.Namespace) -> Case:
+    """What the flags say; a value out of range is a wrong call (exit 2)."""
     said = {
         name: value
         for name in Case.__dataclass_fields__
@@ -283,17 +299,7 @@ def case_of(arguments: argparse.Namespace) -> Case:
         _check(flags)
     except CaseError as error:
         arguments.parser.error(str(error))
-    path, *more = (Path(name) for name in arguments.result)
-    if more and any(p.suffix.lower() == ".toml" for p in (path, *more)):
-        arguments.parser.error("found a case file among several files, expected it alone")
-    if path.suffix.lower() == ".toml":
-        case = read_case(path).overridden_by(flags)
-        try:
-            _check(case)
-        except CaseError as error:
-            raise CaseError(f"{path}: {error}") from None
-        return case
-    return Case(result=path, more=tuple(more) or None).overridden_by(flags)
+    return flags
 
 
 def _check(case: Case) -> None:

@@ -8,7 +8,7 @@ from pathlib import Path
 
 import front3d
 
-_FIRST_RUN = "first run: kernels are being compiled, about a minute; later runs start at once"
+FIRST_RUN = "first run: kernels are being compiled, about a minute; later runs start at once"
 
 
 @contextmanager
@@ -22,7 +22,7 @@ def progress_bar() -> Iterator[Callable[[str, float], None] | None]:
 
     console = Console(stderr=True)
     if not kernels_compiled():
-        console.print(_FIRST_RUN, style="dim")
+        console.print(FIRST_RUN, style="dim")
     with Progress(
         TextColumn("{task.description}"),
         BarColumn(),
