@@ -73,12 +73,14 @@ def _write_points(path: Path, cases: Sequence[tuple[str, Path]]) -> None:
     """The tables of the cases below each other, cell by cell as they are; what a case lacks is
     nan, or no text.
     """
-    from front3d.output.tables import FIRST_COLUMNS
-
-    columns: dict[str, None] = dict.fromkeys(FIRST_COLUMNS)
+    columns: dict[str, None] = {}
     headers = {_header(source): None for _, source in cases}
     for names in sorted(headers, key=len, reverse=True):
         columns |= dict.fromkeys(names)
+    if not columns:
+        from front3d.output.tables import FIRST_COLUMNS
+
+        columns = dict.fromkeys(FIRST_COLUMNS)
     absent = ["" if name in _TEXTS else "nan" for name in columns]
     with path.open("w", encoding="utf-8", newline="") as stream:
         writer = csv.writer(stream, lineterminator="\n")

@@ -4,7 +4,7 @@ import os
 from collections import Counter, deque
 from collections.abc import Callable, Iterator, Sequence
 from concurrent.futures import BrokenExecutor, CancelledError, Executor, Future
-from contextlib import ExitStack
+from contextlib import ExitStack, contextmanager
 from functools import partial
 from queue import SimpleQueue
 from types import TracebackType
@@ -109,11 +109,12 @@ class Processes:
 
     def submit(self, call: Callable[[], Any]) -> "Future[Any]":
         executor = self._idle.pop()
-        try:
-            future = executor.submit(call)
-        except BrokenExecutor:  # it died while it had nothing to do
-            executor = self._executor()
-            future = executor.submit(call)
+        with _interrupts_wait():
+            try:
+                future = executor.submit(call)
+            except BrokenExecutor:  # it died while it had nothing to do
+                executor = self._executor()
+                future = executor.submit(call)
         self._busy[future] = executor
         return future
 
@@ -139,24 +140,32 @@ class Processes:
         self._leash.close()
 
 
+@contextmanager
+def _interrupts_wait() -> Iterator[None]:
+    """A process started meanwhile never sees Ctrl-C, not even before `begin_worker`."""
+    import signal
+
+    if not hasattr(signal, "pthread_sigmask"):
+        yield
+        return
+    before = signal.pthread_sigmask(signal.SIG_BLOCK, {signal.SIGINT})
+    try:
+        yield
+    finally:
+        signal.pthread_sigmask(signal.SIG_SETMASK, before)
+
+
 def begin_worker(threads: int, leash: Any) -> None:
     """What a process does before its first case: its share of the cores, its end with the study.
 
     Runs before any numerical library is imported: they look at these names once.
     """
     import signal
-    import sys
     import threading
 
     signal.signal(signal.SIGINT, signal.SIG_IGN)  # the study ends its workers itself
     threading.Thread(target=_end_with, args=(leash,), daemon=True).start()
-    given = os.environ.get("NUMBA_NUM_THREADS", "")
-    threads = min(threads, int(given)) if given.isdigit() else threads
-    os.environ["NUMBA_NUM_THREADS"] = str(threads)
-    for name in ("OMP", "OPENBLAS", "MKL"):
-        os.environ.setdefault(f"{name}_NUM_THREADS", str(threads))
-    if "numba" in sys.modules:  # by the script that started the study
-        _use_threads(threads)
+    use_threads(threads)
 
 
 def _end_with(leash: Any) -> None:
@@ -168,11 +177,12 @@ def _end_with(leash: Any) -> None:
         os.kill(os.getpid(), signal.SIGTERM)
 
 
-def _use_threads(count: int) -> None:
-    import numba
-
-    most: int = getattr(numba.config, "NUMBA_NUM_THREADS")  # noqa: B009 (its stubs lack it)
-    numba.set_num_threads(max(1, min(count, most)))
+def use_threads(count: int) -> None:
+    """Have libraries that are imported later use `count` threads, or fewer where it was said so."""
+    for name in ("NUMBA", "OMP", "OPENBLAS", "MKL"):
+        variable = f"{name}_NUM_THREADS"
+        given = os.environ.get(variable, "")
+        os.environ[variable] = str(min(count, int(given)) if given.isdigit() else count)
 
 
 class Cluster:
@@ -232,7 +242,7 @@ def _in_cluster(call: Callable[[], Any]) -> Any:
     """A call on the threads that its worker was given."""
     from distributed import get_worker
 
-    _use_threads(get_worker().state.nthreads)
+    use_threads(get_worker().state.nthreads)
     return call()
 
 

@@ -9,10 +9,8 @@ from pathlib import Path
 from front3d.case import Case, read_case
 from front3d.errors import CaseError
 from front3d.job import check_constants
-from front3d.reading.files import FORMATS
 
 _CASE_FILE = ".toml"
-_RESULTS = {suffix for form in FORMATS for suffix in form.suffixes}
 
 
 @dataclass(frozen=True, slots=True)
@@ -93,7 +91,10 @@ def _in_folder(folder: Path) -> list[Path]:
     cases = [path for path in files if path.suffix.lower() == _CASE_FILE]
     if cases:
         return cases
-    results = [path for path in files if path.suffix.lower() in _RESULTS]
+    from front3d.reading.files import FORMATS
+
+    suffixes = {suffix for form in FORMATS for suffix in form.suffixes}
+    results = [path for path in files if path.suffix.lower() in suffixes]
     if len({path.suffix.lower() for path in results}) < 2:
         return results
     from front3d.output.summary import companions

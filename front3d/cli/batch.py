@@ -9,6 +9,7 @@ from time import monotonic
 from typing import TYPE_CHECKING
 
 from front3d.case import Case
+from front3d.caution import CAUTION
 from front3d.cli.batch_progress import duration, study_progress
 from front3d.cli.command import Command
 from front3d.cli.flags import add_evaluation_flags, flags_said
@@ -86,9 +87,9 @@ def run(arguments: argparse.Namespace) -> int:
             "needs all its steps in one case"
         )
     out: Path = arguments.out
+    study = _Study(Plan(out, tuple(members), arguments.pictures))
     with results_folder(out / CASES), alone(out):
         clear_unfinished(out / CASES)
-        study = _Study(Plan(out, tuple(members), arguments.pictures))
         try:
             _carry_out(study, arguments)
         except (KeyboardInterrupt, Front3DError):
@@ -96,6 +97,8 @@ def run(arguments: argparse.Namespace) -> int:
                 study.plan.gather(study.outcomes)
                 _say(_stopped(study))
             raise
+        finally:
+            clear_unfinished(out / CASES)
         study.plan.gather(study.outcomes)
     print("\n".join(_summary(study)))
     return 0 if all(outcome.done for outcome in study.outcomes) else 1
@@ -164,7 +167,6 @@ def _stopped(study: _Study) -> str:
 def _summary(study: _Study) -> list[str]:
     from front3d.batch.gathering import TABLES
     from front3d.batch.plan import CASES
-    from front3d.results import CAUTION
 
     done = [outcome for outcome in study.outcomes if outcome.done]
     failed = [outcome for outcome in study.outcomes if not outcome.done]
