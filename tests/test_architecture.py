@@ -19,7 +19,7 @@ RANKS = [
     {"elements", "units", "options"},
     {"solid"},
     {"steps"},
-    {"jit"},
+    {"jit", "threads"},
     {"reading"},
     {"crack"},
     {"fields"},

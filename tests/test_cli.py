@@ -9,13 +9,13 @@ from collections.abc import Callable
 from pathlib import Path
 from typing import Any
 
+import numba
 import pytest
 import pyvista as pv
 
 import front3d.pipeline
 from front3d.cli import main
-from front3d.cli import progress as progress_module
-from front3d.cli.progress import kernels_compiled, progress_bar
+from front3d.cli.progress import progress_bar
 from front3d.errors import CrackError
 from front3d.methods import METHODS
 from front3d.options import METHOD_NAMES, Options, Plane
@@ -312,14 +312,13 @@ class Terminal(io.StringIO):
 
 def test_progress_is_shown_on_a_terminal_only(monkeypatch: pytest.MonkeyPatch) -> None:
     monkeypatch.setenv("TERM", "xterm")
-    monkeypatch.setattr(progress_module, "kernels_compiled", lambda: False)
     screen = Terminal()
     monkeypatch.setattr(sys, "stderr", screen)
     with progress_bar() as show:
         assert show is not None
         show("finding the crack", 0.5)
-    assert "kernels are being compiled" in screen.getvalue()
     assert "finding the crack" in screen.getvalue()
+    assert "compiled" not in screen.getvalue()
     pipe = io.StringIO()
     monkeypatch.setattr(sys, "stderr", pipe)
     with progress_bar() as show:
@@ -327,9 +326,17 @@ def test_progress_is_shown_on_a_terminal_only(monkeypatch: pytest.MonkeyPatch) -
     assert pipe.getvalue() == ""
 
 
-def test_compiled_kernels_are_seen(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
-    monkeypatch.setenv("NUMBA_CACHE_DIR", str(tmp_path))
-    assert not kernels_compiled()
-    (tmp_path / "front3d").mkdir()
-    (tmp_path / "front3d" / "kernel.nbi").touch()
-    assert kernels_compiled()
+def test_compilation_is_said_while_it_happens(monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setenv("TERM", "xterm")
+    screen = Terminal()
+    monkeypatch.setattr(sys, "stderr", screen)
+    with progress_bar() as show:
+        assert show is not None
+        show("looking", 0.5)
+        numba.njit(quick_to_compile)(1.0)
+    assert "kernels are being compiled" in screen.getvalue()
+    assert "looking: compiling quick_to_compile" in screen.getvalue()
+
+
+def quick_to_compile(x: float) -> float:
+    return x + 1.0

@@ -1,15 +1,20 @@
 """Who does the work: this machine's processes, or a cluster; one loop over both."""
 
+import logging
 import os
+import socket
 from collections import Counter, deque
 from collections.abc import Callable, Iterator, Sequence
 from concurrent.futures import BrokenExecutor, CancelledError, Executor, Future
 from contextlib import ExitStack, contextmanager
 from functools import partial
+from pathlib import Path
 from queue import SimpleQueue
 from types import TracebackType
 from typing import Any, Protocol, Self, TypeVar
+from urllib.parse import urlsplit
 
+import front3d
 from front3d.batch.worker import TRIES, killed
 from front3d.errors import Front3DError
 
@@ -67,7 +72,7 @@ def run(
             else:
                 yield item, LostError(killed(TRIES))
         except pool.gave_up as error:
-            yield item, LostError(f"{killed(TRIES)} ({error})")
+            yield item, LostError(killed(getattr(error, "allowed_failures", 0) + 1))
         except CancelledError as error:
             raise Front3DError(
                 "the scheduler went away; the same command goes on from where it stopped"
@@ -200,15 +205,15 @@ class Cluster:
                 "pip install 'front3d[cluster]' installs it"
             ) from error
         self.gave_up: tuple[type[BaseException], ...] = (KilledWorker,)
+        _knock(address)
+        # What its log tells of lost connections is said here in a sentence.
+        logging.getLogger("distributed").setLevel(logging.CRITICAL)
         with ExitStack() as opened:
             try:
                 connect: Any = Client  # has no types
                 client = opened.enter_context(connect(address, timeout=20, set_as_default=False))
             except (OSError, ValueError, TimeoutError) as error:
-                raise Front3DError(
-                    f"{address}: no scheduler answers ({type(error).__name__}); expected the "
-                    "address that `dask scheduler` shows, such as tcp://host:8786"
-                ) from error
+                raise _no_scheduler(address, error) from error
             self._client = client
             # Not pure: the same call again is meant to be carried out again.
             self._executor = client.get_executor(pure=False)
@@ -238,12 +243,42 @@ class Cluster:
         self._opened.close()
 
 
+def _knock(address: str) -> None:
+    """Front3DError where nobody listens: a client that does not come about ends after long waits."""
+    place = urlsplit(address if "//" in address else f"//{address}")
+    if place.scheme not in ("", "tcp", "tls"):
+        return
+    try:
+        if place.hostname is None or place.port is None:
+            raise ValueError("no host and port in it")
+        socket.create_connection((place.hostname, place.port), timeout=10).close()
+    except (OSError, ValueError) as error:
+        raise _no_scheduler(address, error) from error
+
+
+def _no_scheduler(address: str, error: Exception) -> Front3DError:
+    return Front3DError(
+        f"{address}: no scheduler answers ({error}); expected the address that `dask scheduler` "
+        "shows, such as tcp://host:8786"
+    )
+
+
 def _in_cluster(call: Callable[[], Any]) -> Any:
     """A call on the threads that its worker was given."""
     from distributed import get_worker
 
     use_threads(get_worker().state.nthreads)
     return call()
+
+
+def kernels_compiled() -> bool:
+    """Whether kernels compiled earlier lie where numba keeps them: in a folder that was named, in
+    the package, or, where that cannot be written, in the user's cache.
+    """
+    chosen = os.environ.get("NUMBA_CACHE_DIR")
+    package = Path(front3d.__file__).parent
+    folders = [Path(chosen)] if chosen else [package, Path("~/.cache/numba").expanduser()]
+    return any(any(folder.rglob("*.nbi")) for folder in folders)
 
 
 def cores() -> int:

@@ -13,7 +13,7 @@ from front3d.caution import CAUTION
 from front3d.cli.batch_progress import duration, study_progress
 from front3d.cli.command import Command
 from front3d.cli.flags import add_evaluation_flags, flags_said
-from front3d.cli.progress import FIRST_RUN, kernels_compiled
+from front3d.cli.progress import FIRST_RUN
 from front3d.cli.words import number
 from front3d.errors import CaseError, Front3DError
 
@@ -114,6 +114,7 @@ def _check_call(arguments: argparse.Namespace, flags: Case) -> None:
 def _carry_out(study: _Study, arguments: argparse.Namespace) -> None:
     """Run what is to be run; outcomes are in `study` as they come."""
     from front3d.batch.plan import each_step
+    from front3d.batch.running import kernels_compiled
 
     if not arguments.each_step:
         study.outcomes += study.plan.known()

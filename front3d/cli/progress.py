@@ -1,28 +1,30 @@
 """Progress on a terminal, on stderr; nothing in a pipe."""
 
-import os
 import sys
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager
-from pathlib import Path
 
-import front3d
-
-FIRST_RUN = "first run: kernels are being compiled, about a minute; later runs start at once"
+FIRST_RUN = (
+    "kernels are being compiled, about half a minute in all; later runs find them on this machine"
+)
 
 
 @contextmanager
 def progress_bar() -> Iterator[Callable[[str, float], None] | None]:
-    """A callback (stage, fraction done) that moves a bar on stderr; None when nobody watches."""
+    """A callback (stage, fraction done) that moves a bar on stderr; None when nobody watches.
+
+    While kernels are compiled the bar says which.
+    """
     if not sys.stderr.isatty():
         yield None
         return
     from rich.console import Console
     from rich.progress import BarColumn, Progress, TextColumn, TimeElapsedColumn
 
+    from front3d.jit import compilations
+
     console = Console(stderr=True)
-    if not kernels_compiled():
-        console.print(FIRST_RUN, style="dim")
+    stage, told = "starting", False
     with Progress(
         TextColumn("{task.description}"),
         BarColumn(),
@@ -30,16 +32,19 @@ def progress_bar() -> Iterator[Callable[[str, float], None] | None]:
         console=console,
         transient=True,
     ) as bar:
-        task = bar.add_task("starting", total=1.0)
+        task = bar.add_task(stage, total=1.0)
 
-        def show(stage: str, fraction: float) -> None:
+        def show(now: str, fraction: float) -> None:
+            nonlocal stage
+            stage = now
             bar.update(task, description=stage, completed=fraction)
 
-        yield show
+        def say(kernel: str | None) -> None:
+            nonlocal told
+            if kernel and not told:
+                console.print(FIRST_RUN, style="dim")
+                told = True
+            bar.update(task, description=f"{stage}: compiling {kernel}" if kernel else stage)
 
-
-def kernels_compiled() -> bool:
-    """Whether a cache of compiled kernels is there already, where numba keeps it."""
-    package = Path(front3d.__file__).parent
-    chosen = os.environ.get("NUMBA_CACHE_DIR")
-    return any((Path(chosen) if chosen else package).rglob("*.nbi"))
+        with compilations(say):
+            yield show

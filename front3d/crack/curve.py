@@ -12,7 +12,7 @@ import numpy as np
 from scipy.interpolate import CubicSpline
 
 from front3d.arrays import FloatArray, frozen_floats
-from front3d.jit import kernel
+from front3d.jit import inlined, kernel
 
 CurveArrays = tuple[FloatArray, FloatArray, FloatArray, bool]
 """Knots, position, normal and closed of a `Curve`, as kernels take them."""
@@ -49,7 +49,7 @@ class Curve:
 
     def frames(self, s: FloatArray) -> tuple[FloatArray, FloatArray, FloatArray]:
         """Positions (n, 3), frames (n, 3, 3) with rows e1, e2, e3, and turning w (n, 3)."""
-        s = np.ascontiguousarray(s, float)
+        s = frozen_floats(s)
         place, frame, turning = (
             np.empty((len(s), 3)),
             np.empty((len(s), 3, 3)),
@@ -101,7 +101,7 @@ def _pieces(spline: CubicSpline) -> FloatArray:
     return padded.transpose(1, 0, 2)
 
 
-@kernel
+@inlined
 def locate(s: float, knots: FloatArray, closed: bool) -> tuple[int, float, float]:
     """Piece, offset in it, and the part of s beyond an end of an open curve."""
     last = knots[-1]
@@ -122,23 +122,23 @@ def locate(s: float, knots: FloatArray, closed: bool) -> tuple[int, float, float
     return low, s - knots[low], beyond
 
 
-@kernel
+@inlined
 def _value(c: FloatArray, t: float, k: int) -> float:
     """Component k of a piece with coefficients c, (4, 3), lowest power first."""
     return c[0, k] + t * (c[1, k] + t * (c[2, k] + t * c[3, k]))
 
 
-@kernel
+@inlined
 def _slope(c: FloatArray, t: float, k: int) -> float:
     return c[1, k] + t * (2.0 * c[2, k] + 3.0 * t * c[3, k])
 
 
-@kernel
+@inlined
 def _bend(c: FloatArray, t: float, k: int) -> float:
     return 2.0 * c[2, k] + 6.0 * t * c[3, k]
 
 
-@kernel
+@inlined
 def frame_at(
     s: float, curve: CurveArrays, place: FloatArray, frame: FloatArray, turning: FloatArray
 ) -> None:
@@ -181,7 +181,7 @@ def frame_at(
         turning[2] += frame[0, k] * (bend * along - _slope(n, t, k) / speed) / size
 
 
-@kernel
+@inlined
 def nearest(x: FloatArray, seed: float, curve: CurveArrays) -> tuple[float, float]:
     """Arc length of the point of the curve nearest to x, (3,), and its distance.
 

@@ -13,10 +13,10 @@ d/dx2 = i (d/dz - d/dzc).
 import numpy as np
 
 from front3d.arrays import FloatArray
-from front3d.jit import kernel
+from front3d.jit import inlined
 
 
-@kernel
+@inlined
 def polar(x1: float, x2: float, side: int) -> tuple[float, float]:
     """Radius and angle from e1; the angle passes pi where the cell's side of the crack asks it.
 
@@ -32,7 +32,7 @@ def polar(x1: float, x2: float, side: int) -> tuple[float, float]:
     return r, angle
 
 
-@kernel
+@inlined
 def near_tip(
     r: float,
     angle: float,
@@ -84,7 +84,7 @@ def near_tip(
     second[2, 2, 0], second[2, 2, 1], second[2, 2, 2] = ddf.imag, ddf.real, -ddf.imag
 
 
-@kernel
+@inlined
 def auxiliary(
     r: float,
     angle: float,

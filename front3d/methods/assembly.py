@@ -1,10 +1,11 @@
 """Nodal forces of a tube: cells and faces handed to the kernels, and summed at the nodes.
 
-Every cell writes its own forces and the sum is taken afterwards in a fixed order, so the result
-does not depend on the number of threads.
+Threads work on some cells at a time, each cell with forces of its own, and the sum is taken in the
+order of the cells: the result does not depend on the number of threads.
 """
 
-from collections.abc import Iterator
+from collections.abc import Callable
+from functools import partial
 
 import numpy as np
 
@@ -16,17 +17,27 @@ from front3d.methods.context import FrontContext
 from front3d.methods.face_loads import gauss_load, loaded_faces
 from front3d.methods.face_rules import PLAIN, graded_rule, touching_sides
 from front3d.methods.loading import free_extension, nodal_state
-from front3d.methods.nodal_forces import BENT, N_MODES, PRESSED, Rule, cell_forces, face_forces
+from front3d.methods.nodal_forces import (
+    BENT,
+    N_MODES,
+    PRESSED,
+    Rule,
+    cell_forces,
+    face_forces,
+    sum_at_nodes,
+)
 from front3d.methods.surfaces import SurfaceTerm
 from front3d.methods.terms import CURVATURE, FACE_LOAD, GRADIENT, included
 from front3d.methods.tube import Tube
+from front3d.solid import CellBlock
+from front3d.threads import in_order
 
 CELL_RULE, FACE_RULE = 3, 8
 """Gauss points a side.  In cells three give K within a hundredth of a per cent of six, at the
 front too, where q is flat."""
 
-_CHUNK = 4096
-"""Cells per call, which bounds the memory of the forces before they are summed at the nodes."""
+_PART = 512
+"""Cells per call: enough to share among threads, few enough to hold their forces before the sum."""
 
 
 class Assembly:
@@ -60,24 +71,8 @@ class Assembly:
     def add_cells(self) -> None:
         """Volume part of every cell in the tube; MeshError where a Jacobian is not positive."""
         for block, numbers in zip(self._solid.blocks, self._tube.cells, strict=True):
-            xi, weights = block.element.quadrature(CELL_RULE)
-            rule = (block.element.values(xi), block.element.gradients(xi), weights)
-            for part in _chunks(numbers):
-                cells = self._local(block.nodes[part])
-                out = self._room(cells)
-                status = np.zeros(len(cells), np.int64)
-                cell_forces(
-                    self._points, cells, *self._beside(cells), self._displacement, self._state,
-                    rule, self._curve, self._constants, out, status,
-                )  # fmt: skip
-                if status.any():
-                    bad = int(np.flatnonzero(status)[0])
-                    raise MeshError(
-                        f"{self._solid.source}: {block.kind} cell {part[bad]} near the front: the "
-                        f"Jacobian determinant is not positive at Gauss point {status[bad] - 1}; "
-                        "check its node order and mid-side nodes"
-                    )
-                self._sum(cells, out)
+            rule = _rule(block.element, *block.element.quadrature(CELL_RULE))
+            self._sum(partial(self._of_cells, block, rule), numbers)
 
     def add_faces(self, term: SurfaceTerm) -> None:
         """Surface part of the faces of one term."""
@@ -88,17 +83,48 @@ class Assembly:
         groups = np.stack([faces.block, faces.local, how], axis=1)
         for group in np.unique(groups, axis=0):
             b, local, touching = (int(k) for k in group)
-            block = self._solid.blocks[b]
-            rule, tangents = _face_rule(block.element, local, touching)
-            for part in _chunks(faces.cell[(groups == group).all(axis=1)]):
-                cells = self._local(block.nodes[part])
-                out = self._room(cells)
-                load = self._load(term, b, local, part, rule[0])
-                face_forces(
-                    self._points, cells, *self._beside(cells), self._displacement, self._state,
-                    rule, tangents, term.kind, load, self._curve, self._constants, out,
-                )  # fmt: skip
-                self._sum(cells, out)
+            rule, tangents = _face_rule(self._solid.blocks[b].element, local, touching)
+            work = partial(self._of_faces, term, b, local, rule, tangents)
+            self._sum(work, faces.cell[(groups == group).all(axis=1)])
+
+    def _of_cells(
+        self, block: CellBlock, rule: Rule, part: IntArray
+    ) -> tuple[IntArray, FloatArray]:
+        """Local nodes of some cells, and what `cell_forces` gives for them."""
+        cells = self._local(block.nodes[part])
+        out = self._room(cells)
+        status = np.zeros(len(cells), np.int64)
+        cell_forces(
+            self._points, cells, *self._beside(cells), self._displacement, self._state,
+            rule, self._curve, self._constants, out, status,
+        )  # fmt: skip
+        if status.any():
+            bad = int(np.flatnonzero(status)[0])
+            raise MeshError(
+                f"{self._solid.source}: {block.kind} cell {part[bad]} near the front: the "
+                f"Jacobian determinant is not positive at Gauss point {status[bad] - 1}; "
+                "check its node order and mid-side nodes"
+            )
+        return cells, out
+
+    def _of_faces(
+        self,
+        term: SurfaceTerm,
+        block: int,
+        local: int,
+        rule: Rule,
+        tangents: FloatArray,
+        part: IntArray,
+    ) -> tuple[IntArray, FloatArray]:
+        """Local nodes of some cells, and what `face_forces` gives for the face `local` of each."""
+        cells = self._local(self._solid.blocks[block].nodes[part])
+        out = self._room(cells)
+        face_forces(
+            self._points, cells, *self._beside(cells), self._displacement, self._state,
+            rule, tangents, term.kind, self._load(term, block, local, part, rule[0][:, 0]),
+            self._curve, self._constants, out,
+        )  # fmt: skip
+        return cells, out
 
     def _load(
         self, term: SurfaceTerm, block: int, local: int, cells: IntArray, values: FloatArray
@@ -118,7 +144,7 @@ class Assembly:
         return np.searchsorted(self._tube.nodes, cells)
 
     def _room(self, cells: IntArray) -> FloatArray:
-        return np.empty((len(cells), len(self._displacement), N_MODES, cells.shape[1], 3))
+        return np.empty((len(cells), len(self._displacement), cells.shape[1], 3 * N_MODES))
 
     def _beside(self, cells: IntArray) -> tuple[IntArray, FloatArray]:
         """Side of the crack of each cell, and arc length of its node nearest to the front."""
@@ -126,12 +152,13 @@ class Assembly:
         nearest = np.argmin(self._tube.r[cells], axis=1)
         return side, self._tube.s[cells[np.arange(len(cells)), nearest]]
 
-    def _sum(self, cells: IntArray, out: FloatArray) -> None:
-        rows, size = cells.ravel(), len(self._tube.nodes)
-        by_node = np.moveaxis(out, 0, 2).reshape(*self.forces.shape[:2], -1, 3)
-        for index in np.ndindex(*self.forces.shape[:2], 3):
-            step, mode, k = index
-            self.forces[step, mode, :, k] += np.bincount(rows, by_node[step, mode, :, k], size)
+    def _sum(
+        self, work: Callable[[IntArray], tuple[IntArray, FloatArray]], numbers: IntArray
+    ) -> None:
+        """Add what `work` gives for some cells to the forces at their nodes, in a fixed order."""
+        parts = [numbers[start : start + _PART] for start in range(0, len(numbers), _PART)]
+        for cells, out in in_order(work, parts):
+            sum_at_nodes(cells, out, self.forces)
 
 
 def _without_rigid_motion(
@@ -151,9 +178,10 @@ def _without_rigid_motion(
     return u - np.cross(rotation, x)
 
 
-def _chunks(cells: IntArray) -> Iterator[IntArray]:
-    for start in range(0, len(cells), _CHUNK):
-        yield cells[start : start + _CHUNK]
+def _rule(element: ElementType, xi: FloatArray, weights: FloatArray) -> Rule:
+    """The shape functions of an element at points xi, (q, 3), as the kernels take them."""
+    values, gradients = element.values(xi)[:, None], element.gradients(xi).transpose(0, 2, 1)
+    return frozen_floats(np.concatenate([values, gradients], axis=1)), frozen_floats(weights)
 
 
 def _face_rule(element: ElementType, local: int, touching: int) -> tuple[Rule, FloatArray]:
@@ -166,4 +194,4 @@ def _face_rule(element: ElementType, local: int, touching: int) -> tuple[Rule, F
     corners = element.nodes[list(members)]
     xi = face.values(eta) @ corners
     tangents = np.einsum("qnd,nx->qxd", face.gradients(eta), corners)
-    return (element.values(xi), element.gradients(xi), weights), np.ascontiguousarray(tangents)
+    return _rule(element, xi, weights), frozen_floats(tangents)

@@ -16,13 +16,12 @@ sigma* : eps, and T_k = - (sigma*_ij,k + C_ijmn,k eps_mn / 2) eps_ij - b_i u_i,k
 Sources: Li, Shih and Needleman (1985); Nakamura and Parks (1989); Gosz and Moran (2002).
 """
 
-import numba
 import numpy as np
 
 from front3d.arrays import FloatArray, IntArray
 from front3d.crack.curve import CurveArrays
 from front3d.fields.neartip import auxiliary
-from front3d.jit import parallel_kernel
+from front3d.jit import kernel
 from front3d.methods.point_kernels import (
     area_vector,
     displacement_gradient,
@@ -32,6 +31,7 @@ from front3d.methods.point_kernels import (
     look_at_front,
     map_point,
     product,
+    pull_of,
     spread,
     to_frame,
 )
@@ -48,8 +48,8 @@ from front3d.methods.state_kernels import (
 N_MODES = 4
 """K_I, K_II, K_III and J."""
 
-Rule = tuple[FloatArray, FloatArray, FloatArray]
-"""Shape functions (q, nodes), their reference gradients (q, nodes, 3), and weights (q,)."""
+Rule = tuple[FloatArray, FloatArray]
+"""Shape functions and their reference gradients, (q, 4, nodes), and weights, (q,)."""
 
 OUTER, PRESSED, CUT, BENT = 0, 1, 2, 3
 """What is known of a face: an outer surface under a given load or none; a crack face under a
@@ -57,7 +57,7 @@ given load; nothing, so that its traction is taken from the stresses; or a crack
 the plane of the front's frame, under a given load or none."""
 
 
-@parallel_kernel
+@kernel
 def cell_forces(
     points: FloatArray,
     cells: IntArray,
@@ -77,39 +77,39 @@ def cell_forces(
     (steps, points, 3); state (steps, points, N_COLUMNS), or empty where nothing varies and no
     force acts; constants: shear modulus and Poisson's ratio of the auxiliary fields, and 1, or 0
     to leave the turning of the frame, and the gradients of the state, out.  Fills out, (n, steps,
-    N_MODES, nodes, 3), and status, (n,): 0, or 1 + the Gauss point where the Jacobian is not
+    nodes, 3 N_MODES), and status, (n,): 0, or 1 + the Gauss point where the Jacobian is not
     positive.
     """
     shear, poisson, turn, weight = constants
-    values, gradients, weights = rule
-    for c in numba.prange(len(cells)):
-        here, slope, initial = np.zeros(N_COLUMNS), np.zeros((2, 3)), np.zeros((4, 3, 3))
-        here[LAME], here[SHEAR], here[RATIO] = first_constant(shear, poisson), shear, poisson
-        aux_strain = np.zeros((3, 3, 3))
-        vectors, matrices = np.zeros((4, 3)), np.zeros((8, 3, 3))
-        x, place, turning, T = vectors[0], vectors[1], vectors[2], vectors[3]
-        jacobian, inverse, frame, local = matrices[0], matrices[1], matrices[2], matrices[3]
-        raw, H, stress, P = matrices[4], matrices[5], matrices[6], matrices[7]
-        aux_gradient, aux_stress = np.empty((3, 3, 3)), np.empty((3, 3, 3))
-        divergence, incompatibility = np.empty((3, 3)), np.empty((3, 3, 2))
-        work, pull = np.empty((3, 3, 9)), np.empty((3, 4))
+    shapes, weights = rule
+    here, slope, initial = np.zeros(N_COLUMNS), np.zeros((2, 3)), np.zeros((4, 3, 3))
+    here[LAME], here[SHEAR], here[RATIO] = first_constant(shear, poisson), shear, poisson
+    aux_strain = np.zeros((3, 3, 3))
+    place, turning, T = np.zeros(3), np.zeros(3), np.zeros(3)
+    inverse, frame, local = np.zeros((3, 3)), np.zeros((3, 3)), np.zeros((3, 3))
+    strain, H, stress, P = np.zeros((3, 3)), np.zeros((3, 3)), np.zeros((3, 3)), np.zeros((3, 3))
+    at, moved = np.zeros((4, 3)), np.zeros((4, 3))
+    aux_gradient, aux_stress = np.empty((3, 3, 3)), np.empty((3, 3, 3))
+    divergence, incompatibility = np.empty((3, 3)), np.empty((3, 3, 2))
+    work, pull = np.empty((3, 3, 9)), np.empty((4, 3 * N_MODES))
+    for c in range(len(cells)):
         status[c] = 0
         out[c] = 0.0
         s = seed[c]
         for g in range(len(weights)):
-            det = map_point(points, cells[c], values[g], gradients[g], x, jacobian, inverse)
+            det = map_point(points, cells[c], shapes[g], at, inverse)
             if not det > 0.0:
                 status[c] = 1 + g
                 break
-            s, r, angle = look_at_front(x, s, side[c], curve, turn, place, frame, turning)
+            s, r, angle = look_at_front(at[0], s, side[c], curve, turn, place, frame, turning)
             to_frame(inverse, frame, local)
             for step in range(len(displacement)):
                 displacement_gradient(
-                    displacement[step], cells[c], gradients[g], frame, local, raw, H
+                    displacement[step], cells[c], shapes[g], frame, local, moved, H
                 )
                 if len(state):
                     state_at(
-                        state[step], cells[c], values[g], gradients[g], frame, local, weight,
+                        state[step], cells[c], shapes[g], frame, local, weight,
                         here, slope, initial,
                     )  # fmt: skip
                 if step == 0 or len(state):
@@ -139,10 +139,7 @@ def cell_forces(
                         configurational(
                             aux_strain[mode], aux_gradient[mode], H, 1.0, here, slope, initial, T
                         )
-                    spread(
-                        P, T, weights[g] * det, frame, local, values[g], gradients[g],
-                        pull, out[c, step, mode],
-                    )  # fmt: skip
+                    pull_of(P, T, weights[g] * det, frame, local, mode, pull)
                 # J: the actual state with itself, half of each product.
                 stress *= 0.5
                 eshelby(stress, H, stress, H, energy, P)
@@ -150,15 +147,13 @@ def cell_forces(
                 if len(state):
                     for i in range(3):
                         for j in range(3):
-                            raw[i, j] = 0.5 * (H[i, j] + H[j, i])
-                    configurational(raw, H, H, 0.5, here, slope, initial, T)
-                spread(
-                    P, T, weights[g] * det, frame, local, values[g], gradients[g],
-                    pull, out[c, step, 3],
-                )  # fmt: skip
+                            strain[i, j] = 0.5 * (H[i, j] + H[j, i])
+                    configurational(strain, H, H, 0.5, here, slope, initial, T)
+                pull_of(P, T, weights[g] * det, frame, local, 3, pull)
+                spread(pull, shapes[g], out[c, step])
 
 
-@parallel_kernel
+@kernel
 def face_forces(
     points: FloatArray,
     cells: IntArray,
@@ -184,38 +179,42 @@ def face_forces(
     sigma^aux_ij n_j u_i,k - (sigma : eps^aux) n_k comes with it; on a PRESSED crack face the
     auxiliary traction is zero but for what a ratio that varies brings, and q lies in the face.  On
     a CUT all of P_kj n_j counts.
-    Fills out, (n, steps, N_MODES, nodes, 3).
+    Fills out, (n, steps, nodes, 3 N_MODES).
     """
     shear, poisson, turn, weight = constants
-    values, gradients, weights = rule
-    for c in numba.prange(len(cells)):
-        here, slope, initial = np.zeros(N_COLUMNS), np.zeros((2, 3)), np.zeros((4, 3, 3))
-        here[LAME], here[SHEAR], here[RATIO] = first_constant(shear, poisson), shear, poisson
-        aux_strain, more = np.zeros((3, 3, 3)), 0.0
-        vectors, matrices = np.zeros((6, 3)), np.zeros((7, 3, 3))
-        x, place, turning, area = vectors[0], vectors[1], vectors[2], vectors[3]
-        T, traction = vectors[4], vectors[5]
-        jacobian, inverse, frame, local = matrices[0], matrices[1], matrices[2], matrices[3]
-        raw, H, stress = matrices[4], matrices[5], matrices[6]
-        P = np.zeros((3, 3))
-        aux_gradient, aux_stress = np.empty((3, 3, 3)), np.empty((3, 3, 3))
-        divergence, incompatibility = np.empty((3, 3)), np.empty((3, 3, 2))
-        work, pull = np.empty((3, 3, 9)), np.empty((3, 4))
+    shapes, weights = rule
+    here, slope, initial = np.zeros(N_COLUMNS), np.zeros((2, 3)), np.zeros((4, 3, 3))
+    here[LAME], here[SHEAR], here[RATIO] = first_constant(shear, poisson), shear, poisson
+    aux_strain, more = np.zeros((3, 3, 3)), 0.0
+    place, turning, area, T, traction = (
+        np.zeros(3),
+        np.zeros(3),
+        np.zeros(3),
+        np.zeros(3),
+        np.zeros(3),
+    )
+    inverse, frame, local = np.zeros((3, 3)), np.zeros((3, 3)), np.zeros((3, 3))
+    H, stress, P = np.zeros((3, 3)), np.zeros((3, 3)), np.zeros((3, 3))
+    at, moved = np.zeros((4, 3)), np.zeros((4, 3))
+    aux_gradient, aux_stress = np.empty((3, 3, 3)), np.empty((3, 3, 3))
+    divergence, incompatibility = np.empty((3, 3)), np.empty((3, 3, 2))
+    work, pull = np.empty((3, 3, 9)), np.empty((4, 3 * N_MODES))
+    for c in range(len(cells)):
         out[c] = 0.0
         s = seed[c]
         for g in range(len(weights)):
-            map_point(points, cells[c], values[g], gradients[g], x, jacobian, inverse)
-            s, r, angle = look_at_front(x, s, side[c], curve, turn, place, frame, turning)
+            map_point(points, cells[c], shapes[g], at, inverse)
+            s, r, angle = look_at_front(at[0], s, side[c], curve, turn, place, frame, turning)
             to_frame(inverse, frame, local)
-            area_vector(jacobian, tangents[g], frame, weights[g], area)
+            area_vector(at, tangents[g], frame, weights[g], area)
             size = np.sqrt(area[0] ** 2 + area[1] ** 2 + area[2] ** 2)
             for step in range(len(displacement)):
                 displacement_gradient(
-                    displacement[step], cells[c], gradients[g], frame, local, raw, H
+                    displacement[step], cells[c], shapes[g], frame, local, moved, H
                 )
                 if len(state):
                     state_at(
-                        state[step], cells[c], values[g], gradients[g], frame, local, weight,
+                        state[step], cells[c], shapes[g], frame, local, weight,
                         here, slope, initial,
                     )  # fmt: skip
                 if step == 0 or len(state):
@@ -242,8 +241,8 @@ def face_forces(
                     T[:] = 0.0
                     for k in range(3):
                         for i in range(3):
-                            moved = H[i, k] if mode == 3 else aux_gradient[mode, i, k]
-                            T[k] -= traction[i] * moved
+                            shift = H[i, k] if mode == 3 else aux_gradient[mode, i, k]
+                            T[k] -= traction[i] * shift
                             if kind == PRESSED and mode < 3:
                                 trace = aux_gradient[mode, 0, 0] + aux_gradient[mode, 1, 1]
                                 T[k] -= more * trace * area[i] * H[i, k]
@@ -259,8 +258,20 @@ def face_forces(
                                     if mode < 3:
                                         T[k] -= aux_stress[mode, i, j] * area[j] * H[i, k]
                                     if kind == CUT:
-                                        moved = H[i, k] if mode == 3 else aux_gradient[mode, i, k]
-                                        T[k] -= stress[i, j] * area[j] * moved
-                    spread(
-                        P, T, 1.0, frame, local, values[g], gradients[g], pull, out[c, step, mode]
-                    )
+                                        shift = H[i, k] if mode == 3 else aux_gradient[mode, i, k]
+                                        T[k] -= stress[i, j] * area[j] * shift
+                    pull_of(P, T, 1.0, frame, local, mode, pull)
+                spread(pull, shapes[g], out[c, step])
+
+
+@kernel
+def sum_at_nodes(cells: IntArray, of_cells: FloatArray, forces: FloatArray) -> None:
+    """Add forces of cells, (n, steps, nodes, 3 N_MODES), to those at nodes, (steps, N_MODES,
+    points, 3).
+    """
+    for c in range(len(cells)):
+        for step in range(forces.shape[0]):
+            for n in range(cells.shape[1]):
+                for mode in range(N_MODES):
+                    for k in range(3):
+                        forces[step, mode, cells[c, n], k] += of_cells[c, step, n, 3 * mode + k]

@@ -3,41 +3,47 @@
 from front3d.arrays import FloatArray, IntArray
 from front3d.crack.curve import CurveArrays, frame_at, nearest
 from front3d.fields.neartip import polar
-from front3d.jit import kernel
+from front3d.jit import inlined
 
 
-@kernel
+@inlined
+def interpolate(field: FloatArray, cell: IntArray, shape: FloatArray, at: FloatArray) -> None:
+    """A vector field (points, 3) and its derivatives at one Gauss point of a cell.
+
+    shape, (4, nodes), holds phi_n and dphi_n/dxi_d, and so does `at`, (4, 3), the field and its
+    derivatives.
+    """
+    for row in range(4):
+        a, b, c = 0.0, 0.0, 0.0
+        for n in range(len(cell)):
+            weight = shape[row, n]
+            a += weight * field[cell[n], 0]
+            b += weight * field[cell[n], 1]
+            c += weight * field[cell[n], 2]
+        at[row, 0], at[row, 1], at[row, 2] = a, b, c
+
+
+@inlined
 def map_point(
-    points: FloatArray,
-    cell: IntArray,
-    values: FloatArray,
-    gradients: FloatArray,
-    x: FloatArray,
-    jacobian: FloatArray,
-    inverse: FloatArray,
+    points: FloatArray, cell: IntArray, shape: FloatArray, at: FloatArray, inverse: FloatArray
 ) -> float:
-    """Position, Jacobian dx_i/dxi_d and its inverse at one Gauss point; returns its determinant."""
-    x[:] = 0.0
-    jacobian[:] = 0.0
-    for n in range(len(cell)):
-        for i in range(3):
-            value = points[cell[n], i]
-            x[i] += values[n] * value
-            for d in range(3):
-                jacobian[i, d] += value * gradients[n, d]
+    """Position and dx_i/dxi_d at one Gauss point, at[0, i] and at[1 + d, i], and the inverse
+    dxi_d/dx_i, inverse[d, i]; returns the determinant of the Jacobian.
+    """
+    interpolate(points, cell, shape, at)
     for i in range(3):
         a, b = (i + 1) % 3, (i + 2) % 3
         for j in range(3):
-            c, d = (j + 1) % 3, (j + 2) % 3
-            inverse[j, i] = jacobian[a, c] * jacobian[b, d] - jacobian[a, d] * jacobian[b, c]
+            c, d = 1 + (j + 1) % 3, 1 + (j + 2) % 3
+            inverse[j, i] = at[c, a] * at[d, b] - at[d, a] * at[c, b]
     det = 0.0
     for d in range(3):
-        det += jacobian[0, d] * inverse[d, 0]
+        det += at[1 + d, 0] * inverse[d, 0]
     inverse /= det
     return det
 
 
-@kernel
+@inlined
 def look_at_front(
     x: FloatArray,
     seed: float,
@@ -62,7 +68,7 @@ def look_at_front(
     return s, r, angle
 
 
-@kernel
+@inlined
 def to_frame(inverse: FloatArray, frame: FloatArray, local: FloatArray) -> None:
     """local[d, j] = dxi_d/dx_j along the frame's own axes."""
     for d in range(3):
@@ -74,39 +80,34 @@ def to_frame(inverse: FloatArray, frame: FloatArray, local: FloatArray) -> None:
             )
 
 
-@kernel
+@inlined
 def first_constant(shear: float, poisson: float) -> float:
     """Lame's first constant."""
     return 2.0 * shear * poisson / (1.0 - 2.0 * poisson)
 
 
-@kernel
+@inlined
 def displacement_gradient(
     displacement: FloatArray,
     cell: IntArray,
-    gradients: FloatArray,
+    shape: FloatArray,
     frame: FloatArray,
     local: FloatArray,
-    raw: FloatArray,
+    at: FloatArray,
     gradient: FloatArray,
 ) -> None:
     """gradient[i, j] = du_i/dx_j in the frame, from nodal displacements (points, 3)."""
-    raw[:] = 0.0
-    for n in range(len(cell)):
-        for i in range(3):
-            value = displacement[cell[n], i]
-            for d in range(3):
-                raw[i, d] += value * gradients[n, d]
+    interpolate(displacement, cell, shape, at)
     for i in range(3):
         for j in range(3):
             total = 0.0
             for k in range(3):
-                part = raw[k, 0] * local[0, j] + raw[k, 1] * local[1, j] + raw[k, 2] * local[2, j]
+                part = at[1, k] * local[0, j] + at[2, k] * local[1, j] + at[3, k] * local[2, j]
                 total += frame[i, k] * part
             gradient[i, j] = total
 
 
-@kernel
+@inlined
 def hooke(gradient: FloatArray, lame: float, shear: float, stress: FloatArray) -> float:
     """C : eps from a displacement gradient; returns half its product with the strain."""
     trace = gradient[0, 0] + gradient[1, 1] + gradient[2, 2]
@@ -121,7 +122,7 @@ def hooke(gradient: FloatArray, lame: float, shear: float, stress: FloatArray) -
     return energy
 
 
-@kernel
+@inlined
 def product(aux_stress: FloatArray, gradient: FloatArray) -> float:
     """sigma^aux_ij u_i,j, or sigma*_ij of it."""
     total = 0.0
@@ -131,7 +132,7 @@ def product(aux_stress: FloatArray, gradient: FloatArray) -> float:
     return total
 
 
-@kernel
+@inlined
 def eshelby(
     stress: FloatArray,
     gradient: FloatArray,
@@ -150,40 +151,43 @@ def eshelby(
         P[k, k] -= energy
 
 
-@kernel
-def spread(
+@inlined
+def pull_of(
     P: FloatArray,
     T: FloatArray,
     factor: float,
     frame: FloatArray,
     local: FloatArray,
-    values: FloatArray,
-    gradients: FloatArray,
+    mode: int,
     pull: FloatArray,
-    forces: FloatArray,
 ) -> None:
-    """Add factor (P_kj dphi_n/dx_j + T_k phi_n), turned to global axes, to forces, (nodes, 3)."""
+    """Put factor (T_k, P_kj dxi_d/dx_j) along global axes, into columns 3 mode + k of pull.
+
+    pull, (4, 3 modes), holds what multiplies phi_n, and dphi_n/dxi_d.
+    """
     for k in range(3):
         for d in range(3):
             total = 0.0
             for m in range(3):
                 part = P[m, 0] * local[d, 0] + P[m, 1] * local[d, 1] + P[m, 2] * local[d, 2]
                 total += frame[m, k] * part
-            pull[k, d] = factor * total
-        pull[k, 3] = factor * (frame[0, k] * T[0] + frame[1, k] * T[1] + frame[2, k] * T[2])
-    for n in range(len(values)):
-        for k in range(3):
-            forces[n, k] += (
-                pull[k, 0] * gradients[n, 0]
-                + pull[k, 1] * gradients[n, 1]
-                + pull[k, 2] * gradients[n, 2]
-                + pull[k, 3] * values[n]
-            )
+            pull[1 + d, 3 * mode + k] = factor * total
+        turned = frame[0, k] * T[0] + frame[1, k] * T[1] + frame[2, k] * T[2]
+        pull[0, 3 * mode + k] = factor * turned
 
 
-@kernel
+@inlined
+def spread(pull: FloatArray, shape: FloatArray, forces: FloatArray) -> None:
+    """Add what pulls at a Gauss point, all modes at once, to the forces, (nodes, 3 modes)."""
+    for n in range(shape.shape[1]):
+        value, a, b, c = shape[0, n], shape[1, n], shape[2, n], shape[3, n]
+        for m in range(pull.shape[1]):
+            forces[n, m] += value * pull[0, m] + a * pull[1, m] + b * pull[2, m] + c * pull[3, m]
+
+
+@inlined
 def area_vector(
-    jacobian: FloatArray, tangents: FloatArray, frame: FloatArray, weight: float, area: FloatArray
+    at: FloatArray, tangents: FloatArray, frame: FloatArray, weight: float, area: FloatArray
 ) -> None:
     """Outward area vector of a face at a Gauss point, in the frame, times its weight."""
     for i in range(3):
@@ -192,10 +196,10 @@ def area_vector(
         a, b = (k + 1) % 3, (k + 2) % 3
         a0, a1, b0, b1 = 0.0, 0.0, 0.0, 0.0
         for d in range(3):
-            a0 += jacobian[a, d] * tangents[d, 0]
-            a1 += jacobian[a, d] * tangents[d, 1]
-            b0 += jacobian[b, d] * tangents[d, 0]
-            b1 += jacobian[b, d] * tangents[d, 1]
+            a0 += at[1 + d, a] * tangents[d, 0]
+            a1 += at[1 + d, a] * tangents[d, 1]
+            b0 += at[1 + d, b] * tangents[d, 0]
+            b1 += at[1 + d, b] * tangents[d, 1]
         component = weight * (a0 * b1 - b0 * a1)
         for i in range(3):
             area[i] += frame[i, k] * component

@@ -6,7 +6,7 @@ What varies is the state: at every node the constants, the initial stress and th
 import numpy as np
 
 from front3d.arrays import FloatArray, IntArray
-from front3d.jit import kernel
+from front3d.jit import inlined
 
 N_COLUMNS = 12
 LAME, SHEAR, INITIAL, BODY, RATIO = 0, 1, 2, 8, 11
@@ -14,12 +14,11 @@ LAME, SHEAR, INITIAL, BODY, RATIO = 0, 1, 2, 8, 11
 xz), the body force, and Poisson's ratio at the nearest point of the front."""
 
 
-@kernel
+@inlined
 def state_at(
     state: FloatArray,
     cell: IntArray,
-    values: FloatArray,
-    gradients: FloatArray,
+    shape: FloatArray,
     frame: FloatArray,
     local: FloatArray,
     weight: float,
@@ -37,9 +36,8 @@ def state_at(
     for n in range(len(cell)):
         for m in range(N_COLUMNS):
             value = state[cell[n], m]
-            reference[m, 0] += value * values[n]
-            for d in range(3):
-                reference[m, 1 + d] += value * gradients[n, d]
+            for row in range(4):
+                reference[m, row] += value * shape[row, n]
     for m in range(N_COLUMNS):
         here[m] = reference[m, 0]
         for j in range(3):
@@ -60,7 +58,7 @@ def state_at(
             here[BODY + i] += frame[i, j] * reference[BODY + j, 0]
 
 
-@kernel
+@inlined
 def _place(component: int, value: float, tensor: FloatArray) -> None:
     """Put one of xx, yy, zz, xy, yz, xz into a symmetric tensor."""
     if component < 3:
@@ -71,7 +69,7 @@ def _place(component: int, value: float, tensor: FloatArray) -> None:
         tensor[i, j] = tensor[j, i] = value
 
 
-@kernel
+@inlined
 def _turn(frame: FloatArray, tensor: FloatArray) -> None:
     """The tensor along the axes of the frame, in place."""
     half = np.zeros((3, 3))
@@ -86,7 +84,7 @@ def _turn(frame: FloatArray, tensor: FloatArray) -> None:
                 tensor[i, j] += half[i, k] * frame[j, k]
 
 
-@kernel
+@inlined
 def local_auxiliary(
     aux_gradient: FloatArray,
     aux_second: FloatArray,
@@ -126,7 +124,7 @@ def local_auxiliary(
     return more
 
 
-@kernel
+@inlined
 def configurational(
     strain: FloatArray,
     gradient: FloatArray,
