@@ -22,7 +22,8 @@ from front3d.batch.finished import (
 )
 from front3d.batch.identity import identity_of, program_version
 from front3d.batch.plan import Plan
-from front3d.batch.running import LostError, Processes, run
+from front3d.batch.processes import Processes
+from front3d.batch.running import LostError, run
 from front3d.batch.study import Member, by_step, files_of, members_of, names_of
 from front3d.batch.worker import Task
 from front3d.case import Case

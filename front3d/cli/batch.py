@@ -18,9 +18,10 @@ from front3d.cli.words import number
 from front3d.errors import CaseError, Front3DError
 
 if TYPE_CHECKING:
+    from front3d.batch.cluster import Cluster
     from front3d.batch.finished import Outcome
     from front3d.batch.plan import Plan
-    from front3d.batch.running import Cluster, Processes
+    from front3d.batch.processes import Processes
 
 _SHOWN = 10
 """Failed cases that are listed at the end; cases.csv has all of them."""
@@ -114,7 +115,7 @@ def _check_call(arguments: argparse.Namespace, flags: Case) -> None:
 def _carry_out(study: _Study, arguments: argparse.Namespace) -> None:
     """Run what is to be run; outcomes are in `study` as they come."""
     from front3d.batch.plan import each_step
-    from front3d.batch.running import kernels_compiled
+    from front3d.batch.processes import kernels_compiled
 
     if not arguments.each_step:
         study.outcomes += study.plan.known()
@@ -140,7 +141,8 @@ def _carry_out(study: _Study, arguments: argparse.Namespace) -> None:
 def _pool(
     study: _Study, arguments: argparse.Namespace
 ) -> "AbstractContextManager[Processes] | AbstractContextManager[Cluster]":
-    from front3d.batch.running import Cluster, Processes, cores
+    from front3d.batch.cluster import Cluster
+    from front3d.batch.processes import Processes, cores
 
     if arguments.scheduler is not None:
         cluster = Cluster(arguments.scheduler)
