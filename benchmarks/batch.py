@@ -21,7 +21,6 @@ from pathlib import Path
 from typing import Any
 
 BAR = 0.15
-WAYS = ("plain loop", "processes", "Dask cluster")
 
 
 def make_cases(folder: Path, count: int, refine: float) -> list[Path]:
@@ -103,11 +102,17 @@ def measure(count: int, refine: float, workers: int) -> dict[str, float]:
     with tempfile.TemporaryDirectory() as name:
         folder = Path(name)
         cases = make_cases(folder / "cases", count, refine)
-        seconds = {
-            "plain loop": plain(cases, folder / "plain", workers),
-            "processes": batch(folder / "cases", folder / "own", "--processes", str(workers)),
-            "Dask cluster": on_cluster(folder / "cases", folder / "dask", workers),
+        ways = {
+            "plain loop": lambda: plain(cases, folder / "plain", workers),
+            "processes": lambda: batch(
+                folder / "cases", folder / "own", "--processes", str(workers)
+            ),
+            "Dask cluster": lambda: on_cluster(folder / "cases", folder / "dask", workers),
         }
+        seconds = {}
+        for way, measured in ways.items():
+            seconds[way] = measured()
+            print(f"{way}: {seconds[way]:.1f} s, load {os.getloadavg()[0]:.1f}", file=sys.stderr)
         for path in cases:
             single = (folder / "plain" / path.stem / "points.csv").read_bytes()
             for way in ("own", "dask"):
@@ -125,10 +130,10 @@ def main() -> int:
     arguments = parser.parse_args()
     workers = os.cpu_count() or 1
     seconds = measure(arguments.cases, arguments.refine, workers)
-    over = {way: seconds[way] / seconds["plain loop"] - 1 for way in WAYS[1:]}
+    over = {way: seconds[way] / seconds["plain loop"] - 1 for way in list(seconds)[1:]}
     print(f"{arguments.cases} cases on {workers} cores, load {os.getloadavg()[0]:.1f}")
     print(f"{'':14}{'seconds':>9}{'overhead':>10}{'bar':>7}")
-    for way in WAYS:
+    for way in seconds:
         cost = f"{over[way]:10.1%}{BAR:7.0%}" if way in over else ""
         print(f"{way:14}{seconds[way]:9.1f}{cost}")
     if arguments.json:

@@ -19,6 +19,7 @@ class Cluster:
     room = True
 
     def __init__(self, address: str) -> None:
+        _knock(address)
         try:
             from distributed import Client
             from distributed.scheduler import KilledWorker
@@ -28,7 +29,6 @@ class Cluster:
                 "pip install 'front3d[cluster]' installs it"
             ) from error
         self.gave_up: tuple[type[BaseException], ...] = (KilledWorker,)
-        _knock(address)
         # What its log tells of lost connections is said here in a sentence.
         logging.getLogger("distributed").setLevel(logging.CRITICAL)
         with ExitStack() as opened:
