@@ -45,18 +45,15 @@ class Processes:
         with _interrupts_wait():
             try:
                 future = executor.submit(call)
-            except BrokenExecutor:  # it died while it had nothing to do
+            except BrokenExecutor:  # its process died, with its last case or idle since
+                executor.shutdown(wait=False)
                 executor = self._executor()
                 future = executor.submit(call)
         self._busy[future] = executor
         return future
 
     def ended(self, future: "Future[Any]") -> None:
-        executor = self._busy.pop(future)
-        if isinstance(future.exception(), BrokenExecutor):
-            executor.shutdown(wait=False)
-            executor = self._executor()
-        self._idle.append(executor)
+        self._idle.append(self._busy.pop(future))
 
     def __enter__(self) -> Self:
         return self
