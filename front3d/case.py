@@ -76,6 +76,7 @@ class Case:
     rotation_point: Vector | None = None
     initial_stress: str | None = None
     initial_strain: str | None = None
+    acts_in: tuple[str, ...] | None = None
     temperature: str | None = None
     reference_temperature: float | None = None
     expansion: float | tuple[Row, ...] | None = None
@@ -338,6 +339,7 @@ _KEYS: Mapping[str, Any] = {
         "rotation_point": _vector,
         "initial_stress": _text,
         "initial_strain": _text,
+        "acts_in": _list_of(_text, 'a list of texts such as ["face_pressure = pressure"]'),
     },
     "temperature": {
         "temperature": _text,

@@ -64,6 +64,8 @@ class Loads:
     elastic_table : rows (temperature, Young's modulus, Poisson's ratio), in place of the constants
     regions : the materials of a solid of several
     region_array : cell array of the numbers of the regions; None: the physical groups of the file
+    acts_in : loads that act in some steps only, such as "face_pressure = pressure, upset"; all
+        others act in every step
     """
 
     face_array: str | None = None
@@ -83,6 +85,7 @@ class Loads:
     elastic_table: tuple[Row, ...] | None = None
     regions: tuple[Region, ...] = ()
     region_array: str | None = None
+    acts_in: tuple[str, ...] = ()
 
     def __post_init__(self) -> None:
         for name in _VECTORS:
@@ -105,6 +108,7 @@ class Loads:
             object.__setattr__(self, "face_polynomial", found)
         regions = tuple(r if isinstance(r, Region) else _region(r) for r in self.regions)
         object.__setattr__(self, "regions", regions)
+        object.__setattr__(self, "acts_in", _texts(self.acts_in))
         self._check_tables()
         self._check_partners()
 
@@ -150,6 +154,23 @@ class Loads:
             )
         if self.density and self.gravity is None and self.rotation is None:
             raise CaseError("found a density alone, expected gravity or rotation")
+        for name in self.steps_of_loads:
+            if name not in _PRESSURES and getattr(self, name) is None:
+                raise CaseError(f"acts in: found {_words(name)}, which is not given, expected both")
+            if name == "temperature" and self.elastic_table:
+                raise CaseError(
+                    "acts in: found a temperature of some steps only, and constants that depend on "
+                    "it, expected the temperature in every step"
+                )
+
+    @property
+    def steps_of_loads(self) -> dict[str, tuple[str, ...]]:
+        """The steps in which a load acts, of the loads that do not act in all."""
+        return dict(_acting(text) for text in self.acts_in)
+
+    def acts(self, load: str, step: str) -> bool:
+        """Whether a load, by the name of its option, acts in a step."""
+        return step in self.steps_of_loads.get(load, (step,))
 
     @property
     def arrays(self) -> tuple[str, ...]:
@@ -179,11 +200,37 @@ class Loads:
 PHYSICAL_GROUP = "physical group"
 """Name of the cell array with the numbers of the groups that a file names itself."""
 
+_PRESSURES = ("face_pressure", "surface_pressure")
+"""Loads that stand in `Options`."""
+
+_SCOPED = (
+    *_PRESSURES,
+    *("face_polynomial", "face_array", "gravity", "rotation"),
+    *("temperature", "initial_stress", "initial_strain"),
+)
+
 _VECTORS = ("depth_direction", "depth_from", "gravity", "rotation_axis", "rotation_point")
 
 
 def _words(name: str) -> str:
     return name.replace("_", " ")
+
+
+def _texts(value: Any) -> tuple[str, ...]:
+    return (value,) if isinstance(value, str) else tuple(value)
+
+
+def _acting(text: str) -> tuple[str, tuple[str, ...]]:
+    """Name of a load and of the steps in which it acts."""
+    name, equals, rest = text.partition("=")
+    load = name.strip().replace("-", "_").replace(" ", "_")
+    steps = tuple(part.strip() for part in rest.split(","))
+    if not equals or load not in _SCOPED or not all(steps):
+        raise CaseError(
+            f"acts in: found {text!r}, expected a load and its steps, such as 'face_pressure = "
+            f"pressure, upset'; loads are {', '.join(_SCOPED)}"
+        )
+    return load, steps
 
 
 def _number(name: str, value: Any) -> float:

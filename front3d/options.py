@@ -159,6 +159,11 @@ class Options:
                 raise CaseError(
                     f"{name.replace('_', ' ')}: found {value}, expected a number in the stress unit"
                 )
+        for name in self.loads.steps_of_loads:
+            if getattr(self, name, None) == 0.0:
+                raise CaseError(
+                    f"acts in: found {name.replace('_', ' ')}, which is not given, expected both"
+                )
         if self.expected_stress is not None and not (
             isfinite(self.expected_stress) and self.expected_stress != 0
         ):

@@ -32,7 +32,7 @@ from front3d.sanity.displacements import (
 )
 from front3d.sanity.faces import face_warnings, pair_normals, stress_warnings
 from front3d.solid import Constants, Material, Solid, Step
-from front3d.steps import choose
+from front3d.steps import choose, require_steps_of_loads
 from front3d.units import Units
 
 Progress = Callable[[str, float], None]
@@ -67,6 +67,7 @@ def evaluate_solid(
     requests = tuple(parse(text) for text in options.compare)
     chosen = choose(solid, options.steps, options.combine)
     steps = chosen.reported
+    require_steps_of_loads(solid, options.loads)
     timed = len({step.time for step in solid.steps}) > 1
     refuse_coordinates(solid, steps)
     report("finding the crack", 0.0)
@@ -234,7 +235,7 @@ def _front_result(
 
 
 def _warnings(solid: Solid, model: CrackModel) -> tuple[str, ...]:
-    notes = list(solid.notes)
+    notes = [*solid.notes, *model.warnings]
     for patch in model.unopened:
         notes.append(
             f"{len(patch.upper)} pairs of coincident faces whose sides never part were left alone "

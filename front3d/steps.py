@@ -8,6 +8,7 @@ import numpy as np
 from front3d.arrays import FloatArray, frozen_floats
 from front3d.combination import Combination, parse_all
 from front3d.errors import CaseError
+from front3d.loads import Loads
 from front3d.solid import Solid, Step
 
 
@@ -62,6 +63,18 @@ def choose(solid: Solid, names: Sequence[str] | None, combine: Sequence[str]) ->
                 rows[k, order.index(name)] = factor
         rows = frozen_floats(rows)
     return Chosen(tuple(by_name[name] for name in order), tuple(reported), rows)
+
+
+def require_steps_of_loads(solid: Solid, loads: Loads) -> None:
+    """CaseError where a load is said to act in a step that the solid has not."""
+    known = [step.name for step in solid.steps]
+    for load, names in loads.steps_of_loads.items():
+        for name in names:
+            if name not in known:
+                raise CaseError(
+                    f"acts in: {load.replace('_', ' ')}: found no step {name!r} in {solid.source}, "
+                    f"expected one of {', '.join(known)}"
+                )
 
 
 def with_combinations(solid: Solid, combine: Sequence[str]) -> Solid:

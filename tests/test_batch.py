@@ -27,6 +27,7 @@ from front3d.batch.running import LostError, run
 from front3d.batch.study import Member, by_step, files_of, members_of, names_of
 from front3d.batch.worker import Task
 from front3d.case import Case
+from front3d.cli.flags import check_case
 from front3d.errors import CaseError, CrackError, ReadError
 from front3d.output.files import WriteError
 from tests.batch_models import case_file, placed
@@ -67,7 +68,7 @@ def test_a_word_that_names_nothing_is_said(tmp_path: Path, word: str) -> None:
 def test_a_wrong_case_file_is_a_case_that_fails_and_wrong_flags_stop(tmp_path: Path) -> None:
     case_file(tmp_path / "good.toml")
     (tmp_path / "bad.toml").write_text("result = 3")
-    bad, good = members_of([str(tmp_path)], Case(poisson=0.25))
+    bad, good = members_of([str(tmp_path)], Case(poisson=0.25), check_case)
     assert bad.case is None
     assert "found 3" in bad.problem
     assert good.case is not None
@@ -75,7 +76,9 @@ def test_a_wrong_case_file_is_a_case_that_fails_and_wrong_flags_stop(tmp_path: P
     assert good.case.result == tmp_path / "r.vtu"
     (tmp_path / "r.vtu").write_text("x")
     with pytest.raises(CaseError, match="no elastic constants"):
-        members_of([str(tmp_path / "r.vtu")], Case(young=1.0))
+        members_of([str(tmp_path / "r.vtu")], Case(young=1.0), check_case)
+    with pytest.raises(CaseError, match=r"good\.toml with the flags: hat"):
+        members_of([str(tmp_path)], Case(hat=0.5), check_case)
 
 
 def test_each_step_is_a_case_with_its_own_comparison() -> None:

@@ -100,7 +100,7 @@ def test_progress_is_lines_where_there_is_no_terminal(capsys: pytest.CaptureFixt
     [
         (["--processes", "0"], 2, "expected 1 or more"),
         (["--processes", "2", "--scheduler", "tcp://h:1"], 2, "its own workers"),
-        (["--poisson", "0.3", "--method", "none"], 2, "none"),
+        (["--method", "none"], 1, "c.toml with the flags: method: found 'none'"),
         (["--each-step", "--combine", "s = 2*t"], 1, "with --each-step"),
         (["--scheduler", "tcp://127.0.0.1:1"], 1, "no scheduler answers"),
         (["--scheduler", "somewhere"], 1, "no host and port"),

@@ -47,7 +47,27 @@ def straight_errors(kind, n):
     return np.abs(np.moveaxis(found, 1, 0) - np.eye(3)).max(axis=0)
 
 
-@pytest.mark.parametrize("kind", ALL_KINDS)
+HEAVY = {
+    "collapsed",
+    "tetra",
+    "tetra10",
+    "pyramid",
+    "pyramid13",
+    "wedge",
+    "wedge15",
+    "hexahedron27",
+    "mixed",
+}
+
+
+def costly_marked(chosen):
+    """Those cut from bricks hold many cells: they run with the slow tests."""
+    return [
+        pytest.param(kind, marks=pytest.mark.slow) if kind in HEAVY else kind for kind in chosen
+    ]
+
+
+@pytest.mark.parametrize("kind", costly_marked(ALL_KINDS))
 def test_each_mode_of_a_straight_front_converges_at_the_rate_of_the_element(kind):
     coarse, fine = straight_errors(kind, 8), straight_errors(kind, 16)
     assert fine.max() < 1e-3
@@ -85,26 +105,6 @@ def penny_errors(kind, n):
     rings = np.array([f.methods["interaction"].rings.K for f in result.fronts])
     worst = np.abs(rings - expected[:, None]).max(axis=(1, 2, 3))
     return worst / np.abs(expected).max(axis=(1, 2))
-
-
-HEAVY = {
-    "collapsed",
-    "tetra",
-    "tetra10",
-    "pyramid",
-    "pyramid13",
-    "wedge",
-    "wedge15",
-    "hexahedron27",
-    "mixed",
-}
-
-
-def costly_marked(chosen):
-    """Those cut from bricks hold many cells: they run with the slow tests."""
-    return [
-        pytest.param(kind, marks=pytest.mark.slow) if kind in HEAVY else kind for kind in chosen
-    ]
 
 
 @pytest.mark.parametrize("kind", costly_marked(k for k in ALL_KINDS if k not in QUARTER_POINT))
@@ -171,7 +171,7 @@ def test_modes_superpose():
 @pytest.mark.parametrize(
     ("kind", "allowed"),
     [
-        ("quarter_wedge", 0.002),
+        pytest.param("quarter_wedge", 0.002, marks=pytest.mark.slow),
         pytest.param("hexahedron20", 0.006, marks=pytest.mark.slow),
         pytest.param("tetra10", 0.006, marks=pytest.mark.slow),
     ],

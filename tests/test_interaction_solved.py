@@ -82,7 +82,15 @@ def test_ellipse_on_tetrahedra_in_tension():
     assert np.abs(error[:, 1:]).max() < 0.01
 
 
-@pytest.mark.parametrize("name", ["penny", "ellipse", "surface_06_04", "surface_10_06"])
+@pytest.mark.parametrize(
+    "name",
+    [
+        "penny",
+        pytest.param("ellipse", marks=pytest.mark.slow),
+        pytest.param("surface_06_04", marks=pytest.mark.slow),
+        "surface_10_06",
+    ],
+)
 def test_rings_beyond_the_first_agree(name):
     """Within 0.5 % of the largest K inside, 1 % where the front meets a free surface."""
     for front in stored(name).values():

@@ -32,6 +32,11 @@ def evaluate(solid, young=YOUNG, up=UP, **options):
     return front
 
 
+@pytest.fixture(scope="module")
+def before(penny):
+    return evaluate(penny)
+
+
 def by_place(front, positions):
     """K at the stations nearest to given positions."""
     distance = np.linalg.norm(front.positions[:, None] - positions, axis=2)
@@ -43,8 +48,7 @@ def close(K, expected, relative=1e-8):
     np.testing.assert_allclose(K, expected, atol=relative * np.abs(expected).max())
 
 
-def test_rigid_rotation(penny):
-    before = evaluate(penny)
+def test_rigid_rotation(penny, before):
     turn = np.array([[2.0, -1.0, 2.0], [2.0, 2.0, -1.0], [-1.0, 2.0, 2.0]]) / 3.0
     turned = replace(
         penny,
@@ -55,9 +59,8 @@ def test_rigid_rotation(penny):
     close(by_place(after, before.positions @ turn.T), before.K)
 
 
-def test_added_rigid_motion_of_the_displacements(penny):
+def test_added_rigid_motion_of_the_displacements(penny, before):
     """A translation and a small rotation carry no strain."""
-    before = evaluate(penny)
     size = np.abs(penny.steps[0].displacement).max()
     moved = penny.steps[0].displacement + size * (
         np.array([3.0, -5.0, 2.0]) + np.cross([0.3, 0.2, -0.4], penny.points)
@@ -66,17 +69,15 @@ def test_added_rigid_motion_of_the_displacements(penny):
     close(after.K, before.K)
 
 
-def test_translation_by_a_hundred_thousand_lengths(penny):
+def test_translation_by_a_hundred_thousand_lengths(penny, before):
     """As far as the coordinates' precision allows: 1e5 of 1.5e-16 is 1.5e-11 of a length."""
-    before = evaluate(penny)
     shift = np.array([1e5, -2e5, 1.5e5])
     after = evaluate(replace(penny, points=penny.points + shift))
     close(by_place(after, before.positions + shift), before.K, 1e-7)
 
 
-def test_renumbered_nodes_and_shuffled_cells(penny):
+def test_renumbered_nodes_and_shuffled_cells(penny, before):
     rng = np.random.default_rng(3)
-    before = evaluate(penny)
     order = rng.permutation(len(penny.points))
     place = np.argsort(order)
     blocks = [CellBlock(b.kind, rng.permutation(place[b.nodes])) for b in reversed(penny.blocks)]
@@ -91,11 +92,10 @@ def test_renumbered_nodes_and_shuffled_cells(penny):
     close(after.K, before.K)
 
 
-def test_upper_and_lower_nodes_swapped(penny):
+def test_upper_and_lower_nodes_swapped(penny, before):
     """Mirrored in the crack plane, what was above is below: the same K, but for the signs of the
     antisymmetric modes, with K_III's e3 turned as well.
     """
-    before = evaluate(penny)
     mirror = np.array([1.0, 1.0, -1.0])
     blocks = []
     for block in penny.blocks:
@@ -117,15 +117,14 @@ def test_upper_and_lower_nodes_swapped(penny):
     close(by_place(turned, before.positions * mirror), before.K * [1, 1, -1])
 
 
-def test_up_turned_round(penny):
+def test_up_turned_round(penny, before):
     """e1 stays, e2 and e3 turn: K_II changes its sign, K_I and K_III stay."""
     before, after = evaluate(penny), evaluate(penny, up=-UP)
     close(by_place(after, before.positions), before.K * [1, -1, 1])
 
 
-def test_change_of_units(penny):
+def test_change_of_units(penny, before):
     """Millimetres and megapascals against metres and pascals: K in the unit of each."""
-    before = evaluate(penny)
     metres = replace(
         penny,
         points=penny.points * 1e-3,
@@ -136,8 +135,7 @@ def test_change_of_units(penny):
     close(after.G, before.G * 1e6 * 1e-3)
 
 
-def test_unused_nodes_at_the_crack_and_far_away(penny):
-    before = evaluate(penny)
+def test_unused_nodes_at_the_crack_and_far_away(penny, before):
     extra = np.vstack([penny.points[:50], [[1e6, 0, 0]]])
     more = replace(
         penny,

@@ -27,6 +27,9 @@ ALPHA, HOT, ZERO = 1e-3, -3.0, 20.0
 
 SPIN, RHO = 2.0, 0.01
 
+TAU = np.array([0.8, 0.6, 0.0])
+"""Shear stress across the crack's place that tractions on its faces take away: -TAU n_z."""
+
 
 def square(x):
     return x[:, 0] ** 2 + x[:, 1] ** 2
@@ -81,6 +84,7 @@ ACTING = {
         stress=lambda x: axial(1.0 - square(x) / 2),
         arrays=lambda x: {"S": axial(1.0 - square(x) / 2).reshape(-1, 9)},
     ),
+    "shear": Acting(traction=lambda x, n: -n[:, 2:] * TAU),
     "spin": Acting(force=lambda x: RHO * SPIN**2 * x * [1, 1, 0]),
 }
 
@@ -102,7 +106,8 @@ TERMS = {"pressure": FACE_LOAD, "slope": FACE_LOAD, "bowl": FACE_LOAD}
 
 @cache
 def solid(cells):
-    return solved(cells, ACTING)
+    # Shear has a symmetry of its own, and a solution of its own: on the bricks only.
+    return solved(cells, {k: v for k, v in ACTING.items() if k != "shear" or cells == "bricks"})
 
 
 def front_of(cells, step, **more):
@@ -143,6 +148,67 @@ def test_the_same_on_tetrahedra(step):
     K = exact(front, step)
     assert np.abs(front.K[:, 0] - K).max() < 0.01 * np.abs(K).max()
     assert np.ptp(ring_values(front), axis=0).max() < 0.005 * np.abs(K).max()
+
+
+def with_arrays(step, **arrays):
+    """The bricks with one step and arrays of its crack faces; by cell where there are as many."""
+    (chosen,) = (one for one in solid("bricks").steps if one.name == step)
+    whole = solid("bricks")
+    by_point = {k: v for k, v in arrays.items() if isinstance(v, np.ndarray)}
+    by_cell = {k: v for k, v in arrays.items() if k not in by_point}
+    return replace(whole, steps=(replace(chosen, point_arrays=by_point, cell_arrays=by_cell),))
+
+
+def check_all_methods(front, K, allowed):
+    scale = np.abs(K).max()
+    for method, error in allowed.items():
+        assert np.abs(front.methods[method].K - K).max() < error * scale, method
+    rings = front.methods["interaction"].rings.K[1:]
+    assert np.ptp(rings, axis=0).max() < 0.003 * scale
+
+
+def test_pressure_by_cell_array_in_all_methods():
+    """The bowl by its values at the centres of the cells: constant over each face, and carried to
+    the nodes for closure.  Measured: interaction 0.3 %, closure 0.1 %, opening 1.0 %.
+    """
+    whole = solid("bricks")
+    centres = [whole.points[b.nodes].mean(axis=1) for b in whole.blocks]
+    cells = with_arrays("bowl", pc=tuple((1.0 - square(x) / 2)[:, None] for x in centres))
+    front = front3d.evaluate(cells, young=E, poisson=NU, face_array="pc").fronts[0]
+    K = np.outer(np.full(len(front), UNIT * (2 - 4 / 3 / 2)), [1, 0, 0])
+    check_all_methods(front, K, {"interaction": 0.01, "closure": 0.01, "opening": 0.02})
+
+
+def sides():
+    """(points,) +1 at nodes of the upper face, -1 at those of the lower, 0 elsewhere."""
+    (patch,) = front3d.find_fronts(solid("bricks")).patches
+    out = np.zeros(len(solid("bricks").points))
+    out[patch.pairs[:, 0]], out[patch.pairs[:, 1]] = 1.0, -1.0
+    return out
+
+
+@pytest.mark.parametrize("by", ["point", "cell"])
+def test_tractions_by_array_in_all_methods(by):
+    """Shear on the faces is remote shear of the other sign: K_II = 4 tau / (2 - nu) sqrt(a / pi)
+    along e1, K_III = (1 - nu) times that along e3 (Kassir and Sih 1966).
+
+    Nodes of the front belong to both faces and hold zero.  Measured: 0.8 %, 0.2 %, 0.3 %.
+    """
+    whole, side = solid("bricks"), sides()
+    if by == "point":
+        values = side[:, None] * TAU
+    else:
+        values = tuple(np.sign(side[b.nodes].sum(axis=1))[:, None] * TAU for b in whole.blocks)
+    sheared = with_arrays("shear", t=values)
+    front = front3d.evaluate(sheared, young=E, poisson=NU, face_array="t").fronts[0]
+    along = 4 * UNIT / (2 - NU) * np.einsum("nik,k->ni", front.frames, TAU)
+    K = np.stack([0 * along[:, 0], along[:, 0], (1 - NU) * along[:, 2]], axis=1)
+    check_all_methods(front, K, {"interaction": 0.01, "closure": 0.01, "opening": 0.02})
+    with without(FACE_LOAD):
+        off = front3d.evaluate(
+            sheared, young=E, poisson=NU, face_array="t", methods="interaction"
+        ).fronts[0]
+    assert np.abs(off.K - K).max() > 0.1 * np.abs(K).max()
 
 
 def test_pressure_is_remote_tension():

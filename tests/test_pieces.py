@@ -59,6 +59,33 @@ def test_smooth_fronts_stay_whole_however_coarse():
         assert len(fronts) == 1 and fronts[0].closed
 
 
+@pytest.mark.parametrize("kind", ["hexahedron", "tetra10"])
+@pytest.mark.parametrize("around", [20, 28])
+def test_a_slender_ellipse_has_no_corner_on_a_coarse_mesh(kind, around):
+    """At its vertices a front of 28 straight edges turns by 59 degrees, usually by 5."""
+    mesh = curved(kind, 2, around=around)
+    solid = impose(mesh.solid, mesh.side, exact.penny_tension(ELASTIC, 1.0))
+    slender = replace(solid, points=solid.points * [1, 0.2, 1])
+    model = front3d.find_fronts(slender)
+    ((front,),) = model.fronts
+    assert front.closed and not model.notes
+
+
+def test_a_kink_in_a_curved_front_is_a_corner():
+    """A drop: a circle of 24 edges, 15 degrees each, whose tangents at 30 degrees meet in a tip."""
+    mesh = curved("hexahedron", 2, around=24, half=0.1)
+    solid = impose(mesh.solid, mesh.side, exact.penny_tension(ELASTIC, 1.0))
+    angle = np.abs(np.arctan2(solid.points[:, 1], solid.points[:, 0]))
+    outwards = np.where(angle < np.pi / 6, 1.0 / np.cos(np.pi / 6 - angle), 1.0)
+    drop = replace(solid, points=solid.points * np.stack([outwards, outwards, 0 * angle + 1], 1))
+    model = front3d.find_fronts(drop)
+    ((front,),) = model.fronts
+    assert front.ends == ("corner", "corner") and len(front.stations) < len(front.corners)
+    np.testing.assert_allclose(drop.points[front.corners[0], 1], 0.0, atol=1e-9)
+    assert drop.points[front.corners[0], 0] > 1.0
+    assert "corner at node" in model.notes[0]
+
+
 @pytest.mark.slow
 def test_a_square_crack_has_the_K_that_is_published():
     """K_I in the middle of a side is 0.753 sigma sqrt(pi a), a half of the side (Isida, Yoshida and
@@ -113,6 +140,13 @@ def test_a_polyline_chooses_the_front_that_lies_along_it(penny):
     around = curve.frames(np.linspace(0.0, curve.length, 200))[0]
     whole = K_of(penny, front_line=tuple(map(tuple, around)))
     assert whole.closed
+
+
+def test_a_line_that_misses_the_fronts_is_refused_with_the_distance(penny):
+    with pytest.raises(
+        CrackError, match=r"front line: .* nearest node of a front, \d+, is 0\.5 from"
+    ):
+        front3d.find_fronts(penny, front_line=((1.5, 0, 0), (2.0, 0, 0)))
 
 
 def test_of_several_fronts_only_the_given_one_is_found():

@@ -18,7 +18,7 @@ from front3d.reading.several import load_all
 from front3d.results import FrontResult
 from front3d.samples import build
 from front3d.solid import CellBlock, Solid, Step
-from tests.meshes.structured import curved, impose
+from tests.meshes.structured import curved, impose, straight
 from tests.reference import exact
 
 YOUNG, POISSON = 200e3, 0.3
@@ -116,6 +116,27 @@ def test_a_combination_is_the_sum_of_K_and_the_K_of_the_summed_displacement(penn
     assert apart(both.methods["closure"].K, whole.methods["closure"].K) < 1e-10
     # J goes with the square of the load and does not follow from the steps.
     assert np.isnan(both.methods["interaction"].columns["J_interaction"]).all()
+
+
+def test_a_combination_is_the_sum_in_every_method() -> None:
+    """The opening's fit is not linear.  Measured: 1e-15 (integral, closure), 5e-12 (opening)."""
+    mesh = straight("quarter_collapsed", 8, along=3, length=0.75)
+    solid = mesh.solid
+    for name, K in (("pull", (1.0, 0.1, 0.0)), ("slide", (-0.3, 0.6, 0.4))):
+        # A smooth field besides, so that the opening's effective front is not the true one.
+        solid = impose(solid, mesh.side, exact.near_tip(ELASTIC, K), name)
+        bent = 1e-6 * mesh.side[:, None] * solid.points[:, :1] ** 2 * [0.3, 1.0, 0.2]
+        step = replace(solid.steps[-1], displacement=solid.steps[-1].displacement + bent)
+        solid = replace(solid, steps=(*solid.steps[:-1], step))
+    about = {"radii": (0.5, 0.75), "up": (0.0, 1.0, 0.0)}
+    both = by_step(solid, combine=["both = 1.2*pull - 0.8*slide"], steps=["both"], **about)["both"]
+    whole = by_step(summed(solid, pull=1.2, slide=-0.8), **about)["sum"]
+    assert set(both.methods) == {"interaction", "closure", "opening"}
+    for name, method in both.methods.items():
+        assert apart(method.K, whole.methods[name].K) < 1e-10, name
+    assert apart(both.K, whole.K) < 1e-10
+    eps = both.methods["opening"].columns["opening_eps"]
+    assert np.abs(eps).min() > 1e-3 and np.abs(eps).max() < 0.29  # inside the range looked at
 
 
 def test_a_multiple_of_one_step_has_its_J_too(penny: Solid) -> None:

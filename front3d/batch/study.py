@@ -1,7 +1,7 @@
 """Which cases a study has, and what they are called."""
 
 from collections import Counter
-from collections.abc import Iterable, Iterator, Sequence
+from collections.abc import Callable, Iterable, Iterator, Sequence
 from dataclasses import dataclass, replace
 from glob import glob, has_magic
 from pathlib import Path
@@ -11,6 +11,8 @@ from front3d.errors import CaseError
 from front3d.job import check_constants
 
 _CASE_FILE = ".toml"
+
+Check = Callable[[Case], None]
 
 
 @dataclass(frozen=True, slots=True)
@@ -29,25 +31,40 @@ class Member:
     problem: str = ""
 
 
-def members_of(words: Sequence[str], flags: Case) -> list[Member]:
+def members_of(words: Sequence[str], flags: Case, check: Check) -> list[Member]:
     """The cases named by `words`: case files, results, folders and patterns of either.
 
-    `flags` are said of every case, over what its case file says. A case file that is wrong becomes
-    a member with a problem. CaseError where a word names nothing.
+    `flags` are said of every case, over what its case file says; `check` raises CaseError for a
+    case that says something wrong. A case file that is wrong becomes a member with a problem.
+    CaseError where a word names nothing, or the flags are wrong.
     """
     paths = files_of(words)
-    return [_member(name, path, flags) for path, name in zip(paths, names_of(paths), strict=True)]
+    pairs = zip(paths, names_of(paths), strict=True)
+    return [_member(name, path, flags, check) for path, name in pairs]
 
 
-def _member(name: str, path: Path, flags: Case) -> Member:
-    own = path.suffix.lower() == _CASE_FILE
-    try:
-        case = (read_case(path) if own else Case(result=path)).overridden_by(flags)
+def _member(name: str, path: Path, flags: Case, check: Check) -> Member:
+    if path.suffix.lower() != _CASE_FILE:
+        case = Case(result=path).overridden_by(flags)
+        check(case)
         check_constants(case)
-        _ = case.options, case.units  # values out of range
+        return Member(name, _absolute(case))
+    try:
+        own = read_case(path)
     except CaseError as error:
-        if not own:  # it is the flags that are wrong, for all
-            raise
+        return Member(name, None, str(error))
+    case = own.overridden_by(flags)
+    try:
+        check(case)
+    except CaseError as error:
+        try:
+            check(own)
+        except CaseError as wrong:
+            return Member(name, None, f"{path.name}: {wrong}")
+        raise CaseError(f"{path.name} with the flags: {error}") from None
+    try:
+        check_constants(case)
+    except CaseError as error:
         return Member(name, None, str(error))
     return Member(name, _absolute(case))
 

@@ -8,11 +8,10 @@ from pathlib import Path
 from time import monotonic
 from typing import TYPE_CHECKING
 
-from front3d.case import Case
 from front3d.caution import CAUTION
 from front3d.cli.batch_progress import duration, study_progress
 from front3d.cli.command import Command
-from front3d.cli.flags import add_evaluation_flags, flags_said
+from front3d.cli.flags import add_evaluation_flags, check_case, flags_said
 from front3d.cli.progress import FIRST_RUN
 from front3d.cli.words import number
 from front3d.errors import CaseError, Front3DError
@@ -75,13 +74,13 @@ class _Study:
 
 def run(arguments: argparse.Namespace) -> int:
     flags = flags_said(arguments)
-    _check_call(arguments, flags)
+    _check_call(arguments)
     from front3d.batch.finished import alone, clear_unfinished
     from front3d.batch.plan import CASES, Plan
     from front3d.batch.study import members_of
     from front3d.output.files import results_folder
 
-    members = members_of(arguments.cases, flags)
+    members = members_of(arguments.cases, flags, check_case)
     if arguments.each_step and any(m.case is not None and m.case.combine for m in members):
         raise CaseError(
             "found combinations of steps with --each-step, expected one of them; a combination "
@@ -105,7 +104,7 @@ def run(arguments: argparse.Namespace) -> int:
     return 0 if all(outcome.done for outcome in study.outcomes) else 1
 
 
-def _check_call(arguments: argparse.Namespace, flags: Case) -> None:
+def _check_call(arguments: argparse.Namespace) -> None:
     if arguments.processes is not None and arguments.processes < 1:
         arguments.parser.error(f"--processes: found {arguments.processes}, expected 1 or more")
     if arguments.processes is not None and arguments.scheduler is not None:

@@ -258,6 +258,13 @@ def add_load_flags(parser: argparse.ArgumentParser) -> None:
         ("initial-strain", str, "NAME", "likewise, tensor components"),
     ):
         group.add_argument(f"--{flag}", type=kind, metavar=metavar, help=meaning)
+    group.add_argument(
+        "--acts-in",
+        action="append",
+        metavar="LOAD=STEP,..",
+        help="a load acts in these steps only, e.g. face_pressure=pressure (may be repeated; "
+        "default: every load acts in every step)",
+    )
 
 
 def case_of(arguments: argparse.Namespace) -> Case:
@@ -271,38 +278,52 @@ def case_of(arguments: argparse.Namespace) -> Case:
     if more and any(p.suffix.lower() == ".toml" for p in (path, *more)):
         arguments.parser.error("found a case file among several files, expected it alone")
     if path.suffix.lower() == ".toml":
-        case = read_case(path).overridden_by(flags)
-        try:
-            _check(case)
-        except CaseError as error:
-            raise CaseError(f"{path}: {error}") from None
-        return case
+        return _joined(arguments, path, flags)
+    _require(arguments, flags)
     return Case(result=path, more=tuple(more) or None).overridden_by(flags)
 
 
 def flags_said(arguments: argparse.Namespace) -> Case:
-    """What the flags say; a value out of range is a wrong call (exit 2)."""
+    """What the flags say, which need not make sense without a case file."""
     said = {
         name: value
         for name in Case.__dataclass_fields__
         if name not in ("result", "source")
         and (value := getattr(arguments, name, None)) is not None
     }
-    for name in ("steps", "methods", "compare", "combine", "symmetry_planes"):
+    for name in ("steps", "methods", "compare", "combine", "symmetry_planes", "acts_in"):
         if name in said:
             said[name] = tuple(said[name])
     if "displacement" in said:
         first, *others = said["displacement"]
         said["displacement"] = (first, *others) if others else first
-    flags = Case(**said)
+    return Case(**said)
+
+
+def _joined(arguments: argparse.Namespace, path: Path, flags: Case) -> Case:
+    """A case file under the flags, which need not make sense without it."""
+    case = read_case(path)
+    joined = case.overridden_by(flags)
     try:
-        _check(flags)
+        check_case(joined)
+    except CaseError as error:
+        try:
+            check_case(case)
+        except CaseError as own:
+            raise CaseError(f"{path}: {own}") from None
+        arguments.parser.error(str(error))
+    return joined
+
+
+def _require(arguments: argparse.Namespace, flags: Case) -> None:
+    """A wrong call where the flags do not make sense."""
+    try:
+        check_case(flags)
     except CaseError as error:
         arguments.parser.error(str(error))
-    return flags
 
 
-def _check(case: Case) -> None:
+def check_case(case: Case) -> None:
     """CaseError where an option is out of range or a solution is not asked for as it should be."""
     _ = case.options, case.units
     for name in case.methods or ():

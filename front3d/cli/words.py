@@ -47,17 +47,24 @@ def describe_evaluation(evaluation: "Evaluation") -> list[str]:
     """Largest K of each mode with its place, agreement and warnings of each front; the caution."""
     from front3d.results import CAUTION
 
-    material, units = evaluation.material, evaluation.units
-    unit = f" {units.stress}" if units.stress else ""
-    lines = [
-        f"{evaluation.source}: E = {material.young:g}{unit}, nu = {material.poisson:g}; "
-        f"K in {units.K_label}"
-    ]
+    lines = [f"{evaluation.source}: {_constants(evaluation)}; K in {evaluation.units.K_label}"]
     for front in evaluation.fronts:
         lines += ["", *_describe_front(front, evaluation)]
     if evaluation.warnings:
         lines += ["", *(f"warning: {warning}" for warning in evaluation.warnings)]
     return [*lines, "", CAUTION]
+
+
+def _constants(evaluation: "Evaluation") -> str:
+    """Elastic constants, or where they come from."""
+    loads = evaluation.options.get("loads")
+    if isinstance(loads, dict) and loads.get("elastic_table"):
+        return "constants by temperature"
+    if isinstance(loads, dict) and loads.get("regions"):
+        return "constants of the region that each front runs in"
+    material, units = evaluation.material, evaluation.units
+    unit = f" {units.stress}" if units.stress else ""
+    return f"E = {material.young:g}{unit}, nu = {material.poisson:g}"
 
 
 def _describe_front(front: "FrontResult", evaluation: "Evaluation") -> list[str]:

@@ -27,8 +27,8 @@ def describe(solid: Solid, options: Options | None = None) -> dict[str, list[Row
         "fronts": fronts,
         "coincident_faces_left_alone": [_patch(patch) for patch in model.unopened],
     }
-    if model.notes:
-        found["notes"] = [{"note": note} for note in model.notes]
+    if said := (*model.warnings, *model.notes):
+        found["notes"] = [{"note": note} for note in said]
     return found
 
 

@@ -7,6 +7,7 @@ import numpy as np
 from front3d.crack.coincidence import Coincidence, find_coincidence
 from front3d.crack.edges import FrontEdges, full_model_edges, half_model_edges, order_edges
 from front3d.crack.ends import classify_ends
+from front3d.crack.facetable import FaceTable
 from front3d.crack.front import Front, build_front
 from front3d.crack.half import find_half_patch
 from front3d.crack.notch import open_notch
@@ -36,6 +37,7 @@ class CrackModel:
     fronts : per patch, its fronts
     unopened : coincident surfaces whose sides never part: not evaluated unless asked for
     notes : what was taken for granted, for the reader
+    warnings : what may make K wrong
     """
 
     same: Coincidence
@@ -43,6 +45,7 @@ class CrackModel:
     fronts: tuple[tuple[Front, ...], ...]
     unopened: tuple[Patch, ...]
     notes: tuple[str, ...] = ()
+    warnings: tuple[str, ...] = ()
 
     @property
     def n_fronts(self) -> int:
@@ -55,7 +58,7 @@ def find_cracks(solid: Solid, options: Options | None = None) -> CrackModel:
     same = find_coincidence(solid)
     if options.crack_plane is not None:
         return _half_model(solid, same, options, options.crack_plane)
-    found = find_patches(solid, same, options)
+    found, unmatched = find_patches(solid, same, options)
     chosen = tuple(p for p in found if p.opens or options.unopened)
     unopened = tuple(p for p in found if not (p.opens or options.unopened))
     if not chosen and (plane := find_crack_plane(solid, same)) is not None:
@@ -66,7 +69,9 @@ def find_cracks(solid: Solid, options: Options | None = None) -> CrackModel:
             "outer plane that is held along its normal in part, as the crack plane of a half model "
             "is (name it where it is held by springs: --crack-plane z=0); "
             "if the crack is modelled by a gap or by one merged surface, its faces must be split "
-            "into coincident faces first" + (f"; {gap}" if (gap := open_notch(solid, same)) else "")
+            "into coincident faces first"
+            + (f"; {gap}" if (gap := open_notch(solid, same)) else "")
+            + (f"; {_cut_differently(unmatched)}" if len(unmatched) else "")
         )
     if not chosen:
         raise CrackError(
@@ -81,7 +86,11 @@ def find_cracks(solid: Solid, options: Options | None = None) -> CrackModel:
             f"{solid.source}: the coincident faces have no front: their sides share no edge, so "
             "they part the solid in two; a crack needs a front where its sides join"
         )
-    return CrackModel(same, chosen, fronts_of, unopened, _notes_on_pieces(fronts_of))
+    notes = (*_notes_on_faces(chosen), *_notes_on_pieces(fronts_of))
+    members = same.place[np.concatenate([patch.upper.corners.ravel() for patch in chosen])]
+    left_out = unmatched[np.asarray(np.isin(same.place[unmatched.corners], members).any(axis=1))]
+    warnings = (_cut_differently(left_out),) if len(left_out) else ()
+    return CrackModel(same, chosen, fronts_of, unopened, notes, warnings)
 
 
 def _half_model(
@@ -148,6 +157,27 @@ def _front(
     if not len(stations):
         return None
     return replace(front, ends=ends, stations=stations)
+
+
+def _cut_differently(faces: FaceTable) -> str:
+    """Say that faces have no partner."""
+    return (
+        f"{len(faces)} crack faces, such as at node {faces.corners[0, 0]}, lie on faces of the "
+        "other side that are cut differently and are left out, with the front at them; expected "
+        "faces that coincide one by one: mesh both sides alike"
+    )
+
+
+def _notes_on_faces(patches: tuple[Patch, ...]) -> tuple[str, ...]:
+    """Faces that are paired though the two sides are not meshed alike."""
+    unlike = sum(int(patch.unlike.sum()) for patch in patches)
+    if not unlike:
+        return ()
+    return (
+        f"{unlike} of {sum(len(p.upper) for p in patches)} pairs of crack faces have mid-side "
+        "nodes that stand apart (a quarter-point on one side only, or an edge that is straight on "
+        "one side): they are paired by their corners",
+    )
 
 
 def _notes_on_pieces(fronts: tuple[tuple[Front, ...], ...]) -> tuple[str, ...]:

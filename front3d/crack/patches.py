@@ -4,7 +4,7 @@ A patch is one crack surface with an upper and a lower side.  In a half model, w
 is a symmetry plane, it has only the side that was modelled.
 """
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 import numpy as np
 from scipy.sparse import coo_array
@@ -13,6 +13,7 @@ from scipy.sparse.csgraph import connected_components
 from front3d.arrays import BoolArray, FloatArray, IntArray
 from front3d.crack.coincidence import Coincidence
 from front3d.crack.facetable import FaceTable, multiplicity, outer_faces, set_keys
+from front3d.crack.unmatched import unmatched_faces
 from front3d.errors import CrackError
 from front3d.loads import Vector
 from front3d.options import Options, Plane
@@ -32,6 +33,7 @@ class Patch:
         largest displacement normal to the plane)
     opens : whether the sides part or slide at all
     plane : the symmetry plane that holds the crack of a half model
+    unlike : (n,) pairs of faces whose mid-side nodes stand apart; empty where all are alike
     """
 
     upper: FaceTable
@@ -40,6 +42,7 @@ class Patch:
     opening: float
     opens: bool
     plane: Plane | None = None
+    unlike: BoolArray = field(default_factory=lambda: np.zeros(0, bool))
 
     @property
     def half(self) -> bool:
@@ -50,15 +53,20 @@ NEGLIGIBLE_OPENING = 1e-6
 """Sides that move by less than this times the spread of displacements do not part."""
 
 
-def find_patches(solid: Solid, same: Coincidence, options: Options) -> tuple[Patch, ...]:
-    """All pairs of coincident face patches of a full model; empty if there are none."""
+def find_patches(
+    solid: Solid, same: Coincidence, options: Options
+) -> tuple[tuple[Patch, ...], FaceTable]:
+    """All pairs of coincident face patches of a full model; and faces on each other that are cut
+    differently, and so have no partner.  Both empty if there are none.
+    """
     free = outer_faces(solid, same.entity, same.double)
     if not len(free):
-        return ()
+        return (), free
     upper, lower = _opposite_pairs(free, solid, same)
-    if not len(upper):
-        return ()
     both = np.concatenate([upper, lower])
+    unmatched = unmatched_faces(solid, same, free, marked(len(free), both))
+    if not len(upper):
+        return (), unmatched
     side = _connected_sides(free[both], same)
     sides = np.stack([side[: len(upper)], side[len(upper) :]], axis=1)
     _refuse_branches(sides, free[upper], solid)
@@ -74,7 +82,7 @@ def find_patches(solid: Solid, same: Coincidence, options: Options) -> tuple[Pat
                 "an upper and a lower side (check for faces that were merged in part)"
             )
         patches.append(_patch(solid, same, free[a], free[b], options.up))
-    return tuple(patches)
+    return tuple(patches), unmatched
 
 
 def chosen_up(normal: FloatArray, up: Vector | None) -> float:
@@ -97,8 +105,13 @@ def chosen_up(normal: FloatArray, up: Vector | None) -> float:
 
 
 def _opposite_pairs(free: FaceTable, solid: Solid, same: Coincidence) -> tuple[IntArray, IntArray]:
-    """Rows of free faces at the same place with opposing normals and different nodes."""
-    place_key = set_keys(same.place[free.nodes])
+    """Rows of free faces whose corners are at the same places, with opposing normals and different
+    nodes.
+
+    Mid-side nodes may stand apart: a quarter-point on one side only, or an edge that is straight
+    on one side.
+    """
+    place_key = set_keys(same.place[free.corners])
     shared = np.flatnonzero(multiplicity(place_key) > 1)
     order = shared[np.argsort(place_key[shared], kind="stable")]
     keys = place_key[order]
@@ -158,7 +171,9 @@ def _patch(solid: Solid, same: Coincidence, a: FaceTable, b: FaceTable, up: Vect
         spread = max(spread, 1e-3 * float(np.ptp(step.displacement, axis=0).max()))
         opening = max(opening, largest)
         opens |= largest > NEGLIGIBLE_OPENING * spread
-    return Patch(upper, lower, pairs, opening, opens)
+    apart = set_keys(same.place[np.concatenate([upper.nodes, lower.nodes])])
+    unlike = apart[: len(upper)] != apart[len(upper) :]
+    return Patch(upper, lower, pairs, opening, opens, unlike=unlike)
 
 
 def _node_pairs(upper: FaceTable, lower: FaceTable, same: Coincidence) -> IntArray:

@@ -20,8 +20,10 @@ from front3d.solid import Solid
 
 CORNER, GIVEN_END = "corner", "end of the nodes given"
 
-SHARP = 25.0
-"""Degrees by which the front turns at a node, and three times its usual turn: a corner."""
+SHARP, SHARPER = 25.0, 3.0
+"""Degrees by which the front turns at a corner, and how many times as much as it usually does and
+as it does at the nodes next to it: a slender ellipse turns sharply at its vertex, too, but it turns
+much at the nodes beside it as well."""
 
 _EDGES, _REACHES = 3, 4.0
 """Edges, and reaches of the cells at the front, within which of a corner stations are left out: a
@@ -60,6 +62,12 @@ def given_edges(
         size = np.linalg.norm(x[:, 1] - x[:, 0], axis=1)
         away = _distance_to_line(x.reshape(-1, 3), np.asarray(line, float)).reshape(-1, 2)
         chosen = (away <= 0.5 * size[:, None]).all(axis=1)
+    if not chosen.any() and not nodes and len(away):
+        raise CrackError(
+            f"{solid.source}: front line: no edge of a front lies within half its length of the "
+            f"line given; the nearest node of a front, {edges.ends[:, :2].ravel()[away.argmin()]}, "
+            f"is {away.min():.4g} from it"
+        )
     if not chosen.any():
         raise CrackError(
             f"{solid.source}: the front nodes that were given are not on the edge of a crack "
@@ -136,9 +144,11 @@ def _sharp(chain: Chain, points: FloatArray) -> BoolArray:
     inner = turn if chain.closed else turn[1:]
     if len(inner) < 3:
         return np.zeros(len(turn), bool)
-    sharp = (turn > SHARP) & (turn > 3.0 * np.median(inner))
-    sharp[0] &= chain.closed
-    return sharp
+    if not chain.closed:
+        turn[0] = 0.0
+    beside = np.maximum(np.roll(turn, 1), np.roll(turn, -1))
+    usual = np.maximum(np.median(inner), beside)
+    return np.asarray((turn > SHARP) & (turn > SHARPER * usual))
 
 
 def stations_of(

@@ -14,7 +14,7 @@ from front3d.crack.front import on_front_mask
 from front3d.elements import FACES, ElementType
 from front3d.errors import MeshError
 from front3d.methods.context import FrontContext
-from front3d.methods.face_loads import gauss_load, loaded_faces
+from front3d.methods.face_loads import acting, gauss_load, loaded_faces
 from front3d.methods.face_rules import PLAIN, graded_rule, touching_sides
 from front3d.methods.loading import free_extension, nodal_state
 from front3d.methods.nodal_forces import (
@@ -129,15 +129,16 @@ class Assembly:
     def _load(
         self, term: SurfaceTerm, block: int, local: int, cells: IntArray, values: FloatArray
     ) -> FloatArray:
-        """(cells, 1 or steps, q, 4) pressure and traction on faces, or an empty array."""
+        """(cells, steps, q, 4) pressure and traction on faces, or an empty array."""
         if term.kind in (PRESSED, BENT):
             if not (included(FACE_LOAD) and loaded_faces(self._context)):
                 return frozen_floats(np.zeros((0, 0, 0, 4)))
             return gauss_load(self._context, block, local, cells, values)
         if not term.pressure:
             return frozen_floats(np.zeros((0, 0, 0, 4)))
-        load = np.zeros((len(cells), 1, len(values), 4))
-        load[..., 0] = term.pressure
+        pressure = term.pressure * acting(self._context, "surface_pressure")
+        load = np.zeros((len(cells), len(pressure), len(values), 4))
+        load[..., 0] = pressure[:, None]
         return frozen_floats(load)
 
     def _local(self, cells: IntArray) -> IntArray:

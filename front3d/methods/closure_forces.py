@@ -5,6 +5,7 @@ plane goes on.  The forces that the upper ones pass down through these faces fol
 internal forces; what acts on them besides is taken off: pressure on the crack face, and body force.
 """
 
+from collections.abc import Iterator
 from dataclasses import dataclass
 
 import numpy as np
@@ -259,12 +260,18 @@ def _gradients(solid: Solid, block: CellBlock, numbers: IntArray) -> tuple[Float
 def face_nodes(solid: Solid, faces: FaceTable) -> list[tuple[str, IntArray]]:
     """All nodes of faces, (face type, (n, m) nodes) per type."""
     groups: dict[str, list[IntArray]] = {}
+    for kind, _, nodes in _face_groups(solid, faces):
+        groups.setdefault(kind, []).append(nodes)
+    return [(kind, np.concatenate(parts)) for kind, parts in groups.items()]
+
+
+def _face_groups(solid: Solid, faces: FaceTable) -> Iterator[tuple[str, FaceTable, IntArray]]:
+    """Faces of one block by one local number: their type, themselves, and all their nodes."""
     for b, local in np.unique(np.stack([faces.block, faces.local], axis=1), axis=0):
         block = solid.blocks[b]
         kind, members = block.element.faces[local]
-        mine = (faces.block == b) & (faces.local == local)
-        groups.setdefault(kind, []).append(block.nodes[faces.cell[mine]][:, list(members)])
-    return [(kind, np.concatenate(parts)) for kind, parts in groups.items()]
+        mine = faces[np.asarray((faces.block == b) & (faces.local == local))]
+        yield kind, mine, block.nodes[mine.cell][:, list(members)]
 
 
 def face_forces(context: FrontContext, faces: FaceTable, ahead: bool = False) -> FloatArray:
@@ -276,7 +283,7 @@ def face_forces(context: FrontContext, faces: FaceTable, ahead: bool = False) ->
     out = np.zeros_like(context.displacement)
     if not loaded_faces(context):
         return out
-    for kind, nodes in face_nodes(solid, faces):
+    for kind, mine, nodes in _face_groups(solid, faces):
         face = FACES[kind]
         xi, weights = face.quadrature(RULE + 1)
         shape = face.values(xi)
@@ -285,9 +292,9 @@ def face_forces(context: FrontContext, faces: FaceTable, ahead: bool = False) ->
         normal = np.cross(tangents[:, :, 0], tangents[:, :, 1])
         size = np.linalg.norm(normal, axis=2, keepdims=True)
         pressure = face_pressure(context, np.einsum("qn,fni->fqi", shape, x))
-        for step, total in zip(context.steps, out, strict=True):
-            array = array_load(context, step, nodes, shape, ahead)
-            acting = size * array[..., 1:] - (pressure + array[..., 0])[..., None] * normal
+        for step, uniform, total in zip(context.steps, pressure, out, strict=True):
+            array = array_load(context, step, mine, nodes, shape, ahead)
+            acting = size * array[..., 1:] - (uniform + array[..., 0])[..., None] * normal
             share = np.einsum("qn,fqi,q->fni", shape, acting, weights)
             np.add.at(total, entity[nodes], share)
     return out

@@ -4,6 +4,7 @@ import numpy as np
 from scipy.spatial import cKDTree
 
 from front3d.arrays import BoolArray, FloatArray, IntArray, frozen_floats
+from front3d.crack.facetable import FaceTable
 from front3d.crack.front import on_front_mask
 from front3d.methods.context import FrontContext
 from front3d.methods.named import at_cells, at_nodes
@@ -11,34 +12,46 @@ from front3d.solid import Step
 
 
 def face_pressure(context: FrontContext, x: FloatArray) -> FloatArray:
-    """Pressure at points x, (..., 3), of the crack faces that does not come from an array."""
+    """(steps, ...) pressure at points x, (..., 3), of the crack faces that does not come from an
+    array.
+    """
     loads = context.loads
-    pressure = np.full(x.shape[:-1], context.options.face_pressure)
+    uniform = acting(context, "face_pressure") * context.options.face_pressure
+    pressure = np.multiply.outer(uniform, np.ones(x.shape[:-1]))
     if loads.face_polynomial is not None:
         direction = np.array(loads.depth_direction or (0.0, 0.0, 1.0))
         depth = (x - np.array(loads.depth_from)) @ (direction / np.linalg.norm(direction))
-        pressure += np.polynomial.polynomial.polyval(depth, loads.face_polynomial)
+        varying = np.polynomial.polynomial.polyval(depth, loads.face_polynomial)
+        pressure += np.multiply.outer(acting(context, "face_polynomial"), varying)
     return pressure
+
+
+def acting(context: FrontContext, load: str) -> FloatArray:
+    """(steps,) one where a load acts, else zero."""
+    return np.array([float(context.loads.acts(load, step.name)) for step in context.steps])
 
 
 def gauss_load(
     context: FrontContext, block: int, local: int, cells: IntArray, values: FloatArray
 ) -> FloatArray:
-    """(len(cells), 1 or steps, q, 4) pressure and traction at Gauss points of crack faces.
+    """(len(cells), steps, q, 4) pressure and traction at Gauss points of crack faces.
 
     `values`, (q, nodes), are the cell's shape functions at the points of its face `local`.
     """
     solid, name = context.solid, context.loads.face_array
     members = solid.blocks[block].nodes[cells]
     x = np.einsum("qn,fnk->fqk", values, solid.points[members])
-    out = np.zeros((len(cells), 1, len(values), 4))
-    out[:, 0, :, 0] = face_pressure(context, x)
+    out = np.zeros((len(cells), len(context.steps), len(values), 4))
+    out[..., 0] = np.moveaxis(face_pressure(context, x), 0, 1)
     if name is None:
         return frozen_floats(out)
     # On a face only its own nodes count, and the others may be without a value.
     on_face = list(solid.blocks[block].element.faces[local][1])
     by_step = []
     for step in context.steps:
+        if not context.loads.acts("face_array", step.name):
+            by_step.append(np.zeros_like(out[:, 0]))
+            continue
         own = at_cells(solid, step, name, block, cells, (1, 3))
         if own is None:
             at = _at_face_nodes(context, step, name, members[:, on_face])
@@ -66,25 +79,51 @@ def split_load(values: FloatArray) -> FloatArray:
 def array_load(
     context: FrontContext,
     step: Step,
+    faces: FaceTable,
     nodes: IntArray,
     values: FloatArray,
     ahead: bool,
 ) -> FloatArray:
-    """(n, q, 4) pressure and traction that an array gives at Gauss points of faces with these
-    nodes, (n, m), and shape functions, (q, m).
+    """(n, q, 4) pressure and traction that an array gives at Gauss points of faces of one block.
 
-    Ahead of the front: the value of the nearest node of the upper face.
+    `nodes`, (n, m), are those of the faces, `values`, (q, m), their shape functions.  Ahead of the
+    front: the value of the nearest node, or the cell of the nearest face, of the upper face.
     """
     solid, name = context.solid, context.loads.face_array
-    if name is None:
+    if name is None or not context.loads.acts("face_array", step.name):
         return np.zeros((1, 1, 4))
+    if name not in step.point_arrays:
+        own = _of_cells(context, step, name, faces, ahead)
+        return split_load(np.repeat(own[:, None], len(values), axis=1))
     if ahead:
         upper = np.unique(context.patch.upper.nodes)
+        if step.point_arrays[name].shape[1] == 3:
+            # The front's nodes belong to both faces, and no traction can be told there.
+            upper = upper[~on_front_mask(context.front, context.model.same)[upper]]
         _, nearest = cKDTree(solid.points[upper]).query(solid.points[nodes])
         at = at_nodes(solid, step, name, upper, (1, 3))[nearest]
     else:
         at = _at_face_nodes(context, step, name, nodes)
     return split_load(np.einsum("qn,fnk->fqk", values, at))
+
+
+def _of_cells(
+    context: FrontContext, step: Step, name: str, faces: FaceTable, ahead: bool
+) -> FloatArray:
+    """(n, components) of a cell array at faces; ahead of the front, at the nearest upper face."""
+    solid = context.solid
+    if ahead:
+        upper = context.patch.upper
+        tree = cKDTree(solid.points[upper.corners].mean(axis=1))
+        faces = upper[np.asarray(tree.query(solid.points[faces.corners].mean(axis=1))[1])]
+    out: FloatArray | None = None
+    for block in np.unique(faces.block):
+        mine = faces.block == block
+        own = at_cells(solid, step, name, int(block), faces.cell[mine], (1, 3))
+        if own is not None:
+            out = np.zeros((len(faces), own.shape[1])) if out is None else out
+            out[mine] = own
+    return np.zeros((len(faces), 1)) if out is None else out
 
 
 def _at_face_nodes(context: FrontContext, step: Step, name: str, nodes: IntArray) -> FloatArray:

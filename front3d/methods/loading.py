@@ -26,13 +26,12 @@ def nodal_state(
     loads = context.loads
     if not loads.in_volume:
         return frozen_floats(np.zeros((0, 0, N_COLUMNS)))
-    force = body_force(context, nodes) if included(BODY_FORCE) else 0.0
     out = np.zeros((len(context.steps), len(nodes), N_COLUMNS))
     if free is None:
         free = np.zeros(len(out))
     for step, here, counted_from in zip(context.steps, out, free, strict=True):
         T = None
-        if loads.temperature is not None:
+        if loads.temperature is not None and loads.acts("temperature", step.name):
             T = at_nodes(context.solid, step, loads.temperature, nodes, (1,))[:, 0]
         young, poisson = _elastic(context, T)
         here[:, LAME] = young * poisson / ((1.0 + poisson) * (1.0 - 2.0 * poisson))
@@ -40,7 +39,8 @@ def nodal_state(
         here[:, INITIAL:BODY] = _initial_stress(
             context, step, nodes, _thermal_strain(context, T) - counted_from, here
         )
-        here[:, BODY:RATIO] = force
+        if included(BODY_FORCE):
+            here[:, BODY:RATIO] = body_force(context, step, nodes)
         here[:, RATIO] = context.material.poisson
         if loads.elastic_table is not None:
             local = local_material(context, step)
@@ -68,13 +68,14 @@ def local_material(context: FrontContext, step: Step) -> LocalMaterial:
     return LocalMaterial(*_elastic(context, T))
 
 
-def body_force(context: FrontContext, nodes: IntArray) -> FloatArray:
-    """(len(nodes), 3) force per volume by gravity and rotation."""
+def body_force(context: FrontContext, step: Step, nodes: IntArray) -> FloatArray:
+    """(len(nodes), 3) force per volume by gravity and rotation, in one step."""
     loads, x = context.loads, context.solid.points[nodes]
     acceleration = np.zeros_like(x)
-    if loads.gravity is not None:
+    if loads.gravity is not None and loads.acts("gravity", step.name):
         acceleration += loads.gravity
-    if loads.rotation and loads.rotation_axis is not None:
+    turns = loads.acts("rotation", step.name)
+    if loads.rotation and loads.rotation_axis is not None and turns:
         axis = np.array(loads.rotation_axis) / np.linalg.norm(loads.rotation_axis)
         arm = x - np.array(loads.rotation_point)
         arm = arm - (arm @ axis)[:, None] * axis
@@ -114,6 +115,8 @@ def free_extension(context: FrontContext, nodes: IntArray) -> FloatArray:
     name = context.loads.temperature
     if name is not None and context.loads.expansion is not None:
         for k, step in enumerate(context.steps):
+            if not context.loads.acts("temperature", step.name):
+                continue
             T = at_nodes(context.solid, step, name, nodes, (1,))[:, 0]
             out[k] = np.mean(_thermal_strain(context, T))
     return out
@@ -136,9 +139,9 @@ def _initial_stress(
     loads, solid = context.loads, context.solid
     stress = np.zeros((len(nodes), 6))
     strain = np.zeros((len(nodes), 6))
-    if loads.initial_stress is not None:
+    if loads.initial_stress is not None and loads.acts("initial_stress", step.name):
         stress += _six(at_nodes(solid, step, loads.initial_stress, nodes, (6, 9)))
-    if loads.initial_strain is not None:
+    if loads.initial_strain is not None and loads.acts("initial_strain", step.name):
         strain += _six(at_nodes(solid, step, loads.initial_strain, nodes, (6, 9)))
     strain[:, :3] += thermal[..., None]
     stress -= 2.0 * state[:, SHEAR, None] * strain

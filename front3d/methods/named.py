@@ -22,7 +22,8 @@ def at_nodes(
     if values is not None:
         found = values[nodes]
     elif name in step.cell_arrays:
-        found = _from_cells(solid, step.cell_arrays[name], nodes)
+        unique, row = np.unique(nodes, return_inverse=True)
+        found = _from_cells(solid, step.cell_arrays[name], unique)[row]
     else:
         raise _missing(solid, step, name)
     _check(solid, step, name, found, components)
@@ -67,7 +68,7 @@ def _check(
 
 
 def _from_cells(solid: Solid, parts: tuple[FloatArray, ...], nodes: IntArray) -> FloatArray:
-    """A plane fitted to the values at the centroids of the cells around each node, there.
+    """At different nodes: a plane fitted to the values at the centroids of the cells around each.
 
     Exact for a field that varies linearly where a node has four cells or more around it in general
     position; a mean where the cells do not tell the slope.  The two faces of a crack have nodes of

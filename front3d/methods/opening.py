@@ -62,6 +62,7 @@ def evaluate(context: FrontContext) -> list[MethodResult]:
     near = (d > FIRST * at_pairs(front, cell, pairs)) & (d <= limit)
     near &= d <= MAX_SHARE * (d + pairs.other)
     chosen = Pairs(pairs.s[near], d[near], pairs.other[near], pairs.jump[near])
+    stations = context.front.stations
     fit, count = _equations(context, chosen, cell, reach)
     variant = _variant(cell, reach)
     # The fit is not linear in the opening, so openings are combined, not K.
@@ -70,28 +71,33 @@ def evaluate(context: FrontContext) -> list[MethodResult]:
     for one, here in zip(jump, station_constants(context), strict=True):
         # Fitted with the constants of the first station, then each station with its own.
         first = _scale(here.at(0))
-        results.append(_result(fit.solve(one * first), count, variant, _scale(here) / first))
+        found = fit.solve(one * first)
+        results.append(_result(found, stations, count, variant, _scale(here) / first))
     return results
 
 
 def _equations(
     context: FrontContext, pairs: Pairs, cell: FloatArray, reach: FloatArray
 ) -> tuple[OpeningFit, IntArray]:
-    """The fit and the number of pairs per station; MethodError where it cannot be done."""
+    """The fit at the stations to report, and the number of pairs at every corner node.
+
+    MethodError where it cannot be done.
+    """
     front, n = context.front, len(context.front.corners)
     edges = len(front.edges)
     widest = edges / 8 if front.closed else WIDTH
     width = context.options.hat or WIDTH
     windows = build_windows(front, pairs.s, max(MIN_WIDTH, min(width, widest)))
+    windows = windows.at(front.stations)
     count = np.bincount(windows.station, minlength=n)
     along = 2 if edges >= 4 else edges // 2
     row = windows.station
     fit = OpeningFit(windows, pairs.d[windows.pair], cell[row], reach[row], along)
-    enough = count >= fit.n_unknowns + SPARE
+    enough = count[front.stations] >= fit.n_unknowns + SPARE
     if enough.all():
         enough = fit.solvable()
     if not enough.all():
-        k = int(np.argmin(enough))
+        k = int(front.stations[np.argmin(enough)])
         raise MethodError(
             f"{context.solid.source}: found {count[k]} node pairs between {FIRST * cell[k]:.3g} "
             f"and {reach[k]:.3g} behind the front at node {front.corners[k]}, expected "
@@ -124,10 +130,15 @@ def _variant(cell: FloatArray, reach: FloatArray) -> str:
     return f"{VARIANT}, from {FIRST:g} to {cells} cells behind the front"
 
 
-def _result(fit: Fit, count: IntArray, variant: str, factor: FloatArray) -> MethodResult:
+def _result(
+    fit: Fit, stations: IntArray, count: IntArray, variant: str, factor: FloatArray
+) -> MethodResult:
+    """Results at all corner nodes: not a number where there is no station."""
+    K, residual = np.full((len(count), 3), np.nan), np.full(len(count), np.nan)
+    K[stations], residual[stations] = fit.K, fit.residual
     columns = {
-        "opening_residual": fit.residual,
+        "opening_residual": residual,
         "opening_eps": np.full(len(count), fit.eps[fit.leading]),
         "opening_pairs": count.astype(float),
     }
-    return MethodResult("opening", fit.K * factor, columns, variant=variant)
+    return MethodResult("opening", K * factor, columns, variant=variant)

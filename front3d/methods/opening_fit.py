@@ -10,7 +10,7 @@ number per mode for the whole front, is where the sum of all squared residuals i
 from dataclasses import dataclass
 
 import numpy as np
-from scipy.optimize import minimize_scalar
+from scipy.optimize import brentq
 
 from front3d.arrays import BoolArray, FloatArray, IntArray
 from front3d.crack.front import SYMMETRY_PLANE, Front
@@ -41,6 +41,11 @@ class Windows:
     pair: IntArray
     gap: FloatArray
     sign: FloatArray
+
+    def at(self, stations: IntArray) -> "Windows":
+        """The windows of some of the stations, under their own numbers."""
+        kept = np.isin(self.station, stations)
+        return Windows(self.station[kept], self.pair[kept], self.gap[kept], self.sign[kept])
 
 
 def build_windows(front: Front, s: FloatArray, width: float) -> Windows:
@@ -153,18 +158,33 @@ class OpeningFit:
 
     def _best_eps(self, row: FloatArray, grid: FloatArray, prior: FloatArray) -> float:
         """Where the squares left over, and the prior on the grid, are least."""
+        k = int(np.argmin([self._left_over(row, eps) for eps in grid] + prior))
+        # A minimum is flat and can be told to half the digits only, where its slope is zero to all
+        # of them: without them K of a sum of steps is not the sum.  The prior's own slope jumps at
+        # the grid, so the minimum is in the interval before, or after, or at the corner itself.
+        for before, after in ((k - 1, k), (k, k + 1)):
+            if before < 0 or after == len(grid):
+                continue
+            low, high = float(grid[before]), float(grid[after])
+            rise = float(prior[after] - prior[before]) / (high - low)
 
-        def cost(eps: float) -> float:
-            return self._left_over(row, eps) + float(np.interp(eps, grid, prior))
+            def slope(eps: float, rise: float = rise) -> float:
+                return self._slope_of_left_over(row, eps) + rise
 
-        values = [cost(eps) for eps in grid]
-        k = int(np.argmin(values))
-        bounds = (grid[max(k - 1, 0)], grid[min(k + 1, len(grid) - 1)])
-        found = minimize_scalar(cost, bounds=bounds, method="bounded", options={"xatol": 1e-4})
-        return float(found.x)
+            if slope(low) < 0.0 < slope(high):
+                return float(brentq(slope, low, high, xtol=1e-15, rtol=1e-14))
+        return float(grid[k])
 
     def _left_over(self, row: FloatArray, eps: float) -> float:
         return float(self._stations(row, eps)[1].sum())
+
+    def _slope_of_left_over(self, row: FloatArray, eps: float) -> float:
+        """Derivative of `_left_over`: for b A^-1 b it is 2 b' x - x A' x with A x = b."""
+        solution, _ = self._stations(row, eps)
+        slower = row * (-0.5 * self._cells / np.sqrt(1.0 - eps * self._cells))
+        turned = self._sums(self._terms * slower[:, None])
+        squares = np.einsum("nc,ncd,nd->", solution, self._slope, solution)
+        return -float(2.0 * np.sum(turned * solution) + squares)
 
     def _stations(self, row: FloatArray, eps: float) -> tuple[FloatArray, FloatArray]:
         """Unknowns, (n_stations, n_unknowns), and squares left over, (n_stations,)."""

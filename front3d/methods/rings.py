@@ -23,9 +23,6 @@ another front."""
 OF_GIVEN = 0.8
 """The same for radii that the user gives."""
 
-SHARP = 20.0
-"""Degrees by which the front turns at a node, and three times the usual, that make a corner."""
-
 COARSE = 0.3
 """Reach of the cells at the front, in parts of the same distance, above which K is called rough."""
 
@@ -113,7 +110,7 @@ def ring_radii(
             last = min(RATIOS[-1], float(room[tightest] / plateau[tightest]))
             ratios = RATIOS if last == RATIOS[-1] else np.linspace(RATIOS[0], last, len(RATIOS))
             radii = np.outer(ratios, plateau)
-    return radii, (*_roughness(plateau[rows], own[rows]), *_sharp_corners(front))
+    return radii, _roughness(plateau[rows], own[rows])
 
 
 def _roughness(plateau: FloatArray, own: FloatArray) -> tuple[str, ...]:
@@ -123,24 +120,4 @@ def _roughness(plateau: FloatArray, own: FloatArray) -> tuple[str, ...]:
     return (
         f"the mesh is coarse for this front: the cells that touch it reach {100 * share:.0f} % of "
         "its radius of curvature (or half-width), so K may be off by some per cent",
-    )
-
-
-def _sharp_corners(front: Front) -> tuple[str, ...]:
-    """Say where the front turns much more sharply than anywhere else."""
-    places, _, _ = front.curve.frames(front.corner_s)
-    if front.closed:
-        places = np.vstack([places, places[:2]])
-    edges = np.diff(places, axis=0)
-    unit = edges / np.linalg.norm(edges, axis=1, keepdims=True)
-    turn = np.degrees(np.arccos(np.clip(np.sum(unit[1:] * unit[:-1], axis=1), -1.0, 1.0)))
-    if len(turn) < 3:
-        return ()
-    sharp = np.flatnonzero((turn > SHARP) & (turn > 3.0 * np.median(turn)))
-    if not len(sharp):
-        return ()
-    node = front.corners[(sharp[0] + 1) % len(front.corners)]
-    return (
-        f"the front turns by {turn[sharp[0]]:.0f} degrees at node {node}: at a corner there is no "
-        "K, and near it none of those given should be used",
     )

@@ -3,6 +3,8 @@
 from dataclasses import dataclass
 
 import numpy as np
+from scipy.sparse import coo_array, csr_array
+from scipy.sparse.csgraph import connected_components
 
 from front3d.arrays import BoolArray, FloatArray
 from front3d.crack.ends import end_faces
@@ -22,6 +24,9 @@ _SAME_DIRECTION = 0.999
 
 _PLANE = 1e-4
 """Distance from the plane of the frame, in ring radii, of faces that are bent."""
+
+_SMOOTH = 0.87
+"""Cosine between normals of neighbouring faces of one smooth surface: 30 degrees."""
 
 _ENDS = 0.5
 """Cosine between a face's normal and the front above which the front ends on the face."""
@@ -77,12 +82,15 @@ def surroundings(context: FrontContext, tube: Tube) -> Surroundings:
     rest = outer[~is_crack]
     planes = _symmetry_planes(context)
     rest = rest[~_on_planes(context, tube, rest, planes)]
-    ends_here = _across_the_front(context, tube, rest)
-    beside = rest[~ends_here]
+    across, led_away = _across_the_front(context, tube, rest), _from_the_ends(context, rest)
+    ends_here = across | led_away
+    # A surface that leads away from an end may come beside the front further on: it is free there,
+    # too, but rings do better to keep clear of it.
+    beside = rest[~across & ~(led_away & _beyond_the_ends(context, tube, rest))]
     options = context.options
     terms = [
         SurfaceTerm(rest[ends_here], OUTER, options.surface_pressure),
-        SurfaceTerm(beside, CUT),
+        SurfaceTerm(rest[~ends_here], CUT),
     ]
     crack, pressed = outer[is_crack], loaded_faces(context) and included(FACE_LOAD)
     if _bent(context, tube, crack) and included(BENT_FACES):
@@ -135,6 +143,42 @@ def _across_the_front(context: FrontContext, tube: Tube, faces: FaceTable) -> Bo
     area = faces.area_vectors(context.solid.points)
     along = np.abs(np.einsum("nk,nk->n", area, frame[:, 2]))
     return along > _ENDS * np.linalg.norm(area, axis=1)
+
+
+def _from_the_ends(context: FrontContext, faces: FaceTable) -> BoolArray:
+    """Which faces belong to the smooth surfaces that meet at a free end of the front.
+
+    At a re-entrant corner, where a crack starts from the foot of a step, one of these goes on in
+    the crack's plane and does not lie across the front.
+    """
+    front, entity = context.front, context.model.same.entity
+    ends = [
+        entity[node]
+        for node, end in zip(front.corners[[0, -1]], front.ends, strict=False)
+        if end == FREE_SURFACE
+    ]
+    corners = entity[faces.corners]
+    seeds = np.asarray(np.isin(corners, ends).any(axis=1))
+    if not seeds.any():
+        return seeds
+    n = len(faces)
+    rows = np.repeat(np.arange(n), corners.shape[1])
+    nodes, column = np.unique(corners, return_inverse=True)
+    holds = csr_array((np.ones(len(rows)), (rows, column.ravel())), shape=(n, len(nodes)))
+    beside = coo_array(holds @ holds.T)
+    area = faces.area_vectors(context.solid.points)
+    unit = area / np.linalg.norm(area, axis=1, keepdims=True)
+    smooth = np.sum(unit[beside.row] * unit[beside.col], axis=1) > _SMOOTH
+    pairs = (np.ones(smooth.sum()), (beside.row[smooth], beside.col[smooth]))
+    label = connected_components(coo_array(pairs, shape=(n, n)), directed=False)[1]
+    return np.asarray(np.isin(label, label[seeds]), dtype=bool)
+
+
+def _beyond_the_ends(context: FrontContext, tube: Tube, faces: FaceTable) -> BoolArray:
+    """Which faces are nearest to an end of the front, or to the half of an edge next to it."""
+    at = context.front.cell_coordinate(tube.s[np.searchsorted(tube.nodes, faces.corners)])
+    last = len(context.front.edges)
+    return np.asarray((at < 0.5).all(axis=1) | (at > last - 0.5).all(axis=1))
 
 
 def _symmetry_planes(context: FrontContext) -> list[tuple[FloatArray, FloatArray]]:

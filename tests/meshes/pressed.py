@@ -27,11 +27,13 @@ MATERIAL = Material(1.0, 0.3)
 
 @dataclass(frozen=True)
 class Acting:
-    """One step: pressure on the crack faces, body force, and initial stress (sigma* of C : eps +
-    sigma*), each a function of positions (n, 3) -> (n,), (n, 3), (n, 3, 3); and point arrays.
+    """One step: pressure and traction on the crack faces, body force, and initial stress (sigma* of
+    C : eps + sigma*), each a function of positions (n, 3) -> (n,), (n, 3), (n, 3, 3), the traction
+    of normals too; and point arrays.
     """
 
     pressure: Callable | None = None
+    traction: Callable | None = None
     force: Callable | None = None
     stress: Callable | None = None
     arrays: Callable = lambda x: {}
@@ -62,12 +64,14 @@ def solved(cells, acting: dict[str, Acting]) -> Solid:
 def nodal_forces(solid, load):
     """Work-equivalent forces of pressure, body force and initial stress."""
     out = np.zeros_like(solid.points)
+    crack = [
+        (kind, nodes[np.abs(solid.points[nodes][:, :, 2]).max(axis=1) < 1e-12])
+        for kind, nodes in boundary_faces(solid)
+    ]
     if load.pressure is not None:
-        crack = [
-            (kind, nodes[np.abs(solid.points[nodes][:, :, 2]).max(axis=1) < 1e-12])
-            for kind, nodes in boundary_faces(solid)
-        ]
         out += traction_load(solid.points, crack, lambda x, n: -load.pressure(x)[:, None] * n)
+    if load.traction is not None:
+        out += traction_load(solid.points, crack, load.traction)
     for block in solid.blocks:
         xi, weights = ELEMENTS[block.kind].quadrature(3)
         values, reference = block.element.values(xi), block.element.gradients(xi)

@@ -8,7 +8,9 @@ conjugate gradients stay orthogonal to the rigid motions.
 import numpy as np
 
 
-def solve_tetra10(points, cells, poisson, tractions, held=(), tolerance=1e-10, young=1.0):
+def solve_tetra10(
+    points, cells, poisson, tractions, held=(), tolerance=1e-10, young=1.0, forces=None
+):
     """Displacements, one (n, 3) array per load.
 
     Parameters
@@ -17,6 +19,7 @@ def solve_tetra10(points, cells, poisson, tractions, held=(), tolerance=1e-10, y
     tractions : one function per load, (normals (3, ...), positions (3, ...)) -> traction (3, ...)
         on the whole outer boundary (crack faces included: return zero there)
     held : (node numbers, component) pairs whose displacement is zero
+    forces : one function per load, positions (3, ...) -> force per volume (3, ...); or None
     """
     import skfem
     from skfem.helpers import ddot, sym_grad, trace
@@ -47,6 +50,9 @@ def solve_tetra10(points, cells, poisson, tractions, held=(), tolerance=1e-10, y
     for traction in tractions:
         form = skfem.LinearForm(lambda v, w, t=traction: np.sum(t(w.n, w.x) * v, axis=0))
         loads.append(form.assemble(boundary)[order])
+    for load, force in zip(loads, forces or (), strict=False):
+        form = skfem.LinearForm(lambda v, w, f=force: np.sum(f(w.x) * v, axis=0))
+        load += form.assemble(basis)[order]
     fixed = np.concatenate([3 * np.asarray(n) + c for n, c in held] or [np.zeros(0, int)])
     return _conjugate_gradients(stiffness, loads, points, fixed.astype(int), tolerance)
 
