@@ -19,6 +19,7 @@ from collections.abc import Mapping
 import numpy as np
 
 from front3d.arrays import BoolArray, FloatArray
+from front3d.results import pure_tearing
 from front3d.solid import Constants
 
 CLOSED = 0.01
@@ -77,11 +78,13 @@ def tangential(K: FloatArray) -> tuple[FloatArray, FloatArray]:
 
     The direction of the largest s(phi), where s'(phi) = 0, and its value there; K_III plays no
     part.  In closed form, cos(phi) = (3 K_II^2 + K_I sqrt(K_I^2 + 8 K_II^2)) / (K_I^2 + 9 K_II^2),
-    with the sign opposite to K_II.  NaN where K_I is negative, and in pure mode III.
+    with the sign opposite to K_II.  NaN where K_I is negative, and in pure mode III, where K_I and
+    K_II only scatter around nought and would turn the angle from side to side.
 
     Source: Erdogan and Sih, J. Basic Eng. 85 (1963) 519-525.
     """
     K = open_K(K)
+    K[pure_tearing(K)] = np.nan
     kink = _tangential_kink(K)
     stress, _ = _cylinder_stresses(kink, K)
     return np.degrees(kink), stress

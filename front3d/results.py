@@ -206,10 +206,11 @@ class FrontResult:
     @property
     def mode_angles(self) -> FloatArray:
         """(n, 2) in degrees: psi = atan2(K_II, K_I), and the mode-III angle
-        atan2(K_III, hypot(K_I, K_II)).
+        atan2(K_III, hypot(K_I, K_II)).  In pure mode III there is no psi: NaN.
         """
         k1, k2, k3 = self.K.T
-        return np.degrees(np.stack([np.arctan2(k2, k1), np.arctan2(k3, np.hypot(k1, k2))], axis=1))
+        psi = np.where(pure_tearing(self.K), np.nan, np.arctan2(k2, k1))
+        return np.degrees(np.stack([psi, np.arctan2(k3, np.hypot(k1, k2))], axis=1))
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -222,6 +223,18 @@ class Evaluation:
     fronts: tuple[FrontResult, ...]
     options: Mapping[str, object] = field(default_factory=dict)
     warnings: tuple[str, ...] = ()
+
+
+NO_PSI = 0.01
+"""K_I and K_II together, in parts of the station's own |K|, up to which they are taken for scatter
+around nought (common practice): the angle between them would be that of noise.
+"""
+
+
+def pure_tearing(K: FloatArray) -> BoolArray:
+    """(n,) whether K (n, 3) is of mode III alone, or nought."""
+    inside: BoolArray = np.hypot(K[:, 0], K[:, 1]) <= NO_PSI * np.linalg.norm(K, axis=1)
+    return inside
 
 
 def energy_release_rate(K: FloatArray, material: Constants) -> FloatArray:

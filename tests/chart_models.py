@@ -80,7 +80,7 @@ FIGURES: dict[str, Callable[[], Any]] = {
         replace(
             BUSY,
             comparisons=(
-                replace(BUSY.comparisons[0], source="Newman and Raju (1984, 1986), from memory"),
+                replace(BUSY.comparisons[0], source="Newman and Raju (1984, 1986) and others"),
             ),
         ),
         MILLIMETRES,
@@ -94,6 +94,14 @@ FIGURES: dict[str, Callable[[], Any]] = {
     ),
     "through": lambda: through(through_front()),
     "mix": lambda: mode_mix(through_front(), MILLIMETRES, STEEL),
+    "mode I alone": lambda: mode_mix(replace(SURFACE, K=SURFACE.K * (1, 0, 0)), MILLIMETRES, STEEL),
+    "mode III alone": lambda: mode_mix(
+        replace(SURFACE, K=SURFACE.K[:, ::-1] * (0, 0, 1)), MILLIMETRES, STEEL
+    ),
+    "shear": lambda: along_front(replace(SURFACE, K=SURFACE.K[:, [1, 0, 2]] * (0, 1, 1)), Units()),
+    "methods take turns": lambda: along_front(
+        replace(BUSY, sources=("closure", "interaction") * 30 + ("closure",)), MILLIMETRES
+    ),
     "two steps": lambda: over_steps(steps(1, 0.5), MILLIMETRES),
     "seven steps": lambda: over_steps(steps(*np.linspace(1, 2, 7)), MILLIMETRES),
     "load cases": lambda: at_stations(

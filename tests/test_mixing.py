@@ -42,6 +42,12 @@ def test_pure_mode_III_twists_by_45_degrees() -> None:
     assert np.isnan(tangential(one(0, 0, 5.0))).all()  # a criterion without K_III says nothing
 
 
+def test_scatter_under_mode_III_has_no_kink_by_a_criterion_without_it() -> None:
+    noise = np.random.default_rng(6).normal(size=(20, 2)) * 1e-3
+    kink, K_eq = tangential(np.column_stack([np.abs(noise[:, 0]), noise[:, 1], np.ones(20)]))
+    assert np.isnan(kink).all() and np.isnan(K_eq).all()
+
+
 def test_both_criteria_agree_without_mode_III() -> None:
     K = MIXED * (1, 1, 0)
     kink, twist, K_eq = principal(K)

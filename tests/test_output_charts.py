@@ -13,7 +13,7 @@ from front3d.output.charts import charts_of
 from front3d.output.charts.along import along_front
 from front3d.output.charts.mix import mode_mix
 from front3d.output.charts.style import layer_lengths, mathtext, plain_text, png, svg
-from front3d.results import FrontResult
+from front3d.results import FrontResult, MethodResult
 from front3d.units import Units
 from tests.chart_models import BUSY, SURFACE, contrast_on_white, drawn, lines, steps
 from tests.output_models import MILLIMETRES, STEEL, elliptic_front, evaluation_of, through_front
@@ -106,9 +106,53 @@ def test_units_ends_layer_and_caution_are_written() -> None:
     assert any("engineering aid" in text.get_text() for text in figure.texts)
     entries = {text.get_text() for text in figure.legends[0].get_texts()}
     assert {"flagged", "free-surface layer", "range over rings"} <= entries
-    assert "nought throughout" in figure.texts[1].get_text()
+    assert "No panel for $K_{III}$: below 0.01 %" in figure.texts[1].get_text()
     unnamed = along_front(SURFACE, Units())
     assert "[" not in unnamed.axes[0].get_ylabel()
+
+
+def test_the_mode_that_counts_has_the_high_panel_and_those_of_noise_have_none() -> None:
+    noise = np.random.default_rng(3).normal(size=len(SURFACE)) * 1e-3
+    K = np.stack([noise, 0.3 * SURFACE.K[:, 0], SURFACE.K[:, 0]], axis=1)
+    front = replace(SURFACE, K=K, methods={"interaction": MethodResult("interaction", K)})
+    figure = along_front(front, MILLIMETRES)
+    names = [axes.get_ylabel().split("\n")[0] for axes in figure.axes]
+    assert names == ["$K_{II}$", "$K_{III}$"]
+    figure.draw_without_rendering()
+    low, high = (axes.get_window_extent().height for axes in figure.axes)
+    assert high > 1.5 * low
+    # Noise by one method only is a disagreement, and is shown.
+    other = MethodResult("closure", K + np.array([1.0, 0, 0]))
+    figure = along_front(replace(front, methods=front.methods | {"closure": other}), MILLIMETRES)
+    assert len(figure.axes) == 3
+
+
+def test_a_curve_that_leaves_its_panel_is_named() -> None:
+    K = np.array(SURFACE.K)
+    K[0, 0] = 3 * K[:, 0].max()
+    front = replace(SURFACE, methods=SURFACE.methods | {"opening": MethodResult("opening", K)})
+    words = along_front(front, MILLIMETRES).texts[1].get_text()
+    assert "Beyond the panel at an end of the front: opening profile." in words
+    assert "Beyond" not in along_front(SURFACE, MILLIMETRES).texts[1].get_text()
+
+
+def test_noise_of_K_I_and_K_II_under_mode_III_is_no_angle() -> None:
+    noise = np.random.default_rng(4).normal(size=(len(SURFACE), 2)) * 1e-3
+    front = replace(SURFACE, K=np.column_stack([noise, SURFACE.K[:, 0]]))
+    figure = mode_mix(front, MILLIMETRES, STEEL)
+    for axes, name in (
+        (figure.axes[0], r"$\psi$ = atan2($K_{II}$, $K_I$)"),
+        (figure.axes[1], "kink, MTS"),
+    ):
+        assert np.isnan(lines(axes)[name].get_ydata()).all()
+    assert lines(figure.axes[1])["twist, 3D"].get_ydata() == pytest.approx(45, abs=0.01)
+    assert "mode III alone" in figure.texts[1].get_text()
+
+
+def test_pure_mode_I_has_a_panel_of_G_only_and_says_so() -> None:
+    figure = mode_mix(replace(SURFACE, K=SURFACE.K * (1, 1e-4, 1e-4)), MILLIMETRES, STEEL)
+    assert [axes.get_ylabel()[:9] for axes in figure.axes] == ["G by mode"]
+    assert "Pure mode I" in figure.texts[1].get_text()
 
 
 def test_parametric_angle_stands_above_where_the_front_is_an_ellipse() -> None:

@@ -12,12 +12,12 @@ from matplotlib.backends.backend_agg import FigureCanvasAgg
 
 from front3d.output import rendering
 from front3d.output.scene import best_view, close_up, colour_scale, colours, scene_png, skin
-from front3d.output.scene.camera import box_corners, pixels
+from front3d.output.scene.camera import pixels
 from front3d.output.scene.cutting import cut_to_box
-from front3d.output.scene.geometry import opened, opening_factor, tube
+from front3d.output.scene.geometry import moved, opened, opening_factor, tube
 from front3d.output.scene.labels import half_box, place_for_words
-from front3d.output.scene.quantity import QUANTITIES, values_of
-from front3d.output.scene.still import Look, scene_figure
+from front3d.output.scene.quantity import QUANTITIES, Scale, shown_value, values_of
+from front3d.output.scene.still import Look, scene_figure, view_of
 from front3d.results import FrontResult
 from tests.output_models import MILLIMETRES, cracked_block, elliptic_front
 
@@ -80,6 +80,15 @@ def test_scatter_does_not_fill_the_colour_scale() -> None:
     assert scale.high - scale.low >= 10.0
     assert scale.low < 99.9
     assert scale.high == K[:, 0].max()  # the peak has the last colour
+
+
+def test_scatter_around_nought_has_no_colours_and_no_digits() -> None:
+    K = np.zeros_like(EMBEDDED.K)
+    K[:, 0] = 100.0
+    K[:, 1] = 5e-3 * np.cos(np.arange(len(K)))
+    front = with_K(EMBEDDED, K)
+    assert colour_scale((front,), "K_II") == Scale("K_II", -1.0, 1.0)
+    assert shown_value((front,), front, 0, "K_II") == 0.0
 
 
 def test_a_front_under_shear_shows_the_mode_that_counts() -> None:
@@ -184,8 +193,8 @@ def with_flags(front: FrontResult) -> FrontResult:
 @pytest.mark.slow
 @pytest.mark.parametrize("quantity", ["K_I", "psi", "flag"])
 def test_boxes_of_words_do_not_overlap_and_the_peak_is_dark(quantity: str) -> None:
-    # Closed: the stepped crack of this block reaches beyond the front, and opened would hide it.
-    look = Look(quantity, opening=0.0, rings=True, ribbon=True)
+    # Opened: the stepped crack of this block reaches beyond the front, and lies over it.
+    look = Look(quantity, rings=True, ribbon=quantity != "K_I")
     block, front = cracked_block(1.6, 1.2), with_flags(SURFACE)
     figure = scene_figure(block, (front,), MILLIMETRES, look)
     FigureCanvasAgg(figure).draw()
@@ -193,6 +202,9 @@ def test_boxes_of_words_do_not_overlap_and_the_peak_is_dark(quantity: str) -> No
     words = [text for text in panel.texts if text.get_bbox_patch() is not None]
     assert len(words) == (0 if quantity == "flag" else 2)
     boxes = [text.get_bbox_patch().get_window_extent() for text in words]
+    letters = [t for t in panel.texts if t not in words and t.get_text()]
+    assert len(letters) >= (2 if quantity == "flag" else 5)
+    boxes += [t.get_window_extent().padded(-2) for t in letters]
     boxes += [axes.get_tightbbox() for axes in others] + [
         t.get_window_extent() for t in figure.texts
     ]
@@ -201,14 +213,24 @@ def test_boxes_of_words_do_not_overlap_and_the_peak_is_dark(quantity: str) -> No
         assert figure.bbox.containsy(box.y0) and figure.bbox.containsy(box.y1)
         assert not any(box.overlaps(other) for other in boxes[i + 1 :])
     if quantity == "K_I":
-        # At the largest K the tube has the last colour, dark violet, as lit: blue over green.
         image = panel.images[0].get_array()
-        positions = front.positions - front.positions.mean(axis=0)
-        low, high = close_up(positions, block.points - front.positions.mean(axis=0))
-        view = best_view(front, box_corners(low, high))
-        x, y = pixels(positions[len(front) // 2 - 3], view, (1040, 780)).astype(int)
-        dark = image[y - 14 : y + 15, x - 14 : x + 15].reshape(-1, 3).astype(int)
+        (near,) = moved((front,), -front.positions.mean(axis=0))
+        box = close_up(near.positions, block.points - front.positions.mean(axis=0))
+        peak = int(np.argmax(front.K[:, 0]))
+        places = pixels(near.positions, view_of((near,), box, ((0, peak),)), (1040, 780))
+        around = [
+            image[y - 5 : y + 6, x - 5 : x + 6].reshape(-1, 3).astype(int)
+            for x, y in places.astype(int)
+        ]
+        # At the largest K the tube has the last colour, dark violet, as lit: blue over green.
+        dark = around[peak - 3]
         assert ((dark[:, 2] - dark[:, 1] > 40) & (dark.max(axis=1) < 170)).any()
+        # And nothing hides it anywhere: body, crack and arrows have less colour than its darkest.
+        assert all((np.ptp(part, axis=1) > 60).any() for part in around)
+        # The dots on the largest and smallest value have the colours of the ends of the scale.
+        dots = [line for line in panel.lines if line.get_marker() == "o"]
+        ends = colours()([1.0, 0.0])
+        assert [line.get_markerfacecolor() for line in dots] == [tuple(c) for c in ends]
 
 
 @pytest.mark.slow

@@ -11,6 +11,8 @@ import numpy as np
 import pytest
 import pyvista as pv
 
+from front3d.cli import words
+from front3d.output import formats
 from front3d.output.formats import place
 from front3d.output.summary import companions, summary_json
 from front3d.output.tables import FIRST_COLUMNS, front_vtp, points_csv
@@ -102,7 +104,9 @@ def test_summary_names_inputs_extremes_and_caution(tmp_path: Path) -> None:
     assert data["inputs"] == [
         {"file": "block.vtu", "sha256": hashlib.sha256(b"numbers").hexdigest()}
     ]
-    assert data["material"] == {"young": 200e3, "poisson": 0.3}
+    stated = "isotropic, E = 200000 MPa, Poisson's ratio 0.3"
+    assert data["material"] == {"young": 200e3, "poisson": 0.3, "stated": stated}
+    assert data["loads"].startswith("none stated")
     assert {"front3d", "python", "numpy", "vtk"} <= set(data["versions"])
     (front,) = data["fronts"]
     peak = front["K"]["K_I"]["max"]
@@ -141,3 +145,7 @@ def test_places_far_from_the_origin_keep_their_digits() -> None:
     """A ten-thousandth of the front's length can be read off, wherever the model stands."""
     assert place(np.array([5000.0123, -7000.0, 1e-15]), 0.01) == "5000.0123, -7000, 0"
     assert place(np.array([12.3456789, 0.5, 0.0]), 10.0) == "12.346, 0.5, 0"
+
+
+def test_nought_is_the_same_on_the_terminal_and_in_pictures() -> None:
+    assert words.NOUGHT == formats.NOUGHT

@@ -8,6 +8,7 @@ import time
 from collections.abc import Iterator
 from dataclasses import replace
 from pathlib import Path
+from typing import Any
 
 import numpy as np
 import pytest
@@ -77,6 +78,19 @@ def test_the_numbers_are_those_of_the_station() -> None:
         assert f"{value:.4g}" in text
 
 
+def test_a_kept_chart_gives_the_same_panel_and_an_other_station_another() -> None:
+    evaluation = two_by_two()
+    shown = first_shown(evaluation)
+    kept: dict[Any, Panel] = {}
+    panels = [draw_panel(evaluation, shown, SIZE, kept) for _ in range(2)]
+    assert len(kept) == 1
+    assert np.array_equal(panels[0].image, draw_panel(evaluation, shown, SIZE).image)
+    assert np.array_equal(panels[0].image, panels[1].image)
+    other = draw_panel(evaluation, replace(shown, station=3), SIZE, kept)
+    assert len(kept) == 1
+    assert (other.image != panels[0].image).any(axis=2).sum() > 500
+
+
 @pytest.fixture(scope="module")
 def panel() -> Panel:
     evaluation = two_by_two()
@@ -123,10 +137,10 @@ def test_the_slider_opens_from_nought_to_its_most(panel: Panel) -> None:
 def test_no_words_of_the_panel_overlap_or_are_cut(quantity: str, against: str) -> None:
     evaluation = two_by_two()
     shown = replace(first_shown(evaluation), quantity=quantity, against=against, front=0)
-    figure = draw_panel(evaluation, shown, SIZE).figure
-    boxes = [text.get_window_extent() for text in figure.texts]
-    boxes += [text.get_window_extent() for text in figure.axes[1].texts]
-    boxes.append(figure.axes[0].get_tightbbox())
+    below, over = draw_panel(evaluation, shown, SIZE).figures
+    boxes = [text.get_window_extent() for text in (*below.texts, *over.texts)]
+    boxes += [text.get_window_extent() for text in below.axes[1].texts]
+    boxes.append(below.axes[0].get_tightbbox())
     for i, box in enumerate(boxes):
         assert box.x0 >= 0 and box.x1 <= SIZE[0] and box.y0 >= 0 and box.y1 <= SIZE[1]
         assert not any(box.overlaps(other) for other in boxes[i + 1 :])
@@ -224,6 +238,41 @@ click(half + window.panel.stations[30][0], window.panel.stations[30][1])  # and 
 assert window.shown.station == 30, window.shown
 press("n")
 assert window.shown.step == 1, window.shown
+
+def drag(*way):
+    for event, (x, y) in zip(("LeftButtonPressEvent", "MouseMoveEvent", "MouseMoveEvent"), way):
+        interactor.SetEventInformation(int(x), int(height - 1 - y))
+        interactor.InvokeEvent(event)
+    hidden.append(not window._images["scene"].GetVisibility())
+    interactor.InvokeEvent("LeftButtonReleaseEvent")
+
+# The slider's knob: what is drawn follows it, up to the end of the slider.
+hidden = []
+left, top, right, bottom = window.panel.slider
+middle, knob = (top + bottom) / 2, half + (left + right) / 2
+flat = window._body
+drag((knob, middle), (knob + 30, middle + 5), (half + right + 40, middle))
+assert window.shown.opening == 2.0, window.shown
+assert window._body is not flat and hidden == [False], hidden
+
+# Turning the scene: its words are hidden meanwhile, and come back where they belong.
+eye = window.view.towards
+drag((200, 400), (230, 420), (260, 430))
+assert hidden[-1] and window._images["scene"].GetVisibility()
+assert abs(window.view.towards @ eye) < 0.9999
+
+# A smaller window: the panel is drawn anew, and its buttons are where they are drawn.
+window.plotter.ren_win.SetSize(1200, 760)
+window.plotter.ren_win.Render()
+interactor.SetSize(1200, 760)
+interactor.ProcessEvents()
+half, height = window.plotter.window_size[0] // 2, window.plotter.window_size[1]
+assert (half, height) == (600, 760), (half, height)
+assert window.panel.image.shape[:2] == (760, 600), window.panel.image.shape
+left, top, right, bottom = window.panel.spots["G"]
+click(half + (left + right) / 2, (top + bottom) / 2)
+assert window.shown.quantity == "G", window.shown
+press("2")
 press("s")
 print("saved", window.written[0].name)
 window.plotter.close()

@@ -195,15 +195,16 @@ ENTRIES: tuple[Solution, ...] = (
             "bending": _BENDING,
             "depth": _DEPTH,
         },
-        "Newman and Raju (1984, 1986), from memory",
-        "within 5 % of the finite elements it was fitted to",
+        "Newman and Raju (1984, 1986)",
+        "within 5 % of the finite elements it was fitted to (the equation is from memory)",
     ),
     _newman_raju(
         "embedded",
         "elliptical crack at mid-thickness of a plate, fitted equation",
         {**_EMBEDDED, "b": _B_HALF, "tension": _TENSION, "depth": _DEPTH},
-        "Newman and Raju (1981, 1984), from memory",
-        "within 3 % of the finite elements it was fitted to, for a/t < 0.8",
+        "Newman and Raju (1981, 1984)",
+        "within 3 % of the finite elements it was fitted to, for a/t < 0.8 (the equation is from "
+        "memory)",
     ),
     _newman_raju(
         "hole",
@@ -215,8 +216,9 @@ ENTRIES: tuple[Solution, ...] = (
             "cracks": Argument("2 on opposite sides of the hole, or 1", "", 2.0),
             "depth": _DEPTH,
         },
-        "Newman and Raju (1981, 1984), from memory",
-        "within 5 % of the finite elements it was fitted to, for two cracks",
+        "Newman and Raju (1981, 1984)",
+        "within 5 % of the finite elements it was fitted to, for two cracks (the equation is from "
+        "memory)",
     ),
     Solution(
         "raju-newman-table",
@@ -225,8 +227,8 @@ ENTRIES: tuple[Solution, ...] = (
         ("tension",),
         partial(_place, "surface"),
         partial(_from_table, "surface", "raju_newman_1979"),
-        "Raju and Newman (1979), from memory",
-        "not recalled",
+        "Raju and Newman (1979)",
+        "not recalled (the table is from memory)",
         _recalled,
         poisson=0.3,
     ),

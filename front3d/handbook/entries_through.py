@@ -192,8 +192,8 @@ ENTRIES: tuple[Solution, ...] = (
         ("tension", "bending"),
         _place,
         _edge,
-        f"{_TADA}; bending: Brown and Srawley (1966), from memory",
-        "within 0.5 %; bending, a/b <= 0.6: within 0.2 % (0.4 % was found)",
+        f"{_TADA}; bending: Brown and Srawley (1966)",
+        "within 0.5 %; bending (from memory), a/b <= 0.6: within 0.2 % (0.4 % was found)",
         _unseen,
     ),
     _mode_one(

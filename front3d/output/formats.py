@@ -4,6 +4,9 @@ from math import ceil, log10
 
 from front3d.arrays import FloatArray
 
+NOUGHT = 1e-4
+"""Part of the front's largest K below which another mode is called nought (as on the terminal)."""
+
 
 def place(position: FloatArray, length: float) -> str:
     """Coordinates of a point (3,) to a ten-thousandth of `length`, however far from the origin;

@@ -13,7 +13,7 @@ from front3d.arrays import FloatArray
 from front3d.errors import Front3DError, ReadError
 from front3d.evidence import REPORTED
 from front3d.results import MODES, Comparison, Evaluation, FrontResult, MethodResult, Rings
-from front3d.solid import Material
+from front3d.solid import LocalMaterial, Material
 from front3d.units import Units
 
 Rows = list[dict[str, str]]
@@ -49,7 +49,7 @@ def read_saved(folder: Path) -> Saved:
     rows = _rows(folder / "points.csv")
     try:
         units = Units(summary["units"]["length"], summary["units"]["stress"])
-        material = Material(**summary["material"])
+        material = Material(summary["material"]["young"], summary["material"]["poisson"])
         fronts = []
         start = 0
         for about in summary["fronts"]:
@@ -135,6 +135,7 @@ def _front(about: Mapping[str, Any], rows: Rows, folder: Path) -> FrontResult:
             s=_column(rows, "s"),
             positions=np.stack([_column(rows, axis) for axis in "xyz"], axis=1),
             frames=frames,
+            material=_constants(rows),
             K=K,
             G=_column(rows, "G"),
             flags=tuple(row["flag"] for row in rows),
@@ -147,6 +148,13 @@ def _front(about: Mapping[str, Any], rows: Rows, folder: Path) -> FrontResult:
         )
     except Front3DError as error:
         raise ReadError(f"{folder}: {error}") from error
+
+
+def _constants(rows: Rows) -> LocalMaterial | None:
+    """Those of the front's own, where the table has them."""
+    if "young" not in rows[0]:
+        return None
+    return LocalMaterial(_column(rows, "young"), _column(rows, "poisson"))
 
 
 def _rings(rows: Rows) -> Rings | None:

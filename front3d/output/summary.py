@@ -16,6 +16,7 @@ import numpy as np
 from front3d import __version__
 from front3d.errors import ReadError
 from front3d.output.deviation import deviation
+from front3d.output.loads import ONLY_DISPLACEMENTS, load_words, material_words
 from front3d.output.trust import agreement, rings_of
 from front3d.results import CAUTION, MODES, Comparison, Evaluation, FrontResult
 from front3d.units import Units
@@ -33,7 +34,7 @@ def summary(
     `inputs` are the files that were read, `files` the names of the files written beside it,
     `case_file` the text of a case file that repeats the evaluation.
     """
-    units = evaluation.units
+    units, options = evaluation.units, plain(evaluation.options)
     return {
         "caution": CAUTION,
         "source": evaluation.source,
@@ -46,9 +47,11 @@ def summary(
         "material": {
             "young": evaluation.material.young,
             "poisson": evaluation.material.poisson,
+            "stated": dict(material_words(options, evaluation.material, units))["material"],
         },
+        "loads": dict(load_words(options, units)) or ONLY_DISPLACEMENTS,
         "units": {"length": units.length, "stress": units.stress, "K": units.K_label},
-        "options": plain(evaluation.options),
+        "options": options,
         "versions": versions(),
         "fronts": [front_summary(front, units) for front in evaluation.fronts],
         "warnings": list(evaluation.warnings),

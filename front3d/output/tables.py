@@ -10,6 +10,7 @@ from numpy.typing import NDArray
 
 from front3d.mixing import mix_columns
 from front3d.output.deviation import deviation
+from front3d.output.loads import own_constants
 from front3d.output.trust import rings_of
 from front3d.results import MODES, Evaluation, FrontResult, Rings
 from front3d.solid import Constants
@@ -93,12 +94,16 @@ def all_columns(evaluation: Evaluation) -> dict[str, Column]:
     """The columns of all fronts and steps, one below the other.
 
     A method that was applied to some fronts only, and a solution that suits some only, has nan for
-    the stations of the others.
+    the stations of the others.  The elastic constants stand there where they are a front's own.
     """
     units, material = evaluation.units, evaluation.material
-    tables = [
-        front_columns(front, units, front.material or material) for front in evaluation.fronts
-    ]
+    fronts = evaluation.fronts
+    tables = [front_columns(front, units, front.material or material) for front in fronts]
+    if any(own_constants(front.material, material) for front in fronts):
+        for front, table in zip(fronts, tables, strict=True):
+            own = front.material or material
+            table["young"] = np.full(len(front), own.young)
+            table["poisson"] = np.full(len(front), own.poisson)
     names = dict.fromkeys(name for table in tables for name in table)
     return {
         name: np.concatenate([t[name] if name in t else _absent(name, len(t["s"])) for t in tables])

@@ -34,14 +34,14 @@ def charts_of(evaluation: Evaluation) -> dict[str, Callable[[], "Figure"]]:
     One front in one step gives plain names; otherwise front and step are part of them.
     """
     fronts, units, material = evaluation.fronts, evaluation.units, evaluation.material
-    names = file_names([front.step for front in fronts])
+    tails = _tails(fronts)
     makers: dict[str, Callable[[], Figure]] = {}
     rows = rows_of(fronts)
     for front in fronts:
         row = rows[front.front]
         if len(row) > MOST_STEPS and front is not max(row, key=_largest):
             continue
-        tail = "" if len(fronts) == 1 else f"_front{front.front}_{names[front.step]}"
+        tail = tails[front.front, front.step]
         makers[f"chart{tail}"] = partial(along_front, front, units)
         section = section_of(front)
         if section is not None:
@@ -54,6 +54,29 @@ def charts_of(evaluation: Evaluation) -> dict[str, Callable[[], "Figure"]]:
             stations = chosen_stations(row, places_asked(evaluation))
             makers[f"stations{tail}"] = partial(at_stations, row, stations, units)
     return makers
+
+
+def heads(evaluation: Evaluation) -> dict[str, str]:
+    """What the charts of one front, in one step or in all, are about: by the end of their names."""
+    fronts = evaluation.fronts
+    if len(fronts) == 1:
+        return {}
+    numbers = dict.fromkeys(front.front for front in fronts)
+    found = {
+        f"_front{number}" if len(numbers) > 1 else "": f"Front {number}, all steps"
+        for number in numbers
+    }
+    for (number, step), tail in _tails(fronts).items():
+        found[tail] = f"Front {number}, step {step}"
+    return found
+
+
+def _tails(fronts: tuple[FrontResult, ...]) -> dict[tuple[int, str], str]:
+    """How the names of the charts of a front in a step end."""
+    names = file_names([front.step for front in fronts])
+    if len(fronts) == 1:
+        return {(fronts[0].front, fronts[0].step): ""}
+    return {(f.front, f.step): f"_front{f.front}_{names[f.step]}" for f in fronts}
 
 
 def _largest(front: FrontResult) -> float:

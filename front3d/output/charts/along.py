@@ -1,5 +1,6 @@
 """K_I, K_II and K_III along a front: by every method, with the range over the rings."""
 
+from collections.abc import Sequence
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
@@ -14,6 +15,7 @@ from front3d.output.charts.panels import (
     layer_entry,
     layer_names,
     left_out,
+    limits_of,
     panel_heights,
     position_panels,
 )
@@ -67,6 +69,7 @@ def along_front(front: FrontResult, units: Units) -> "Figure":
         captions += ("Shaded: K has no strict meaning where the front meets a free surface.",)
     heights = panel_heights([front], modes)
     captions += _taken_from_others(front)
+    captions += _leaving(front, modes)
     entries = [
         f"reported ({reported_by(front)})",
         *(_from(name) for name in _sources(front) if len(_sources(front)) > 1),
@@ -84,7 +87,7 @@ def along_front(front: FrontResult, units: Units) -> "Figure":
         _draw(axes, front, mode)
         fit_K(axes, [front.K[:, mode], *_also_fitted(front, mode)], largest)
         label_K(axes, mode, units)
-    _circle_flagged(panels[0], front)
+        _circle_flagged(axes, front, mode)
     layer_entry(panels[0], front)
     legend(figure, panels[0])
     figure.align_ylabels(panels)
@@ -96,7 +99,7 @@ def _draw(axes: "Axes", front: FrontResult, mode: int) -> None:
     every = mark_every(front)
     sources = _sources(front)
     one = len(sources) == 1
-    strong = _style(max(sources, key=front.sources.count))
+    strong = method_style(max(sources, key=front.sources.count))
     axes.plot(
         x,
         closed_up(front.K[:, mode], front),
@@ -115,7 +118,7 @@ def _draw(axes: "Axes", front: FrontResult, mode: int) -> None:
             markeredgewidth=1.8,
             label=_from(name),
             zorder=3.5,
-            **(_style(name) | {"linestyle": "none"}),
+            **(method_style(name) | {"linestyle": "none"}),
         )
     rings = rings_of(front)
     if rings is not None:
@@ -143,7 +146,7 @@ def _draw(axes: "Axes", front: FrontResult, mode: int) -> None:
             label=METHOD_NAMES.get(name, name),
             markevery=(every // 2, every),
             **thin,
-            **_style(name),
+            **method_style(name),
         )
     for number, comparison in enumerate(front.comparisons):
         axes.plot(
@@ -163,7 +166,7 @@ def _other_methods(front: FrontResult) -> dict[str, FloatArray]:
     }
 
 
-def _style(name: str) -> dict[str, Any]:
+def method_style(name: str) -> dict[str, Any]:
     return _STYLES.get(name, _ANOTHER)
 
 
@@ -202,12 +205,29 @@ def _also_fitted(front: FrontResult, mode: int) -> list[FloatArray]:
     return curves + [comparison.K[inside, mode] for comparison in front.comparisons]
 
 
-def _circle_flagged(axes: "Axes", front: FrontResult) -> None:
+def _leaving(front: FrontResult, modes: Sequence[int]) -> tuple[str, ...]:
+    """A caption on curves that leave their panel at an end."""
+    largest = largest_K([front])
+    curves = [(METHOD_NAMES.get(name, name), K) for name, K in _other_methods(front).items()]
+    curves += [(plain_text(one.source, _MOST), one.K) for one in front.comparisons]
+    names = []
+    for name, K in () if front.closed else curves:
+        for mode in modes:
+            low, high = limits_of([front.K[:, mode], *_also_fitted(front, mode)], largest)
+            ends = K[[0, -1], mode]
+            if ((ends < low) | (ends > high)).any():
+                names.append(name)
+    if not names:
+        return ()
+    return (f"Beyond the panel at an end of the front: {', '.join(dict.fromkeys(names))}.",)
+
+
+def _circle_flagged(axes: "Axes", front: FrontResult, mode: int) -> None:
     flagged = np.array([bool(flag) for flag in front.flags])
     if flagged.any():
         axes.plot(
             front.s_rel[flagged],
-            front.K[flagged, 0],
+            front.K[flagged, mode],
             linestyle="none",
             marker="o",
             markersize=11,

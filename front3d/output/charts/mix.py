@@ -29,6 +29,9 @@ if TYPE_CHECKING:
     from matplotlib.figure import Figure
 
 _LEAST_DEGREES = 10.0
+_STRAIGHT = 0.1
+"""Degrees below which all angles are nought: pure mode I, and nothing to draw of them."""
+
 _TINTS = ("#8fbfe0", "#f2b48a", "#8cc7b3")
 _HATCHES = ("", "///", "...")
 
@@ -41,16 +44,33 @@ def mode_mix(front: FrontResult, units: Units, material: Constants) -> "Figure":
     ]
     kink_mts, _ = tangential(front.K)
     kink, twist, _ = principal(front.K)
+    psi, mode_III = front.mode_angles.T
+    title = f"Mode mix along front {front.front}, step {plain_text(front.step)}"
+    drawn = np.stack([psi, mode_III, kink_mts, kink, twist])
+    if np.isfinite(drawn).all() and np.abs(drawn).max() < _STRAIGHT:
+        captions = [
+            f"Pure mode I: mode angles, and kink and twist by both criteria, are below "
+            f"{_STRAIGHT:g}\N{DEGREE SIGN} at all stations."
+        ]
+        figure = new_figure(3.4, title, captions, 0)
+        (energy,) = position_panels(figure, front, units, (1,))
+        _energy(energy, front, units, material)
+        layer_entry(energy, front)
+        _legend(energy)
+        return figure
     without = int(np.isnan(kink).sum())
     if without:
         captions.append(
-            f"{without} of {len(front)} stations have no direction: K_I < 0 (faces closed) or no "
+            f"{without} of {len(front)} stations have no direction: $K_I$ < 0 (faces closed) or no "
             "load."
         )
-    title = f"Mode mix along front {front.front}, step {plain_text(front.step)}"
+    torn = int(np.isnan(psi).sum())
+    if torn:
+        captions.append(
+            rf"No $\psi$ and no kink by MTS at {torn} of {len(front)} stations: mode III alone."
+        )
     figure = new_figure(6.9, title, captions, 0)
     angles, ways, energy = position_panels(figure, front, units, (1, 1, 1))
-    psi, mode_III = front.mode_angles.T
     _curves(
         angles,
         front,
@@ -73,17 +93,21 @@ def mode_mix(front: FrontResult, units: Units, material: Constants) -> "Figure":
     _energy(energy, front, units, material)
     layer_entry(angles, front)
     for axes in (angles, ways, energy):
-        axes.legend(
-            loc="upper left",
-            bbox_to_anchor=(0.0, 1.0, 1.0, 0.0),
-            mode="expand",
-            ncols=4,
-            fontsize=SMALL,
-            frameon=False,
-            borderaxespad=0.2,
-        )
+        _legend(axes)
     figure.align_ylabels()
     return figure
+
+
+def _legend(axes: "Axes") -> None:
+    axes.legend(
+        loc="upper left",
+        bbox_to_anchor=(0.0, 1.0, 1.0, 0.0),
+        mode="expand",
+        ncols=4 if len(axes.get_legend_handles_labels()[1]) <= 4 else 5,
+        fontsize=SMALL,
+        frameon=False,
+        borderaxespad=0.2,
+    )
 
 
 def _curves(

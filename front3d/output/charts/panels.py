@@ -20,7 +20,7 @@ from front3d.output.charts.style import (
     second_unit,
     widen,
 )
-from front3d.output.formats import place
+from front3d.output.formats import NOUGHT, place
 from front3d.output.shape import ellipse_of
 from front3d.results import FrontResult
 from front3d.units import Units
@@ -37,26 +37,30 @@ LEAST_SPAN = 0.1
 
 
 def drawn_modes(fronts: Sequence[FrontResult]) -> list[int]:
-    """K_I, and the modes that are not nought throughout (as K_II and K_III of half models are)."""
-    return [0] + [
-        k for k in (1, 2) if any(np.any(np.nan_to_num(front.K[:, k]) != 0) for front in fronts)
-    ]
+    """The modes that are not nought throughout, by at least one method."""
+    least = NOUGHT * largest_K(fronts)
+    curves = [K for front in fronts for K in (front.K, *(m.K for m in front.methods.values()))]
+    reach = np.nanmax([np.nanmax(np.abs(K), axis=0, initial=0.0) for K in curves], axis=0)
+    return [k for k in range(3) if reach[k] > least] or [0]
 
 
 def panel_heights(fronts: Sequence[FrontResult], modes: Sequence[int]) -> list[float]:
-    """Inches of the panel of each mode: low ones for modes that hardly matter."""
-    largest = largest_K(fronts)
-    heights = [2.9]
-    for mode in modes[1:]:
-        values = np.concatenate([front.K[:, mode] for front in fronts])
-        small = np.nanmax(np.abs(values), initial=0.0) < LEAST_SPAN / 2 * largest
-        heights.append(1.25 if small else 1.7)
-    return heights
+    """Inches of the panel of each mode: a high one for the largest, low ones for modes that hardly
+    matter.
+    """
+    K = np.abs(np.concatenate([front.K[:, modes] for front in fronts]))
+    reach = np.nanmax(K, axis=0, initial=0.0)
+    heights = np.where(reach < LEAST_SPAN / 2 * reach.max(), 1.25, 1.7)
+    heights[np.argmax(reach)] = 2.9
+    return [float(height) for height in heights]
 
 
 def left_out(modes: Sequence[int]) -> tuple[str, ...]:
     """A caption on the modes without a panel."""
-    return () if len(modes) == 3 else ("K_II and K_III without a panel are nought throughout.",)
+    names = " and ".join(MODE_LABELS[k] for k in range(3) if k not in modes)
+    if not names:
+        return ()
+    return (f"No panel for {names}: below {100 * NOUGHT:g} % of the largest K throughout.",)
 
 
 def position_panels(
@@ -107,10 +111,16 @@ def label_K(axes: "Axes", mode: int, units: Units) -> None:
 
 
 def fit_K(axes: "Axes", values: Sequence[FloatArray], largest: float) -> None:
-    """Limits around all drawn `values`, never closer than LEAST_SPAN of the `largest` K."""
+    """Limits around all drawn `values`."""
+    axes.set_ylim(*limits_of(values, largest))
+
+
+def limits_of(values: Sequence[FloatArray], largest: float) -> tuple[float, float]:
+    """Around all `values`, never closer than LEAST_SPAN of the `largest` K."""
     finite = np.concatenate([v[np.isfinite(v)] for v in map(np.ravel, values)] or [np.zeros(0)])
-    if finite.size:
-        axes.set_ylim(*widen(float(finite.min()), float(finite.max()), LEAST_SPAN * largest))
+    if not finite.size:
+        return 0.0, 1.0
+    return widen(float(finite.min()), float(finite.max()), LEAST_SPAN * largest)
 
 
 def largest_K(fronts: Sequence[FrontResult]) -> float:
@@ -122,7 +132,7 @@ def _name_ends(axes: "Axes", front: FrontResult, units: Units) -> None:
     unit = f" {units.length}".rstrip()
     axes.set_xlabel(
         f"position along the front, s / L   (L = {front.length:.4g}{unit}; "
-        f"s = 0 at {place(front.positions[0], front.length)})",
+        f"s = 0 at ({place(front.positions[0], front.length)}))",
         fontsize=MEDIUM,
         labelpad=20 if front.ends else 4,
     )
@@ -177,5 +187,5 @@ def parametric_angle(front: FrontResult, units: Units) -> tuple[FloatArray, str]
     steps = np.diff(ellipse.angle)
     if not ((steps > 0).all() or (steps < 0).all()):
         return None
-    axes = f"semi-axes {ellipse.a:.4g} and {ellipse.c:.4g} {units.length}".rstrip()
+    axes = f"semi-axes {ellipse.a:.3g} and {ellipse.c:.3g} {units.length}".rstrip()
     return ellipse.angle, f"parametric angle of the ellipse, {axes}"

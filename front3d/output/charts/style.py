@@ -126,15 +126,7 @@ def legend_rows(labels: Sequence[str], columns: int = LEGEND_COLUMNS) -> int:
 
 def legend_columns(labels: Sequence[str], most: int = LEGEND_COLUMNS) -> int:
     """The most columns, up to `most`, that leave every entry whole within the figure."""
-    from matplotlib.font_manager import FontProperties
-    from matplotlib.textpath import TextToPath
-
-    measure, font = TextToPath(), FontProperties(size=SMALL)
-    widths = [
-        measure.get_text_width_height_descent(label, font, ismath="$" in label)[0]
-        + (_HANDLE + _HANDLE_GAP) * SMALL
-        for label in labels
-    ]
+    widths = [text_width(label, SMALL) + (_HANDLE + _HANDLE_GAP) * SMALL for label in labels]
     for columns in range(min(most, len(labels)), 1, -1):
         rows, longer = divmod(len(labels), columns)
         stops = np.cumsum([0] + [rows + (k < longer) for k in range(columns)])
@@ -142,6 +134,16 @@ def legend_columns(labels: Sequence[str], most: int = LEGEND_COLUMNS) -> int:
         if total + _COLUMN_GAP * SMALL * (columns - 1) <= 0.97 * 72 * WIDTH:
             return columns
     return 1
+
+
+def text_width(text: str, size: float) -> float:
+    """Points that one line of letters of `size` takes, mathematics included."""
+    from matplotlib.font_manager import FontProperties
+    from matplotlib.textpath import TextToPath
+
+    math = "$" in text.replace(r"\$", "")
+    font = FontProperties(size=size)
+    return float(TextToPath().get_text_width_height_descent(text, font, ismath=math)[0])
 
 
 def second_unit(axes: "Axes", units: Units, *, on_top: bool = False) -> None:

@@ -38,7 +38,7 @@ from front3d.output.charts.style import (
 )
 from front3d.output.shape import Section
 from front3d.output.trust import rings_of
-from front3d.results import MODES, FrontResult
+from front3d.results import FrontResult
 from front3d.units import Units
 
 if TYPE_CHECKING:
@@ -57,11 +57,11 @@ def through_thickness(front: FrontResult, section: Section, units: Units) -> "Fi
     modes = [
         k
         for k in drawn_modes([front])
-        if k == 0 or np.nanmax(np.abs(front.K[:, k])) >= _SMALL_MODE * largest
-    ]
+        if np.nanmax(np.abs(front.K[:, k]), initial=0.0) >= _SMALL_MODE * largest
+    ] or [0]
     captions = [f"K by the {reported_by(front)}."]
     if len(modes) < 3:
-        names = " and ".join(MODES[k] for k in range(3) if k not in modes)
+        names = " and ".join(MODE_LABELS[k] for k in range(3) if k not in modes)
         captions[0] += f" {names} below {100 * _SMALL_MODE:g} % of the largest K: not drawn."
     place = _placed(section)
     what = "through the thickness" if section.kind == "through" else "over the depth"

@@ -2,7 +2,7 @@
 
 from pathlib import Path
 
-from front3d.output.charts import charts_of
+from front3d.output.charts import charts_of, heads
 from front3d.output.charts.style import svg
 from front3d.output.report.answer import answer, heading, question
 from front3d.output.report.checks import checks, mix
@@ -49,9 +49,15 @@ def report_html(saved: Saved) -> tuple[bytes, tuple[str, ...]]:
 
 
 def _charts(saved: Saved) -> Markup:
-    drawings = []
+    drawings: list[Markup] = []
+    headings = heads(saved.evaluation)
+    last = ""
     for i, (name, draw) in enumerate(charts_of(saved.evaluation).items()):
-        caption = next(words for kind, words in CAPTIONS.items() if name.startswith(kind))
+        kind, caption = next((k, words) for k, words in CAPTIONS.items() if name.startswith(k))
+        head = headings.get(name.removeprefix(kind), "")
+        if head != last:
+            drawings.append(tag("h3", head))
+            last = head
         drawings.append(figure(svg_image(svg(draw()), i, caption), caption))
     return section("Charts", *drawings, mix(saved), name="charts")
 

@@ -5,16 +5,19 @@ from typing import Any
 import numpy as np
 
 from front3d.output.charts.along import METHOD_NAMES, reported_by
-from front3d.output.formats import place
+from front3d.output.formats import NOUGHT, place
+from front3d.output.loads import (
+    ONLY_DISPLACEMENTS,
+    load_words,
+    material_words,
+    own_constants,
+)
 from front3d.output.report.page import Markup, join, pairs, section, table, tag
 from front3d.output.report.words import NAMES, levelled, number, percent, rooted, with_units
 from front3d.output.saved import Saved
 from front3d.output.trust import agreement
 from front3d.results import CAUTION, FrontResult
 from front3d.units import Units
-
-_NOUGHT = 1e-5
-"""Part of the front's largest K below which the place of another mode's largest is scatter."""
 
 
 def heading(saved: Saved) -> Markup:
@@ -44,7 +47,8 @@ def answer(saved: Saved) -> Markup:
         " = ",
         tag("strong", with_units(front.K[i, k], units)),
         f", at station {i} of front {front.front}, s/L {front.s_rel[i]:.3f}, "
-        f"({place(front.positions[i], front.length)}), step {front.step}{flag}.",
+        f"({place(front.positions[i], front.length)}){_length(units)}, step {front.step}{flag}.",
+        _unflagged(fronts, k, units) if flag else "",
         class_="answer",
     )
     rows = [_largest_row(f, mode, units) for f in fronts for mode in range(3)]
@@ -59,8 +63,40 @@ def answer(saved: Saved) -> Markup:
         tag("ul", *(tag("li", line) for line in trust)),
         _warnings(saved),
         table(head, rows, numeric=False),
+        tag(
+            "p",
+            f"None: below {100 * NOUGHT:g} % of the front's largest K. Places are (x, y, z)",
+            f" in {units.length}." if units.length else ".",
+            class_="small",
+        ),
         name="answer",
     )
+
+
+def _unflagged(fronts: tuple[FrontResult, ...], k: int, units: Units) -> Markup:
+    """The largest K of the same mode at a station without a flag: beside a value that has one."""
+    best: tuple[float, FrontResult, int] | None = None
+    for front in fronts:
+        plain = np.array([not flag for flag in front.flags]) & np.isfinite(front.K[:, k])
+        if plain.any():
+            i = int(np.argmax(np.where(plain, np.abs(front.K[:, k]), -1.0)))
+            if best is None or abs(front.K[i, k]) > best[0]:
+                best = (abs(float(front.K[i, k])), front, i)
+    if best is None:
+        return join([" Every station is flagged."])
+    _, front, i = best
+    return join(
+        [
+            " Largest without a flag: ",
+            tag("strong", with_units(front.K[i, k], units)),
+            f", at station {i} of front {front.front}, s/L {front.s_rel[i]:.3f}, step "
+            f"{front.step}.",
+        ]
+    )
+
+
+def _length(units: Units) -> str:
+    return f" {units.length}".rstrip()
 
 
 def _has_values(front: FrontResult) -> bool:
@@ -77,8 +113,8 @@ def _largest_row(front: FrontResult, k: int, units: Units) -> list[Any]:
     row = [*start, levelled(values[i], most)]
     if units.K_factor is not None:
         row.append(levelled(values[i] * units.K_factor, most * units.K_factor))
-    if abs(values[i]) < _NOUGHT * most:
-        return [*row, "", "", "", "nought against the largest K"]
+    if abs(values[i]) < NOUGHT * most:
+        return [*start, "none", *([""] if units.K_factor is not None else []), "", "", "", ""]
     row += [f"{front.s_rel[i]:.3f}", place(front.positions[i], front.length), front.flags[i]]
     plain = np.array([not flag for flag in front.flags]) & np.isfinite(values)
     inside = np.where(plain, np.abs(values), -1.0)
@@ -135,14 +171,9 @@ def _warnings(saved: Saved) -> Markup:
 def question(saved: Saved) -> Markup:
     """File, material, units, load, and the cracks that were found."""
     evaluation, units = saved.evaluation, saved.evaluation.units
-    stress = f" {units.stress}".rstrip()
     rows: list[tuple[Any, Any]] = [
         ("result file", evaluation.source),
-        (
-            "material",
-            f"isotropic, E = {evaluation.material.young:g}{stress}, "
-            f"Poisson's ratio {evaluation.material.poisson:g}",
-        ),
+        *material_words(evaluation.options, evaluation.material, units),
         (
             "units",
             f"length in {units.length}, stress in {units.stress}, K in {rooted(units.K_label)}"
@@ -151,9 +182,9 @@ def question(saved: Saved) -> Markup:
         ),
         ("steps", ", ".join(dict.fromkeys(front.step for front in evaluation.fronts))),
     ]
-    pressure = evaluation.options.get("face_pressure")
-    if isinstance(pressure, int | float) and pressure:
-        rows.append(("pressure on the crack faces", f"{pressure:g}{stress}"))
+    combined: Any = evaluation.options.get("combine") or ()
+    rows += [("combination of steps", text) for text in combined]
+    rows += load_words(evaluation.options, units) or [("loads", ONLY_DISPLACEMENTS)]
     found: dict[int, FrontResult] = {front.front: front for front in reversed(evaluation.fronts)}
     for front_number, front in sorted(found.items()):
         shape = (
@@ -164,7 +195,23 @@ def question(saved: Saved) -> Markup:
             else "open"
         )
         length = f"{number(front.length)} {units.length}".rstrip()
-        rows.append(
-            (f"crack front {front_number}", f"{shape}; length {length}; {len(front)} stations")
-        )
+        words = f"{shape}; length {length}; {len(front)} stations"
+        if own_constants(front.material, evaluation.material):
+            words += f"; along it {_range(front, units)}"
+        rows.append((f"crack front {front_number}", words))
     return section("Question", pairs(rows), name="question")
+
+
+def _range(front: FrontResult, units: Units) -> str:
+    """The elastic constants along a front that has its own."""
+    own = front.material
+    assert own is not None
+    said = []
+    for name, values, unit in (
+        ("E", own.young, units.stress),
+        ("Poisson's ratio", own.poisson, ""),
+    ):
+        low, high = float(np.min(values)), float(np.max(values))
+        text = f"{low:g}" if low == high else f"{low:g} to {high:g}"
+        said.append(f"{name} {text} {unit}".rstrip())
+    return ", ".join(said)

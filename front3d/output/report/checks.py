@@ -72,8 +72,9 @@ def checks(saved: Saved) -> Markup:
             "p",
             "The program itself is tested against exact near-tip fields, exact solutions of penny, "
             "elliptic and collinear cracks, and published solutions of surface cracks; its README "
-            "lists what was measured, and `front3d verify` measures it again. That says nothing "
-            "about this model: its mesh, loads and "
+            "lists what was measured, and ",
+            tag("code", "front3d verify"),
+            " measures it again. That says nothing about this model: its mesh, loads and "
             "supports are for its author to verify.",
         )
     )
@@ -138,8 +139,10 @@ def mix(saved: Saved) -> Markup:
             table(head, rows),
             tag(
                 "p",
-                f"MTS: {SOURCES['mts']}. 3D: {SOURCES['schollmann']}. Without a value where K_I is "
-                "negative: there the faces are closed, and no criterion applies.",
+                f"MTS: {SOURCES['mts']}. 3D: {SOURCES['schollmann']}. Without a value where ",
+                NAMES[0],
+                " is negative: there the faces are closed, and no criterion applies; and by MTS "
+                "where there is mode III alone.",
                 class_="small",
             ),
         ]

@@ -133,18 +133,23 @@ iframe { width: 100%; height: 32rem; border: 1px solid var(--line); }
 pre { background: var(--tint); padding: .7rem .9rem; overflow-x: auto; font-size: .85rem; }
 code { font-family: "Liberation Mono", "DejaVu Sans Mono", monospace; font-size: .92em; }
 @media print {
-  @page { size: A4; margin: 16mm 14mm; }
+  @page { size: A4; margin: 16mm 14mm;
+    @bottom-right { content: counter(page) " / " counter(pages); font-size: 8pt; color: #555555; } }
   body { font-size: 10.5pt; }
   main { max-width: none; padding: 0; }
   h2 { break-after: avoid; margin-top: 1.4rem; }
   figure, .answer, .caution, ul.warnings { break-inside: avoid; }
-  figure svg, figure img { max-height: 165mm; width: auto; max-width: 100%; margin: 0 auto; }
-  figure img { max-height: 118mm; }
+  figure { margin: .5rem 0 .8rem; }
+  figure svg, figure img { max-height: 150mm; width: auto; max-width: 152mm; margin: 0 auto; }
+  figure img { max-height: 112mm; }
   h3, .small { break-after: avoid; }
   thead { display: table-header-group; }
   tr { break-inside: avoid; }
   .wide { overflow: visible; }
+  table { font-size: 8.5pt; }
+  table.numbers td { white-space: normal; }
   table.stations { font-size: 6.6pt; }
+  table.few { font-size: 7.6pt; }
   table.stations th, table.stations td { padding: .5pt 2.5pt; }
   pre { white-space: pre-wrap; }
   .screen { display: none; }

@@ -6,30 +6,36 @@ from typing import Any
 import numpy as np
 
 from front3d.output.charts.along import METHOD_NAMES
-from front3d.output.formats import place
+from front3d.output.formats import NOUGHT, place
 from front3d.output.report.page import Markup, join, pairs, section, table, tag
 from front3d.output.report.words import NAMES, levelled, rooted
 from front3d.output.saved import Saved
-from front3d.results import CAUTION
+from front3d.results import CAUTION, FrontResult
+
+_FEW = 12
+"""Columns up to which the table is printed in larger letters."""
 
 
 def stations(saved: Saved) -> Markup:
     """Every station with the reported K, that of each method, and its flag."""
     evaluation = saved.evaluation
-    names = [
-        name
+    others = [
+        (name, k)
         for name in dict.fromkeys(n for f in evaluation.fronts for n in f.methods)
         if any(set(f.sources) != {name} for f in evaluation.fronts)
+        for k in range(3)
+        if any(_matters(f, name, k) for f in evaluation.fronts)
     ]
     head: list[Any] = ["station", "s/L", "x", "y", "z", *NAMES, "G", "flag"]
-    for name in names:
-        head += [join([symbol, f", {METHOD_NAMES.get(name, name)}"]) for symbol in NAMES]
+    head += [join([NAMES[k], f", {METHOD_NAMES.get(name, name)}"]) for name, k in others]
     children: list[Any] = [
         tag(
             "p",
             "K in ",
             rooted(evaluation.units.K_label),
-            ". The file points.csv has these figures with all digits, and more columns.",
+            f". Without columns of other methods that are below {100 * NOUGHT:g} % of the largest "
+            "K throughout. The file points.csv has these figures with all digits, and more "
+            "columns.",
             class_="small",
         )
     ]
@@ -45,14 +51,25 @@ def stations(saved: Saved) -> Markup:
                 _cell(front.G[i], most_G),
                 front.flags[i],
             ]
-            for name in names:
-                K = front.methods[name].K[i] if name in front.methods else [np.nan] * 3
-                row += [_cell(value, most) for value in K]
+            row += [
+                _cell(front.methods[name].K[i, k] if name in front.methods else np.nan, most)
+                for name, k in others
+            ]
             rows.append(row)
         if len(evaluation.fronts) > 1:
             children.append(tag("h3", f"Front {front.front}, step {front.step}"))
-        children.append(table(head, rows, kind="stations"))
+        kind = "stations" if len(head) > _FEW else "stations few"
+        children.append(table(head, rows, kind=kind))
     return section("Table", *children, name="table")
+
+
+def _matters(front: FrontResult, name: str, k: int) -> bool:
+    """Whether a method gives a mode that is not nought against the front's largest K."""
+    if name not in front.methods:
+        return False
+    largest = float(np.nanmax(np.abs(front.K), initial=0.0))
+    reach = float(np.nanmax(np.abs(front.methods[name].K[:, k]), initial=0.0))
+    return k == 0 or reach > NOUGHT * largest
 
 
 def _cell(value: float, largest: float) -> str:

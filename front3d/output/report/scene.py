@@ -1,7 +1,10 @@
 """The scene to turn by hand: the crack's surroundings and the coloured front, inside the page."""
 
 import asyncio
+import sys
 import tempfile
+from collections.abc import Iterator
+from contextlib import contextmanager
 from dataclasses import replace
 from importlib import import_module
 from importlib.util import find_spec
@@ -81,8 +84,25 @@ def _viewer(saved: Saved, fronts: tuple[FrontResult, ...], scale: Scale) -> str:
 
     with tempfile.TemporaryDirectory() as folder:
         path = Path(folder) / "scene.html"
-        asyncio.run(export(path))
+        with _without_download():
+            asyncio.run(export(path))
         return path.read_text(encoding="utf-8")
+
+
+@contextmanager
+def _without_download() -> Iterator[None]:
+    """Keep the package from fetching another viewer from its maker's server, which is not used
+    here: it does so wherever this module is found, and says at length when it cannot.
+    """
+    name = "trame.widgets.vtklocal"
+    before = sys.modules.get(name)
+    sys.modules[name] = None  # type: ignore[assignment]  # an import of it fails
+    try:
+        yield
+    finally:
+        del sys.modules[name]
+        if before is not None:
+            sys.modules[name] = before
 
 
 def _legend(saved: Saved, scale: Scale) -> Markup:

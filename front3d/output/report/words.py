@@ -29,7 +29,7 @@ def percent(value: float | None) -> str:
     if value is None or not np.isfinite(value):
         return "no value"
     if value < 1e-5:
-        return "below\N{NO-BREAK SPACE}0.001\N{NO-BREAK SPACE}%"
+        return "below 0.001\N{NO-BREAK SPACE}%"
     return f"{100 * value:.2g}\N{NO-BREAK SPACE}%"
 
 

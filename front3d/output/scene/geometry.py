@@ -18,7 +18,8 @@ from front3d.solid import Solid
 
 # How far beyond the front the close-up reaches, in diameters of the front, and its least half-size.
 _AROUND, _LEAST = 0.16, 0.30
-_OPEN = 0.12  # the widest opening drawn, in diameters of the front
+OPEN = 0.12
+"""The widest opening drawn, in diameters of the front."""
 _RIBBON = 0.09  # width in diameters of the front
 RIBBON_FROM = 5.0
 """Degrees of kink from which a ribbon says more than the tube."""
@@ -79,7 +80,7 @@ def opening_factor(widest: float, size: float) -> float:
     """
     if not widest > 1e-12 * size:
         return 0.0
-    wanted = _OPEN * size / widest
+    wanted = OPEN * size / widest
     power = 10.0 ** floor(log10(wanted))
     return float(power * max(n for n in (1, 2, 5) if n * power <= wanted))
 
@@ -126,7 +127,8 @@ def tube(front: FrontResult, scale: Scale, radius: float) -> Any:
 
 def kink_ribbon(front: FrontResult, size: float) -> Any | None:
     """A strip from the front into the direction of growth by the maximum tangential stress; None
-    where no station has one.  It is broken where stations have none.
+    where no station has one.  It is broken where stations have none, and where it would turn by
+    more than a right angle from one to the next, as where K_II changes its sign without K_I.
     """
     import pyvista as pv
 
@@ -136,7 +138,7 @@ def kink_ribbon(front: FrontResult, size: float) -> Any | None:
     n = len(front)
     after = (np.arange(n) + 1) % n if front.closed else np.arange(1, n)
     before = np.arange(len(after))
-    known = np.isfinite(angle[before]) & np.isfinite(angle[after])
+    known = np.abs(angle[after] - angle[before]) < np.pi / 2  # NaN is not
     if not known.any():
         return None
     outer = np.nan_to_num(front.positions + _RIBBON * size * way)

@@ -8,6 +8,7 @@ import numpy as np
 
 from front3d.arrays import FloatArray
 from front3d.output.charts.style import mathtext
+from front3d.output.formats import NOUGHT
 from front3d.results import MODES, FrontResult
 from front3d.units import Units
 
@@ -94,10 +95,10 @@ def colour_scale(fronts: Sequence[FrontResult], quantity: str | None = None) -> 
 
 
 def _noise(fronts: Sequence[FrontResult], quantity: str) -> float:
-    """Below this, a value is nought: a millionth of the largest K, or a thousandth of a degree."""
+    """Below this, a value is nought, as in the charts; or a hundredth of a degree."""
     if quantity not in MODES:
-        return 1e-3 if quantity == "psi" else 0.0
-    return 1e-6 * float(np.nanmax([np.nanmax(np.abs(f.K), initial=0.0) for f in fronts]))
+        return 1e-2 if quantity == "psi" else 0.0
+    return NOUGHT * float(np.nanmax([np.nanmax(np.abs(f.K), initial=0.0) for f in fronts]))
 
 
 def shown_value(fronts: Sequence[FrontResult], front: FrontResult, i: int, quantity: str) -> float:
@@ -113,6 +114,14 @@ def colours(scale: Scale | None = None) -> Any:
 
     steps = 256 if scale is None or not scale.words else len(scale.words)
     return ListedColormap(colormaps["viridis_r"](np.linspace(0.08, 1.0, steps)))
+
+
+def colour_of(front: FrontResult, station: int, scale: Scale) -> Any:
+    """The colour that the front has at a station."""
+    value = float(values_of(front, scale.quantity, scale.words)[station])
+    if not np.isfinite(value):
+        return NO_VALUE
+    return colours(scale)(np.clip((value - scale.low) / (scale.high - scale.low), 0.0, 1.0))
 
 
 def extremes(fronts: Sequence[FrontResult], scale: Scale) -> list[tuple[str, int, int]]:

@@ -9,10 +9,12 @@ import numpy as np
 
 from front3d.output.charts.style import plain_text
 from front3d.output.rendering import choose_window
+from front3d.output.scene.arrows import ARROW, MUTED, SHAPE, STILL, Letters, draw_axes
 from front3d.output.scene.camera import View, best_view, box_corners
-from front3d.output.scene.drawing import INK, Extras, Place, add_solid
+from front3d.output.scene.drawing import INK, Extras, Place, add_solid, bring_forward
 from front3d.output.scene.geometry import (
     Box,
+    arrow_tips,
     clipped,
     close_up,
     kinked,
@@ -23,10 +25,7 @@ from front3d.output.scene.geometry import (
     widest_opening,
 )
 from front3d.output.scene.labels import (
-    MUTED,
-    SHAPE,
     Mark,
-    draw_axes,
     draw_marks,
     draw_scale,
     words_of,
@@ -41,6 +40,7 @@ if TYPE_CHECKING:
     from matplotlib.figure import Figure
 
 RIBBON_WORDS = "ribbon: growth by the maximum tangential stress (Erdogan and Sih 1963)"
+FRAME_WORDS = "arrows: $e_1$ growth, $e_2$ crack normal, $e_3$ along the front"
 RING_WORDS = "circles: domains of the interaction integral"
 
 
@@ -87,11 +87,11 @@ def scene_figure(
     scale = colour_scale(fronts, look.quantity)
     positions = np.concatenate([front.positions for front in fronts])
     box = close_up(positions, solid.points)
-    view = best_view(fronts[0], box_corners(*box))
     marked = extremes(fronts, scale)
     arrows = look.arrows
     if arrows is None:
         arrows = tuple((number, i) for _, number, i in marked[:1])
+    view = view_of(fronts, box, arrows)
     ribbon = kinked(fronts) if look.ribbon is None else look.ribbon
     widest = widest_opening(parts, 0)
     factor = opening_factor(widest, size_of(fronts)) if look.opening is None else look.opening
@@ -99,15 +99,20 @@ def scene_figure(
     extras = Extras(arrows if look.rings else (), ribbon=ribbon)
 
     figure = Figure(figsize=(8.0, 6.0), dpi=150, facecolor="white")
-    near = figure.add_axes((0.0, 0.1, 0.765, 0.765))
+    notes = ["; ".join([opening_words(factor, widest), *([FRAME_WORDS] if arrows else [])])]
+    notes += [RIBBON_WORDS] if ribbon else []
+    notes += [RING_WORDS] if extras.rings else []
+    side = 0.765 - 0.03 * (len(notes) - 1)  # below the notes
+    near = figure.add_axes((0.3825 - side / 2, 0.1, side, side))
+    letters = Letters(STILL.points, STILL.pixels * 0.765 / side)
     near.imshow(_render(near_parts, fronts, scale, view, box, extras))
     near.set_axis_off()
-    draw_axes(near, view)
+    taken = draw_axes(near, view, letters=letters)
     marks = [
         Mark((number, i), words_of(word, fronts[number], i, scale, units))
         for word, number, i in marked
     ]
-    draw_marks(near, fronts, marks, arrows, view)
+    draw_marks(near, fronts, marks, arrows, view, scale, letters=letters, taken=taken)
     extent = np.ptp(solid.points, axis=0)
     if np.linalg.norm(extent) > 1.3 * np.linalg.norm(box[1] - box[0]):
         whole = box_corners(solid.points.min(axis=0), solid.points.max(axis=0))
@@ -116,11 +121,14 @@ def scene_figure(
         far.set_axis_off()
         far.set_title("whole solid", fontsize=11, color=MUTED, pad=2)
     draw_scale(figure, (0.83, 0.42, 0.028, 0.385), scale, units, 14)
-    notes = [opening_words(factor, widest)]
-    notes += [RIBBON_WORDS] if ribbon else []
-    notes += [RING_WORDS] if extras.rings else []
     _draw_words(figure, fronts, scale, notes)
     return figure
+
+
+def view_of(fronts: tuple[FrontResult, ...], box: Box, arrows: tuple[Place, ...]) -> View:
+    """From where the picture is taken: with room for the letters at the tips of the arrows."""
+    tips = [arrow_tips(fronts[n], i, 1.5 * ARROW * size_of(fronts)) for n, i in arrows]
+    return best_view(fronts[0], np.concatenate([box_corners(*box), *tips]))
 
 
 def opening_words(factor: float, widest: float) -> str:
@@ -151,7 +159,8 @@ def _render(
     try:
         plotter.enable_anti_aliasing("ssaa")
         plotter.enable_depth_peeling(8)
-        add_solid(plotter, parts, fronts, scale, view, box, extras)
+        tubes = add_solid(plotter, parts, fronts, scale, view, box, extras)
+        bring_forward(tubes, fronts, view.towards)
         return plotter.screenshot(None, return_img=True)
     finally:
         plotter.close()

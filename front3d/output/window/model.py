@@ -20,25 +20,28 @@ from front3d.output.scene.geometry import (
 from front3d.output.scene.labels import Mark, words_of
 from front3d.output.scene.quantity import Scale, colour_scale, extremes
 from front3d.output.scene.still import RIBBON_WORDS, RING_WORDS, opening_words, title_words
-from front3d.output.scene.surface import Skin
+from front3d.output.scene.surface import Skin, steps_of
 from front3d.output.skin import read_skin
 from front3d.output.window.state import Shown, fronts_of
 from front3d.results import Evaluation, FrontResult
 
 SKIN = "skin.vtp"
-WORDS = (230, 200)
-"""Pixels of the scene's width and height that are left to scale, title and caution."""
+WORDS = (100, 320)
+"""Pixels of the scene's width and height that are left to title, scale and caution."""
 
 ALONE = f"the front alone: this evaluation left no {SKIN} to draw the solid from"
 
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Model:
-    """The evaluation moved to the origin, and the solid's skin if there is one."""
+    """The evaluation moved to the origin, the solid's skin if there is one, and its widest opening
+    in each step.
+    """
 
     evaluation: Evaluation
     parts: Skin | None
     box: Box
+    widest: tuple[float, ...] = ()
 
     def view(self, shown: Shown, size: tuple[int, int]) -> View:
         """Where the crack is looked at from, in a picture of `size` (width, height) pixels."""
@@ -50,10 +53,9 @@ class Model:
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Drawn:
-    """What a `Shown` comes to: everything that the scene draws."""
+    """What a `Shown` comes to: everything that the scene draws beside the body."""
 
     fronts: tuple[FrontResult, ...]
-    parts: Skin | None
     scale: Scale
     extras: Extras
     marks: tuple[Mark, ...]
@@ -80,7 +82,26 @@ def model_of(saved: Saved) -> Model:
         if surface.n_cells:
             surface.points = np.asarray(surface.points, np.float64) - centre
     box = (box[0] - centre, box[1] - centre)
-    return Model(near, clipped(parts, box), box)
+    parts = clipped(parts, box)
+    widest = tuple(widest_opening(parts, k) for k in range(len(steps_of(fronts))))
+    return Model(near, parts, box, widest)
+
+
+def body_of(shown: Shown) -> tuple[int, float]:
+    """All that the drawn body depends on."""
+    return shown.step, round(shown.opening, 2)
+
+
+def _factor(model: Model, shown: Shown) -> float:
+    """How many times the opening is enlarged: with steps on the slider, a round number."""
+    fronts = fronts_of(model.evaluation, shown.step)
+    return opening_factor(model.widest[shown.step], size_of(fronts)) * round(shown.opening, 2)
+
+
+def opened_parts(model: Model, shown: Shown) -> Skin | None:
+    if model.parts is None:
+        return None
+    return opened(model.parts, shown.step, _factor(model, shown))
 
 
 def drawn_of(model: Model, shown: Shown) -> Drawn:
@@ -96,16 +117,13 @@ def drawn_of(model: Model, shown: Shown) -> Drawn:
         for word, number, i in extremes(fronts, scale)
         if (number, i) != picked
     ]
-    parts, notes = model.parts, [ALONE]
-    if parts is not None:
-        widest = widest_opening(parts, shown.step)
-        # Steps on steps of the slider: a round number of times.
-        factor = opening_factor(widest, size_of(fronts)) * round(shown.opening, 2)
-        parts, notes = opened(parts, shown.step, factor), [opening_words(factor, widest)]
+    notes = [ALONE]
+    if model.parts is not None:
+        notes = [opening_words(_factor(model, shown), model.widest[shown.step])]
     notes += [RIBBON_WORDS] if shown.ribbon else []
     notes += [RING_WORDS] if shown.rings else []
-    extras = Extras((picked,) if shown.rings else (), (picked,), shown.ribbon)
+    extras = Extras((picked,) if shown.rings else (), shown.ribbon)
     return Drawn(
-        fronts, parts, scale, extras, tuple(marks), (picked,), title_words(fronts, scale),
+        fronts, scale, extras, tuple(marks), (picked,), title_words(fronts, scale),
         tuple(notes),
     )  # fmt: skip

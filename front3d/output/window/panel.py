@@ -5,7 +5,7 @@ either.  Pixels count from the upper left corner.
 """
 
 import io
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 from textwrap import fill
 from typing import Any
@@ -13,6 +13,7 @@ from typing import Any
 import numpy as np
 
 from front3d.arrays import FloatArray
+from front3d.output.charts.along import METHOD_NAMES, method_style
 from front3d.output.charts.panels import LEAST_SPAN
 from front3d.output.charts.style import (
     BLUE,
@@ -20,7 +21,6 @@ from front3d.output.charts.style import (
     INK,
     LAYER,
     MUTED,
-    VERMILION,
     closed_up,
     dress,
     in_unit,
@@ -35,6 +35,7 @@ from front3d.output.scene.quantity import values_of as all_values
 from front3d.output.scene.surface import steps_of
 from front3d.output.shape import section_of
 from front3d.output.trust import rings_of
+from front3d.output.window.layers import blank, bytes_of, keep, laid_over
 from front3d.output.window.state import (
     CHANGES,
     DEPTH,
@@ -50,7 +51,6 @@ from front3d.output.window.state import (
 )
 from front3d.results import MODES, Evaluation, FrontResult
 
-DPI = 100
 _SMALL, _PLAIN = 9.5, 11.0
 
 
@@ -61,7 +61,8 @@ class Panel:
     Attributes
     ----------
     image : (height, width, 3) bytes
-    figure : to be tested
+    below : (height, width, 4) bytes of it that do not depend on the picked station
+    figures : to be tested
     spots : left, top, right, bottom of each button, and what it asks for
     slider : the same box of the slider
     stations : (n, 2) pixels of the curve's stations
@@ -69,43 +70,75 @@ class Panel:
     """
 
     image: Any
-    figure: Any
+    below: Any
+    figures: tuple[Any, Any]
     spots: dict[str, tuple[float, float, float, float]]
     slider: tuple[float, float, float, float]
     stations: FloatArray
     chart: tuple[float, float, float, float]
 
 
-def draw_panel(evaluation: Evaluation, shown: Shown, size: tuple[int, int]) -> Panel:
-    """The panel of `size` (width, height) pixels; at least about 500 x 600 to be legible."""
-    from matplotlib.backends.backend_agg import FigureCanvasAgg
-    from matplotlib.figure import Figure
+def draw_panel(
+    evaluation: Evaluation,
+    shown: Shown,
+    size: tuple[int, int],
+    kept: dict[Any, Panel] | None = None,
+) -> Panel:
+    """The panel of `size` (width, height) pixels; at least about 500 x 600 to be legible.
 
+    `kept` holds panels drawn before: where only another station is picked, their chart is used.
+    """
+    key = (replace(shown, station=0), size)
+    before: Panel | None = (kept or {}).get(key)
+    if before is None:
+        before = keep(kept, key, _without_pick(evaluation, shown, size))
+    over = blank(size, clear=True)
+    _draw_pick(over, evaluation, shown, before, size)
+    image = laid_over(before.below, bytes_of(over))[:, :, :3].copy()
+    return replace(before, image=image, figures=(before.figures[0], over))
+
+
+def _without_pick(evaluation: Evaluation, shown: Shown, size: tuple[int, int]) -> Panel:
+    """Title, chart and buttons."""
     width, height = size
-    figure = Figure(figsize=(width / DPI, height / DPI), dpi=DPI, facecolor="white")
-    canvas = FigureCanvasAgg(figure)
+    figure = blank(size, clear=False)
     front = front_of(evaluation, shown)
-
-    def down(y: float) -> float:
-        return 1 - y / height
-
     name = steps_of(evaluation.fronts)[shown.step]
     title = f"{LABELS[shown.quantity]}, front {front.front}, step {plain_text(name, 30)}"
-    figure.text(0.5, down(12), title, fontsize=13, color=INK, ha="center", va="top")
-    for k, line in enumerate(numbers(evaluation, shown)):
-        figure.text(0.03, down(46 + 19 * k), line, fontsize=_SMALL, color=INK, va="top")
+    figure.text(0.5, 1 - 12 / height, title, fontsize=13, color=INK, ha="center", va="top")
     top, bottom = 134.0, height - 252.0
-    box = (0.145, down(bottom), 0.82, (bottom - top) / height)
+    box = (0.145, 1 - bottom / height, 0.82, (bottom - top) / height)
     axes = figure.add_axes(box)
     across = _draw_chart(axes, evaluation, front, shown)
     spots, slider = _draw_buttons(figure, evaluation, shown, size)
-    canvas.draw()  # type: ignore[no-untyped-call]
+    below = bytes_of(figure)
     pixels = axes.transData.transform(np.nan_to_num(across))
     pixels[:, 1] = height - pixels[:, 1]
-    image = np.asarray(canvas.buffer_rgba())  # type: ignore[no-untyped-call]
-    image = image[:, :, :3].copy()
     chart = (box[0] * width, top, (box[0] + box[2]) * width, bottom)
-    return Panel(image, figure, spots, slider, pixels, chart)
+    return Panel(below[:, :, :3], below, (figure, figure), spots, slider, pixels, chart)
+
+
+def _draw_pick(
+    figure: Any, evaluation: Evaluation, shown: Shown, panel: Panel, size: tuple[int, int]
+) -> None:
+    """The numbers of the picked station, and its place in the chart."""
+    width, height = size
+    for k, line in enumerate(numbers(evaluation, shown)):
+        figure.text(0.03, 1 - (46 + 19 * k) / height, line, fontsize=_SMALL, color=INK, va="top")
+    left, top, right, bottom = panel.chart
+    axes = figure.add_axes((0, 0, 1, 1))
+    axes.set_xlim(0, width)
+    axes.set_ylim(height, 0)
+    axes.set_axis_off()
+    x, y = panel.stations[shown.station]
+    upright = shown.against == DEPTH and section_of(front_of(evaluation, shown)) is not None
+    ends = ([left, right], [y, y]) if upright else ([x, x], [top, bottom])
+    axes.plot(*ends, color=INK, linewidth=1.0)
+    if top <= y <= bottom and left <= x <= right:
+        axes.plot(
+            [x], [y], marker="o", markersize=11, markerfacecolor="none", markeredgewidth=2.2,
+            color=INK,
+        )  # fmt: skip
 
 
 def asked(panel: Panel, x: float, y: float, shown: Shown) -> Change | str | None:
@@ -134,7 +167,7 @@ def _within(box: tuple[float, float, float, float], x: float, y: float, more: fl
 
 
 def _draw_chart(axes: Any, evaluation: Evaluation, front: FrontResult, shown: Shown) -> FloatArray:
-    """Curve, band of the rings, other methods, picked station; the stations (n, 2) as drawn."""
+    """Curve, band of the rings, other methods; the stations (n, 2) as drawn."""
     units, quantity = evaluation.units, shown.quantity
     scale = colour_scale(fronts_of(evaluation, shown.step), quantity)
     values = all_values(front, quantity, scale.words)
@@ -157,27 +190,24 @@ def _draw_chart(axes: Any, evaluation: Evaluation, front: FrontResult, shown: Sh
         if rings is not None:
             band = rings.K[rings.compared, :, mode]
             shade = axes.fill_betweenx if upright else axes.fill_between
-            low, high = band.min(axis=0), band.max(axis=0)
-            shade(x, low, high, color=BLUE, alpha=0.25, linewidth=0, label="range over rings")
-        styles = ((VERMILION, "--"), ("#007C59", "-."), (INK, ":"))
-        for k, (name, method) in enumerate(front.methods.items()):
+            low, high = (closed_up(end, front) for end in (band.min(axis=0), band.max(axis=0)))
+            ends = closed_up(x, front, 1.0) if not upright else x
+            shade(ends, low, high, color=BLUE, alpha=0.25, linewidth=0, label="range over rings")
+        for name, method in front.methods.items():
             if set(front.sources) != {name}:
-                color, dashes = styles[k % 3]
-                line(method.K[:, mode], color=color, linestyle=dashes, linewidth=1.2, label=name)
+                look = method_style(name) | {"marker": "", "linewidth": 1.2}
+                line(method.K[:, mode], label=METHOD_NAMES.get(name, name), **look)
                 inner = slice(None) if front.closed else slice(1, -1)
                 curves.append(method.K[inner, mode])
+    source = max(dict.fromkeys(front.sources), key=front.sources.count)
     own: dict[str, Any] = {"color": BLUE, "linewidth": 2.0, "marker": "o", "markersize": 4}
+    if quantity in MODES:
+        own |= {"color": method_style(source)["color"]}
     if scale.words:
         own |= {"linestyle": "none"}
     line(values, label="reported" if quantity in MODES else None, **own)
     stations = np.stack([values, x] if upright else [x, values], axis=1)
     _shade(axes, front, upright, x)
-    i = shown.station
-    (axes.axhline if upright else axes.axvline)(x[i], color=INK, linewidth=1.0, zorder=0.8)
-    axes.plot(
-        *stations[i], marker="o", markersize=11, markerfacecolor="none", markeredgewidth=2.2,
-        color=INK, zorder=6,
-    )  # fmt: skip
     _dress_value(axes, curves, scale, upright, in_unit(SHORT[quantity], unit_of(quantity, units)))
     if section is not None:
         label = in_unit(section.depth_name, units.length)

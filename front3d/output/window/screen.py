@@ -9,10 +9,17 @@ import numpy as np
 from front3d.output.files import file_names, write_whole
 from front3d.output.saved import Saved
 from front3d.output.scene.camera import MARGIN, View, pixels
-from front3d.output.scene.drawing import Place, add_solid
+from front3d.output.scene.drawing import (
+    Place,
+    add_body,
+    add_extras,
+    add_fronts,
+    bring_forward,
+    look_from,
+)
 from front3d.output.scene.surface import steps_of
-from front3d.output.window.model import Drawn, drawn_of, model_of
-from front3d.output.window.overlay import draw_overlay
+from front3d.output.window.model import Drawn, body_of, drawn_of, model_of, opened_parts
+from front3d.output.window.overlay import Overlay, draw_overlay
 from front3d.output.window.panel import Panel, asked, draw_panel, png_of
 from front3d.output.window.state import CHANGES, KEYS, Change, Shown, at, first_shown
 
@@ -47,7 +54,14 @@ class Window:
         self.plotter.subplot(0, 0)
         self.plotter.enable_depth_peeling(4)
         self._images: dict[str, Any] = {}
+        self._body: list[Any] = []
+        self._body_of: tuple[int, float] | None = None
+        self._tubes: list[Any] = []
+        self._extras: list[Any] = []
+        plotter.set_background("white")
+        plotter.renderers[0].AddObserver("StartEvent", lambda *_: self._forward())
         self._pressed: tuple[int, int] | None = None
+        self._kept: tuple[dict[Any, Any], dict[Any, Any]] = ({}, {})
         self._scene(self.model.view(self.shown, self._half()))
         self._side()
 
@@ -89,21 +103,39 @@ class Window:
         return width // 2, height
 
     def _scene(self, view: View) -> None:
-        self.drawn: Drawn = drawn_of(self.model, self.shown)
+        """Draw what changed: the body with the step and the opening alone."""
         self.plotter.subplot(0, 0)
-        self.plotter.renderer.RemoveAllViewProps()
-        self._images.pop("scene", None)
-        drawn, box = self.drawn, self.model.box
-        add_solid(self.plotter, drawn.parts, drawn.fronts, drawn.scale, view, box, drawn.extras)
+        renderer = self.plotter.renderer
+        self.drawn: Drawn = drawn_of(self.model, self.shown)
+        drawn = self.drawn
+        if self._body_of != body_of(self.shown):
+            self._body_of = body_of(self.shown)
+            for actor in self._body:
+                renderer.RemoveViewProp(actor)
+            parts = opened_parts(self.model, self.shown)
+            self._body = add_body(self.plotter, parts, self.model.box) if parts else []
+        for actor in (*self._tubes, *self._extras):
+            renderer.RemoveViewProp(actor)
+        self._tubes = add_fronts(self.plotter, drawn.fronts, drawn.scale, view, drawn.extras)
+        self._extras = add_extras(self.plotter, drawn.fronts, view, drawn.extras)
+        look_from(self.plotter, view)
         self._words()
+
+    def _forward(self) -> None:
+        """Before each drawing: opened faces must not hide the fronts from where they are seen."""
+        bring_forward(self._tubes, self.drawn.fronts, self.view.towards)
 
     def _words(self) -> None:
         units = self.saved.evaluation.units
-        image, self.overlay = draw_overlay(self.drawn, self.view, units, self._half())
-        self._put("scene", 0, image)
+        self.overlay: Overlay = draw_overlay(
+            self.drawn, self.view, units, self._half(), self._kept[0]
+        )
+        self._put("scene", 0, self.overlay.image)
 
     def _side(self) -> None:
-        self.panel: Panel = draw_panel(self.saved.evaluation, self.shown, self._half())
+        self.panel: Panel = draw_panel(
+            self.saved.evaluation, self.shown, self._half(), self._kept[1]
+        )
         self._put("panel", 1, self.panel.image)
 
     def _put(self, name: str, number: int, image: Any) -> None:
@@ -203,9 +235,12 @@ class Window:
         self._pressed = self._mouse()
 
     def _move(self) -> None:
-        """Dragging the slider's knob."""
+        """Dragging the slider's knob; or the scene, whose words no longer fit."""
         width, _ = self._half()
-        if self._pressed is None or self._pressed[0] < width:
+        if self._pressed is None:
+            return
+        if self._pressed[0] < width:
+            self._images["scene"].SetVisibility(False)
             return
         left, top, right, bottom = self.panel.slider
         if left <= self._pressed[0] - width <= right and top <= self._pressed[1] <= bottom:

@@ -5,9 +5,10 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
+from front3d.output.charts.style import mathtext
 from front3d.output.formats import place
 from front3d.output.scene.drawing import Place
-from front3d.output.scene.quantity import QUANTITIES, shown_value, values_of
+from front3d.output.scene.quantity import LABELS, QUANTITIES, shown_value, values_of
 from front3d.output.scene.surface import steps_of
 from front3d.results import MODES, Evaluation, FrontResult
 
@@ -135,17 +136,18 @@ KEYS: Mapping[str, str] = {
 def numbers(evaluation: Evaluation, shown: Shown) -> tuple[str, str, str]:
     """All of the picked station on three lines."""
     front, i, units = front_of(evaluation, shown), shown.station, evaluation.units
-    unit = f" {units.K_label}" if units.named else ""
+    unit = f" {mathtext(units.K_label)}" if units.named else ""
     length = f" {units.length}".rstrip()
-    K = ", ".join(f"{m} {shown_value((front,), front, i, m):.4g}" for m in MODES)
+    K = ", ".join(f"{LABELS[m]} {shown_value((front,), front, i, m):.4g}" for m in MODES)
     energy = f" {units.stress} {units.length}".rstrip()
     psi = shown_value((front,), front, i, "psi")
+    angle = f"{psi:.3g}\N{DEGREE SIGN}" if np.isfinite(psi) else "none (mode III alone)"
     said = f", {front.flags[i]}" if front.flags[i] else ""
     return (
         f"front {front.front}, station {i} of {len(front)}{said}: s {front.s[i]:.4g}{length}, "
         f"s/L {front.s_rel[i]:.3f}",
         f"at ({place(front.positions[i], front.length)})   "
-        f"G {front.G[i]:.4g}{energy}, psi {psi:.3g}\N{DEGREE SIGN}",
+        rf"$G$ {front.G[i]:.4g}{energy}, $\psi$ {angle}",
         f"{K}{unit}",
     )
 
