@@ -1,7 +1,7 @@
 """What is done with one case, in whichever process."""
 
 import threading
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 from time import perf_counter
 from typing import TYPE_CHECKING, Any
@@ -83,8 +83,8 @@ def _evaluate(task: Task) -> Outcome:
     # Before reading: where a file changes meanwhile, the next run notices.
     identity = identity_of(task.case, pictures=task.pictures)
     ready = finished(task.folder, identity.key)
-    if ready is not None:
-        return ready
+    if ready is not None:  # by a worker that died before it could say so
+        return replace(ready, earlier=False)
     solid = _read(task.case, identity.files)
     with unfinished(task.folder) as part:
         evaluation, _ = run_case(task.case, part, pictures=task.pictures, solid=solid)

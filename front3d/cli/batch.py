@@ -92,9 +92,10 @@ def run(arguments: argparse.Namespace) -> int:
         clear_unfinished(out / CASES)
         try:
             _carry_out(study, arguments)
-        except (KeyboardInterrupt, Front3DError):
+        except (KeyboardInterrupt, Front3DError) as reason:
             if study.outcomes:
                 study.plan.gather(study.outcomes)
+            if study.outcomes or isinstance(reason, KeyboardInterrupt):
                 _say(_stopped(study))
             raise
         finally:
