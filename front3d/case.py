@@ -182,6 +182,8 @@ def as_toml(case: Case) -> str:
             if key == "result":
                 names = tuple(relpath(path, case.results[0].parent) for path in case.results)
                 value = names if case.more else next(iter(names), None)
+            elif isinstance(value, Path):
+                value = relpath(value, case.results[0].parent)
             lines += filter(None, [_line(key, value)])
     return "\n".join([*lines, *sections]) + "\n"
 

@@ -24,7 +24,9 @@ from front3d.results import (
     MethodResult,
     energy_release_rate,
 )
+from front3d.sanity.balance import balance_warnings, tube_of
 from front3d.sanity.cells import cell_warnings
+from front3d.sanity.conformity import conformity_warnings
 from front3d.sanity.displacements import (
     constant_warnings,
     displacement_warnings,
@@ -96,6 +98,7 @@ def evaluate_solid(
             )  # fmt: skip
             by_method, refused = _apply_methods(context)
             constants = station_constants(context)
+            doubts = _doubts(context, by_method[REPORTED])
         except (MethodError, MeshError) as reason:
             if model.n_fronts == 1:
                 raise
@@ -115,7 +118,7 @@ def evaluate_solid(
                     methods,
                     published.get((step.name, number), ()),
                     refused,
-                    unlike.get((step.name, number), ()),
+                    unlike.get((step.name, number), ()) + doubts[index],
                 )
             )
     if not results:
@@ -169,6 +172,14 @@ def _apply_methods(context: FrontContext) -> tuple[dict[str, list[MethodResult]]
         except (MethodError, MeshError) as reason:
             refused.append(f"{name} does not apply: {reason}")
     return by_method, tuple(refused)
+
+
+def _doubts(context: FrontContext, found: list[MethodResult]) -> list[tuple[str, ...]]:
+    """What must be said of the cells and the displacements around a front, for each result."""
+    tube = tube_of(context, found)
+    gaping = conformity_warnings(context, tube)
+    unbalanced = balance_warnings(context, tube, found, METHODS[REPORTED])
+    return [gaping + mine for mine in unbalanced]
 
 
 def _require_finite(step: Step, number: int, result: MethodResult) -> None:

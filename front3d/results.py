@@ -6,17 +6,13 @@ from dataclasses import dataclass, field, replace
 import numpy as np
 
 from front3d.arrays import BoolArray, FloatArray, IntArray, frozen_floats
+from front3d.caution import CAUTION as CAUTION
 from front3d.crack.front import FREE_SURFACE
 from front3d.errors import MethodError
 from front3d.solid import Constants, Material
 from front3d.units import Units
 
 MODES = ("K_I", "K_II", "K_III")
-
-CAUTION = (
-    "An engineering aid. Whether a cracked part is fit for service is decided by qualified "
-    "engineers under the governing code, not by this program."
-)
 
 
 @dataclass(frozen=True, slots=True, eq=False)

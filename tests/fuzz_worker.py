@@ -8,7 +8,6 @@ import json
 import resource
 import sys
 import traceback
-from dataclasses import replace
 from functools import cache
 from pathlib import Path
 
@@ -35,7 +34,6 @@ def _evaluated(request):
     from front3d.reading import load
     from front3d.solid import Material
 
-    moved = None
     path, options = Path(request["path"]), {"up": (0.0, 1.0, 0.0)}
     young, poisson = 200e3, 0.3
     if path.suffix == ".toml":
@@ -52,7 +50,6 @@ def _evaluated(request):
         solid = load(path, displacement_file=request.get("table"))
         if "good" in request and _same(solid, _good(request["good"])):
             return {"same": True}
-        moved = _moved(solid, _good(request["good"])) if "good" in request else None
         result = front3d.evaluate(solid, young=young, poisson=poisson, **options)
     fronts = []
     for front in result.fronts:
@@ -66,7 +63,7 @@ def _evaluated(request):
                 "notes": list(front.notes),
             }
         )
-    return {"fronts": fronts, "moved": moved, "warnings": list(result.warnings)}
+    return {"fronts": fronts, "warnings": list(result.warnings)}
 
 
 @cache
@@ -74,17 +71,6 @@ def _good(path):
     from front3d.reading import load
 
     return load(path)
-
-
-def _moved(one, other):
-    """How many nodes have another displacement, if the mesh is the same and so are the steps."""
-    import numpy as np
-
-    mesh = replace(one, steps=other.steps)
-    if len(one.points) != len(other.points) or not _same(mesh, other) or len(one.steps) != 1:
-        return None
-    u, v = one.steps[0].displacement, other.steps[0].displacement
-    return int((np.abs(u - v) > 1e-9 * np.abs(v).max()).any(axis=1).sum())
 
 
 def _same(one, other):

@@ -13,7 +13,7 @@ PACKAGE = Path(front3d.__file__).parent
 
 RANKS = [
     # Each module of front3d imports only from lines above its own, or from its own package.
-    {"errors"},
+    {"errors", "caution"},
     {"arrays"},
     {"loads", "combination"},
     {"elements", "units", "options"},
@@ -37,6 +37,8 @@ RANKS = [
     {"output"},
     {"verification"},
     {"case"},
+    {"job"},
+    {"batch"},
     {"cli"},
     {"__main__"},
 ]

@@ -6,9 +6,11 @@ TOLERANCE of that of the good file, at all stations between the ends.
 
 What cannot be noticed, by any program: a smooth change of the displacements that is itself a
 possible result (a factor, another load, K_III of the other sign), and a wrong Young's modulus.
-What is not always noticed: other displacements of a few nodes (bytes that are still numbers):
-K was then off by 3 to 6 % in the cases looked at.  They are counted, and must stay rare.
+
+FRONT3D_FUZZ sets how many damages of each kind the thorough runs try.
 """
+
+import os
 
 import h5py
 import meshio
@@ -18,7 +20,7 @@ from hypothesis import HealthCheck, Phase, given, settings
 from hypothesis import strategies as st
 from vtkmodules.vtkIOXML import vtkXMLUnstructuredGridWriter
 
-from tests.fuzz_tools import KINDS, UNNOTICED, Worker, damage_bytes, verdict
+from tests.fuzz_tools import KINDS, Worker, damage_bytes, verdict
 from tests.reading_models import grid, mesh, write_ensight, write_exodus
 from tests.whole_models import POISSON, YOUNG, block
 
@@ -38,26 +40,14 @@ def profile(examples):
 
 
 QUICK = 10
-THOROUGH = 60  # for each of 20 kinds of file and 11 damages to a model
-
-# Found by 150 examples of each and not mended yet; whoever mends one takes it off this list.
-OPEN = {
-    "vtk binary": "a damaged binary legacy file can crash VTK's reader",
-    "ensight case": "a damaged count in a case file can keep VTK's reader busy for minutes",
-    "ensight field": "a few changed bytes moved K by 2 % without a word",
-    "far_away": "a node moved far away moved K by 47 % without a word",
-}
+THOROUGH = int(os.environ.get("FRONT3D_FUZZ", "40"))
 
 
 def with_examples(names, quick):
     """Quick and thorough runs of each name."""
     for name in names:
         yield pytest.param(name, quick, id=f"{name}-quick")
-        marks = [pytest.mark.slow]
-        if name in OPEN:
-            runs = "minutes" not in OPEN[name]
-            marks.append(pytest.mark.xfail(reason=OPEN[name], strict=False, run=runs))
-        yield pytest.param(name, THOROUGH, id=f"{name}-thorough", marks=marks)
+        yield pytest.param(name, THOROUGH, id=f"{name}-thorough", marks=pytest.mark.slow)
 
 
 @pytest.fixture(scope="module")
@@ -208,11 +198,9 @@ def test_damaged_files(tmp_path, worker, good, form, examples):
             data = damage_bytes(data, kind, hit, size, seed) or b" "
         target.write_bytes(data)
         verdicts.append(verdict(worker.ask(**request), good[0]))
-        assert verdicts[-1] in ("refused", "same", "flagged", UNNOTICED), verdicts[-1]
+        assert verdicts[-1] in ("refused", "same", "flagged"), verdicts[-1]
 
     run()
-    # Other numbers for a few nodes, where only the physics could tell: see above.
-    assert verdicts.count(UNNOTICED) <= 0.04 * len(verdicts)
     assert verdicts.count("refused") > 0.2 * len(verdicts)
 
 
@@ -238,7 +226,10 @@ unopened = false
 
 @pytest.mark.parametrize(
     "examples",
-    [pytest.param(40, id="quick"), pytest.param(1000, marks=pytest.mark.slow, id="thorough")],
+    [
+        pytest.param(40, id="quick"),
+        pytest.param(10 * THOROUGH, marks=pytest.mark.slow, id="thorough"),
+    ],
 )
 def test_damaged_cases(tmp_path, worker, examples):
     """Values that say another case are not damage: they are kept as they are."""

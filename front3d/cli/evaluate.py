@@ -4,12 +4,13 @@ import argparse
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from front3d.case import Case, as_toml
+from front3d.case import Case
 from front3d.cli.command import Command
 from front3d.cli.flags import add_evaluation_flags, add_result, case_of
 from front3d.cli.progress import progress_bar
 from front3d.cli.words import describe_evaluation, describe_written
 from front3d.errors import CaseError, ReadError
+from front3d.job import check_constants, run_case
 
 if TYPE_CHECKING:
     from front3d.output.folder import Written
@@ -65,44 +66,12 @@ def _check_constants(arguments: argparse.Namespace) -> None:
 
 
 def evaluate_case(case: Case, out: Path, *, pictures: bool) -> "tuple[Evaluation, Written]":
-    """Read, evaluate and write what was found into the folder `out`."""
-    material = None
-    if case.result is None or (
-        not case.own_constants and (case.young is None or case.poisson is None)
-    ):
-        raise CaseError(
-            f"{case.source}: found no elastic constants, expected young and poisson in the section "
-            "[material], or --young and --poisson"
-        )
+    """Read, evaluate and write what was found into the folder `out`, under a bar of progress."""
+    check_constants(case)  # before a folder is made
     from front3d.output.files import results_folder
-    from front3d.output.folder import write_results
-    from front3d.pipeline import evaluate_solid
-    from front3d.reading.several import load_all
-    from front3d.solid import Material
 
-    if case.young is not None and case.poisson is not None:
-        material = Material(case.young, case.poisson)
     with results_folder(out), progress_bar() as progress:
-        if progress is not None:
-            progress(f"reading {case.result.name}", 0.0)
-        solid = load_all(
-            case.results,
-            displacement=case.displacement,
-            arrays=case.arrays,
-            displacement_file=case.displacement_file,
-        )
-        evaluation = evaluate_solid(solid, material, case.options, case.units, progress)
-        inputs = [p for p in (*case.results, case.displacement_file, case.source) if p]
-        written = write_results(
-            evaluation,
-            solid,
-            out,
-            inputs=inputs,
-            case_file=as_toml(case),
-            pictures=pictures,
-            progress=progress,
-        )
-    return evaluation, written
+        return run_case(case, out, pictures=pictures, progress=progress)
 
 
 COMMAND = Command(

@@ -273,6 +273,18 @@ def case_of(arguments: argparse.Namespace) -> Case:
     A value out of range is a wrong call (exit 2) when a flag gave it, and a wrong input
     (CaseError) when the case file did.
     """
+    flags = flags_said(arguments)
+    path, *more = (Path(name) for name in arguments.result)
+    if more and any(p.suffix.lower() == ".toml" for p in (path, *more)):
+        arguments.parser.error("found a case file among several files, expected it alone")
+    if path.suffix.lower() == ".toml":
+        return _joined(arguments, path, flags)
+    _require(arguments, flags)
+    return Case(result=path, more=tuple(more) or None).overridden_by(flags)
+
+
+def flags_said(arguments: argparse.Namespace) -> Case:
+    """What the flags say, which need not make sense without a case file."""
     said = {
         name: value
         for name in Case.__dataclass_fields__
@@ -285,14 +297,7 @@ def case_of(arguments: argparse.Namespace) -> Case:
     if "displacement" in said:
         first, *others = said["displacement"]
         said["displacement"] = (first, *others) if others else first
-    flags = Case(**said)
-    path, *more = (Path(name) for name in arguments.result)
-    if more and any(p.suffix.lower() == ".toml" for p in (path, *more)):
-        arguments.parser.error("found a case file among several files, expected it alone")
-    if path.suffix.lower() == ".toml":
-        return _joined(arguments, path, flags)
-    _require(arguments, flags)
-    return Case(result=path, more=tuple(more) or None).overridden_by(flags)
+    return Case(**said)
 
 
 def _joined(arguments: argparse.Namespace, path: Path, flags: Case) -> Case:
@@ -300,10 +305,10 @@ def _joined(arguments: argparse.Namespace, path: Path, flags: Case) -> Case:
     case = read_case(path)
     joined = case.overridden_by(flags)
     try:
-        _check(joined)
+        check_case(joined)
     except CaseError as error:
         try:
-            _check(case)
+            check_case(case)
         except CaseError as own:
             raise CaseError(f"{path}: {own}") from None
         arguments.parser.error(str(error))
@@ -313,12 +318,12 @@ def _joined(arguments: argparse.Namespace, path: Path, flags: Case) -> Case:
 def _require(arguments: argparse.Namespace, flags: Case) -> None:
     """A wrong call where the flags do not make sense."""
     try:
-        _check(flags)
+        check_case(flags)
     except CaseError as error:
         arguments.parser.error(str(error))
 
 
-def _check(case: Case) -> None:
+def check_case(case: Case) -> None:
     """CaseError where an option is out of range or a solution is not asked for as it should be."""
     _ = case.options, case.units
     for name in case.methods or ():

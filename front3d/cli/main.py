@@ -37,6 +37,13 @@ def main(argv: Sequence[str] | None = None) -> int:
     except MemoryError:
         _show_debug(debug)
         return _fail("not enough memory for this model; try a machine with more of it")
+    except OSError as error:
+        _show_debug(debug)
+        place = error.filename or "standard output"
+        return _fail(
+            f"{place}: {(error.strerror or str(error)).lower()}; free some space, or check "
+            "what you may read and write"
+        )
     except Exception as error:
         _show_debug(debug)
         hint = "" if debug else "; run again with --debug for the details, and please report them"

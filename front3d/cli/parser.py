@@ -4,6 +4,7 @@ import argparse
 from collections.abc import Sequence
 
 from front3d import __version__
+from front3d.cli.batch import COMMAND as BATCH
 from front3d.cli.command import Command
 from front3d.cli.demo import COMMAND as DEMO
 from front3d.cli.evaluate import COMMAND as EVALUATE
@@ -13,7 +14,7 @@ from front3d.cli.sample import COMMAND as SAMPLE
 from front3d.cli.verify import COMMAND as VERIFY
 from front3d.cli.view import COMMAND as VIEW
 
-COMMANDS: tuple[Command, ...] = (DEMO, EVALUATE, INSPECT, REPORT, SAMPLE, VERIFY, VIEW)
+COMMANDS: tuple[Command, ...] = (BATCH, DEMO, EVALUATE, INSPECT, REPORT, SAMPLE, VERIFY, VIEW)
 
 _DESCRIPTION = (
     "Stress intensity factors K_I, K_II, K_III along the crack fronts of a finite-element result. "

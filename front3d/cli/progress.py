@@ -4,7 +4,7 @@ import sys
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager
 
-_FIRST_RUN = (
+FIRST_RUN = (
     "kernels are being compiled, about half a minute in all; later runs find them on this machine"
 )
 
@@ -42,7 +42,7 @@ def progress_bar() -> Iterator[Callable[[str, float], None] | None]:
         def say(kernel: str | None) -> None:
             nonlocal told
             if kernel and not told:
-                console.print(_FIRST_RUN, style="dim")
+                console.print(FIRST_RUN, style="dim")
                 told = True
             bar.update(task, description=f"{stage}: compiling {kernel}" if kernel else stage)
 

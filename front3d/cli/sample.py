@@ -76,13 +76,13 @@ def write(
     name: str, cells: str, given: dict[str, float], out: Path, part: str = "full"
 ) -> tuple[Path, Path]:
     """Build, solve and write a sample; say what it is; its result and case files."""
-    from front3d.output.files import prepare_folder
+    from front3d.output.files import explained, results_folder
     from front3d.samples import build, write_sample
 
-    prepare_folder(out)
-    with progress_bar() as progress:
+    with results_folder(out), progress_bar() as progress:
         sample = build(name, cells=cells, part=part, progress=progress, **given)
-        solid, case = write_sample(sample, out)
+        with explained(out):
+            solid, case = write_sample(sample, out)
     print(sample.description)
     return solid, case
 

@@ -35,7 +35,7 @@ def add_flags(parser: argparse.ArgumentParser) -> None:
 
 
 def run(arguments: argparse.Namespace) -> int:
-    from front3d.output.files import prepare_folder, write_whole
+    from front3d.output.files import results_folder, whole_set
     from front3d.results import CAUTION
     from front3d.verification import verify
     from front3d.verification.record import as_json, markdown, now, verdict
@@ -44,12 +44,13 @@ def run(arguments: argparse.Namespace) -> int:
     if arguments.list:
         print("\n".join(table([{"case": c.name, "source": c.source} for c in cases])))
         return 0
-    prepare_folder(arguments.out)
-    with progress_bar() as progress:
-        rows = list(verify(cases, progress))
-    when = now()
-    for name, make in zip(NAMES, (markdown, as_json), strict=True):
-        write_whole(arguments.out / name, make(rows, when))
+    with results_folder(arguments.out):
+        with progress_bar() as progress:
+            rows = list(verify(cases, progress))
+        when = now()
+        with whole_set() as write:
+            for name, make in zip(NAMES, (markdown, as_json), strict=True):
+                write(arguments.out / name, make(rows, when))
     print("\n".join([*table([_short(row) for row in rows]), "", verdict(rows)]))
     print(f"written to {arguments.out}: {', '.join(NAMES)}\n\n{CAUTION}")
     return 0 if all(row.within for row in rows) else 1

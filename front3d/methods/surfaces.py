@@ -206,7 +206,7 @@ def _on_planes(
     """Which faces lie in one of the planes."""
     points = context.solid.points
     area = faces.area_vectors(points)
-    unit = area / np.linalg.norm(area, axis=1, keepdims=True)
+    unit = area / np.maximum(np.linalg.norm(area, axis=1, keepdims=True), 1e-300)
     on_any = np.zeros(len(faces), bool)
     for normal, through in planes:
         off = np.abs((points[faces.corners] - through) @ normal).max(axis=1)

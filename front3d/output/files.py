@@ -55,6 +55,29 @@ def whole_set() -> Iterator[Callable[[Path, bytes], None]]:
 
 
 @contextmanager
+def whole_files(*paths: Path) -> Iterator[tuple[Path, ...]]:
+    """Gives a place for each of `paths` to be written piece by piece, where its content is too
+    large for memory; they take their names together at the end of the block.
+
+    Where the block ends with any error none of them appears; an OSError becomes WriteError.
+    """
+    parts = tuple(path.with_name(f".{path.name}.{os.getpid()}.part") for path in paths)
+    at = paths[0]
+    try:
+        yield parts
+        for part in parts:
+            with part.open("rb+") as stream:
+                os.fsync(stream.fileno())
+        for at, part in zip(paths, parts, strict=True):
+            part.replace(at)
+    except OSError as error:
+        raise WriteError(_explain(at, error)) from error
+    finally:
+        for part in parts:
+            part.unlink(missing_ok=True)
+
+
+@contextmanager
 def results_folder(folder: Path) -> Iterator[Path]:
     """`prepare_folder`; when the work ends with an error, the folders it made go again."""
     made = [f for f in (folder, *folder.parents) if not f.exists()]
@@ -67,6 +90,15 @@ def results_folder(folder: Path) -> Iterator[Path]:
             except OSError:
                 break
         raise
+
+
+@contextmanager
+def explained(path: Path) -> Iterator[None]:
+    """WriteError in place of the OSError of something that writes to `path` by itself."""
+    try:
+        yield
+    except OSError as error:
+        raise WriteError(_explain(path, error)) from error
 
 
 def prepare_folder(folder: Path) -> Path:

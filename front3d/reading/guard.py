@@ -12,6 +12,7 @@ from collections.abc import Iterator
 from contextlib import ExitStack, contextmanager, redirect_stderr, redirect_stdout
 from io import StringIO
 from pathlib import Path
+from typing import Any
 
 from front3d.errors import Front3DError, ReadError
 
@@ -38,19 +39,29 @@ def python_library(path: Path, what: str) -> Iterator[None]:
 
 
 @contextmanager
-def vtk_library(path: Path, what: str, *, native: bool = False) -> Iterator[None]:
-    """Turn errors that VTK reports, instead of raising them, into one ReadError about `path`.
-
-    `native` captures file descriptor 2 too, for the libraries that VTK calls in turn.
-    """
+def quiet_vtk() -> Iterator[Any]:
+    """Keep what VTK has to say in an output window of its own, which is given."""
     from vtkmodules.vtkCommonCore import vtkLogger, vtkOutputWindow, vtkStringOutputWindow
 
     window = vtkStringOutputWindow()
     before = vtkOutputWindow.GetInstance()
     verbosity = vtkLogger.GetCurrentVerbosityCutoff()
-    with python_library(path, what):
-        vtkOutputWindow.SetInstance(window)
-        vtkLogger.SetStderrVerbosity(vtkLogger.VERBOSITY_OFF)
+    vtkOutputWindow.SetInstance(window)
+    vtkLogger.SetStderrVerbosity(vtkLogger.VERBOSITY_OFF)
+    try:
+        yield window
+    finally:
+        vtkOutputWindow.SetInstance(before)
+        vtkLogger.SetStderrVerbosity(verbosity)
+
+
+@contextmanager
+def vtk_library(path: Path, what: str, *, native: bool = False) -> Iterator[None]:
+    """Turn errors that VTK reports, instead of raising them, into one ReadError about `path`.
+
+    `native` captures file descriptor 2 too, for the libraries that VTK calls in turn.
+    """
+    with python_library(path, what), quiet_vtk() as window:
         native_text: list[str] = []
         refusal: Front3DError | None = None
         try:
@@ -60,9 +71,6 @@ def vtk_library(path: Path, what: str, *, native: bool = False) -> Iterator[None
                 yield
         except Front3DError as error:
             refusal = error  # often the consequence of what VTK has to say
-        finally:
-            vtkOutputWindow.SetInstance(before)
-            vtkLogger.SetStderrVerbosity(verbosity)
         said = _vtk_errors(window.GetOutput())
         if refusal is not None and native_text:
             said = said or native_text[0]

@@ -8,6 +8,7 @@ only its numbers are counted.
 
 import mmap
 import re
+from contextlib import suppress
 from pathlib import Path
 from typing import Any
 
@@ -15,6 +16,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from front3d.errors import ReadError
+from front3d.reading.legacy_walk import UnreadableError, walk_binary
 
 _DECLARATIONS = re.compile(rb"^(?!nan\b|inf\b)[A-Za-z_][^\n]*", re.MULTILINE | re.IGNORECASE)
 # Numbers per point or cell after a line that begins with one of these words.
@@ -30,7 +32,7 @@ def check_legacy(path: Path) -> None:
     """Raise ReadError if the file is cut short, or its counts or list of cells cannot be true."""
     try:
         _check_structure(path)
-    except (ValueError, IndexError):
+    except (ValueError, IndexError, KeyError):
         raise ReadError(
             f"{path}: found counts in it that make no sense, expected whole lists of points and "
             "cells: the file is damaged; transfer or export it again"
@@ -41,7 +43,9 @@ def check_legacy(path: Path) -> None:
 def _check_structure(path: Path) -> None:
     with path.open("rb") as file, mmap.mmap(file.fileno(), 0, access=mmap.ACCESS_READ) as text:
         lines = text[:1024].split(b"\n")
-        version = re.search(rb"Version\s+(\d+)", lines[0])
+        version = re.fullmatch(rb"# vtk DataFile Version ([1-5])\.\d\s*", lines[0])
+        if version is None or len(lines) < 4 or len(lines[1]) > 256:
+            raise ValueError
         ascii_ = len(lines) > 2 and lines[2].strip().upper() == b"ASCII"
         counts: dict[str, int] = {}
         for found in _COUNTS.finditer(text):
@@ -53,7 +57,7 @@ def _check_structure(path: Path) -> None:
                 raise ValueError
             if word == "CELLS":
                 after = text[found.end() : found.end() + 7].upper() == b"OFFSETS"
-                if version is None or after != (int(version[1]) >= 5):
+                if after != (int(version[1]) >= 5):
                     raise ValueError
                 if not 0 <= int(found[3]) <= len(text):
                     raise ValueError
@@ -62,6 +66,11 @@ def _check_structure(path: Path) -> None:
         for one, other in (("POINTS", "POINT_DATA"), ("CELL_TYPES", "CELL_DATA")):
             if one in counts and counts.get(other, counts[one]) != counts[one]:
                 raise ValueError
+        if not ascii_:
+            if lines[2].strip().upper() != b"BINARY":
+                raise ValueError
+            with suppress(UnreadableError):
+                walk_binary(text, sum(len(line) + 1 for line in lines[:3]))
 
 
 def _integers(text: mmap.mmap, start: int, count: int, ascii_: bool) -> NDArray[Any]:

@@ -27,6 +27,7 @@ _SAMPLE = 2000
 # its site before its place in the order is doubted, and the legal stretch along the edge.
 _FAR = 0.35
 _ALONG = 0.3 + 1e-6
+_BENT = 1.0  # half a circle has 0.5
 _FLAT = 1e-12
 
 
@@ -231,6 +232,12 @@ def _about_place(
                     f"{what} stands amid the nodes {nodes[cell, nearest].tolist()}, where another "
                     "mid-side node was expected (numbers from 0): its nodes are in an unknown "
                     "order; check its node order"
+                )
+            if away2 > (_BENT * np.sqrt(span2) + slack) ** 2:
+                return (
+                    f"{what} stands {np.sqrt(away2):.3g} from the middle of its edge or face, "
+                    f"which is {np.sqrt(span2):.3g} long, expected half of that at the most "
+                    "(numbers from 0): check its coordinates and its node order"
                 )
             if group.on_edges and along > _ALONG * span2 + slack * np.sqrt(span2):
                 return (

@@ -54,10 +54,23 @@ def _leaves(data: Any) -> list[Any]:
             for k in range(data.GetNumberOfPartitions())
             for leaf in _leaves(data.GetPartition(k))
         ]
+    _name_in_text(data)
     data = pyvista.wrap(data)
     if isinstance(data, pyvista.MultiBlock):
         return [leaf for k in range(data.n_blocks) for leaf in _leaves(data[k])]
     return [data]
+
+
+def _name_in_text(data: Any) -> None:
+    """Names that are no UTF-8, which VTK gives as bytes, are taken for Latin-1."""
+    from vtkmodules.vtkCommonDataModel import vtkDataSet
+
+    if isinstance(data, vtkDataSet):
+        for arrays in (data.GetPointData(), data.GetCellData(), data.GetFieldData()):
+            for k in range(arrays.GetNumberOfArrays()):
+                array = arrays.GetAbstractArray(k)
+                if isinstance(array.GetName(), bytes):
+                    array.SetName(array.GetName().decode("latin-1"))
 
 
 def _unstructured(data: Any) -> Any:

@@ -1,10 +1,12 @@
 """Writing a sample: the result as VTU, and a case file beside it."""
 
+import errno
 from pathlib import Path
 from tempfile import TemporaryDirectory
 
 import numpy as np
 
+from front3d.reading.guard import quiet_vtk
 from front3d.samples.sample import Sample
 
 
@@ -70,5 +72,8 @@ def _write_vtu(sample: Sample, path: Path) -> None:
     writer.SetDataModeToAppended()
     writer.EncodeAppendedDataOff()
     writer.SetCompressorTypeToZLib()
-    if writer.Write() != 1:
-        raise OSError(f"{path}: could not be written")
+    with quiet_vtk():
+        done = writer.Write()
+    # With the disk full VTK may speak of success.
+    if done != 1 or not path.exists() or writer.GetErrorCode():
+        raise OSError(errno.EIO, "VTK could not write it: is the disk full?", str(path))
