@@ -30,7 +30,7 @@ def _evaluated(request):
 
     import front3d
     from front3d.case import read_case
-    from front3d.cli.flags import _check
+    from front3d.cli.flags import check_case
     from front3d.reading import load
     from front3d.solid import Material
 
@@ -40,7 +40,7 @@ def _evaluated(request):
         from front3d.pipeline import evaluate_solid
 
         case = read_case(path)
-        _check(case)
+        check_case(case)
         material = Material(case.young or 0.0, 0.3 if case.poisson is None else case.poisson)
         solid = load(
             case.result, displacement=case.displacement, displacement_file=case.displacement_file

@@ -44,7 +44,8 @@ def progress_bar() -> Iterator[Callable[[str, float], None] | None]:
             if kernel and not told:
                 console.print(FIRST_RUN, style="dim")
                 told = True
-            bar.update(task, description=f"{stage}: compiling {kernel}" if kernel else stage)
+            words = f"{stage}: compiling {kernel}" if kernel else stage
+            bar.update(task, description=words, refresh=True)
 
         with compilations(say):
             yield show

@@ -46,12 +46,14 @@ def load_words(options: Mapping[str, Any], units: Units) -> list[Pair]:
     """Every load that was stated beside the displacements, in the order of the case file."""
     loads, stress = _loads(options), units.stress
     found: list[Pair] = []
+    some_steps = dict(_at_equals(text) for text in loads.get("acts_in") or ())
     for key, name in (
         ("face_pressure", "pressure on the crack faces"),
         ("surface_pressure", "pressure on the surface at the ends of the front"),
     ):
         if options.get(key):
-            found.append((name, f"{_of(options[key], stress)}, in every step"))
+            every = "" if key in some_steps else ", in every step"
+            found.append((name, f"{_of(options[key], stress)}{every}"))
     if loads.get("face_polynomial"):
         terms = [
             f"{c:g}" + ("" if k == 0 else " d" if k == 1 else f" d^{k}")
@@ -85,6 +87,8 @@ def load_words(options: Mapping[str, Any], units: Units) -> list[Pair]:
         if loads.get(key):
             name = key.replace("_", " ")
             found.append((name, f"array {loads[key]} of the result file"))
+    for key, steps in some_steps.items():
+        found.append((f"steps of {key.replace('_', ' ')}", f"{steps} only"))
     return found
 
 
@@ -100,6 +104,12 @@ def own_constants(material: Constants | None, whole: Material) -> bool:
 def _loads(options: Mapping[str, Any]) -> Mapping[str, Any]:
     loads: Mapping[str, Any] = options.get("loads") or {}
     return loads
+
+
+def _at_equals(text: str) -> Pair:
+    """A load and its steps, of a text such as "face_pressure = pressure, upset"."""
+    load, _, steps = text.partition("=")
+    return load.strip(), steps.strip()
 
 
 def _elastic(young: float, poisson: float, stress: str) -> str:
