@@ -142,6 +142,7 @@ def test_the_free_surface_layer_is_three_stations_or_a_twentieth_of_the_front():
     assert short.tolist() == [True, False, False, False, True]
 
 
+@pytest.mark.slow
 def test_a_ring_with_the_wrong_load_is_warned_of():
     """The faces of a pressed crack move as if pulled, but their load is missing in the integral
     alone: opening and closure differ from it, and it is the one that is suspected.

@@ -43,7 +43,8 @@ def test_overlapping_faces_are_reported_flagged_and_not_hidden(penny):
     assert "overlap" in front.warnings[0]
 
 
-@pytest.mark.parametrize("poisson", [pytest.param(0.2, marks=pytest.mark.slow), 0.4])
+@pytest.mark.slow
+@pytest.mark.parametrize("poisson", [0.2, 0.4])
 def test_a_wrong_poisson_ratio_shows_in_J_against_G(poisson):
     solid = front3d.load(Path(__file__).parent / "data" / "surface_06_04.vtu")
     for wrong, said in ((0.3, False), (poisson, True)):

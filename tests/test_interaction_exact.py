@@ -120,16 +120,15 @@ def test_a_circular_front_converges_with_its_own_curvature_terms(kind):
     assert np.log2(coarse.max() / fine.max()) > 0.85
 
 
-@pytest.mark.parametrize(
-    "kind",
-    [QUARTER_POINT[0], *(pytest.param(k, marks=pytest.mark.slow) for k in QUARTER_POINT[1:])],
-)
+@pytest.mark.slow
+@pytest.mark.parametrize("kind", QUARTER_POINT)
 def test_a_circular_front_with_quarter_points_converges_quadratically(kind):
     coarse, fine = penny_errors(kind, 4), penny_errors(kind, 8)
     assert fine.max() < 1e-3
     assert np.log2(coarse.max() / fine.max()) > 1.9
 
 
+@pytest.mark.slow
 def test_edges_that_cut_the_corners_of_the_front_cost_little():
     """Straight edges leave a polygon inside the circle; the curve goes through its corners."""
     result, expected = penny("tetra10", 6, straight_edges=True)

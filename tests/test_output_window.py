@@ -78,6 +78,7 @@ def test_the_numbers_are_those_of_the_station() -> None:
         assert f"{value:.4g}" in text
 
 
+@pytest.mark.slow
 def test_a_kept_chart_gives_the_same_panel_and_an_other_station_another() -> None:
     evaluation = two_by_two()
     shown = first_shown(evaluation)

@@ -48,7 +48,7 @@ def test_the_extent_is_that_of_numpy(count):
     np.testing.assert_array_equal(extent(values), np.ptp(values, axis=0))
 
 
-@pytest.mark.parametrize("kind", ["tetra10", "hexahedron20"])
+@pytest.mark.parametrize("kind", [pytest.param("tetra10", marks=pytest.mark.slow), "hexahedron20"])
 def test_K_does_not_depend_on_which_cells_are_first_called_near(kind, monkeypatch):
     mesh = build(Size(kind, stations=24, outside=10, beside=9))
     solid = Solid(

@@ -50,7 +50,7 @@ def check(name: str, part: str, cells: str, n_free: int, **parameters: float) ->
 @pytest.mark.parametrize(
     ("part", "n_free"),
     [
-        ("quarter", 1),
+        pytest.param("quarter", 1, marks=pytest.mark.slow),
         pytest.param("half", 1, marks=pytest.mark.slow),
         pytest.param("upper", 2, marks=pytest.mark.slow),
     ],

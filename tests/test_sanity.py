@@ -75,6 +75,7 @@ def test_a_large_rotation_is_said_in_degrees(pulled):
     assert said(changed(pulled, lambda x, step: step.displacement + x @ small.T))[0] == []
 
 
+@pytest.mark.slow
 def test_millimetres_in_a_model_in_metres(pulled):
     """The mean strain near the penny is about 1/E; a thousand times that is not small."""
     magnified = changed(pulled, lambda x, step: 1000.0 * step.displacement)
