@@ -1,6 +1,9 @@
 """The parts of a study: its cases, what makes two runs the same, restart, the loop, the tables."""
 
+import json
 import os
+import subprocess
+import sys
 from dataclasses import replace
 from pathlib import Path
 from typing import Any
@@ -22,7 +25,6 @@ from front3d.batch.finished import (
 )
 from front3d.batch.identity import identity_of, program_version
 from front3d.batch.plan import Plan
-from front3d.batch.processes import Processes
 from front3d.batch.running import LostError, run
 from front3d.batch.study import Member, by_step, files_of, members_of, names_of
 from front3d.batch.worker import Task
@@ -31,7 +33,6 @@ from front3d.cli.flags import check_case
 from front3d.errors import CaseError, CrackError, ReadError
 from front3d.output.files import WriteError
 from tests.batch_models import case_file, placed
-from tests.batch_work import square
 from tests.output_models import elliptic_front, evaluation_of
 
 # --- which cases ------------------------------------------------------------------------------
@@ -245,21 +246,43 @@ def test_known_outcomes_need_no_worker(task: Task, tmp_path: Path) -> None:
 # --- the loop over workers --------------------------------------------------------------------
 
 
-def test_a_killed_worker_costs_its_case_and_no_other(tmp_path: Path) -> None:
-    numbers = [1, -1, 2, -2, 3, 4, 5]
-    items = [(number, str(tmp_path)) for number in numbers]
+STUDY_OF_NUMBERS = """
+import json, sys
+from front3d.batch.processes import Processes
+from front3d.batch.running import run
+from tests.batch_work import square
+
+if __name__ == "__main__":
+    items = [(number, sys.argv[1]) for number in (1, -1, 2, -2, 3, 4, 5)]
     with Processes(2, threads=1) as pool:
         found = {item[0]: result for item, result in run(square, items, pool)}
-    assert set(found) == set(numbers)
-    good = {number: found[number] for number in numbers if number > 0}
-    assert [result[0] for result in good.values()] == [1, 4, 9, 16, 25]
-    assert {result[2] for result in good.values()} == {"1"}
-    assert isinstance(found[-1], LostError)
-    assert "ended 2 times" in str(found[-1])
-    assert "no number" in str(found[-2])
+    print(json.dumps({n: r if isinstance(r, tuple) else [type(r).__name__, str(r)]
+                      for n, r in found.items()}))
+"""
+
+
+def test_a_killed_worker_costs_its_case_and_no_other(tmp_path: Path) -> None:
+    """In a program of its own, as a study is: its processes are nobody else's."""
+    script, where = tmp_path / "study.py", tmp_path / "begun"
+    script.write_text(STUDY_OF_NUMBERS)
+    where.mkdir()
+    ran = subprocess.run(
+        [sys.executable, str(script), str(where)],
+        env=os.environ | {"PYTHONPATH": str(Path(__file__).parents[1])},
+        capture_output=True,
+        text=True,
+        check=True,
+        timeout=120,
+    )
+    found = {int(number): result for number, result in json.loads(ran.stdout).items()}
+    assert [found[number][0] for number in (1, 2, 3, 4, 5)] == [1, 4, 9, 16, 25]
+    assert {found[number][2] for number in (1, 2, 3, 4, 5)} == {"1"}
+    assert found[-1][0] == found[-2][0] == LostError.__name__
+    assert "ended 2 times" in found[-1][1]
+    assert "no number" in found[-2][1]
     # Each was begun once, and what killed its process twice.
-    begun = {int(path.name): len(path.read_text()) for path in tmp_path.iterdir()}
-    assert begun == dict.fromkeys(numbers, 1) | {-1: 2}
+    begun = {int(path.name): len(path.read_text()) for path in where.iterdir()}
+    assert begun == dict.fromkeys(found, 1) | {-1: 2}
 
 
 class Immediate:
