@@ -21,12 +21,13 @@ from front3d.batch.finished import (
     unfinished,
 )
 from front3d.batch.identity import identity_of, program_version
-from front3d.batch.plan import Plan
+from front3d.batch.plan import CASES, Plan
 from front3d.batch.processes import Processes
 from front3d.batch.running import LostError, run
 from front3d.batch.study import Member, by_step, files_of, members_of, names_of
 from front3d.batch.worker import Task
 from front3d.case import Case
+from front3d.cli import main
 from front3d.cli.flags import check_case
 from front3d.errors import CaseError, CrackError, ReadError
 from front3d.output.files import WriteError
@@ -79,6 +80,25 @@ def test_a_wrong_case_file_is_a_case_that_fails_and_wrong_flags_stop(tmp_path: P
         members_of([str(tmp_path / "r.vtu")], Case(young=1.0), check_case)
     with pytest.raises(CaseError, match=r"good\.toml with the flags: hat"):
         members_of([str(tmp_path)], Case(hat=0.5), check_case)
+
+
+def test_a_constant_out_of_range_is_a_wrong_call_that_costs_no_result(tmp_path: Path) -> None:
+    result, kept = tmp_path / "r.vtu", tmp_path / "out" / CASES / "r" / "points.csv"
+    result.write_text("x")
+    kept.parent.mkdir(parents=True)
+    kept.write_text("finished")
+    words = [
+        "batch",
+        str(result),
+        "--young",
+        "1",
+        "--poisson",
+        "0.7",
+        "--out",
+        str(tmp_path / "out"),
+    ]
+    assert main(words) == 2
+    assert kept.read_text() == "finished"
 
 
 def test_each_step_is_a_case_with_its_own_comparison() -> None:
