@@ -235,6 +235,20 @@ def test_a_worker_writes_a_case_once(task: Task) -> None:
     assert [path.name for path in task.folder.parent.iterdir()] == ["c"]
 
 
+def test_a_worker_given_up_takes_no_result_of_its_successor_away(
+    task: Task, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    task.folder.parent.mkdir()
+
+    def overtaken(*_: Any, **__: Any) -> Any:
+        placed(task.folder, identity_of(task.case, pictures=False).key, "K_I\n0.3\n")
+        raise WriteError("the unfinished folder is gone")
+
+    monkeypatch.setattr(worker, "run_case", overtaken)
+    assert worker.evaluate(task).done
+    assert (task.folder / "points.csv").read_text() == "K_I\n0.3\n"
+
+
 def test_a_failure_is_an_outcome_and_takes_old_results_away(task: Task) -> None:
     task.folder.parent.mkdir()
     worker.evaluate(task)
