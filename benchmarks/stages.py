@@ -13,6 +13,7 @@ import sys
 import tempfile
 import time
 from collections.abc import Callable
+from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
@@ -117,8 +118,9 @@ def _methods(clock: Clock, solid: Any, model: Any) -> dict[str, Any]:
         return context, sum(len(cells) for cells in tube.cells)
 
     context, in_tube = clock.time("geometry", geometry)
-    clock.time("interaction", lambda: METHODS["interaction"](context))
-    clock.time("closure", lambda: METHODS["closure"](context))
+    # A context keeps its tubes: each call has one of its own, as in an evaluation.
+    clock.time("interaction", lambda: METHODS["interaction"](replace(context)))
+    clock.time("closure", lambda: METHODS["closure"](replace(context)))
     return {"cells in tube": in_tube}
 
 

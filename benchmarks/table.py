@@ -88,7 +88,7 @@ def text(record: Record) -> str:
         lines.append(f"{cells:44}" + "".join(f"{t['cold']:9.2f} /{t['warm']:9.2f}" for t in times))
     for name, values in (("exponents", record["growth"]), ("ratios", ratios(record))):
         lines += ["", name, *(f"  {key:64}{value:8.2f}" for key, value in values.items())]
-    lines += ["", "kernel, seconds per million Gauss points"]
+    lines += ["", "kernel, seconds per million Gauss points; differences over the largest force"]
     for kind, times in record["kernel"].items():
         lines += [f"  {kind + ', ' + name:64}{value:10.3g}" for name, value in times.items()]
     return "\n".join(lines)

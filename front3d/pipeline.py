@@ -2,6 +2,7 @@
 
 from collections.abc import Callable, Iterator, Mapping, Sequence
 from dataclasses import asdict, replace
+from typing import TYPE_CHECKING
 
 import numpy as np
 
@@ -10,9 +11,6 @@ from front3d.crack import CrackModel, Front, find_cracks
 from front3d.errors import CaseError, Front3DError, MeshError, MethodError
 from front3d.evidence import REPORTED, weigh
 from front3d.flags import front_warnings, station_flags
-from front3d.handbook.catalogue import parse
-from front3d.handbook.comparing import compare_fronts
-from front3d.handbook.placing import FrontShape
 from front3d.methods import METHODS, FrontContext
 from front3d.methods.loading import station_constants
 from front3d.methods.materials import foreign_cells, material_of_front, nominal
@@ -36,6 +34,9 @@ from front3d.sanity.faces import face_warnings, pair_normals, stress_warnings
 from front3d.solid import Constants, Material, Solid, Step
 from front3d.steps import choose, require_steps_of_loads
 from front3d.units import Units
+
+if TYPE_CHECKING:
+    from front3d.handbook.catalogue import Request
 
 Progress = Callable[[str, float], None]
 
@@ -66,7 +67,7 @@ def evaluate_solid(
     options, units = options or Options(), units or Units()
     report = progress or _silent
     _check_methods(options)
-    requests = tuple(parse(text) for text in options.compare)
+    requests = _requests(options)
     chosen = choose(solid, options.steps, options.combine)
     steps = chosen.reported
     require_steps_of_loads(solid, options.loads)
@@ -80,7 +81,7 @@ def evaluate_solid(
             "not linear in steps whose constants differ"
         )
     reported = nominal(material, options.loads)
-    published, unlike = compare_fronts(requests, steps, _shapes(model), reported.poisson)
+    published, unlike = _published(requests, steps, model, reported.poisson)
     displacement = _stacked(chosen.computed)
     results: list[FrontResult] = []
     left_out: list[tuple[int, Front3DError]] = []
@@ -147,14 +148,30 @@ def _fronts(model: CrackModel) -> Iterator[tuple[int, Front]]:
         yield from ((crack, front) for front in fronts)
 
 
-def _shapes(model: CrackModel) -> list[FrontShape]:
-    """What the fronts look like, in their order."""
+def _requests(options: Options) -> "tuple[Request, ...]":
+    """The published solutions asked for; the handbook is only loaded where there are any."""
+    if not options.compare:
+        return ()
+    from front3d.handbook.catalogue import parse
+
+    return tuple(parse(text) for text in options.compare)
+
+
+def _published(
+    requests: "Sequence[Request]", steps: Sequence[Step], model: CrackModel, poisson: float
+) -> tuple[dict[tuple[str, int], tuple[Comparison, ...]], dict[tuple[str, int], tuple[str, ...]]]:
+    """What `compare_fronts` gives for all fronts, in their order."""
+    if not requests:
+        return {}, {}
+    from front3d.handbook.comparing import compare_fronts
+    from front3d.handbook.placing import FrontShape
+
     shapes = []
     for _, front in _fronts(model):
         s = front.corner_s[front.stations]
         positions, frames, _ = front.curve.frames(s)
         shapes.append(FrontShape(positions, frames, s, front.length, front.closed, front.ends))
-    return shapes
+    return compare_fronts(requests, steps, shapes, poisson)
 
 
 def _apply_methods(context: FrontContext) -> tuple[dict[str, list[MethodResult]], tuple[str, ...]]:

@@ -24,11 +24,12 @@ from front3d.batch.finished import (
     unfinished,
 )
 from front3d.batch.identity import identity_of, program_version
-from front3d.batch.plan import Plan
+from front3d.batch.plan import CASES, Plan
 from front3d.batch.running import LostError, run
 from front3d.batch.study import Member, by_step, files_of, members_of, names_of
 from front3d.batch.worker import Task
 from front3d.case import Case
+from front3d.cli import main
 from front3d.cli.flags import check_case
 from front3d.errors import CaseError, CrackError, ReadError
 from front3d.output.files import WriteError
@@ -80,6 +81,25 @@ def test_a_wrong_case_file_is_a_case_that_fails_and_wrong_flags_stop(tmp_path: P
         members_of([str(tmp_path / "r.vtu")], Case(young=1.0), check_case)
     with pytest.raises(CaseError, match=r"good\.toml with the flags: hat"):
         members_of([str(tmp_path)], Case(hat=0.5), check_case)
+
+
+def test_a_constant_out_of_range_is_a_wrong_call_that_costs_no_result(tmp_path: Path) -> None:
+    result, kept = tmp_path / "r.vtu", tmp_path / "out" / CASES / "r" / "points.csv"
+    result.write_text("x")
+    kept.parent.mkdir(parents=True)
+    kept.write_text("finished")
+    words = [
+        "batch",
+        str(result),
+        "--young",
+        "1",
+        "--poisson",
+        "0.7",
+        "--out",
+        str(tmp_path / "out"),
+    ]
+    assert main(words) == 2
+    assert kept.read_text() == "finished"
 
 
 def test_each_step_is_a_case_with_its_own_comparison() -> None:
@@ -214,6 +234,20 @@ def test_a_worker_writes_a_case_once(task: Task) -> None:
     assert not other.earlier
     assert "0.2" in (task.folder / "points.csv").read_text()
     assert [path.name for path in task.folder.parent.iterdir()] == ["c"]
+
+
+def test_a_worker_given_up_takes_no_result_of_its_successor_away(
+    task: Task, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    task.folder.parent.mkdir()
+
+    def overtaken(*_: Any, **__: Any) -> Any:
+        placed(task.folder, identity_of(task.case, pictures=False).key, "K_I\n0.3\n")
+        raise WriteError("the unfinished folder is gone")
+
+    monkeypatch.setattr(worker, "run_case", overtaken)
+    assert worker.evaluate(task).done
+    assert (task.folder / "points.csv").read_text() == "K_I\n0.3\n"
 
 
 def test_a_failure_is_an_outcome_and_takes_old_results_away(task: Task) -> None:

@@ -336,6 +336,12 @@ def test_compilation_is_said_while_it_happens(monkeypatch: pytest.MonkeyPatch) -
         numba.njit(quick_to_compile)(1.0)
     assert "kernels are being compiled" in screen.getvalue()
     assert "looking: compiling quick_to_compile" in screen.getvalue()
+    pipe = io.StringIO()
+    monkeypatch.setattr(sys, "stderr", pipe)
+    with progress_bar():
+        numba.njit(quick_to_compile)(1.0)
+        numba.njit(quick_to_compile)(1)
+    assert pipe.getvalue().count("kernels are being compiled") == 1
 
 
 def quick_to_compile(x: float) -> float:

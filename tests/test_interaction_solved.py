@@ -233,8 +233,7 @@ def test_inclined_penny(cells):
 
 
 @pytest.mark.slow
-@pytest.mark.parametrize("cells", ["bricks", "tetra10"])
-@pytest.mark.parametrize(("a_c", "a_t"), [(0.6, 0.4), (1.0, 0.2)])
+@pytest.mark.parametrize(("cells", "a_c", "a_t"), [("bricks", 1.0, 0.2), ("tetra10", 0.6, 0.4)])
 def test_surface_crack_samples(cells, a_c, a_t):
     shape = {"depth": 6.0, "half_length": 6.0 / a_c, "thickness": 6.0 / a_t}
     fronts = sampled("surface-crack", cells=cells, **shape)

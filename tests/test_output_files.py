@@ -9,7 +9,8 @@ from typing import Any, Never
 
 import pytest
 
-from front3d.output import folder as folder_module
+from front3d.output import charts, rendering
+from front3d.output.charts import style
 from front3d.output.files import WriteError, prepare_folder, results_folder, write_whole
 from front3d.output.folder import write_results
 from tests.output_models import cracked_block, elliptic_front, evaluation_of
@@ -115,11 +116,11 @@ def test_tables_alone(tmp_path: Path) -> None:
 
 @pytest.fixture
 def without_graphics(monkeypatch: pytest.MonkeyPatch) -> None:
-    monkeypatch.setattr(folder_module, "why_no_pictures", lambda: "left out: apt-get install egl")
-    names = folder_module.charts_of
-    monkeypatch.setattr(folder_module, "charts_of", lambda e: dict.fromkeys(names(e), object))
-    monkeypatch.setattr(folder_module, "png", lambda _: b"png")
-    monkeypatch.setattr(folder_module, "svg", lambda _: b"svg")
+    monkeypatch.setattr(rendering, "why_no_pictures", lambda: "left out: apt-get install egl")
+    names = charts.charts_of
+    monkeypatch.setattr(charts, "charts_of", lambda e: dict.fromkeys(names(e), object))
+    monkeypatch.setattr(style, "png", lambda _: b"png")
+    monkeypatch.setattr(style, "svg", lambda _: b"svg")
 
 
 @pytest.mark.usefixtures("without_graphics")

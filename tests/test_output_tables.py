@@ -141,6 +141,13 @@ def test_files_named_by_an_index_are_hashed_too(tmp_path: Path) -> None:
     assert companions(tmp_path / "step_0.vtu") == []
 
 
+@pytest.mark.parametrize("name", ["me.case", "*.case", "/abs/geo*", "x" * 300])
+def test_an_index_that_names_itself_or_no_file_names_none(tmp_path: Path, name: str) -> None:
+    index = tmp_path / "me.case"
+    index.write_text(f"GEOMETRY\nmodel: {name}\n")
+    assert companions(index) == []
+
+
 def test_places_far_from_the_origin_keep_their_digits() -> None:
     """A ten-thousandth of the front's length can be read off, wherever the model stands."""
     assert place(np.array([5000.0123, -7000.0, 1e-15]), 0.01) == "5000.0123, -7000, 0"

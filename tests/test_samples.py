@@ -167,8 +167,9 @@ def test_coarse_penny_opens_and_slides_as_the_exact_solution() -> None:
 
 
 @pytest.mark.slow
-@pytest.mark.parametrize(("cells", "allowed"), [("bricks", 5e-3), ("tetra10", 2.2e-2)])
-@pytest.mark.parametrize("tilt", [0.0, 45.0])
+@pytest.mark.parametrize(
+    ("cells", "allowed", "tilt"), [("bricks", 5e-3, 45.0), ("tetra10", 2.2e-2, 0.0)]
+)
 def test_penny_opens_and_slides_as_the_exact_solution(
     cells: str, allowed: float, tilt: float
 ) -> None:

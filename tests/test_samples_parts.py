@@ -61,9 +61,7 @@ def test_parts_of_a_surface_crack_agree_with_the_whole(part: str, n_free: int) -
 
 
 @pytest.mark.slow
-@pytest.mark.parametrize(
-    ("part", "n_free", "cells"), [("half", 1, "tetra10"), ("quarter", 1, "bricks")]
-)
+@pytest.mark.parametrize(("part", "n_free", "cells"), [("half", 1, "tetra10")])
 def test_parts_at_the_default_fineness(part: str, n_free: int, cells: str) -> None:
     check("surface-crack", part, cells, n_free)
 

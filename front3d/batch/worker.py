@@ -15,7 +15,7 @@ from front3d.batch.finished import (
     started,
     unfinished,
 )
-from front3d.batch.identity import identity_of, program_version
+from front3d.batch.identity import Identity, identity_of, program_version
 from front3d.case import Case
 from front3d.errors import CaseError, Front3DError
 from front3d.job import read_solid, run_case
@@ -85,6 +85,17 @@ def _evaluate(task: Task) -> Outcome:
     ready = finished(task.folder, identity.key)
     if ready is not None:  # by a worker that died before it could say so
         return replace(ready, earlier=False)
+    try:
+        return _made(task, start, identity)
+    except Exception:
+        # By a worker of a later run, while this one, given up, went on: its folder must stay.
+        ready = finished(task.folder, identity.key)
+        if ready is None:
+            raise
+        return replace(ready, earlier=False)
+
+
+def _made(task: Task, start: float, identity: Identity) -> Outcome:
     solid = _read(task.case, identity.files)
     with unfinished(task.folder) as part:
         evaluation, _ = run_case(task.case, part, pictures=task.pictures, solid=solid)

@@ -11,7 +11,7 @@ from typing import TYPE_CHECKING
 from front3d.caution import CAUTION
 from front3d.cli.batch_progress import duration, study_progress
 from front3d.cli.command import Command
-from front3d.cli.flags import add_evaluation_flags, check_case, flags_said
+from front3d.cli.flags import add_evaluation_flags, check_case, flags_said, require_constants
 from front3d.cli.progress import FIRST_RUN
 from front3d.cli.words import number
 from front3d.errors import CaseError, Front3DError
@@ -81,6 +81,7 @@ def run(arguments: argparse.Namespace) -> int:
     from front3d.output.files import results_folder
 
     members = members_of(arguments.cases, flags, check_case)
+    require_constants(arguments)  # before a case is done again with them, and its results go
     if arguments.each_step and any(m.case is not None and m.case.combine for m in members):
         raise CaseError(
             "found combinations of steps with --each-step, expected one of them; a combination "

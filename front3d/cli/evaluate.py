@@ -6,10 +6,10 @@ from typing import TYPE_CHECKING
 
 from front3d.case import Case
 from front3d.cli.command import Command
-from front3d.cli.flags import add_evaluation_flags, add_result, case_of
+from front3d.cli.flags import add_evaluation_flags, add_result, case_of, require_constants
 from front3d.cli.progress import progress_bar
 from front3d.cli.words import describe_evaluation, describe_written
-from front3d.errors import CaseError, ReadError
+from front3d.errors import ReadError
 from front3d.job import check_constants, run_case
 
 if TYPE_CHECKING:
@@ -39,7 +39,7 @@ def run(arguments: argparse.Namespace) -> int:
                 arguments.parser.error(
                     f"--{flag} is missing; a result file does not hold the elastic constants"
                 )
-    _check_constants(arguments)
+    require_constants(arguments)
     evaluation, written = evaluate_case(case, arguments.out, pictures=not arguments.no_pictures)
     print("\n".join([*describe_evaluation(evaluation), "", *describe_written(written)]))
     return 0
@@ -50,19 +50,6 @@ def _check_there(case: Case) -> None:
     for path in case.results:
         if not path.exists():
             raise ReadError(f"{path}: no such file; check the name and the directory")
-
-
-def _check_constants(arguments: argparse.Namespace) -> None:
-    """A constant out of range is a wrong call when a flag gave it."""
-    from front3d.solid import Material
-
-    try:
-        Material(
-            1.0 if arguments.young is None else arguments.young,
-            0.0 if arguments.poisson is None else arguments.poisson,
-        )
-    except CaseError as error:
-        arguments.parser.error(str(error))
 
 
 def evaluate_case(case: Case, out: Path, *, pictures: bool) -> "tuple[Evaluation, Written]":

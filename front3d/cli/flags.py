@@ -323,6 +323,19 @@ def _require(arguments: argparse.Namespace, flags: Case) -> None:
         arguments.parser.error(str(error))
 
 
+def require_constants(arguments: argparse.Namespace) -> None:
+    """An elastic constant out of range is a wrong call when a flag gave it."""
+    from front3d.solid import Material
+
+    try:
+        Material(
+            1.0 if arguments.young is None else arguments.young,
+            0.0 if arguments.poisson is None else arguments.poisson,
+        )
+    except CaseError as error:
+        arguments.parser.error(str(error))
+
+
 def check_case(case: Case) -> None:
     """CaseError where an option is out of range or a solution is not asked for as it should be."""
     _ = case.options, case.units

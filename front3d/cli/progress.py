@@ -1,4 +1,4 @@
-"""Progress on a terminal, on stderr; nothing in a pipe."""
+"""Progress on a terminal, on stderr; in a pipe only that kernels are being compiled."""
 
 import sys
 from collections.abc import Callable, Iterator
@@ -11,17 +11,18 @@ FIRST_RUN = (
 
 @contextmanager
 def progress_bar() -> Iterator[Callable[[str, float], None] | None]:
-    """A callback (stage, fraction done) that moves a bar on stderr; None when nobody watches.
+    """A callback (stage, fraction done) that moves a bar on stderr; None where it is no terminal.
 
-    While kernels are compiled the bar says which.
+    While kernels are compiled the bar says which; without one a line says once that they are.
     """
+    from front3d.jit import compilations
+
     if not sys.stderr.isatty():
-        yield None
+        with compilations(_once()):
+            yield None
         return
     from rich.console import Console
     from rich.progress import BarColumn, Progress, TextColumn, TimeElapsedColumn
-
-    from front3d.jit import compilations
 
     console = Console(stderr=True)
     stage, told = "starting", False
@@ -49,3 +50,16 @@ def progress_bar() -> Iterator[Callable[[str, float], None] | None]:
 
         with compilations(say):
             yield show
+
+
+def _once() -> Callable[[str | None], None]:
+    """Says at the first kernel that they are being compiled: a log is read as it grows, too."""
+    told = False
+
+    def say(kernel: str | None) -> None:
+        nonlocal told
+        if kernel and not told:
+            print(FIRST_RUN, file=sys.stderr, flush=True)
+            told = True
+
+    return say

@@ -1,6 +1,7 @@
 """What every method is given: one front of a cracked solid, with material, options and steps."""
 
 from dataclasses import dataclass, field
+from typing import TYPE_CHECKING
 
 import numpy as np
 
@@ -11,6 +12,9 @@ from front3d.crack.front import on_front_mask
 from front3d.loads import Loads
 from front3d.options import Options
 from front3d.solid import Material, Solid, Step
+
+if TYPE_CHECKING:
+    from front3d.methods.tube import Tube
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -29,6 +33,7 @@ class FrontContext:
     foreign : per block, the cells of another material; by default there are none
     cells : what surrounds the front
     on_front : (n_points,) which nodes stand for a node of the front
+    tubes : those built so far, by their reach; `build_tube` fills it
     """
 
     solid: Solid
@@ -44,6 +49,7 @@ class FrontContext:
     foreign: tuple[BoolArray, ...] = ()
     cells: FrontCells = field(init=False)
     on_front: BoolArray = field(init=False)
+    tubes: "dict[float, Tube]" = field(init=False, default_factory=dict)
 
     def __post_init__(self) -> None:
         same, near = self.model.same, self.model.near

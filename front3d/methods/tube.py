@@ -69,7 +69,16 @@ def layer_reaches(context: FrontContext, count: int) -> FloatArray:
 
 
 def build_tube(context: FrontContext, reach: float) -> Tube:
-    """Cells and nodes within `reach` of the front."""
+    """Cells and nodes within `reach` of the front; MethodError where there are none.
+
+    Built once for each reach: the integral and the balance of forces look at the same tube.
+    """
+    if reach not in context.tubes:
+        context.tubes[reach] = _tube(context, reach)
+    return context.tubes[reach]
+
+
+def _tube(context: FrontContext, reach: float) -> Tube:
     solid, front = context.solid, context.front
     near = context.model.near.reaching(reach)
     x = solid.points[near.nodes]

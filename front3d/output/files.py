@@ -8,6 +8,9 @@ from pathlib import Path
 
 from front3d.errors import Front3DError
 
+KINDS = ("chart", "through_thickness", "mode_mix", "steps", "stations")
+"""How the files of each kind of chart begin."""
+
 
 class WriteError(Front3DError):
     """A folder or file of results cannot be written."""

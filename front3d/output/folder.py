@@ -8,18 +8,12 @@ from functools import cache, partial
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
-from front3d.output.charts import KINDS, charts_of
-from front3d.output.charts.style import png, svg
-from front3d.output.files import file_names, prepare_folder, whole_set
+from front3d.output.files import KINDS, file_names, prepare_folder, whole_set
 from front3d.output.history import steps_csv
-from front3d.output.rendering import why_no_pictures
-from front3d.output.scene import scene_png
-from front3d.output.skin import skin_vtp
 from front3d.output.summary import summary_json
 from front3d.output.tables import front_vtp, points_csv
 from front3d.results import Evaluation
 from front3d.solid import Solid
-from front3d.steps import with_combinations
 
 if TYPE_CHECKING:
     from matplotlib.figure import Figure
@@ -63,15 +57,8 @@ def write_results(
         makers["steps.csv"] = lambda: steps_csv(evaluation)
     notes: list[str] = []
     if pictures and evaluation.fronts:
-        makers |= _charts(evaluation)
-        combine: Any = evaluation.options.get("combine") or ()
-        solid = with_combinations(solid, combine)
-        makers["skin.vtp"] = lambda: skin_vtp(solid, evaluation.fronts)
-        reason = why_no_pictures()
-        if reason is None:
-            makers |= _scenes(evaluation, solid)
-        else:
-            notes.append(reason)
+        drawn, notes = _pictures(evaluation, solid)
+        makers |= drawn
     files = (*makers, "summary.json")
     with whole_set() as write:
         for done, (name, make) in enumerate(makers.items()):
@@ -86,8 +73,29 @@ def write_results(
     return Written(folder, files, tuple(notes))
 
 
+def _pictures(
+    evaluation: Evaluation, solid: Solid
+) -> tuple[dict[str, Callable[[], bytes]], list[str]]:
+    """Charts, skin and scenes, and why there are no scenes; what draws is only loaded here."""
+    from front3d.output.rendering import why_no_pictures
+    from front3d.output.skin import skin_vtp
+    from front3d.steps import with_combinations
+
+    combine: Any = evaluation.options.get("combine") or ()
+    solid = with_combinations(solid, combine)
+    makers = _charts(evaluation)
+    makers["skin.vtp"] = lambda: skin_vtp(solid, evaluation.fronts)
+    reason = why_no_pictures()
+    if reason is not None:
+        return makers, [reason]
+    return makers | _scenes(evaluation, solid), []
+
+
 def _charts(evaluation: Evaluation) -> dict[str, Callable[[], bytes]]:
     """Each chart as PNG and as SVG, drawn once."""
+    from front3d.output.charts import charts_of
+    from front3d.output.charts.style import png, svg
+
     makers: dict[str, Callable[[], bytes]] = {}
     for name, draw in charts_of(evaluation).items():
         drawn = cache(draw)
@@ -102,6 +110,8 @@ def _saved(draw: "Callable[[], Figure]", save: "Callable[[Figure], bytes]") -> b
 
 def _scenes(evaluation: Evaluation, solid: Solid) -> dict[str, Callable[[], bytes]]:
     """`scene.png`, or one per step."""
+    from front3d.output.scene import scene_png
+
     steps = list(dict.fromkeys(front.step for front in evaluation.fronts))
     names = file_names(steps)
 

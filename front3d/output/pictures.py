@@ -6,9 +6,9 @@ from typing import Any
 import numpy as np
 
 from front3d.errors import CaseError, MethodError
-from front3d.output.charts import KINDS, charts_of
+from front3d.output.charts import charts_of
 from front3d.output.charts.style import png
-from front3d.output.files import write_whole
+from front3d.output.files import KINDS, write_whole
 from front3d.output.rendering import why_no_pictures
 from front3d.output.scene import scene_png
 from front3d.results import Evaluation

@@ -155,21 +155,42 @@ def companions(path: Path) -> list[Path]:
     """The files that an index file (.pvd, .pvtu, .xdmf, .case) names, as far as they exist.
 
     The numbers stand in them, so a hash of the index alone would not tell two results apart.
+    Whatever is wrong with the index is for its reader to say; here it names what can be found.
     """
+    found: dict[Path, Path] = {path.resolve(): path}
+    _gather(path, found)
+    return [*found.values()][1:]
+
+
+def _gather(path: Path, found: dict[Path, Path]) -> None:
+    """Add what `path` names, and what is named there, each file once, by its resolved path."""
     if path.suffix.lower() not in _INDEX_SUFFIXES:
-        return []
-    text = path.read_text(encoding="utf-8", errors="replace")
+        return
+    try:
+        text = path.read_text(encoding="utf-8", errors="replace")
+    except OSError:
+        return
     names = re.findall(r"""(?:file|Source)\s*=\s*["']([^"']+)["']""", text)
     names += re.findall(r"([^\s<>:\"']+\.(?:h5|hdf5|hdf|bin)):/", text)
     if path.suffix.lower() in (".case", ".encas"):
         names += re.findall(r"^[\w ]+:.*?(\S+)[ \t]*$", text, re.MULTILINE)
-    files = [
-        file
-        for name in dict.fromkeys(names)
-        for file in (sorted(path.parent.glob(name)) if "*" in name else [path.parent / name])
-        if file.is_file()
-    ]
-    return files + [inner for file in files for inner in companions(file)]
+    new = []
+    for name in dict.fromkeys(names):
+        for file in _files_called(name, path.parent):
+            if file.resolve() not in found:
+                found[file.resolve()] = file
+                new.append(file)
+    for file in new:
+        _gather(file, found)
+
+
+def _files_called(name: str, folder: Path) -> list[Path]:
+    """The files of a name, or of a pattern with *, in a folder; none where it cannot be one."""
+    try:
+        files = sorted(folder.glob(name)) if "*" in name else [folder / name]
+        return [file for file in files if file.is_file()]
+    except (OSError, ValueError, NotImplementedError):  # too long, or an absolute pattern
+        return []
 
 
 def plain(value: Any) -> Any:

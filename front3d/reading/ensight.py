@@ -52,7 +52,8 @@ def check_case(path: Path) -> None:
         if not name or (what != "model" and len(words.split()) < 2):
             raise ReadError(f"{path}: found the line {what}: without a name or a file name")
         pattern = name[0].strip('"')
-        files = sorted(path.parent.glob(pattern.replace("*", "?"))) if pattern else []
+        relative = pattern and not Path(pattern).is_absolute()
+        files = sorted(path.parent.glob(pattern.replace("*", "?"))) if relative else []
         if not files:
             raise ReadError(f"{path}: names {pattern}, which is not there; transfer it too")
         for file in files:

@@ -19,10 +19,6 @@ from front3d.results import Evaluation, FrontResult
 if TYPE_CHECKING:
     from matplotlib.figure import Figure
 
-KINDS = ("chart", "through_thickness", "mode_mix", "steps", "stations")
-"""How the files of each kind begin."""
-
-
 MOST_STEPS = 6
 """Steps up to which each has charts of its own; with more, only the one with the largest K has, and
 all share the chart of steps."""
