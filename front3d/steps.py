@@ -49,7 +49,7 @@ def choose(solid: Solid, names: Sequence[str] | None, combine: Sequence[str]) ->
     for name in (*wanted, *needed):
         if name not in by_name:
             raise CaseError(
-                f"{solid.source}: found no step {name!r}; the file has {', '.join(by_name)}"
+                f"{solid.source}: found no step {name!r}; the steps are {', '.join(by_name)}"
             )
     # The steps reported stand first.
     order = list(dict.fromkeys([*wanted, *needed]))

@@ -108,7 +108,7 @@ def test_options_are_taken_in_plain_words(penny):
 
 def test_steps_are_chosen_by_name(penny):
     assert list(evaluate(penny, steps=("shear", "pull"))) == ["shear", "pull"]
-    with pytest.raises(CaseError, match="found no step 'twist'; the file has pull, press, shear"):
+    with pytest.raises(CaseError, match="found no step 'twist'; the steps are pull, press, shear"):
         evaluate(penny, steps=("twist",))
     with pytest.raises(CaseError, match="no displacements"):
         evaluate(replace(penny, steps=()))

@@ -6,6 +6,7 @@ from front3d.arrays import FloatArray
 from front3d.crack.patches import Patch
 from front3d.methods.context import FrontContext
 from front3d.solid import Solid
+from front3d.units import percent
 
 OVERLAP = 0.01
 """Overlap of a node pair, in parts of the largest jump between the faces, that is spoken of."""
@@ -43,7 +44,7 @@ def face_warnings(
         depth = -float(opening.min())
         said.append(
             f"the crack faces overlap at {int(overlap.sum())} of {n} node pairs, by up to "
-            f"{depth:.3g} ({100 * depth / largest:.2g} % of their largest movement): in the part "
+            f"{depth:.3g} ({percent(depth / largest)} of their largest movement): in the part "
             "they would touch there; give the model contact between its faces, or look at this "
             "load together with one that opens the crack"
         )
