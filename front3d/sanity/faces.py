@@ -103,7 +103,8 @@ def stress_warnings(context: FrontContext, K: FloatArray) -> tuple[str, ...]:
     power = round(np.log10(found / expected)) if found > 0 else -np.inf
     return (
         f"the largest K is {found:.3g}, expected about {expected:.3g} from the stress "
-        f"{stress:g} that was given, times sqrt(pi a) with a = {area / front_length:.3g}: it is "
+        f"{stress:g} that was given, times sqrt(pi a) with a = {area / front_length:.3g} "
+        "(the area of the crack over the length of its front, its size to the order): it is "
         f"off by about 10^{power:g}; check the units of displacements, coordinates and Young's "
         "modulus",
     )
