@@ -147,8 +147,8 @@ class Case:
 def read_case(path: Path) -> Case:
     """Read a TOML case file; CaseError says which key is wrong and what was expected."""
     try:
-        with path.open("rb") as stream:
-            content = tomllib.load(stream)
+        # Some editors write a byte-order mark, which TOML does not know.
+        content = tomllib.loads(path.read_bytes().decode("utf-8-sig"))
     except OSError as error:
         raise CaseError(f"{path}: cannot be read ({error.strerror})") from error
     except (tomllib.TOMLDecodeError, UnicodeDecodeError) as error:

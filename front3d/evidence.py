@@ -18,6 +18,7 @@ from front3d.crack.front import FREE_SURFACE, Front
 from front3d.methods.closure import UNBALANCED
 from front3d.results import MethodResult, energy_release_rate, free_surface_layer
 from front3d.solid import Constants
+from front3d.units import percent
 
 REPORTED = "interaction"
 """The method whose K is reported where nothing speaks against it."""
@@ -100,7 +101,7 @@ def weigh(
         worst = float(gaps[REPORTED, name][far].max()) / largest
         others = {pair: float(gap[far].max()) / largest for pair, gap in gaps.items()}
         warnings.append(
-            f"{name} and interaction differ by up to {100 * worst:.2g} % of the largest K at "
+            f"{name} and interaction differ by up to {percent(worst)} of the largest K at "
             f"{int(far.sum())} of {len(K)} stations, where {' and '.join(cells.kinds)} cells at "
             f"the front justify {100 * allowed:.0f} %: "
             + _verdict(name, others, cells, methods, restless[far], material)

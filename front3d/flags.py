@@ -8,6 +8,7 @@ from front3d.crack.front import FREE_SURFACE, Front
 from front3d.evidence import J_TOLERANCE, REPORTED, RING_TOLERANCE, Evidence
 from front3d.results import MethodResult, energy_release_rate
 from front3d.solid import Constants
+from front3d.units import percent
 
 OVERLAP = 0.01
 """Negative K_I, in parts of the front's largest K, below which scatter may be the reason and
@@ -61,7 +62,7 @@ def front_warnings(
     apart = np.where(own, np.abs(interaction.columns["J_interaction"] - G), 0.0)
     if (apart > J_TOLERANCE * G.max()).any():
         warnings.append(
-            f"J and G from K differ by up to {100 * apart.max() / G.max():.2g} % of the largest G "
+            f"J and G from K differ by up to {percent(apart.max() / G.max())} of the largest G "
             f"at {int((apart > J_TOLERANCE * G.max()).sum())} stations: Poisson's ratio may not be "
             "that of the analysis, a load may be missing, or the mesh is too coarse around the "
             "front"
@@ -69,8 +70,8 @@ def front_warnings(
     spread = interaction.columns["ring_spread"]
     if largest > 0 and float(spread[inside].max(initial=0.0)) > RING_TOLERANCE * largest:
         warnings.append(
-            f"K differs between rings by up to {100 * float(spread[inside].max()) / largest:.2g} "
-            "% of the largest K: a load may be missing (on the crack faces, on a surface, in the "
+            f"K differs between rings by up to {percent(float(spread[inside].max()) / largest)} "
+            "of the largest K: a load may be missing (on the crack faces, on a surface, in the "
             "body), or the mesh around the front or the radii do not suit"
         )
     return tuple(warnings)

@@ -142,6 +142,10 @@ class Options:
 
     def __post_init__(self) -> None:
         parse_all(tuple(self.combine))
+        if len(self.front_line) == 1:
+            raise CaseError(
+                f"front line: found one point, {self.front_line[0]}, expected two or more"
+            )
         if self.stations is not None and (
             not self.stations or any(not 0.0 <= place <= 1.0 for place in self.stations)
         ):

@@ -11,6 +11,8 @@ from front3d.errors import CaseError
 from front3d.loads import Loads
 from front3d.solid import Solid, Step
 
+_AS_A_SUM = "; in a combination blanks stand around a minus, and brackets are not read"
+
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Chosen:
@@ -49,7 +51,8 @@ def choose(solid: Solid, names: Sequence[str] | None, combine: Sequence[str]) ->
     for name in (*wanted, *needed):
         if name not in by_name:
             raise CaseError(
-                f"{solid.source}: found no step {name!r}; the file has {', '.join(by_name)}"
+                f"{solid.source}: found no step {name!r}; the steps are {', '.join(by_name)}"
+                + (_AS_A_SUM if name in needed and set(name) & set("()[]-/") else "")
             )
     # The steps reported stand first.
     order = list(dict.fromkeys([*wanted, *needed]))

@@ -1,4 +1,4 @@
-"""Units of length and stress by name, only as many as reports need.
+"""Units of length and stress by name, only as many as reports need, and per cent.
 
 A model is in its user's own consistent set; naming the set lets K be given in MPa sqrt(m) too.
 """
@@ -61,3 +61,9 @@ class Units:
         if not self.named:
             return None
         return STRESSES[self.stress] * sqrt(LENGTHS[self.length])
+
+
+def percent(part: float) -> str:
+    """A part of one in per cent for a sentence: two digits, and no exponent where it is large."""
+    value = 100 * part
+    return f"{value:.2g} %" if abs(value) < 99.5 else f"{value:.0f} %"

@@ -143,6 +143,17 @@ def test_what_is_wrong_is_named(tmp_path: Path, text: str, words: list[str]) -> 
         assert word in str(caught.value)
 
 
+def test_a_case_saved_with_a_byte_order_mark_and_carriage_returns_is_read(tmp_path: Path) -> None:
+    path = tmp_path / "case.toml"
+    path.write_bytes(FULL.replace("\n", "\r\n").encode("utf-8-sig"))
+    assert read_case(path) == read_case(write(tmp_path, FULL))
+
+
+def test_a_front_line_of_one_point_is_refused() -> None:
+    with pytest.raises(CaseError, match="front line: found one point"):
+        Options(front_line=((0.0, 0.0, 0.0),))
+
+
 def test_a_missing_file_is_a_case_error(tmp_path: Path) -> None:
     with pytest.raises(CaseError, match="cannot be read"):
         read_case(tmp_path / "none.toml")

@@ -276,6 +276,15 @@ def test_no_error_shows_a_traceback(
     assert ("Traceback" in debugged) == bool(message)
 
 
+def test_a_wrong_call_is_answered_in_two_lines(call: Call, result: Path) -> None:
+    """The list of all flags would hide what is wrong."""
+    for words in (("evaluate", str(result), "--young", "abc"), ("evaluate", str(result)), ("x",)):
+        code, said, complained = call(*words)
+        assert (code, said) == (2, "")
+        assert "error: " in complained.splitlines()[0]
+        assert complained.count("\n") == 2 and "--help" in complained
+
+
 # --- terminals and pipes ---------------------------------------------------------------------
 
 

@@ -108,8 +108,11 @@ def test_options_are_taken_in_plain_words(penny):
 
 def test_steps_are_chosen_by_name(penny):
     assert list(evaluate(penny, steps=("shear", "pull"))) == ["shear", "pull"]
-    with pytest.raises(CaseError, match="found no step 'twist'; the file has pull, press, shear"):
+    with pytest.raises(CaseError, match="found no step 'twist'; the steps are pull, press, shear"):
         evaluate(penny, steps=("twist",))
+    for sum_ in ("both = pull-shear", "both = 2*(pull + shear)"):
+        with pytest.raises(CaseError, match="blanks stand around a minus, and brackets are not"):
+            evaluate(penny, combine=(sum_,))
     with pytest.raises(CaseError, match="no displacements"):
         evaluate(replace(penny, steps=()))
 

@@ -18,7 +18,7 @@ from front3d.output.summary import companions, summary_json
 from front3d.output.tables import FIRST_COLUMNS, front_vtp, points_csv
 from front3d.output.trust import agreement
 from front3d.results import CAUTION, Evaluation
-from front3d.units import Units
+from front3d.units import Units, percent
 from tests.output_models import elliptic_front, evaluation_of
 
 OPEN = elliptic_front(1.6, 1.2, closed=False, flags={0: "free surface, 1st"})
@@ -156,3 +156,8 @@ def test_places_far_from_the_origin_keep_their_digits() -> None:
 
 def test_nought_is_the_same_on_the_terminal_and_in_pictures() -> None:
     assert words.NOUGHT == formats.NOUGHT
+
+
+def test_a_part_in_per_cent_has_no_exponent_where_it_is_large() -> None:
+    said = [percent(part) for part in (0.0123, 0.994, 0.996, 1.8, 7e4)]
+    assert said == ["1.2 %", "99 %", "100 %", "180 %", "7000000 %"]

@@ -205,3 +205,9 @@ def test_stations_are_all_corners_by_default(penny):
     front = front3d.find_fronts(penny).fronts[0][0]
     np.testing.assert_array_equal(front.stations, np.arange(len(front.corners)))
     assert len(replace(front, stations=np.array([3, 4])).stations) == 2
+
+
+def test_a_file_of_a_polyline_may_have_commas_and_remarks(tmp_path):
+    path = tmp_path / "line.txt"
+    path.write_text("# x, y, z\n0, 0, 1\n0 0 2  # the end\n")
+    assert line(str(path)) == ((0.0, 0.0, 1.0), (0.0, 0.0, 2.0))

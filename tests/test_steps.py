@@ -161,7 +161,7 @@ def test_steps_are_chosen_and_the_crack_is_found_once(
     assert list(by_step(penny, steps=["a"], **how)) == ["a", "b"]
     assert len(calls) == 2  # once a run
     for wrong, words in (
-        ({"combine": ["a = tension + torsion"]}, "no step 'torsion'; the file has tension, shear"),
+        ({"combine": ["a = tension + torsion"]}, "no step 'torsion'; the steps are tension, shear"),
         ({"combine": ["shear = 2*tension"]}, "has a step of this name"),
         ({"steps": ["torsion"]}, "no step 'torsion'"),
         ({"stations": [0.5, 1.5]}, "from 0 to 1"),

@@ -153,8 +153,11 @@ def test_a_symmetry_plane_held_by_springs_can_be_named(tmp_path):
     soft[on_plane, 0] += 1e-3 * soft[on_plane, 2]
     solid = replace(sample.solid, steps=(replace(step, displacement=soft),))
     assert front3d.find_fronts(solid).fronts[0][0].ends == ("free surface", "free surface")
-    named = front3d.find_fronts(solid, symmetry_planes="x=0").fronts[0][0].ends
-    assert sorted(named) == ["free surface", "symmetry plane"]
+    model = front3d.find_fronts(solid, symmetry_planes="x=0")
+    assert sorted(model.fronts[0][0].ends) == ["free surface", "symmetry plane"]
+    assert model.warnings == ()
+    (said,) = front3d.find_fronts(solid, symmetry_planes=("x=0", "y=3")).warnings
+    assert "symmetry plane y=3: no front ends" in said
     case = tmp_path / "half.toml"
     case.write_text('result = "half.vtu"\n[options]\nsymmetry_planes = ["x=0"]\n')
     assert read_case(case).options.symmetry_planes == (Plane((1.0, 0.0, 0.0), 0.0),)

@@ -80,9 +80,13 @@ def line(text: str) -> tuple[Vector, ...]:
 
 def _words_of(path: Path) -> list[str]:
     try:
-        return path.read_text(encoding="utf-8").replace(",", " ").split()
-    except (OSError, UnicodeDecodeError) as error:
-        raise argparse.ArgumentTypeError(f"{path}: cannot be read ({error})") from None
+        lines = path.read_text(encoding="utf-8-sig").replace(",", " ").splitlines()
+    except OSError as error:
+        why = error.strerror or error
+        raise argparse.ArgumentTypeError(f"{path}: cannot be read ({why})") from None
+    except UnicodeDecodeError:
+        raise argparse.ArgumentTypeError(f"{path}: found binary data, expected numbers") from None
+    return [word for text in lines for word in text.partition("#")[0].split()]
 
 
 class _Compare(argparse.Action):

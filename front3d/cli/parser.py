@@ -2,6 +2,7 @@
 
 import argparse
 from collections.abc import Sequence
+from typing import NoReturn
 
 from front3d import __version__
 from front3d.cli.batch import COMMAND as BATCH
@@ -27,16 +28,23 @@ _EPILOG = (
 )
 
 
+class _Parser(argparse.ArgumentParser):
+    """A parser whose errors are one sentence: the list of all flags would hide it."""
+
+    def error(self, message: str) -> NoReturn:
+        self.exit(2, f"{self.prog}: error: {message}\nall flags: {self.prog} --help\n")
+
+
 def build_parser(words: Sequence[str]) -> argparse.ArgumentParser:
     """The parser for a call of `words`; the samples' own flags only where `sample` is called."""
-    parser = argparse.ArgumentParser(
+    parser = _Parser(
         prog="front3d",
         description=_DESCRIPTION,
         epilog=_EPILOG,
         allow_abbrev=False,
     )
     parser.add_argument("--version", action="version", version=f"front3d {__version__}")
-    common = argparse.ArgumentParser(add_help=False, allow_abbrev=False)
+    common = _Parser(add_help=False, allow_abbrev=False)
     common.add_argument("--debug", action="store_true", help="show the traceback of an error")
     commands = parser.add_subparsers(title="commands", metavar="COMMAND", required=True)
     for command in COMMANDS:

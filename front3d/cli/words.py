@@ -4,6 +4,8 @@ from collections.abc import Mapping, Sequence
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
+from front3d.units import percent
+
 if TYPE_CHECKING:
     from front3d.output.folder import Written
     from front3d.results import Comparison, Evaluation, FrontResult
@@ -15,10 +17,6 @@ NOUGHT = 1e-4
 
 def number(value: float, digits: int = 4) -> str:
     return f"{value:.{digits}g}"
-
-
-def percent(value: float) -> str:
-    return f"{100 * value:.2g} %"
 
 
 def table(rows: Sequence[Mapping[str, Any]]) -> list[str]:

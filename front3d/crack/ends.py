@@ -39,6 +39,29 @@ def classify_ends(
     return dataclasses.replace(front, ends=ends)
 
 
+def unused_planes(
+    solid: Solid, fronts_of: tuple[tuple[Front, ...], ...], named: tuple[Plane, ...]
+) -> tuple[str, ...]:
+    """A warning for each symmetry plane that the user named and on which no front ends."""
+    fronts = [front for fronts in fronts_of for front in fronts if not front.closed]
+    size = float(np.ptp(solid.points, axis=0).max())
+    nodes = [
+        node
+        for front in fronts
+        for node, end in zip((front.edges[0, 0], front.edges[-1, 1]), front.ends, strict=True)
+        if end == SYMMETRY_PLANE
+    ]
+    ends = solid.points[nodes]
+    return tuple(
+        f"symmetry plane {plane}: no front ends on a flat face in it, so that it has no effect; "
+        "expected the place of an end of a front"
+        for plane in named
+        if not (
+            np.abs(ends @ np.asarray(plane.normal) - plane.offset) <= _PLANE_TOLERANCE * size
+        ).any()
+    )
+
+
 def end_faces(
     solid: Solid,
     front: Front,

@@ -6,7 +6,7 @@ import numpy as np
 
 from front3d.crack.coincidence import Coincidence, find_coincidence
 from front3d.crack.edges import FrontEdges, full_model_edges, half_model_edges, order_edges
-from front3d.crack.ends import classify_ends
+from front3d.crack.ends import classify_ends, unused_planes
 from front3d.crack.facetable import FaceTable
 from front3d.crack.front import Front, build_front
 from front3d.crack.half import find_half_patch
@@ -92,7 +92,10 @@ def find_cracks(solid: Solid, options: Options | None = None) -> CrackModel:
     notes = (*_notes_on_faces(chosen), *_notes_on_pieces(fronts_of))
     members = same.place[np.concatenate([patch.upper.corners.ravel() for patch in chosen])]
     left_out = unmatched[np.asarray(np.isin(same.place[unmatched.corners], members).any(axis=1))]
-    warnings = (_cut_differently(left_out),) if len(left_out) else ()
+    warnings = (
+        *((_cut_differently(left_out),) if len(left_out) else ()),
+        *unused_planes(solid, fronts_of, options.symmetry_planes),
+    )
     near = _near(solid, chosen, fronts_of)
     return CrackModel(same, chosen, fronts_of, unopened, near, notes, warnings)
 
@@ -122,7 +125,9 @@ def _half_model(
     fronts = _all_fronts(solid, (patch,), [edges], same, options)
     notes = () if options.crack_plane is not None else (found_plane_note(patch, ligament),)
     near = _near(solid, (patch,), fronts)
-    return CrackModel(same, (patch,), fronts, unopened, near, (*notes, *_notes_on_pieces(fronts)))
+    notes = (*notes, *_notes_on_pieces(fronts))
+    warnings = unused_planes(solid, fronts, options.symmetry_planes)
+    return CrackModel(same, (patch,), fronts, unopened, near, notes, warnings)
 
 
 def _all_fronts(

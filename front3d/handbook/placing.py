@@ -12,6 +12,7 @@ from scipy.optimize import least_squares
 
 from front3d.arrays import BoolArray, FloatArray
 from front3d.errors import CaseError
+from front3d.units import percent
 
 FREE, SYMMETRY = "free surface", "symmetry plane"
 
@@ -82,7 +83,7 @@ def place_straight(shape: FrontShape) -> Placed:
     if away > TOLERANCE * shape.length:
         raise FrontMismatch(
             f"the solution is of a straight front, this one leaves its chord by {away:.3g} "
-            f"({100 * away / shape.length:.2g} % of its length, allowed {100 * TOLERANCE:g} %)"
+            f"({percent(away / shape.length)} of its length, allowed {100 * TOLERANCE:g} %)"
         )
     judged = np.ones(len(shape.s), dtype=bool)
     judged[list(shape.free)] = False

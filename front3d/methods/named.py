@@ -47,8 +47,8 @@ def at_cells(
 def _missing(solid: Solid, step: Step, name: str) -> CaseError:
     there = ", ".join([*step.point_arrays, *step.cell_arrays]) or "none"
     return CaseError(
-        f"{solid.source}: step {step.name} has no array {name!r} by point or by cell; kept were "
-        f"{there} (front3d.load(..., arrays=[...]) keeps what the file holds)"
+        f"{solid.source}: step {step.name} has no array {name!r} by point or by cell; check the "
+        f"name and its capitals (read were: {there}; from Python, load(.., arrays=[..]) reads them)"
     )
 
 

@@ -76,7 +76,7 @@ def load(
                 named = finder.steps(need_displacement)
             else:
                 named = read_nodal_csv(Path(displacement_file), raw, column)
-                finder.notes = [f"displacements taken from {Path(displacement_file).name}"]
+                finder.notes = []
             kept = finder.kept(len(named))
             named = [
                 replace(step, point_arrays=of_step.points)

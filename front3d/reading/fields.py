@@ -32,7 +32,10 @@ _NOT_A_CASE = frozenset(
     }
 )  # fmt: skip
 _COMPONENTS = (("x", "y", "z"), ("1", "2", "3"), ("0", "1", "2"))
-_HOW = "choose it by name (displacement=NAME), three scalars by NAME_X,NAME_Y,NAME_Z"
+_HOW = (
+    "choose it by name (--displacement NAME; from Python displacement=NAME), three scalars by "
+    "NAME_X,NAME_Y,NAME_Z"
+)
 
 
 def plain_name(name: str) -> str:

@@ -41,6 +41,14 @@ def read_nodal_csv(path: Path, raw: RawModel, wanted: str | None) -> list[Step]:
         raise ReadError(f"{path}: {error}") from None
 
 
+def _all_numbers(words: list[str]) -> bool:
+    try:
+        np.array(words, float)
+    except ValueError:
+        return False
+    return True
+
+
 def _table(path: Path) -> dict[str, FloatArray]:
     try:
         text = path.read_text(encoding="utf-8-sig")
@@ -55,6 +63,8 @@ def _table(path: Path) -> dict[str, FloatArray]:
         raise ReadError(f"the file is empty, {_HOW}")
     mark = next((m for m in ",;\t" if m in lines[0]), None)
     names = [plain_name(word) for word in lines[0].split(mark)]
+    if _all_numbers(lines[0].split(mark)):
+        raise ReadError(f"found numbers in its first line, {_HOW}")
     if len(set(names)) < len(names):
         raise ReadError(f"found the columns {', '.join(names)}, expected each name once")
     if len(lines) == 1:

@@ -26,6 +26,7 @@ from front3d.methods.state_kernels import INITIAL, RATIO
 from front3d.methods.tube import Tube, build_tube
 from front3d.results import MethodResult
 from front3d.sanity.internal_forces import add_cells, empty_sums
+from front3d.units import percent
 
 OUTLIER = 100.0
 """Force left at a node, in parts of the median of those that stand like it, above which it is out
@@ -281,7 +282,7 @@ def _sentence(
     node = int(forces.tube.nodes[forces.first[worst]])
     x, y, z = context.solid.points[node]
     effect = (
-        f"putting them in balance changes K by {100 * change:.2g} % of its largest value, about as "
+        f"putting them in balance changes K by {percent(change)} of its largest value, about as "
         "far as it may be off"
         if change is not None
         else "K cannot be relied on"

@@ -9,7 +9,7 @@ from front3d.crack.model import CrackModel
 from front3d.crack.patches import Patch
 from front3d.errors import CaseError
 from front3d.solid import Material, Solid, Step
-from front3d.units import STRESSES, Units
+from front3d.units import STRESSES, Units, percent
 
 LIKE_COORDINATES = 0.1
 """Difference of the mean gradient of a displacement from one, below which it is a position."""
@@ -81,7 +81,7 @@ def displacement_warnings(
                 )
             if strain > MAX_STRAIN:
                 said.append(
-                    f"{where}the cells around it are strained by {100 * strain:.3g} % on the "
+                    f"{where}the cells around it are strained by {percent(strain)} on the "
                     f"average, expected less than {100 * MAX_STRAIN:g} %: check that "
                     "displacements and coordinates are in one unit (millimetres, metres) and "
                     "that the displacements are not magnified for display"

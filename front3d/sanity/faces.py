@@ -6,6 +6,7 @@ from front3d.arrays import FloatArray
 from front3d.crack.patches import Patch
 from front3d.methods.context import FrontContext
 from front3d.solid import Solid
+from front3d.units import percent
 
 OVERLAP = 0.01
 """Overlap of a node pair, in parts of the largest jump between the faces, that is spoken of."""
@@ -43,7 +44,7 @@ def face_warnings(
         depth = -float(opening.min())
         said.append(
             f"the crack faces overlap at {int(overlap.sum())} of {n} node pairs, by up to "
-            f"{depth:.3g} ({100 * depth / largest:.2g} % of their largest movement): in the part "
+            f"{depth:.3g} ({percent(depth / largest)} of their largest movement): in the part "
             "they would touch there; give the model contact between its faces, or look at this "
             "load together with one that opens the crack"
         )
@@ -102,7 +103,8 @@ def stress_warnings(context: FrontContext, K: FloatArray) -> tuple[str, ...]:
     power = round(np.log10(found / expected)) if found > 0 else -np.inf
     return (
         f"the largest K is {found:.3g}, expected about {expected:.3g} from the stress "
-        f"{stress:g} that was given, times sqrt(pi a) with a = {area / front_length:.3g}: it is "
+        f"{stress:g} that was given, times sqrt(pi a) with a = {area / front_length:.3g} "
+        "(the area of the crack over the length of its front, its size to the order): it is "
         f"off by about 10^{power:g}; check the units of displacements, coordinates and Young's "
         "modulus",
     )

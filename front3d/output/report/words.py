@@ -6,6 +6,7 @@ import numpy as np
 
 from front3d.output.report.page import join, tag
 from front3d.units import Units
+from front3d.units import percent as in_percent
 
 NAMES = tuple(join(["K", tag("sub", mode)]) for mode in ("I", "II", "III"))
 _DIGITS = 4
@@ -30,7 +31,7 @@ def percent(value: float | None) -> str:
         return "no value"
     if value < 1e-5:
         return "below 0.001\N{NO-BREAK SPACE}%"
-    return f"{100 * value:.2g}\N{NO-BREAK SPACE}%"
+    return in_percent(value).replace(" ", "\N{NO-BREAK SPACE}")
 
 
 def with_units(K: float, units: Units) -> str:
