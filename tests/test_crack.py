@@ -172,9 +172,12 @@ def test_a_notch_with_an_open_root_is_refused_with_its_width(width):
 
 def test_faces_that_never_part_are_candidates_only():
     solid = bricks((4, 4, 2), split=[(2, 2)])
-    still = replace(solid, steps=(Step("still", np.zeros_like(solid.points)),))
+    still = replace(solid, steps=(Step("pushed", np.ones_like(solid.points)),))
     with pytest.raises(CrackError, match="neither part nor slide"):
         front3d.find_fronts(still)
+    unloaded = replace(solid, steps=(Step("still", np.zeros_like(solid.points)),))
+    with pytest.raises(CrackError, match="zero everywhere"):
+        front3d.find_fronts(unloaded)
     assert front3d.find_fronts(still, unopened=True).n_fronts == 1
 
 

@@ -77,6 +77,11 @@ def find_cracks(solid: Solid, options: Options | None = None) -> CrackModel:
             + (f"; {_cut_differently(unmatched)}" if len(unmatched) else "")
         )
     if not chosen:
+        if solid.steps and not any(step.displacement.any() for step in solid.steps):
+            raise CrackError(
+                f"{solid.source}: found displacements that are zero everywhere, expected those of "
+                "a loaded solid; check which array and step were written"
+            )
         raise CrackError(
             f"{solid.source}: found {len(found)} pair(s) of coincident faces, but their sides "
             "neither part nor slide in any step, so they look like unmerged parts or tied "
