@@ -199,6 +199,12 @@ def test_a_flat_cell_at_the_front_is_named():
     assert "hexahedron cell" in text and "expected 2 or more" in text
 
 
+def test_linear_tetrahedra_at_the_front_are_warned_of():
+    """Their K does not converge: benchmarks/convergence.py."""
+    assert "10-node tetrahedra" in only(of_cells(tip_cells("tetra")[1]))
+    assert of_cells(tip_cells("hexahedron")[1]) == []
+
+
 def test_too_few_cells_around_the_front_are_counted():
     cells = FrontCells(("hexahedron",), True, False, False, 3, 60.0, ("hexahedron", 0), 5.0)
     assert "found 3 cells around an edge of the front, expected 4" in only(
