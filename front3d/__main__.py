@@ -2,7 +2,7 @@
 
 import sys
 
-from front3d.cli import main
+from front3d.cli import process
 
 if __name__ == "__main__":
-    sys.exit(main())
+    sys.exit(process())
