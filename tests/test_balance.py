@@ -10,13 +10,13 @@ import front3d
 import front3d.samples.elasticity
 from front3d.crack import find_cracks
 from front3d.methods import METHODS, FrontContext
+from front3d.methods.internal_forces import add_cells, empty_sums
 from front3d.methods.tube import build_tube
 from front3d.options import Options
 from front3d.samples import build
 from front3d.samples.elasticity import stiffness
 from front3d.sanity.balance import balance_warnings, forces_left, tube_of
 from front3d.sanity.conformity import conformity_warnings
-from front3d.sanity.internal_forces import add_cells, empty_sums
 from front3d.solid import CellBlock, Material, Solid, Step
 from tests.meshes.held import near_tip_block
 from tests.meshes.structured import ALL_KINDS, curved, impose, straight

@@ -28,10 +28,10 @@ from front3d.elements import FACES
 from front3d.errors import MeshError, MethodError
 from front3d.methods.context import FrontContext
 from front3d.methods.face_loads import array_load, face_pressure, loaded_faces
-from front3d.methods.loading import as_tensors, nodal_state
-from front3d.methods.state_kernels import BODY, INITIAL, LAME, RATIO, SHEAR
+from front3d.methods.internal_forces import add_cells, empty_sums
+from front3d.methods.loading import nodal_state
 from front3d.methods.tube import project
-from front3d.solid import CellBlock, Solid
+from front3d.solid import Solid
 
 FLAT = 0.05
 """Largest rise of a face out of the crack plane, in parts of its reach from the front: a curved
@@ -212,35 +212,26 @@ def cell_forces(context: FrontContext, cells: tuple[IntArray, ...]) -> FloatArra
     """(steps, n_points, 3) internal forces of chosen cells, less the body force in them:
     int (sigma_ij dN/dx_j - b_i N) dV.
     """
-    solid, same, material = context.solid, context.model.same, context.material
-    out = np.zeros(context.displacement.shape)  # unlike zeros_like, it does not touch them all
+    solid, same, u = context.solid, context.model.same, context.displacement
+    out = np.zeros(u.shape)  # unlike zeros_like, it does not touch them all
     for block, numbers in zip(solid.blocks, cells, strict=True):
         if not len(numbers):
             continue
-        gradient, volume = _gradients(solid, block, numbers)
-        shape = block.element.values(block.element.quadrature(RULE)[0])
-        nodes = block.nodes[numbers]
-        unique, row = np.unique(nodes, return_inverse=True)
-        state = nodal_state(context, unique, project(context.front, solid.points[unique])[0])
-        lame: FloatArray | float = material.lame
-        shear: FloatArray | float = material.shear_modulus
-        for step, u in enumerate(context.displacement):
-            # Relative to one node of the cell: a rigid shift must not cost digits.
-            moved = u[nodes] - u[nodes[:, :1]]
-            slope = np.einsum("cni,cqnj->cqij", moved, gradient, optimize=True)
-            strain = (slope + slope.swapaxes(2, 3)) / 2.0
-            body = None
-            initial: FloatArray | float = 0.0
-            if len(state):
-                here = np.einsum("qn,cnm->cqm", shape, state[step][row.reshape(nodes.shape)])
-                lame, shear = here[..., LAME, None, None], here[..., SHEAR, None, None]
-                initial, body = as_tensors(here[..., INITIAL:BODY]), here[..., BODY:RATIO]
-            trace = np.trace(strain, axis1=2, axis2=3)[..., None, None]
-            stress = 2.0 * shear * strain + lame * trace * np.eye(3) + initial
-            f = np.einsum("cqij,cqnj,cq->cni", stress, gradient, volume, optimize=True)
-            if body is not None:
-                f -= np.einsum("cqi,qn,cq->cni", body, shape, volume, optimize=True)
-            np.add.at(out[step], same.entity[nodes], f)
+        nodes, local = np.unique(block.nodes[numbers], return_inverse=True)
+        points = solid.points[nodes]
+        state = nodal_state(context, nodes, project(context.front, points)[0])
+        entity, rows = np.unique(same.entity[nodes], return_inverse=True)
+        sums = empty_sums(len(u), len(entity))
+        local = local.reshape(len(numbers), -1)
+        inside_out = add_cells(
+            sums, block.element, local, rows, points, u[:, nodes], state, context.material
+        )
+        if len(inside_out):
+            raise MeshError(
+                f"{solid.source}: {block.kind} cell {numbers[inside_out[0]]} at the front: the "
+                "Jacobian determinant is not positive; check its node order and mid-side nodes"
+            )
+        out[:, entity] += sums.force
     return out
 
 
@@ -249,34 +240,15 @@ def volumes(solid: Solid, cells: tuple[IntArray, ...], same: Coincidence) -> Flo
     out = np.zeros(len(solid.points))
     for block, numbers in zip(solid.blocks, cells, strict=True):
         if len(numbers):
-            _, weights = block.element.quadrature(RULE)
-            volume = _jacobians(solid, block, numbers)[1] @ weights
+            xi, weights = block.element.quadrature(RULE)
+            x = solid.points[block.nodes[numbers]]
+            jacobian = np.einsum(
+                "cni,qnd->cqid", x - x[:, :1], block.element.gradients(xi), optimize=True
+            )
+            volume = np.linalg.det(jacobian) @ weights
             nodes = same.entity[block.nodes[numbers]]
             np.add.at(out, nodes, np.broadcast_to(volume[:, None], nodes.shape))
     return out
-
-
-def _gradients(solid: Solid, block: CellBlock, numbers: IntArray) -> tuple[FloatArray, FloatArray]:
-    """dN/dx, (cells, q, nodes, 3), and weights times Jacobian, (cells, q)."""
-    xi, weights = block.element.quadrature(RULE)
-    jacobian, det = _jacobians(solid, block, numbers)
-    gradients = np.matmul(block.element.gradients(xi)[None], np.linalg.inv(jacobian))
-    return gradients, det * weights
-
-
-def _jacobians(solid: Solid, block: CellBlock, numbers: IntArray) -> tuple[FloatArray, FloatArray]:
-    """dx_i/dxi_d, (cells, q, 3, 3), and its determinant, (cells, q)."""
-    reference = block.element.gradients(block.element.quadrature(RULE)[0])
-    x = solid.points[block.nodes[numbers]]
-    jacobian = np.einsum("cni,qnd->cqid", x - x[:, :1], reference, optimize=True)
-    det = np.linalg.det(jacobian)
-    if (det <= 0.0).any():
-        cell = numbers[np.argwhere(det <= 0.0)[0, 0]]
-        raise MeshError(
-            f"{solid.source}: {block.kind} cell {cell} at the front: the Jacobian determinant is "
-            "not positive; check its node order and mid-side nodes"
-        )
-    return jacobian, det
 
 
 def face_nodes(solid: Solid, faces: FaceTable) -> list[tuple[str, IntArray]]:

@@ -154,8 +154,3 @@ def _six(values: FloatArray) -> FloatArray:
     if values.shape[1] == 6:
         return values
     return np.stack([0.5 * (values[:, 3 * i + j] + values[:, 3 * j + i]) for i, j in _SYMMETRIC], 1)
-
-
-def as_tensors(six: FloatArray) -> FloatArray:
-    """(..., 3, 3) from (..., 6)."""
-    return six[..., [[0, 3, 5], [3, 1, 4], [5, 4, 2]]]

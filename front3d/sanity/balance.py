@@ -21,11 +21,11 @@ from front3d.errors import Front3DError
 from front3d.methods.closure_forces import face_forces
 from front3d.methods.context import FrontContext
 from front3d.methods.face_loads import loaded_faces
+from front3d.methods.internal_forces import add_cells, empty_sums
 from front3d.methods.loading import nodal_state
 from front3d.methods.state_kernels import INITIAL, RATIO
 from front3d.methods.tube import Tube, build_tube
 from front3d.results import MethodResult
-from front3d.sanity.internal_forces import add_cells, empty_sums
 from front3d.units import percent
 
 OUTLIER = 100.0

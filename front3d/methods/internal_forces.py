@@ -60,11 +60,12 @@ def add_cells(
     displacement: FloatArray,
     state: FloatArray,
     material: Material,
-) -> None:
+) -> IntArray:
     """Add cells, (n, nodes) rows of `points` (m, 3) and of displacement (steps, m, 3).
 
     rows : (m,) the row of the sums that each point counts for
     state : (steps, m, columns), see `methods.state_kernels`, or empty
+    Returns which cells are inside out at a Gauss point, which counts for nothing.
     """
     xi, weights = element.quadrature(RULE)
     values, gradients = element.values(xi), element.gradients(xi)
@@ -75,6 +76,7 @@ def add_cells(
     squares = by_axis**2
     modulus = material.lame + 2.0 * material.shear_modulus
     size, n_steps = len(sums.stiffness), len(displacement)
+    inside_out = [np.zeros(0, np.int64)]
     for first in range(0, len(cells), _BATCH):
         batch = cells[first : first + _BATCH].T
         given = np.empty((5 + 3 * n_steps, *batch.shape))
@@ -82,6 +84,7 @@ def add_cells(
             part = batch[:, start : start + _CHUNK]
             out = given[:, :, start : start + _CHUNK]
             inverse, volume = _geometry(_columns(points, part), by_axis, weights)
+            inside_out.append(first + start + np.flatnonzero((volume <= 0.0).any(axis=0)))
             out[0] = sum(squares[d].T @ (_dot(inverse[d], inverse[d]) * volume) for d in range(3))
             weighed = [[volume * inverse[d][j] for j in range(3)] for d in range(3)]
             for j in range(3):
@@ -105,6 +108,7 @@ def add_cells(
         sums.area[:] += np.stack(summed[2:5], axis=1)
         for step in range(n_steps):
             sums.force[step] += np.stack(summed[5 + 3 * step : 8 + 3 * step], axis=1)
+    return np.concatenate(inside_out)
 
 
 def _columns(values: FloatArray, part: IntArray) -> list[FloatArray]:
@@ -127,7 +131,6 @@ def _geometry(
         for d in range(3)
     ]  # fmt: skip
     det = sum(j[0][d] * inverse[d][0] for d in range(3))
-    # Cells that are inside out have been refused; what is flat here counts for nothing.
     safe = np.where(det > 0.0, det, np.inf)
     inverse = [[cofactor / safe for cofactor in row] for row in inverse]
     return inverse, np.where(det > 0.0, det, 0.0) * weights[:, None]
