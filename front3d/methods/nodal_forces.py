@@ -31,7 +31,8 @@ from front3d.methods.point_kernels import (
     look_at_front,
     map_point,
     product,
-    pull_of,
+    pull_of_tensor,
+    pull_of_vector,
     spread,
     to_frame,
 )
@@ -101,6 +102,7 @@ def cell_forces(
             if not det > 0.0:
                 status[c] = 1 + g
                 break
+            volume = weights[g] * det
             s, r, angle = look_at_front(at[0], s, side[c], curve, turn, place, frame, turning)
             to_frame(inverse, frame, local)
             for step in range(len(displacement)):
@@ -139,7 +141,8 @@ def cell_forces(
                         configurational(
                             aux_strain[mode], aux_gradient[mode], H, 1.0, here, slope, initial, T
                         )
-                    pull_of(P, T, weights[g] * det, frame, local, mode, pull)
+                    pull_of_tensor(P, volume, frame, local, mode, pull)
+                    pull_of_vector(T, volume, frame, mode, pull)
                 # J: the actual state with itself, half of each product.
                 stress *= 0.5
                 eshelby(stress, H, stress, H, energy, P)
@@ -149,7 +152,8 @@ def cell_forces(
                         for j in range(3):
                             strain[i, j] = 0.5 * (H[i, j] + H[j, i])
                     configurational(strain, H, H, 0.5, here, slope, initial, T)
-                pull_of(P, T, weights[g] * det, frame, local, 3, pull)
+                pull_of_tensor(P, volume, frame, local, 3, pull)
+                pull_of_vector(T, volume, frame, 3, pull)
                 spread(pull, shapes[g], out[c, step])
 
 
@@ -186,19 +190,14 @@ def face_forces(
     here, slope, initial = np.zeros(N_COLUMNS), np.zeros((2, 3)), np.zeros((4, 3, 3))
     here[LAME], here[SHEAR], here[RATIO] = first_constant(shear, poisson), shear, poisson
     aux_strain, more = np.zeros((3, 3, 3)), 0.0
-    place, turning, area, T, traction = (
-        np.zeros(3),
-        np.zeros(3),
-        np.zeros(3),
-        np.zeros(3),
-        np.zeros(3),
-    )
+    place, turning, area = np.zeros(3), np.zeros(3), np.zeros(3)
+    T, traction = np.zeros(3), np.zeros(3)
     inverse, frame, local = np.zeros((3, 3)), np.zeros((3, 3)), np.zeros((3, 3))
-    H, stress, P = np.zeros((3, 3)), np.zeros((3, 3)), np.zeros((3, 3))
+    H, stress = np.zeros((3, 3)), np.zeros((3, 3))
     at, moved = np.zeros((4, 3)), np.zeros((4, 3))
     aux_gradient, aux_stress = np.empty((3, 3, 3)), np.empty((3, 3, 3))
     divergence, incompatibility = np.empty((3, 3)), np.empty((3, 3, 2))
-    work, pull = np.empty((3, 3, 9)), np.empty((4, 3 * N_MODES))
+    work, pull = np.empty((3, 3, 9)), np.zeros((4, 3 * N_MODES))  # faces pull by phi_n alone
     for c in range(len(cells)):
         out[c] = 0.0
         s = seed[c]
@@ -260,7 +259,7 @@ def face_forces(
                                     if kind == CUT:
                                         shift = H[i, k] if mode == 3 else aux_gradient[mode, i, k]
                                         T[k] -= stress[i, j] * area[j] * shift
-                    pull_of(P, T, 1.0, frame, local, mode, pull)
+                    pull_of_vector(T, 1.0, frame, mode, pull)
                 spread(pull, shapes[g], out[c, step])
 
 

@@ -152,16 +152,10 @@ def eshelby(
 
 
 @inlined
-def pull_of(
-    P: FloatArray,
-    T: FloatArray,
-    factor: float,
-    frame: FloatArray,
-    local: FloatArray,
-    mode: int,
-    pull: FloatArray,
+def pull_of_tensor(
+    P: FloatArray, factor: float, frame: FloatArray, local: FloatArray, mode: int, pull: FloatArray
 ) -> None:
-    """Put factor (T_k, P_kj dxi_d/dx_j) along global axes, into columns 3 mode + k of pull.
+    """Put factor P_kj dxi_d/dx_j along global axes into rows 1 + d and columns 3 mode + k of pull.
 
     pull, (4, 3 modes), holds what multiplies phi_n, and dphi_n/dxi_d.
     """
@@ -172,6 +166,14 @@ def pull_of(
                 part = P[m, 0] * local[d, 0] + P[m, 1] * local[d, 1] + P[m, 2] * local[d, 2]
                 total += frame[m, k] * part
             pull[1 + d, 3 * mode + k] = factor * total
+
+
+@inlined
+def pull_of_vector(
+    T: FloatArray, factor: float, frame: FloatArray, mode: int, pull: FloatArray
+) -> None:
+    """Put factor T_k along global axes into the first row and columns 3 mode + k of pull."""
+    for k in range(3):
         turned = frame[0, k] * T[0] + frame[1, k] * T[1] + frame[2, k] * T[2]
         pull[0, 3 * mode + k] = factor * turned
 
