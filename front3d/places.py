@@ -9,14 +9,14 @@ RELATIVE_TOLERANCE = 1e-4
 """Two nodes coincide when closer than this times the shortest edge at either of them."""
 
 _FINENESS, _MOST_VOXELS = 3.0, 128
-_CHUNK = 1 << 16
+_CHUNK, _NUMBERS = 1 << 16, 1 << 18
 
 
 def within(points: FloatArray, places: FloatArray, reach: float) -> BoolArray:
     """(n,) which points lie within `reach` of any of some places, (m, 3), and some more.
 
     Points are looked up in a grid of voxels over the places, of which those within reach are
-    marked, so the cost does not grow with the number of both.
+    marked, so that not every point is compared with every place.
     """
     low = places.min(axis=0) - reach
     span = places.max(axis=0) + reach - low
@@ -47,6 +47,24 @@ def _marked_voxels(samples: FloatArray, shape: IntArray, size: float, reach: flo
         i, j, k = voxel[((voxel >= 0) & (voxel < shape)).all(axis=1)].T
         marked[i, j, k] = True
     return marked
+
+
+def rows_holding(cells: IntArray, nodes: BoolArray) -> IntArray:
+    """Rows of cells, (n, nodes), with a marked node.
+
+    Marked nodes are few: looking for them in the flat list takes a third of the time of asking
+    every row.
+    """
+    width, found = cells.shape[1], []
+    step = max(1, _NUMBERS // width)
+    for start in range(0, len(cells), step):
+        places = np.flatnonzero(nodes.take(cells[start : start + step]))
+        if len(places):
+            rows = places // width
+            new = np.ones(len(rows), bool)
+            new[1:] = rows[1:] != rows[:-1]
+            found.append(start + rows[new])
+    return np.concatenate(found) if found else np.zeros(0, np.int64)
 
 
 @kernel
@@ -177,6 +195,19 @@ def _pairs(
         after[a] = head[slot]
         head[slot] = a
     return first[:found], second[:found]
+
+
+def tolerances(shortest: FloatArray, spacing: float) -> FloatArray:
+    """(n,) distance below which a node coincides with another, from the shortest edge at it and the
+    spacing of the coordinates; negative where no edge is, at nodes of no cell.
+
+    In place of `shortest`: at ten million nodes every array counts.
+    """
+    unused = ~np.isfinite(shortest)
+    np.multiply(shortest, RELATIVE_TOLERANCE, out=shortest)
+    np.maximum(shortest, 2.0 * spacing, out=shortest)
+    shortest[unused] = -1.0
+    return frozen_floats(shortest)
 
 
 def coincident_pairs(points: FloatArray, tolerance: FloatArray) -> tuple[IntArray, IntArray]:

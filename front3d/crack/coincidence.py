@@ -11,10 +11,10 @@ import numpy as np
 from scipy.sparse import coo_array
 from scipy.sparse.csgraph import connected_components
 
-from front3d.arrays import BoolArray, IntArray, frozen_floats
+from front3d.arrays import BoolArray, IntArray
 from front3d.crack.facetable import cells_with
 from front3d.errors import MeshError
-from front3d.places import RELATIVE_TOLERANCE, coincident_pairs, shortest_edges
+from front3d.places import coincident_pairs, shortest_edges, tolerances
 from front3d.solid import Solid
 
 _MAX_SPACING = 0.05
@@ -44,23 +44,18 @@ def find_coincidence(solid: Solid) -> Coincidence:
     shortest = np.full(n, np.inf)
     for block in solid.blocks:
         shortest_edges(solid.points, block.nodes, block.element.edges, shortest)
-    used = np.isfinite(shortest)
-    spacing = solid.point_spacing
-    if shortest.min(initial=np.inf) * _MAX_SPACING < spacing:
+    least, spacing = shortest.min(initial=np.inf), solid.point_spacing
+    if least * _MAX_SPACING < spacing:
         node = int(np.argmin(shortest))
         raise MeshError(
             f"{solid.source}: the coordinates are stored to {spacing:.3g} only, but the edges at "
             f"node {node} are {shortest[node]:.3g} long; store them in double precision, or move "
             "the model nearer to the origin"
         )
-    if not used.any():
+    if not np.isfinite(least):
         return Coincidence(np.arange(n), np.arange(n), np.zeros(n, bool))
-    # In place: at ten million nodes every array counts.
-    tolerance = np.multiply(shortest, RELATIVE_TOLERANCE, out=shortest)
-    np.maximum(tolerance, 2.0 * spacing, out=tolerance)
-    tolerance[~used] = -1.0
-    first, second = coincident_pairs(solid.points, frozen_floats(tolerance))
-    del shortest, tolerance
+    first, second = coincident_pairs(solid.points, tolerances(shortest, spacing))
+    del shortest
     place = _components(n, first, second)
     first, second = _pairs_inside_cells(solid, place, first, second)
     entity = _components(n, first, second)

@@ -17,6 +17,9 @@ from front3d.jit import inlined, kernel
 CurveArrays = tuple[FloatArray, FloatArray, FloatArray, bool]
 """Knots, position, normal and closed of a `Curve`, as kernels take them."""
 
+_SAMPLES = 8
+"""Places in a piece where points near the curve are looked for."""
+
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Curve:
@@ -57,6 +60,13 @@ class Curve:
         )
         _frames(s, self.arrays, place, frame, turning)
         return place, frame, turning
+
+    def samples(self) -> tuple[FloatArray, float]:
+        """Arc lengths (n,) all along, and a distance that none is farther from the next."""
+        parts = np.arange(_SAMPLES) / _SAMPLES
+        s = parts[None, :] * np.diff(self.knots)[:, None] + self.knots[:-1, None]
+        gap = float(np.diff(self.knots).max()) / _SAMPLES
+        return np.append(s.ravel(), self.knots[-1]), gap
 
     def project(self, x: FloatArray, seed: FloatArray) -> tuple[FloatArray, FloatArray]:
         """Arc length of the nearest point and distance, (n,) each, for points x, (n, 3)."""

@@ -193,12 +193,8 @@ def near_nodes(
     -------
     rows : (m,) of x; s and distance : (m,) arc length and distance of these
     """
-    per_piece = 8
-    knots = front.curve.knots
-    t = (np.arange(per_piece) / per_piece)[None, :] * np.diff(knots)[:, None] + knots[:-1, None]
-    samples = np.append(t.ravel(), knots[-1])
+    samples, spacing = front.curve.samples()
     places, _, _ = front.curve.frames(samples)
-    spacing = float(np.diff(knots).max()) / per_piece
     close = np.flatnonzero(within(x, places, reach + spacing))
     found, index = cKDTree(places).query(x[close], distance_upper_bound=reach + spacing)
     hit = np.isfinite(np.asarray(found))

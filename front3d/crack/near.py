@@ -7,7 +7,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from front3d.arrays import FloatArray, IntArray
+from front3d.arrays import IntArray
 from front3d.crack.facetable import FaceTable, cells_with
 from front3d.crack.front import Front
 from front3d.places import within
@@ -16,8 +16,6 @@ from front3d.solid import Solid
 SPAN = 5.5
 """Reach by default, in the largest widths of the crack faces at the front: enough for the default
 rings on most meshes, and where it is not, more cells are fetched."""
-
-_PER_PIECE = 4
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -61,9 +59,10 @@ def first_reach(solid: Solid, fronts: Sequence[Front], faces: Sequence[FaceTable
 
 def cells_near(solid: Solid, fronts: Sequence[Front], reach: float) -> Near:
     """Cells with a node within `reach` of a front."""
-    samples = np.concatenate([_samples(front) for front in fronts])
-    gap = max(float(np.diff(front.curve.knots).max()) for front in fronts) / _PER_PIECE
-    inside = within(solid.points, samples, reach + gap)
+    samples = [front.curve.samples() for front in fronts]
+    places = [f.curve.frames(s)[0] for f, (s, _) in zip(fronts, samples, strict=True)]
+    spacing = max(spacing for _, spacing in samples)
+    inside = within(solid.points, np.concatenate(places), reach + spacing)
     cells = cells_with(solid, inside)
     return Near(solid, tuple(fronts), reach, cells, nodes_of(solid, cells))
 
@@ -74,10 +73,3 @@ def nodes_of(solid: Solid, cells: Sequence[IntArray]) -> IntArray:
     for block, numbers in zip(solid.blocks, cells, strict=True):
         seen[block.nodes[numbers]] = True
     return np.flatnonzero(seen)
-
-
-def _samples(front: Front) -> FloatArray:
-    """Places along a front, (n, 3)."""
-    knots = front.curve.knots
-    t = (np.arange(_PER_PIECE) / _PER_PIECE)[None, :] * np.diff(knots)[:, None] + knots[:-1, None]
-    return front.curve.frames(np.append(t.ravel(), knots[-1]))[0]

@@ -13,9 +13,16 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from front3d.arrays import BoolArray, FloatArray, IntArray, frozen_floats
+from front3d.arrays import BoolArray, FloatArray, frozen_floats
 from front3d.elements import ELEMENTS
-from front3d.places import RELATIVE_TOLERANCE, coincident_pairs, shortest_edges, within
+from front3d.places import (
+    RELATIVE_TOLERANCE,
+    coincident_pairs,
+    rows_holding,
+    shortest_edges,
+    tolerances,
+    within,
+)
 from front3d.reading.raw import RawBlock, RawModel
 from front3d.reading.vtk_grid import cell_arrays, point_arrays, to_model
 
@@ -54,12 +61,11 @@ def around_crack(pieces: list[Piece], source: Any) -> tuple[list[Kept], str] | N
     points, shortest = places
     spacing = 0.0 if points.dtype == np.float64 else float(np.spacing(np.nanmax(np.abs(points))))
     points = points.astype(np.float64, copy=False)
-    tolerance = np.maximum(RELATIVE_TOLERANCE * shortest, 2.0 * spacing)
-    tolerance[~np.isfinite(shortest)] = -1.0
+    tolerance = tolerances(shortest, spacing)
     if not tolerance.max() > 0.0:
         return None
-    first, second = coincident_pairs(frozen_floats(points), frozen_floats(tolerance))
-    del tolerance
+    first, second = coincident_pairs(frozen_floats(points), tolerance)
+    del shortest, tolerance
     if not len(first):
         return None
     at_crack = np.zeros(len(points), bool)
@@ -123,17 +129,12 @@ def _size_at(model: RawModel, marked: BoolArray) -> float:
     assert model.global_ids is not None
     mine, largest = marked[model.global_ids], 0.0
     for block in model.blocks:
-        corners = block.nodes[_holding(block, mine)][:, : ELEMENTS[block.kind].n_corners]
+        corners = block.nodes[rows_holding(block.nodes, mine)][:, : ELEMENTS[block.kind].n_corners]
         if len(corners):
             x = np.asarray(model.points[corners], np.float64)
             extent = x.max(axis=1) - x.min(axis=1)
             largest = max(largest, float(np.linalg.norm(extent, axis=1).max()))
     return largest
-
-
-def _holding(block: RawBlock, marked: BoolArray) -> IntArray:
-    """Rows of the cells that hold a marked node."""
-    return np.unique(np.flatnonzero(marked.take(block.nodes)) // block.nodes.shape[1])
 
 
 def _reduced(grids: list[Any], near: BoolArray, source: Any) -> Kept:
@@ -142,7 +143,7 @@ def _reduced(grids: list[Any], near: BoolArray, source: Any) -> Kept:
     assert model.global_ids is not None
     mine = near[model.global_ids]
     used = np.zeros(len(model.points), bool)
-    rows = [_holding(block, mine) for block in model.blocks]
+    rows = [rows_holding(block.nodes, mine) for block in model.blocks]
     for block, chosen in zip(model.blocks, rows, strict=True):
         used[block.nodes[chosen]] = True
     nodes, new = np.flatnonzero(used), np.cumsum(used) - 1
