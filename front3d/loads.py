@@ -166,7 +166,7 @@ class Loads:
     @property
     def steps_of_loads(self) -> dict[str, tuple[str, ...]]:
         """The steps in which a load acts, of the loads that do not act in all."""
-        return dict(_acting(text) for text in self.acts_in)
+        return dict(acting(text) for text in self.acts_in)
 
     def acts(self, load: str, step: str) -> bool:
         """Whether a load, by the name of its option, acts in a step."""
@@ -220,8 +220,8 @@ def _texts(value: Any) -> tuple[str, ...]:
     return (value,) if isinstance(value, str) else tuple(value)
 
 
-def _acting(text: str) -> tuple[str, tuple[str, ...]]:
-    """Name of a load and of the steps in which it acts."""
+def acting(text: str) -> tuple[str, tuple[str, ...]]:
+    """Name of a load and of the steps in which it acts; CaseError where it is not put so."""
     name, equals, rest = text.partition("=")
     load = name.strip().replace("-", "_").replace(" ", "_")
     steps = tuple(part.strip() for part in rest.split(","))

@@ -154,7 +154,7 @@ LOADS = Loads(
     reference_temperature=20.5,
     expansion=1.15e-5,
     initial_stress="residual",
-    acts_in=("gravity = lifted, upset",),
+    acts_in=("initial-stress = lifted,upset",),
     regions=(Region("plate", 210e3, 0.31), Region(7.0, 70e3, 0.33, density=2.7e-9)),
 )
 
@@ -170,7 +170,7 @@ def test_the_question_states_every_load_and_material(tmp_path: Path) -> None:
     stated = (
         "pressure on the crack faces12.5 MPa", "5 - 0.25 d MPa", "along (0, 1, 0)", "7.85e-09",
         "(0, 0, -9810)", "314.5 radians", "about (0, 0, 1)", "array T_wall", "20.5", "1.15e-05",
-        "initial stressarray residual", "steps of gravitylifted, upset only",
+        "initial stressarray residual", "steps of initial stresslifted, upset only",
         "region plate: E = 210000 MPa, Poisson's ratio 0.31",
         "region 7: E = 70000 MPa, Poisson's ratio 0.33, density 2.7e-09", "both = 1.2*a + 0.8*b",
         "along it E 210000 MPa, Poisson's ratio 0.31",

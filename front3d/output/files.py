@@ -2,7 +2,7 @@
 
 import os
 import re
-from collections.abc import Callable, Iterator, Sequence
+from collections.abc import Callable, Iterator, Mapping, Sequence
 from contextlib import ExitStack, contextmanager
 from pathlib import Path
 
@@ -14,6 +14,15 @@ KINDS = ("chart", "through_thickness", "mode_mix", "steps", "stations")
 
 class WriteError(Front3DError):
     """A folder or file of results cannot be written."""
+
+
+@contextmanager
+def explained(path: Path) -> Iterator[None]:
+    """WriteError in place of the OSError of something that writes to `path`."""
+    try:
+        yield
+    except OSError as error:
+        raise WriteError(_explain(path, error)) from error
 
 
 def write_whole(path: Path, content: bytes) -> Path:
@@ -37,24 +46,16 @@ def whole_set() -> Iterator[Callable[[Path, bytes], None]]:
     with ExitStack() as stack:
 
         def write(path: Path, content: bytes) -> None:
-            # Not tempfile: its files are readable by their owner only, and would stay so.
-            part = path.with_name(f".{path.name}.{os.getpid()}.part")
-            try:
-                with part.open("xb") as stream:
-                    stack.callback(part.unlink, missing_ok=True)
-                    stream.write(content)
-                    stream.flush()
-                    os.fsync(stream.fileno())
-            except OSError as error:
-                raise WriteError(_explain(path, error)) from error
+            part = _beside(path)
+            with explained(path), part.open("xb") as stream:
+                stack.callback(part.unlink, missing_ok=True)
+                stream.write(content)
+                stream.flush()
+                os.fsync(stream.fileno())
             parts[path] = part
 
         yield write
-        for path, part in parts.items():
-            try:
-                part.replace(path)
-            except OSError as error:
-                raise WriteError(_explain(path, error)) from error
+        _take_names(parts)
 
 
 @contextmanager
@@ -64,20 +65,31 @@ def whole_files(*paths: Path) -> Iterator[tuple[Path, ...]]:
 
     Where the block ends with any error none of them appears; an OSError becomes WriteError.
     """
-    parts = tuple(path.with_name(f".{path.name}.{os.getpid()}.part") for path in paths)
-    at = paths[0]
+    parts = {path: _beside(path) for path in paths}
     try:
-        yield parts
-        for part in parts:
-            with part.open("rb+") as stream:
+        with explained(paths[0]):
+            yield tuple(parts.values())
+        for path, part in parts.items():
+            with explained(path), part.open("rb+") as stream:
                 os.fsync(stream.fileno())
-        for at, part in zip(paths, parts, strict=True):
-            part.replace(at)
-    except OSError as error:
-        raise WriteError(_explain(at, error)) from error
+        _take_names(parts)
     finally:
-        for part in parts:
+        for part in parts.values():
             part.unlink(missing_ok=True)
+
+
+def _beside(path: Path) -> Path:
+    """Where a file is written before it takes its name.
+
+    Not tempfile: its files are readable by their owner only, and would stay so.
+    """
+    return path.with_name(f".{path.name}.{os.getpid()}.part")
+
+
+def _take_names(parts: Mapping[Path, Path]) -> None:
+    for path, part in parts.items():
+        with explained(path):
+            part.replace(path)
 
 
 @contextmanager
@@ -93,15 +105,6 @@ def results_folder(folder: Path) -> Iterator[Path]:
             except OSError:
                 break
         raise
-
-
-@contextmanager
-def explained(path: Path) -> Iterator[None]:
-    """WriteError in place of the OSError of something that writes to `path` by itself."""
-    try:
-        yield
-    except OSError as error:
-        raise WriteError(_explain(path, error)) from error
 
 
 def prepare_folder(folder: Path) -> Path:

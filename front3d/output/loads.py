@@ -3,6 +3,7 @@
 from collections.abc import Mapping, Sequence
 from typing import Any
 
+from front3d.loads import acting
 from front3d.solid import Constants, Material
 from front3d.units import Units
 
@@ -46,7 +47,7 @@ def load_words(options: Mapping[str, Any], units: Units) -> list[Pair]:
     """Every load that was stated beside the displacements, in the order of the case file."""
     loads, stress = _loads(options), units.stress
     found: list[Pair] = []
-    some_steps = dict(_at_equals(text) for text in loads.get("acts_in") or ())
+    some_steps = dict(acting(text) for text in loads.get("acts_in") or ())
     for key, name in (
         ("face_pressure", "pressure on the crack faces"),
         ("surface_pressure", "pressure on the surface at the ends of the front"),
@@ -88,7 +89,7 @@ def load_words(options: Mapping[str, Any], units: Units) -> list[Pair]:
             name = key.replace("_", " ")
             found.append((name, f"array {loads[key]} of the result file"))
     for key, steps in some_steps.items():
-        found.append((f"steps of {key.replace('_', ' ')}", f"{steps} only"))
+        found.append((f"steps of {key.replace('_', ' ')}", f"{', '.join(steps)} only"))
     return found
 
 
@@ -104,12 +105,6 @@ def own_constants(material: Constants | None, whole: Material) -> bool:
 def _loads(options: Mapping[str, Any]) -> Mapping[str, Any]:
     loads: Mapping[str, Any] = options.get("loads") or {}
     return loads
-
-
-def _at_equals(text: str) -> Pair:
-    """A load and its steps, of a text such as "face_pressure = pressure, upset"."""
-    load, _, steps = text.partition("=")
-    return load.strip(), steps.strip()
 
 
 def _elastic(young: float, poisson: float, stress: str) -> str:
