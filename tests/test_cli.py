@@ -319,10 +319,16 @@ class Terminal(io.StringIO):
         return True
 
 
-def test_progress_is_shown_on_a_terminal_only(monkeypatch: pytest.MonkeyPatch) -> None:
-    monkeypatch.setenv("TERM", "xterm")
+def on_a_terminal(monkeypatch: pytest.MonkeyPatch) -> Terminal:
+    """A terminal in place of stderr."""
     screen = Terminal()
+    monkeypatch.setenv("TERM", "xterm")
     monkeypatch.setattr(sys, "stderr", screen)
+    return screen
+
+
+def test_progress_is_shown_on_a_terminal_only(monkeypatch: pytest.MonkeyPatch) -> None:
+    screen = on_a_terminal(monkeypatch)
     with progress_bar() as show:
         assert show is not None
         show("finding the crack", 0.5)
@@ -336,9 +342,7 @@ def test_progress_is_shown_on_a_terminal_only(monkeypatch: pytest.MonkeyPatch) -
 
 
 def test_compilation_is_said_while_it_happens(monkeypatch: pytest.MonkeyPatch) -> None:
-    monkeypatch.setenv("TERM", "xterm")
-    screen = Terminal()
-    monkeypatch.setattr(sys, "stderr", screen)
+    screen = on_a_terminal(monkeypatch)
     with progress_bar() as show:
         assert show is not None
         show("looking", 0.5)

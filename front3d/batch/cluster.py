@@ -4,16 +4,15 @@ import logging
 import socket
 from collections.abc import Callable
 from concurrent.futures import Future
-from contextlib import ExitStack
-from types import TracebackType
-from typing import Any, Self
+from contextlib import AbstractContextManager, ExitStack
+from typing import Any
 from urllib.parse import urlsplit
 
 from front3d.batch.processes import use_threads
 from front3d.errors import Front3DError
 
 
-class Cluster:
+class Cluster(AbstractContextManager["Cluster"]):
     """The workers of a Dask cluster that is there already."""
 
     room = True
@@ -53,15 +52,7 @@ class Cluster:
     def ended(self, future: "Future[Any]") -> None:
         """Nothing: the scheduler knows."""
 
-    def __enter__(self) -> Self:
-        return self
-
-    def __exit__(
-        self,
-        kind: type[BaseException] | None,
-        error: BaseException | None,
-        trace: TracebackType | None,
-    ) -> None:
+    def __exit__(self, *_: object) -> None:
         self._executor.shutdown(wait=False)
         self._opened.close()
 

@@ -3,16 +3,15 @@
 import os
 from collections.abc import Callable, Iterator
 from concurrent.futures import BrokenExecutor, Executor, Future
-from contextlib import contextmanager
+from contextlib import AbstractContextManager, contextmanager
 from functools import partial
 from pathlib import Path
-from types import TracebackType
-from typing import Any, Self
+from typing import Any
 
 import front3d
 
 
-class Processes:
+class Processes(AbstractContextManager["Processes"]):
     """Processes of this machine, started when they are needed.
 
     Each is an executor of its own, so that the death of one is that of one case, which is known,
@@ -55,15 +54,7 @@ class Processes:
     def ended(self, future: "Future[Any]") -> None:
         self._idle.append(self._busy.pop(future))
 
-    def __enter__(self) -> Self:
-        return self
-
-    def __exit__(
-        self,
-        kind: type[BaseException] | None,
-        error: BaseException | None,
-        trace: TracebackType | None,
-    ) -> None:
+    def __exit__(self, *_: object) -> None:
         self._held.close()
         for executor in (*self._idle, *self._busy.values()):
             executor.shutdown(wait=True, cancel_futures=True)

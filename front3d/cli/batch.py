@@ -2,7 +2,6 @@
 
 import argparse
 import sys
-from contextlib import AbstractContextManager
 from dataclasses import dataclass, field
 from pathlib import Path
 from time import monotonic
@@ -139,9 +138,7 @@ def _carry_out(study: _Study, arguments: argparse.Namespace) -> None:
                 show(outcome)
 
 
-def _pool(
-    study: _Study, arguments: argparse.Namespace
-) -> "AbstractContextManager[Processes] | AbstractContextManager[Cluster]":
+def _pool(study: _Study, arguments: argparse.Namespace) -> "Processes | Cluster":
     from front3d.batch.cluster import Cluster
     from front3d.batch.processes import Processes, cores
 

@@ -18,14 +18,15 @@ def progress_bar() -> Iterator[Callable[[str, float], None] | None]:
     from front3d.jit import compilations
 
     if not sys.stderr.isatty():
-        with compilations(_once()):
+        with compilations(_first(lambda: print(FIRST_RUN, file=sys.stderr, flush=True))):
             yield None
         return
     from rich.console import Console
     from rich.progress import BarColumn, Progress, TextColumn, TimeElapsedColumn
 
     console = Console(stderr=True)
-    stage, told = "starting", False
+    stage = "starting"
+    tell = _first(lambda: console.print(FIRST_RUN, style="dim"))
     with Progress(
         TextColumn("{task.description}"),
         BarColumn(),
@@ -41,10 +42,7 @@ def progress_bar() -> Iterator[Callable[[str, float], None] | None]:
             bar.update(task, description=stage, completed=fraction)
 
         def say(kernel: str | None) -> None:
-            nonlocal told
-            if kernel and not told:
-                console.print(FIRST_RUN, style="dim")
-                told = True
+            tell(kernel)
             words = f"{stage}: compiling {kernel}" if kernel else stage
             bar.update(task, description=words, refresh=True)
 
@@ -52,14 +50,14 @@ def progress_bar() -> Iterator[Callable[[str, float], None] | None]:
             yield show
 
 
-def _once() -> Callable[[str | None], None]:
-    """Says at the first kernel that they are being compiled: a log is read as it grows, too."""
+def _first(tell: Callable[[], None]) -> Callable[[str | None], None]:
+    """Calls `tell` at the first kernel that is compiled."""
     told = False
 
     def say(kernel: str | None) -> None:
         nonlocal told
         if kernel and not told:
-            print(FIRST_RUN, file=sys.stderr, flush=True)
+            tell()
             told = True
 
     return say
