@@ -202,6 +202,12 @@ def display() -> Iterator[str]:
         server.wait(timeout=20)
 
 
+def environment_of(display: str) -> dict[str, str]:
+    """That of a process on a display; this one may have been set to draw without any."""
+    kept = {k: v for k, v in os.environ.items() if k != "VTK_DEFAULT_OPENGL_WINDOW"}
+    return kept | {"DISPLAY": display}
+
+
 DRIVE = """
 import sys
 from pathlib import Path
@@ -283,10 +289,9 @@ window.plotter.close()
 @pytest.mark.slow
 def test_the_window_opens_and_is_driven_by_clicks_and_keys(tmp_path: Path, display: str) -> None:
     folder = written(tmp_path)
-    environment = {k: v for k, v in os.environ.items() if k != "VTK_DEFAULT_OPENGL_WINDOW"}
     ran = subprocess.run(
         [sys.executable, "-c", DRIVE, str(folder)],
-        env=environment | {"DISPLAY": display},
+        env=environment_of(display),
         capture_output=True,
         text=True,
         timeout=300,
@@ -302,7 +307,7 @@ def test_the_window_opens_and_is_driven_by_clicks_and_keys(tmp_path: Path, displ
 def test_the_command_keeps_its_window_open_until_it_is_closed(tmp_path: Path, display: str) -> None:
     running = subprocess.Popen(
         [sys.executable, "-m", "front3d", "view", str(written(tmp_path))],
-        env={**os.environ, "DISPLAY": display},
+        env=environment_of(display),
         stdout=subprocess.PIPE,
         stderr=subprocess.PIPE,
         text=True,
